@@ -1,0 +1,4 @@
+//! Numerical tools that know nothing of records: polynomials, sums, quantiles, autoregression.
+
+pub mod polynomial;
+pub mod sum;

@@ -1,0 +1,136 @@
+//! The uniform axis of a record: time or length, start, step, and how the step was found.
+
+use serde::Serialize;
+
+use crate::error::{Error, Result};
+use crate::unit::Unit;
+
+/// A uniform axis in time (`s`, `ms`) or length (`m`, `mm`).
+#[derive(Debug, Clone, PartialEq)]
+pub struct Axis {
+    unit: Unit,
+    start: f64,
+    step: f64,
+    len: usize,
+    interval: Option<[f64; 2]>,
+    source: RateSource,
+    epoch: Option<String>,
+}
+
+/// Where the sampling step came from.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "snake_case")]
+pub enum RateSource {
+    /// The user gave it.
+    Given,
+    /// The file's header states it.
+    Header,
+    /// Found from the stamps of a time or position column.
+    Stamps,
+}
+
+impl Axis {
+    /// An axis of `len` samples: first stamp `start` and `step` in `unit`.
+    ///
+    /// # Errors
+    /// `Unsupported` when the unit is neither time nor length, the step is not a positive finite number, or the start is
+    /// not finite.
+    pub fn new(unit: Unit, start: f64, step: f64, len: usize, source: RateSource) -> Result<Axis> {
+        if !unit.is_time() && !unit.is_length() {
+            return Err(Error::unsupported(format!("an axis needs a unit of time or length, not {:?}", unit.label())));
+        }
+        if !(step.is_finite() && step > 0.0 && start.is_finite()) {
+            return Err(Error::unsupported(format!("a sampling step of {step} {unit} makes no axis")));
+        }
+        Ok(Axis { unit, start, step, len, interval: None, source, epoch: None })
+    }
+
+    /// A time axis from a sampling rate in Hz, starting at 0 s.
+    ///
+    /// # Errors
+    /// As `new`.
+    pub fn from_rate_hz(rate_hz: f64, len: usize, source: RateSource) -> Result<Axis> {
+        Axis::new(Unit::parse("s"), 0.0, 1.0 / rate_hz, len, source)
+    }
+
+    /// The same axis with a hard interval for the step (in the axis unit), as the stamps allow.
+    #[must_use]
+    pub fn with_interval(mut self, interval: [f64; 2]) -> Axis {
+        self.interval = Some(interval);
+        self
+    }
+
+    /// The same axis with the civil time of stamp 0 (RFC 3339), where the file tells it.
+    #[must_use]
+    pub fn with_epoch(mut self, epoch: impl Into<String>) -> Axis {
+        self.epoch = Some(epoch.into());
+        self
+    }
+
+    /// `len` samples from sample `first` on, keeping their stamps.
+    #[must_use]
+    pub fn cut(&self, first: usize, len: usize) -> Axis {
+        Axis { start: self.stamp(first), len, ..self.clone() }
+    }
+
+    /// Unit of `start` and `step`.
+    pub fn unit(&self) -> &Unit {
+        &self.unit
+    }
+
+    /// True for a time axis, false for a length axis.
+    pub fn is_time(&self) -> bool {
+        self.unit.is_time()
+    }
+
+    /// Number of samples.
+    #[expect(clippy::len_without_is_empty, reason = "an axis of no samples never reaches a record")]
+    pub fn len(&self) -> usize {
+        self.len
+    }
+
+    /// Stamp of the first sample, in the axis unit.
+    pub fn start(&self) -> f64 {
+        self.start
+    }
+
+    /// Sampling step, in the axis unit.
+    pub fn step(&self) -> f64 {
+        self.step
+    }
+
+    /// Sampling step in seconds or metres.
+    pub fn step_base(&self) -> f64 {
+        self.step * self.unit.meaning().map_or(1.0, |m| m.scale)
+    }
+
+    /// Sampling rate in Hz, or samples per metre.
+    pub fn rate_base(&self) -> f64 {
+        1.0 / self.step_base()
+    }
+
+    /// Stamp of sample `n`, in the axis unit.
+    pub fn stamp(&self, n: usize) -> f64 {
+        self.start + n as f64 * self.step
+    }
+
+    /// The hard interval for the step, in the axis unit, where stamps gave one.
+    pub fn interval(&self) -> Option<[f64; 2]> {
+        self.interval
+    }
+
+    /// Where the step came from.
+    pub fn source(&self) -> RateSource {
+        self.source
+    }
+
+    /// Civil time of stamp 0, where known.
+    pub fn epoch(&self) -> Option<&str> {
+        self.epoch.as_deref()
+    }
+
+    /// The label of frequencies on this axis: `Hz` or `1/m`.
+    pub fn frequency_label(&self) -> &'static str {
+        if self.is_time() { "Hz" } else { "1/m" }
+    }
+}
