@@ -1,4 +1,5 @@
 //! Numerical tools that know nothing of records: polynomials, sums, quantiles, autoregression.
 
+pub mod noise;
 pub mod polynomial;
 pub mod sum;
