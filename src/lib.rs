@@ -8,3 +8,4 @@ pub mod unit;
 pub mod numeric;
 pub mod record;
 pub mod ends;
+pub mod basis;

@@ -1,4 +1,5 @@
 //! Numerical tools that know nothing of records: polynomials, sums, quantiles, autoregression.
 
+pub mod compensated;
 pub mod polynomial;
 pub mod sum;
