@@ -7,5 +7,6 @@ pub mod error;
 pub mod unit;
 pub mod numeric;
 pub mod record;
+pub mod read;
 pub mod ends;
 pub mod baseline;
