@@ -8,5 +8,6 @@ pub mod unit;
 pub mod numeric;
 pub mod record;
 pub mod read;
+pub mod write;
 pub mod ends;
 pub mod baseline;
