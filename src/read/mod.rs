@@ -1,0 +1,3 @@
+//! Reads records from files and pipes.
+
+pub mod wav;
