@@ -39,7 +39,8 @@ fn answer(planner: &Planner, request: &str) -> Result<String, String> {
         Some("whole") => Seat::Whole,
         other => return Err(format!("seat: {other:?}")),
     };
-    let ends = Ends::all().find(|ends| Some(ends.name()) == name).ok_or_else(|| format!("ends: {name:?}"))?.seated(seat);
+    let ends =
+        Ends::all().find(|ends| Some(ends.name()) == name).ok_or_else(|| format!("ends: {name:?}"))?.seated(seat);
     let mut values: Vec<f64> =
         words.map(|word| word.parse().map_err(|e| format!("{word:?}: {e}"))).collect::<Result<_, _>>()?;
     let plan = planner.plan(ends, values.len()).map_err(|e| e.to_string())?;

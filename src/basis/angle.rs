@@ -9,7 +9,7 @@ pub fn of_turns(numerator: u64, denominator: u64) -> (f64, f64) {
     let octant = eighths / denominator;
     let rest = eighths % denominator;
     // Odd octants are measured back from their end, so that the angle never passes pi/4.
-    let part = if octant % 2 == 0 { rest } else { denominator - rest };
+    let part = if octant.is_multiple_of(2) { rest } else { denominator - rest };
     let (s, c) = (FRAC_PI_4 * (part as f64 / denominator as f64)).sin_cos();
     match octant {
         0 => (c, s),
