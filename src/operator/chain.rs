@@ -6,13 +6,13 @@ use crate::error::{Error, Finding, Result};
 use crate::numeric::polynomial::Polynomial;
 use crate::record::Axis;
 
-use super::STEPS;
 use super::corner::figure;
 use super::gain::Series;
 use super::reach::{Reach, Reaches, Scale};
 use super::request::Request;
 use super::shape::Shape;
 use super::step::{Frame, Part, Stage};
+use super::table::STEPS;
 
 /// What a run does in the frequency domain. Gains are in a fixed order whatever the order of the requests, so results
 /// agree to the last bit: low-pass, band-stop and notch; integral or derivative; high-pass.

@@ -8,8 +8,8 @@ use crate::ends::Parity;
 use super::turn;
 
 /// Half of the impulse response of gain x (i w)^turns on a periodic grid of `grid` samples (made even, at least 2):
-/// h[0], h[1], ..., h[grid/2] per unit sample. Turns 0 and +-2 give an even response, h[-n] = h[n]; turns +-1 an odd one,
-/// h[-n] = -h[n] with h[0] = 0. `gain` is asked at k/grid cycles per sample, k = 0..=grid/2. An integral whose gain does
+/// h(0), h(1), ..., h(grid/2) per unit sample. Turns 0 and +-2 give an even response, h(-n) = h(n); turns +-1 an odd one,
+/// h(-n) = -h(n) with h(0) = 0. `gain` is asked at k/grid cycles per sample, k = 0..=grid/2. An integral whose gain does
 /// not vanish at zero frequency has no response that dies away: its zero-frequency term is left out.
 pub fn impulse_response(gain: impl Fn(f64) -> f64, turns: i32, grid: usize) -> Vec<f64> {
     let half = (grid / 2).max(1);
@@ -36,7 +36,7 @@ pub(super) fn sampled(gain: impl Fn(f64) -> f64, turns: i32, half: usize) -> (Ve
     (values, parity)
 }
 
-/// The response h[0..=half] of a spectrum given at half + 1 lines, real (even) or imaginary (odd).
+/// The response h(0), ..., h(half) of a spectrum given at half + 1 lines, real (even) or imaginary (odd).
 pub(super) fn transformed(values: &[f64], parity: Parity) -> Vec<f64> {
     let half = values.len().saturating_sub(1);
     let grid = 2 * half;

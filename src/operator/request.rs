@@ -9,9 +9,9 @@ use serde::{Deserialize, Deserializer, Serialize, Serializer};
 
 use crate::error::{Error, Result};
 
-use super::STEPS;
 use super::corner::quoted;
 use super::step::{Effect, Frame, Setting, Step};
+use super::table::STEPS;
 
 /// One operator with its argument, read but not yet related to a record. It serialises as `{"lowpass": "40Hz"}`.
 #[derive(Debug, Clone)]
