@@ -12,3 +12,4 @@ pub mod write;
 pub mod ends;
 pub mod baseline;
 pub mod basis;
+pub mod operator;
