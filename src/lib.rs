@@ -8,7 +8,7 @@ pub mod unit;
 pub mod numeric;
 pub mod record;
 pub mod read;
-pub mod write;
 pub mod ends;
 pub mod baseline;
 pub mod basis;
+pub mod write;
