@@ -78,22 +78,25 @@ pub(super) fn push_field(out: &mut Vec<u8>, field: &str, delimiter: u8) {
     out.push(b'"');
 }
 
-/// The end of the row that starts at `from`: the index of its line end outside quotes; `None` where the text ends sooner.
-pub(super) fn row_end(text: &[u8], from: usize, line_end: u8) -> Option<usize> {
-    let (mut at, mut quoted) = (from, false);
+/// The end of the row that starts at `from`: the index of its line end outside quotes, and the number of lines up to there;
+/// `None` where the text ends sooner.
+pub(super) fn row_end(text: &[u8], from: usize, line_end: u8) -> Option<(usize, u64)> {
+    let (mut at, mut quoted, mut lines) = (from, false, 1);
     loop {
         let found = at + memchr2(line_end, b'"', &text[at..])?;
         if text[found] == b'"' {
             quoted = !quoted;
-        } else if !quoted {
-            return Some(found);
+        } else if quoted {
+            lines += 1;
+        } else {
+            return Some((found, lines));
         }
         at = found + 1;
     }
 }
 
 /// Blanks that may stand around a field.
-pub(super) fn is_blank(byte: u8) -> bool {
+fn is_blank(byte: u8) -> bool {
     matches!(byte, b' ' | b'\t')
 }
 
@@ -131,7 +134,7 @@ mod tests {
 
     #[test]
     fn a_quoted_line_end_ends_no_row() {
-        assert_eq!(row_end(b"a,\"b\nc\"\nd", 0, b'\n'), Some(7));
+        assert_eq!(row_end(b"a,\"b\nc\"\nd", 0, b'\n'), Some((7, 2)));
         assert_eq!(row_end(b"abc", 0, b'\n'), None);
     }
 

@@ -8,6 +8,7 @@ mod number;
 mod origin;
 mod stamp;
 mod table;
+mod text;
 mod wav;
 mod wave_header;
 mod whole;
@@ -19,7 +20,7 @@ use crate::error::{Error, Finding, Result};
 use crate::record::{Format, Record};
 pub use number::Digits;
 pub use origin::{Origin, Rows};
-pub use wave_header::{ENCODINGS, Encoding};
+pub use wave_header::{WAVE_ENCODINGS, WaveEncoding};
 pub use whole::{Overwrite, Pending, Written, discard_pending, finish_all};
 
 /// A form that is written.
@@ -53,13 +54,13 @@ pub struct Content<'a> {
     /// Digits of conditioned values. For text only.
     pub digits: Digits,
     /// How a sample is stored. For WAV only.
-    pub encoding: Encoding,
+    pub encoding: WaveEncoding,
 }
 
 impl<'a> Content<'a> {
     /// A record in plain form: shortest digits, or 32-bit floats.
     pub fn new(record: &'a Record) -> Content<'a> {
-        Content { record, origin: None, extra: &[], digits: Digits::Shortest, encoding: Encoding::Float32 }
+        Content { record, origin: None, extra: &[], digits: Digits::Shortest, encoding: WaveEncoding::Float32 }
     }
 }
 
@@ -88,6 +89,18 @@ impl Cells<'_> {
             Cells::Numbers(cells) => cells.len(),
             Cells::Flags(cells) => cells.len(),
         }
+    }
+}
+
+/// Checks the content, writes it into `output` and finishes that; remarks say what the form could not carry.
+///
+/// # Errors
+/// Those of the writer and of `Pending::finish`; nothing is left behind then.
+pub fn save(writer: &Writer, content: &Content<'_>, mut output: Pending<'_>) -> Result<(Written, Vec<Finding>)> {
+    let findings = (writer.check)(content)?;
+    match (writer.write)(content, &mut output) {
+        Ok(()) => output.finish().map(|written| (written, findings)),
+        Err(error) => Err(output.placed(error)),
     }
 }
 

@@ -26,7 +26,14 @@ pub fn push(out: &mut Vec<u8>, value: f64, digits: Digits, decimal: u8) {
         Digits::Shortest => {
             let mut buffer = zmij::Buffer::new();
             let text = buffer.format_finite(value).as_bytes();
-            out.extend_from_slice(text.strip_suffix(b".0").unwrap_or(text));
+            let text = text.strip_suffix(b".0").unwrap_or(text);
+            out.extend_from_slice(text);
+            // An exponent needs no plus; only numbers this large have one.
+            if value.abs() >= 1e16
+                && let Some(plus) = out[start..].iter().position(|&byte| byte == b'+')
+            {
+                out.remove(start + plus);
+            }
         }
         Digits::Fixed(decimals) => {
             if !push_fixed(out, value, decimals) {
@@ -139,7 +146,9 @@ mod tests {
             (0.1, "0.1"),
             (1e-7, "1e-7"),
             (1.5e-7, "1.5e-7"),
-            (0.00001, "1e-5"),
+            (1e-5, "0.00001"),
+            (9.5e-6, "9.5e-6"),
+            (1e16, "1e16"),
             (123456.75, "123456.75"),
             (1e15, "1000000000000000"),
             (1e308, "1e308"),

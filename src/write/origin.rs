@@ -1,7 +1,7 @@
 //! Where a result came from: the table, the column of each channel, and the source row of each sample.
 
 use crate::error::{Error, Result};
-use crate::record::{ColumnRole, Layout, RawRecord, TableLayout, TextSource};
+use crate::record::{ColumnRole, Layout, RawRecord, Source, TableLayout};
 use crate::unit::Unit;
 
 /// The table that a result is written back into.
@@ -14,11 +14,10 @@ pub struct Origin<'a> {
     pub(super) units: Vec<Unit>,
     pub(super) rows: Rows<'a>,
     pub(super) stamps: Option<&'a (dyn Fn(usize) -> String + Sync)>,
-    /// Fingerprint that the file must still have when it is read again.
-    pub(super) sha256: Option<String>,
+    pub(super) source: Source,
 }
 
-/// Which data row of the table each sample of the result came from, counted from 0 without blank lines.
+/// Which row of the raw record each sample of the result came from, counted from 0.
 #[derive(Debug, Clone, Copy)]
 pub enum Rows<'a> {
     /// Sample n from row `first` + n.
@@ -29,19 +28,30 @@ pub enum Rows<'a> {
 
 impl Rows<'_> {
     /// The source row of sample `n`.
-    pub(super) fn row(&self, n: usize) -> Option<u64> {
+    fn row(&self, n: usize) -> Option<u64> {
         match self {
             Rows::From(first) => Some(first.saturating_add(n as u64)),
             Rows::Each(rows) => rows.get(n).copied().flatten(),
         }
     }
+}
 
-    /// The first sample from `n` on, and before `len`, that comes from row `limit` or a later one.
+impl Origin<'_> {
+    /// The line of the file (from 1) that sample `n` came from; `None` for a sample that was inserted.
+    pub(super) fn line(&self, n: usize) -> Option<u64> {
+        self.rows.row(n).and_then(|row| self.layout.data_line.checked_add(row))
+    }
+
+    /// The first sample from `n` on, and before `len`, that comes from line `limit` or a later one.
     pub(super) fn first_beyond(&self, n: usize, limit: u64, len: usize) -> usize {
-        match self {
-            Rows::From(first) => usize::try_from(limit.saturating_sub(*first)).unwrap_or(usize::MAX).clamp(n, len),
-            Rows::Each(_) => (n..len).find(|&n| self.row(n).is_some_and(|row| row >= limit)).unwrap_or(len),
+        let beyond = |n: usize| self.line(n).is_some_and(|line| line >= limit);
+        let Rows::From(_) = self.rows else { return (n..len).find(|&n| beyond(n)).unwrap_or(len) };
+        let (mut low, mut high) = (n, len);
+        while low < high {
+            let middle = low + (high - low) / 2;
+            if beyond(middle) { high = middle } else { low = middle + 1 }
         }
+        low
     }
 }
 
@@ -75,9 +85,7 @@ impl<'a> Origin<'a> {
         {
             return Err(Error::usage("the source rows of a result must ascend"));
         }
-        let from_file = matches!(layout.text, TextSource::File(_)) && !raw.source.sha256.is_empty();
-        let sha256 = from_file.then(|| raw.source.sha256.clone());
-        Ok(Origin { layout: layout.clone(), columns, units, rows, stamps: None, sha256 })
+        Ok(Origin { layout: layout.clone(), columns, units, rows, stamps: None, source: raw.source.clone() })
     }
 
     /// Gives the text in the time column for samples that were inserted, by sample; without it that field stays blank.

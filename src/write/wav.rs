@@ -5,7 +5,7 @@ use std::io::Write;
 use rayon::prelude::*;
 
 use super::blocks::pump;
-use super::wave_header::{Encoding, header};
+use super::wave_header::{WaveEncoding, header};
 use super::{Content, Writer};
 use crate::error::{Error, Finding, Result};
 use crate::place::Place;
@@ -83,16 +83,16 @@ const BATCH: usize = 16;
 
 /// Puts samples into every `frame`-th place of `out`, from `at` on. Integers are x times 2^(bits - 1), rounded to the
 /// nearest, halves to even; no dither.
-fn store(samples: &[f64], encoding: Encoding, frame: usize, at: usize, out: &mut [u8]) {
+fn store(samples: &[f64], encoding: WaveEncoding, frame: usize, at: usize, out: &mut [u8]) {
     match encoding {
-        Encoding::Pcm16 => put(samples, frame, at, out, |v| (integer(v, 16) as i16).to_le_bytes()),
-        Encoding::Pcm24 => put(samples, frame, at, out, |v| {
+        WaveEncoding::Pcm16 => put(samples, frame, at, out, |v| (integer(v, 16) as i16).to_le_bytes()),
+        WaveEncoding::Pcm24 => put(samples, frame, at, out, |v| {
             let [a, b, c, _] = (integer(v, 24) as i32).to_le_bytes();
             [a, b, c]
         }),
-        Encoding::Pcm32 => put(samples, frame, at, out, |v| (integer(v, 32) as i32).to_le_bytes()),
-        Encoding::Float32 => put(samples, frame, at, out, |v| (v as f32).to_le_bytes()),
-        Encoding::Float64 => put(samples, frame, at, out, f64::to_le_bytes),
+        WaveEncoding::Pcm32 => put(samples, frame, at, out, |v| (integer(v, 32) as i32).to_le_bytes()),
+        WaveEncoding::Float32 => put(samples, frame, at, out, |v| (v as f32).to_le_bytes()),
+        WaveEncoding::Float64 => put(samples, frame, at, out, f64::to_le_bytes),
     }
 }
 
@@ -109,10 +109,10 @@ fn integer(value: f64, bits: u32) -> f64 {
     (value * (1_u64 << (bits - 1)) as f64).round_ties_even()
 }
 
-fn check_range(channel: &Channel<'_>, encoding: Encoding) -> Result<()> {
+fn check_range(channel: &Channel<'_>, encoding: WaveEncoding) -> Result<()> {
     let beyond = |v: f64| match encoding {
-        Encoding::Float32 => !(v as f32).is_finite(),
-        Encoding::Float64 => false,
+        WaveEncoding::Float32 => !(v as f32).is_finite(),
+        WaveEncoding::Float64 => false,
         integers => {
             let bits = 8 * integers.bytes() as u32;
             let half = (1_u64 << (bits - 1)) as f64;

@@ -5,7 +5,7 @@ use serde::{Deserialize, Serialize};
 /// How one sample is stored in a WAV file.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default, Serialize, Deserialize)]
 #[serde(rename_all = "snake_case")]
-pub enum Encoding {
+pub enum WaveEncoding {
     /// 16-bit integers.
     Pcm16,
     /// 24-bit integers, packed in three bytes.
@@ -20,33 +20,33 @@ pub enum Encoding {
 }
 
 /// The encodings and their names on the command line.
-pub static ENCODINGS: &[(&str, Encoding)] = &[
-    ("pcm16", Encoding::Pcm16),
-    ("pcm24", Encoding::Pcm24),
-    ("pcm32", Encoding::Pcm32),
-    ("float32", Encoding::Float32),
-    ("float64", Encoding::Float64),
+pub static WAVE_ENCODINGS: &[(&str, WaveEncoding)] = &[
+    ("pcm16", WaveEncoding::Pcm16),
+    ("pcm24", WaveEncoding::Pcm24),
+    ("pcm32", WaveEncoding::Pcm32),
+    ("float32", WaveEncoding::Float32),
+    ("float64", WaveEncoding::Float64),
 ];
 
-impl Encoding {
+impl WaveEncoding {
     /// Bytes of one sample.
     pub fn bytes(self) -> usize {
         match self {
-            Encoding::Pcm16 => 2,
-            Encoding::Pcm24 => 3,
-            Encoding::Pcm32 | Encoding::Float32 => 4,
-            Encoding::Float64 => 8,
+            WaveEncoding::Pcm16 => 2,
+            WaveEncoding::Pcm24 => 3,
+            WaveEncoding::Pcm32 | WaveEncoding::Float32 => 4,
+            WaveEncoding::Float64 => 8,
         }
     }
 
     /// True for IEEE floats.
     pub fn is_float(self) -> bool {
-        matches!(self, Encoding::Float32 | Encoding::Float64)
+        matches!(self, WaveEncoding::Float32 | WaveEncoding::Float64)
     }
 
     /// Name on the command line.
     pub fn name(self) -> &'static str {
-        ENCODINGS.iter().find(|(_, encoding)| *encoding == self).map_or("", |(name, _)| name)
+        WAVE_ENCODINGS.iter().find(|(_, encoding)| *encoding == self).map_or("", |(name, _)| name)
     }
 }
 
@@ -55,11 +55,11 @@ impl Encoding {
 /// Up to two channels of 16-bit integers or floats get the plain header; everything else the extensible one, as its
 /// definition demands (Microsoft, "Multiple channel audio data and WAVE files", 2001), without loudspeaker positions. Past
 /// 4 GiB the sizes move into a `ds64` chunk (EBU Tech 3306).
-pub(super) fn header(frames: u64, channels: u16, rate_hz: u32, encoding: Encoding) -> Vec<u8> {
+pub(super) fn header(frames: u64, channels: u16, rate_hz: u32, encoding: WaveEncoding) -> Vec<u8> {
     let align = channels * encoding.bytes() as u16;
     let data = frames.saturating_mul(u64::from(align));
     let float = encoding.is_float();
-    let extensible = channels > 2 || !(float || encoding == Encoding::Pcm16);
+    let extensible = channels > 2 || !(float || encoding == WaveEncoding::Pcm16);
     let tag: u16 = if float { 3 } else { 1 };
     let bits = 8 * encoding.bytes() as u16;
 
@@ -125,7 +125,7 @@ mod tests {
     fn sizes_past_four_gibibytes_move_into_ds64() {
         // EBU Tech 3306, section 3: RF64, -1, WAVE, ds64 with RIFF size, data size, sample count; data size -1.
         let frames = 1 << 30;
-        let bytes = header(frames, 1, 1000, Encoding::Float64);
+        let bytes = header(frames, 1, 1000, WaveEncoding::Float64);
         assert_eq!(&bytes[..20], b"RF64\xff\xff\xff\xffWAVEds64\x1c\0\0\0");
         let word = |at: usize| u64::from_le_bytes(bytes[at..at + 8].try_into().unwrap());
         assert_eq!((word(20), word(28), word(36)), (bytes.len() as u64 - 8 + 8 * frames, 8 * frames, frames));
@@ -136,7 +136,7 @@ mod tests {
     fn the_largest_plain_file_stays_plain() {
         // A PCM header of 44 bytes: its RIFF size is 36 more than the data, and 2^32 - 1 is the largest word.
         let most = (u64::from(u32::MAX) - 36) / 2;
-        assert_eq!(&header(most, 1, 1000, Encoding::Pcm16)[..4], b"RIFF");
-        assert_eq!(&header(most + 1, 1, 1000, Encoding::Pcm16)[..4], b"RF64");
+        assert_eq!(&header(most, 1, 1000, WaveEncoding::Pcm16)[..4], b"RIFF");
+        assert_eq!(&header(most + 1, 1, 1000, WaveEncoding::Pcm16)[..4], b"RF64");
     }
 }

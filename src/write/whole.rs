@@ -100,7 +100,8 @@ impl<'a> Pending<'a> {
         Written { path: self.label, sha256, bytes: self.bytes }
     }
 
-    fn placed(&self, error: Error) -> Error {
+    /// An error of this output, with its name unless it tells another place.
+    pub(super) fn placed(&self, error: Error) -> Error {
         error.at(Place::file(self.label.clone()))
     }
 }

@@ -159,8 +159,9 @@ fn decode(stream: &mut Stream<'_>, format: &WaveFormat, extent: Extent, columns:
 fn selection(channels: usize, options: &Options<'_>) -> Result<Vec<Column>> {
     let mut kept = vec![options.channels.is_none(); channels];
     for wanted in options.channels.unwrap_or_default() {
-        let number = wanted.strip_prefix("ch").and_then(|digits| digits.parse::<usize>().ok());
-        match number.filter(|&n| (1..=channels).contains(&n) && name(n - 1) == *wanted) {
+        let digits = wanted.strip_prefix("ch").or_else(|| wanted.strip_prefix('#'));
+        let number = digits.and_then(|digits| digits.parse::<usize>().ok());
+        match number.filter(|n| (1..=channels).contains(n) && digits == Some(&n.to_string())) {
             Some(n) => kept[n - 1] = true,
             None => {
                 let remedy =

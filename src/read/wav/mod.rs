@@ -19,7 +19,7 @@ use format::WaveFormat;
 pub struct Options<'a> {
     /// Take what is there of a file that is cut short.
     pub allow_truncated: bool,
-    /// Channels to keep, by name (`ch1`, `ch2`, ...); all of them where `None`. They come in file order.
+    /// Channels to keep, by name (`ch1`, `ch2`, ...) or number (`#1`); all of them where `None`. They come in file order.
     pub channels: Option<&'a [String]>,
     /// A rate given by the user: a header that states 0 Hz is then no error.
     pub rate_hz: Option<f64>,
