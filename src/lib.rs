@@ -7,5 +7,7 @@ pub mod error;
 pub mod unit;
 pub mod numeric;
 pub mod record;
+pub mod audit;
+pub mod regularise;
 pub mod ends;
 pub mod baseline;

@@ -10,7 +10,7 @@ use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::unit::Unit;
 
-pub use axis::{Axis, RateSource};
+pub use axis::{Axis, RateSource, Spacing};
 pub use raw::{RawChannel, RawRecord, Stamps, StatedRate};
 pub use source::{ColumnRole, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
 

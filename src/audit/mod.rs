@@ -1,0 +1,3 @@
+//! What is in a record and whether it is fit for use.
+
+pub mod stamps;

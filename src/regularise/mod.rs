@@ -1,0 +1,1 @@
+//! From a record as read to one of uniform, finite samples.
