@@ -49,8 +49,12 @@ fn speed() {
     for (name, jitter, step) in [("whole steps", 0.0, 100.0), ("rounded steps", 0.0, 39.0625), ("jitter", 0.05, 1000.0)] {
         let ticks = (0..5_000_000).map(|n| ((f64::from(n) + jitter * random.normal()) * step).round() as i64).collect();
         let column = stamps(1e-6, 1e-6, ticks);
-        let start = Instant::now();
-        let reading = read(&column);
-        println!("5,000,000 stamps, {name}: {:?} in {:.0} ms", reading.spacing, start.elapsed().as_secs_f64() * 1e3);
+        let timed = (0..5).map(|_| {
+            let start = Instant::now();
+            let reading = read(&column);
+            (start.elapsed().as_secs_f64() * 1e3, reading.spacing)
+        });
+        let Some((fastest, spacing)) = timed.min_by(|a, b| a.0.total_cmp(&b.0)) else { continue };
+        println!("5,000,000 stamps, {name}: {spacing:?} in {fastest:.0} ms, fastest of five");
     }
 }

@@ -31,6 +31,20 @@ impl Strip {
         strip
     }
 
+    /// The hulls of `len` points if some strip no higher than `limit` holds them all. A thinned choice is tried first:
+    /// what does not hold that does not hold all.
+    pub fn within(len: usize, point: impl Fn(usize) -> (i64, i64), limit: f64) -> Option<Strip> {
+        const THINNED: usize = 64;
+        if len > 100 * THINNED {
+            let thinned = Strip::new((0..len).step_by(THINNED).map(&point));
+            if thinned.narrowest().0 > limit {
+                return None;
+            }
+        }
+        let strip = Strip::new((0..len).map(point));
+        (strip.narrowest().0 <= limit).then_some(strip)
+    }
+
     /// max(t - n h) - min(t - n h): how far the stamps stray from even steps of `h`. 0 without points.
     pub fn width(&self, h: f64) -> f64 {
         self.extremes(h).map_or(0.0, |(top, bottom)| (top.1 - bottom.1) as f64 - (top.0 - bottom.0) as f64 * h)

@@ -107,7 +107,7 @@ impl Column {
         }
         if reading.spacing == Spacing::Uniform {
             let inside = reading.interval.is_some_and(|[low, high]| (low..=high).contains(&self.step));
-            if !inside {
+            if !inside && j == 0.0 {
                 faults.push("interval");
             }
             if reading.missing > self.missing {

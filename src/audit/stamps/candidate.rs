@@ -6,8 +6,8 @@ use crate::numeric::quantile::median;
 pub struct Candidates {
     /// Median of single steps.
     pub median: f64,
-    /// Median over views of 20 print resolutions: the guess that coarse stamps disturb least.
-    pub longest_view: f64,
+    /// Median over views of 20 print resolutions: coarse stamps disturb it little, gaps not at all.
+    pub near: f64,
     /// All guesses, without repeats and non-positive ones.
     pub all: Vec<f64>,
 }
@@ -36,8 +36,7 @@ impl Candidates {
                 all.push(guess);
             }
         }
-        let longest_view = if near > 0.0 { near } else { mean };
-        Candidates { median: single, longest_view, all }
+        Candidates { median: single, near: if near > 0.0 { near } else { mean }, all }
     }
 }
 

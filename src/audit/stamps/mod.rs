@@ -141,21 +141,21 @@ impl StampReading {
         let ticks: &[i64] = &clock.ticks;
         let q = clock.resolution;
         // The common case first: every row there, even to print resolution.
-        let rows = Strip::new((0..).zip(ticks.iter().copied()));
-        let (least, best) = rows.narrowest();
-        let even = best > 0.0 && least <= clock.limit();
-        if let Some(step) = beside.step.map(|step| step / clock.tick)
-            && rows.width(step) <= clock.limit()
+        let rows = Strip::within(ticks.len(), |n| (n as i64, ticks[n]), clock.limit());
+        let rows = rows.filter(|strip| strip.narrowest().1 > 0.0);
+        if let (Some(strip), Some(step)) = (&rows, beside.step.map(|step| step / clock.tick))
+            && strip.width(step) <= clock.limit()
         {
-            return self.settle_even(clock, &rows, Some(step));
+            return self.settle_even(clock, strip, Some(step));
         }
-        let candidates = if even { None } else { Some(Candidates::new(ticks, q)) };
-        let rough = candidates.as_ref().map_or(best, |c| c.longest_view);
+        let candidates = if rows.is_some() { None } else { Some(Candidates::new(ticks, q)) };
+        let near = candidates.as_ref().map(|guesses| guesses.near);
+        let rough = near.or(rows.as_ref().map(|strip| strip.narrowest().1)).unwrap_or(0.0);
         if q >= rough / 2.0 {
-            return self.settle_coarse(clock, &rows, even, beside);
+            return self.settle_coarse(clock, rows.as_ref(), beside);
         }
-        if even {
-            return self.settle_even(clock, &rows, None);
+        if let Some(strip) = &rows {
+            return self.settle_even(clock, strip, None);
         }
         self.repeated = (1..ticks.len()).filter(|&n| ((ticks[n] - ticks[n - 1]) as f64) <= q / 2.0).collect();
         let Some(candidates) = candidates else { return };
@@ -188,13 +188,13 @@ impl StampReading {
 
     /// Stamps no finer than half a step: a missing row cannot be told from rounding, except where every step is a
     /// whole multiple of one and the same.
-    fn settle_coarse(&mut self, clock: &Clock<'_>, rows: &Strip, even: bool, beside: &Beside<'_>) {
+    fn settle_coarse(&mut self, clock: &Clock<'_>, rows: Option<&Strip>, beside: &Beside<'_>) {
         if let Some(whole) = whole_step::find(&clock.ticks) {
             let step = whole.step as f64;
             let within = |[low, high]: [f64; 2]| step >= low * (1.0 - 1e-12) && step <= high * (1.0 + 1e-12);
             // Several rounding steps in one direction show a rate beside the round one; a single one does not.
-            let believable = !even || rows.interval(clock.resolution).is_none_or(within);
-            let only_rounding = even && whole.gaps.is_empty() && !whole.repeated.iter().any(|&n| (beside.same_row)(n));
+            let believable = rows.and_then(|strip| strip.interval(clock.resolution)).is_none_or(within);
+            let only_rounding = rows.is_some() && whole.gaps.is_empty() && !whole.repeated.iter().any(|&n| (beside.same_row)(n));
             if believable && !only_rounding {
                 self.step = Some(step * clock.tick);
                 if !whole.repeated.is_empty() {
@@ -207,10 +207,9 @@ impl StampReading {
                 return self.settle_even(clock, &track, None);
             }
         }
-        if even {
-            self.settle_even(clock, rows, None);
-        } else {
-            self.spacing = Spacing::Unresolved;
+        match rows {
+            Some(strip) => self.settle_even(clock, strip, None),
+            None => self.spacing = Spacing::Unresolved,
         }
     }
 
@@ -227,8 +226,8 @@ impl StampReading {
             self.spacing = Spacing::Unresolved;
             return;
         }
-        if track.width <= clock.limit() {
-            return self.settle_even(clock, &track.strip, None);
+        if let Some(strip) = &track.strip {
+            return self.settle_even(clock, strip, None);
         }
         let (spacing, scatter, slip) = residual::judge(clock, track);
         self.spacing = spacing;

@@ -14,10 +14,8 @@ pub struct Track {
     pub start: f64,
     /// Standard deviation about that line, in ticks.
     pub deviation: f64,
-    /// Height of the narrowest strip that holds the stamps, in ticks.
-    pub width: f64,
-    /// The hulls of the stamps over the indices.
-    pub strip: Strip,
+    /// The hulls of the stamps over the indices, where the stamps are even to print resolution.
+    pub strip: Option<Strip>,
 }
 
 /// How much of a deviation the followed phase takes over.
@@ -39,16 +37,16 @@ impl Track {
             }
             let settled = best.as_ref().map(|track| track.step);
             let Some(track) = Track::follow(clock, guess, settled) else { continue };
-            if best.as_ref().is_none_or(|other| track.beats(other, clock.limit())) {
+            if best.as_ref().is_none_or(|other| track.beats(other)) {
                 best = Some(track);
             }
         }
         best
     }
 
-    fn beats(&self, other: &Track, limit: f64) -> bool {
+    fn beats(&self, other: &Track) -> bool {
         let key = |track: &Track| {
-            let fits = track.width <= limit;
+            let fits = track.strip.is_some();
             (!fits, if fits { track.indices.last().copied().unwrap_or(0) as f64 } else { track.deviation / track.step })
         };
         key(self) < key(other)
@@ -75,9 +73,8 @@ impl Track {
                 break;
             }
         }
-        let strip = Strip::new(indices.iter().copied().zip(ticks.iter().copied()));
-        let (width, _) = strip.narrowest();
-        Some(Track { indices, step, start: line.level, deviation: line.deviation, width, strip })
+        let strip = Strip::within(ticks.len(), |n| (indices[n], ticks[n]), clock.limit());
+        Some(Track { indices, step, start: line.level, deviation: line.deviation, strip })
     }
 }
 
