@@ -121,7 +121,7 @@ impl StampReading {
             spacing: Spacing::Single,
             rows: stamps.ticks.len(),
             unit: stamps.unit.clone(),
-            first: stamps.first,
+            first: stamps.first + stamps.ticks.first().map_or(0.0, |&tick| tick as f64 * stamps.tick),
             resolution: stamps.resolution,
             step: None,
             interval: None,

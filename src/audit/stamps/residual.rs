@@ -58,12 +58,11 @@ pub fn judge(clock: &Clock<'_>, track: &Track) -> (Spacing, Scatter, Option<usiz
         let spacing = if drift <= 0.02 * h + q { Spacing::NearUniform } else { Spacing::Drifting };
         return (spacing, scatter, None);
     }
-    if deviation <= 0.1 * h {
-        if let Some((row, size)) = largest_step(&rest)
-            && size > (0.1 * h).max(5.0 * deviation) + q
-        {
-            return (Spacing::Slipped, scatter, Some(row));
-        }
+    if deviation <= 0.1 * h
+        && let Some((row, size)) = largest_step(&rest)
+        && size > (0.1 * h).max(5.0 * deviation) + q
+    {
+        return (Spacing::Slipped, scatter, Some(row));
     }
     // Rounding alone has a robust deviation of 1.4826 q / 4, which adds to that of the instants.
     let jittered = deviation <= (0.11 * h).hypot(0.37 * q) && largest <= 0.5 * h + q;
