@@ -8,6 +8,8 @@ pub mod unit;
 pub mod numeric;
 pub mod record;
 pub mod read;
+pub mod audit;
+pub mod regularise;
 pub mod ends;
 pub mod baseline;
 pub mod basis;

@@ -3,4 +3,8 @@
 pub mod noise;
 pub mod compensated;
 pub mod polynomial;
+pub mod quantile;
+pub mod rational;
+pub mod running_median;
+pub mod strip;
 pub mod sum;
