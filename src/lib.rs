@@ -14,4 +14,8 @@ pub mod ends;
 pub mod baseline;
 pub mod basis;
 pub mod operator;
+pub mod condition;
+pub mod settings;
+pub mod report;
 pub mod write;
+pub mod job;

@@ -35,7 +35,7 @@ pub struct Outcome {
 pub fn scale_of(chain: &Chain, len: usize) -> Scale {
     match chain.shortest_wavelength_samples() {
         Some(shortest_wavelength) => {
-            let zone = chain.reach(len).samples().map_or(len, |reach| reach.ceil() as usize).min(len / 4).max(4);
+            let zone = chain.reaches().reach.samples().map_or(len, |reach| reach.ceil() as usize).min(len / 4).max(4);
             Scale { shortest_wavelength, zone }
         }
         None => Scale::assumed(len),
@@ -87,7 +87,7 @@ pub fn condition_with(
     let turns = chain.turns();
     let (unit, unit_factor) = channel.unit.turned(turns, channel.axis.unit());
     let mut parseval = 0.0;
-    let mut output = None;
+    let mut output: Option<Vec<f64>> = None;
     for (index, pass) in chain.passes().iter().enumerate() {
         let passed = match &output {
             None => {

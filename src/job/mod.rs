@@ -5,6 +5,6 @@ mod examination;
 mod intake;
 mod target;
 
-pub use conditioning::{Plan, condition, plan};
+pub use conditioning::{condition, plan};
 pub use examination::audit;
 pub use target::Target;

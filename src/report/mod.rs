@@ -1,18 +1,23 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod examination;
 mod json;
+mod plan;
 mod text;
 
 use serde::Serialize;
 use serde_json::{Map, Value};
 
-use crate::audit::Level;
+use crate::audit::level::Level;
+use crate::operator::ChainDescription;
 use crate::error::Finding;
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 
+pub use examination::AuditReport;
 pub use json::to_json;
-pub use text::summary;
+pub use plan::Plan;
+pub use text::{audit_text, plan_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -32,8 +37,8 @@ pub struct Report {
     pub input: InputReport,
     /// Remarks on the whole record.
     pub notes: Vec<Finding>,
-    /// The resolved chain, first operator first.
-    pub chain: Vec<Value>,
+    /// The resolved operators, in the order in which they run.
+    pub chain: ChainDescription,
     /// One entry a channel.
     pub channels: Vec<ChannelReport>,
     /// What was written.
@@ -148,9 +153,9 @@ pub struct ChannelReport {
     /// How far the ends reach into the output.
     pub reach: ReachReport,
     /// RMS before and after.
-    pub rms: InOut<f64>,
+    pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
-    pub level: InOut<Level>,
+    pub level: InOut<Option<Level>>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }
@@ -181,6 +186,8 @@ pub struct BaselineReport {
     pub half_width: f64,
     /// Width in samples that end values and slopes are fitted to at most; null where the baseline needs none.
     pub fit_width: Option<f64>,
+    /// True where no corner gives that width and an eighth of the record is assumed.
+    pub fit_width_assumed: bool,
 }
 
 /// The extension of a channel.

@@ -8,6 +8,7 @@ use crate::operator::{Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
+use crate::regularise::Bound;
 use crate::settings::Settings;
 use crate::unit::Unit;
 
@@ -33,8 +34,8 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         }
         "calibrate" => settings.read.calibrate.push(calibration(text)?),
         "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
-        "from" => settings.regularise.from = Some(context(key, text.parse())?),
-        "to" => settings.regularise.to = Some(context(key, text.parse())?),
+        "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
+        "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
         "gaps" => settings.regularise.gaps = context(key, text.parse())?,
         "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
