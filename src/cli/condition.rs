@@ -20,7 +20,7 @@ Examples:
   endgrain condition log.csv --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.csv
   endgrain condition log.csv --channel ax --integrate 1 --highpass 0.5Hz -o velocity.csv
   endgrain condition profile.csv --lowpass 0.8mm --shape gaussian -o waviness.csv
-  endgrain condition log.wav --notch 50Hz:2Hz --encoding int24 -o clean.wav
+  endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
   logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
   endgrain condition log.csv --lowpass 40Hz --dry-run
 ";

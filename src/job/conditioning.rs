@@ -192,8 +192,8 @@ fn notes_of(record: &Record, resolved: &Resolved) -> Vec<Finding> {
 
 fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     let Some(name) = &settings.encoding else { return Ok(WaveEncoding::Float32) };
-    write::ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
-        let known: Vec<&str> = write::ENCODINGS.iter().map(|(name, _)| *name).collect();
+    write::WAVE_ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
+        let known: Vec<&str> = write::WAVE_ENCODINGS.iter().map(|(name, _)| *name).collect();
         Error::usage(format!("--encoding: not a sample type: {name:?}")).remedy(format!("use one of {}", known.join(", ")))
     })
 }

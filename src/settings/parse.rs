@@ -8,9 +8,18 @@ use crate::operator::{Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
-use crate::regularise::Bound;
+use crate::regularise::{Bound, Duplicates, Gaps, Regrid};
 use crate::settings::Settings;
 use crate::unit::Unit;
+
+/// Words of an option and what they stand for; the first is the default.
+type Words<T> = &'static [(&'static str, T)];
+
+const GAPS: Words<Gaps> = &[("reject", Gaps::Reject), ("fill", Gaps::Fill)];
+const DUPLICATES: Words<Duplicates> = &[("reject", Duplicates::Reject), ("drop", Duplicates::Drop)];
+const REGRID: Words<Regrid> = &[("cubic", Regrid::Cubic), ("off", Regrid::Off)];
+const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
+const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
 /// Sets the value of a known key.
 pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
@@ -36,15 +45,15 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
         "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
         "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
-        "gaps" => settings.regularise.gaps = context(key, text.parse())?,
-        "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
-        "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
+        "gaps" => settings.regularise.gaps = one_of(key, text, GAPS)?,
+        "duplicates" => settings.regularise.duplicates = one_of(key, text, DUPLICATES)?,
+        "regrid" => settings.regularise.regrid = one_of(key, text, REGRID)?,
         "strict" => settings.strict = switch(key, text)?,
         "extension" => settings.stage.extension = Some(context(key, text.parse())?),
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
-        "seat" => settings.stage.seat = seat(text)?,
+        "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
         "shape" => settings.shape = context(key, Shape::parse(text))?,
-        "format" => settings.format = Some(format(text)?),
+        "format" => settings.format = Some(one_of(key, text, FORMATS)?),
         "encoding" => settings.encoding = Some(text.to_owned()),
         "decimals" => settings.decimals = Some(decimals(text)?),
         other => return Err(Error::usage(format!("the setting {other:?} has no parser"))),
@@ -55,12 +64,24 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
 /// The default that results show for a key that was not given; `None` where the record or the chain decides.
 pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
     match key {
-        "gaps" => Some(settings.regularise.gaps.to_string()),
-        "duplicates" => Some(settings.regularise.duplicates.to_string()),
-        "seat" => Some("half-sample".to_owned()),
+        "gaps" => spelling(GAPS, settings.regularise.gaps),
+        "duplicates" => spelling(DUPLICATES, settings.regularise.duplicates),
+        "regrid" => spelling(REGRID, settings.regularise.regrid),
+        "seat" => spelling(SEATS, settings.stage.seat),
         "shape" => Some(settings.shape.to_string()),
         _ => None,
     }
+}
+
+fn one_of<T: Copy>(key: &str, text: &str, words: Words<T>) -> Result<T> {
+    words.iter().find(|(word, _)| *word == text).map(|(_, value)| *value).ok_or_else(|| {
+        let known: Vec<&str> = words.iter().map(|(word, _)| *word).collect();
+        Error::usage(format!("--{key}: \"{}\" is not known", escape(text))).remedy(format!("use {}", known.join(" or ")))
+    })
+}
+
+fn spelling<T: PartialEq>(words: Words<T>, value: T) -> Option<String> {
+    words.iter().find(|(_, known)| *known == value).map(|(word, _)| (*word).to_owned())
 }
 
 /// Names the option in an error.
@@ -88,22 +109,6 @@ fn decimals(text: &str) -> Result<u8> {
         return Err(Error::usage(format!("--decimals: {count} is more than a double can show")).remedy("use at most 17"));
     }
     Ok(count)
-}
-
-fn seat(text: &str) -> Result<Seat> {
-    match text {
-        "half-sample" => Ok(Seat::Half),
-        "whole-sample" => Ok(Seat::Whole),
-        _ => Err(Error::usage(format!("--seat: not a seat: \"{}\"", escape(text))).remedy("use half-sample or whole-sample")),
-    }
-}
-
-fn format(text: &str) -> Result<Format> {
-    match text {
-        "csv" => Ok(Format::Csv),
-        "wav" => Ok(Format::Wav),
-        _ => Err(Error::usage(format!("--format: not a format: \"{}\"", escape(text))).remedy("use csv or wav")),
-    }
 }
 
 fn axis_unit(key: &str, text: &str) -> Result<Unit> {

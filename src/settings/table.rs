@@ -90,14 +90,14 @@ static OPTIONS: &[OptionRow] = &[
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
     row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default) or fill"),
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
-    row("regrid", "HOW", Once, Repair, "Put jittered samples on a uniform grid: cubic"),
+    row("regrid", "HOW", Once, Repair, "What to do with jittered or drifting stamps: cubic (default) interpolates onto an even grid, off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
     row("extension", "NAME", Once, Stage, "What is assumed past the two ends: periodic, even, odd, even-odd, odd-even. Default: even, which is a default and not a finding"),
     row("baseline", "NAME", Once, Stage, "Polynomial split off first: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
     row("seat", "NAME", Once, Stage, "Where the mirrors sit: half-sample (default) or whole-sample"),
     row("shape", "NAME", Once, Operators, "Roll-off: butterworth:ORDER (zero phase, squared magnitude, gain 0.5 at the corner), gaussian, cosine:WIDTH, brickwall. Default: butterworth:4"),
-    row("format", "NAME", Once, Output, "Format of the output: csv or wav. Default: that of the input"),
-    row("encoding", "NAME", Once, Output, "Sample type of WAV output: int16, int24, int32, float32 (default), float64"),
+    row("format", "NAME", Once, Output, "Format of the output: csv or wav. Default: what the output's name says, else that of the input"),
+    row("encoding", "NAME", Once, Output, "Sample type of WAV output: pcm16, pcm24, pcm32, float32 (default), float64"),
     row("decimals", "COUNT", Once, Output, "Fixed decimals in CSV output. Default: the shortest digits that give the same number again"),
 ];
 

@@ -20,7 +20,7 @@ use figure::figure;
 /// A table without rules: first column to the left, the others to the right.
 fn table(header: &[&str]) -> Table {
     let mut table = Table::new();
-    table.load_preset(NOTHING);
+    table.load_style(NOTHING);
     table.set_header(header.to_vec());
     for (index, column) in table.column_iter_mut().enumerate() {
         column.set_padding((0, 2));
