@@ -145,7 +145,7 @@ fn the_order_of_requests_does_not_matter() {
     let described = serde_json::to_string(&reference.describe(&axis())).unwrap();
     for turn in 0..pairs.len() {
         pairs.rotate_left(1);
-        if turn % 2 == 0 {
+        if turn.is_multiple_of(2) {
             pairs.swap(0, 3);
         }
         let other = chain(&pairs, "butterworth:2");
@@ -326,7 +326,7 @@ proptest! {
             if let Some(samples) = chain.reaches().reach.samples() {
                 prop_assert!(samples.is_finite() && samples >= 0.0);
             }
-            prop_assert!(chain.check_points(&axis).len() % 3 == 0);
+            prop_assert!(chain.check_points(&axis).len().is_multiple_of(3));
         }
     }
 }
