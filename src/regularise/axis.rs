@@ -83,8 +83,11 @@ fn from_rate(
     }
     if let Some(reading) = reading {
         axis = axis.with_spacing(reading.spacing);
-        if let Some(interval) = reading.interval {
-            axis = axis.with_interval(interval);
+        // An interval that the rate contradicts belongs to the remark, not to the axis.
+        if let Some([low, high]) = reading.interval
+            && (low..=high).contains(&axis.step())
+        {
+            axis = axis.with_interval([low, high]);
         }
     }
     Ok(dated(axis, table))

@@ -1,6 +1,7 @@
 //! From a record as read to one of uniform, finite samples: what is right is taken, what is doubtful is refused by place.
 
 mod axis;
+mod band;
 mod cut;
 mod fill;
 mod regrid;
