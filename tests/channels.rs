@@ -1,13 +1,13 @@
 //! Clipping and spikes are found where they are and nowhere else, on invented channels of many kinds.
 
-mod columns;
+mod random;
 mod signals;
 
-use columns::Random;
 use endgrain::audit::clip::{Certainty, Clipping};
 use endgrain::audit::quantisation::Quantisation;
 use endgrain::audit::spike::Spikes;
 use endgrain::numeric::sum::standard_deviation;
+use random::Random;
 use signals::{UNCLIPPED, maybe_quantised, tones};
 
 fn clipping(samples: &[f64], full_scale: Option<f64>) -> Clipping {
@@ -66,7 +66,8 @@ fn samples_at_full_scale_are_certain() {
             .into_iter()
             .map(|v| ((v * 0.6 / lsb).round() * lsb).clamp(-1.0, 1.0 - lsb))
             .collect();
-        let (tops, bottoms) = (values.iter().filter(|&&v| v == 1.0 - lsb).count(), values.iter().filter(|&&v| v == -1.0).count());
+        let (tops, bottoms) =
+            (values.iter().filter(|&&v| v == 1.0 - lsb).count(), values.iter().filter(|&&v| v == -1.0).count());
         assert!(tops >= 2 && bottoms >= 2, "the example clips");
         let found = clipping(&values, Some(1.0));
         assert_eq!(found.high.map(|c| (c.certainty, c.count)), Some((Certainty::Certain, tops)), "{bits} bits");

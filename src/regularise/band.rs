@@ -67,7 +67,8 @@ mod tests {
 
     #[test]
     fn a_tone_and_white_noise() {
-        let mut tone: Vec<f64> = (0..20_000).map(|n| 3.0 + (f64::from(n) * std::f64::consts::TAU * 0.05).sin()).collect();
+        let mut tone: Vec<f64> =
+            (0..20_000).map(|n| 3.0 + (f64::from(n) * std::f64::consts::TAU * 0.05).sin()).collect();
         assert!((edge_frequency(&tone) - 0.05).abs() < 2.0 / 4096.0);
         tone[500..503].fill(f64::NAN);
         assert!((edge_frequency(&tone) - 0.05).abs() < 2.0 / 4096.0);

@@ -160,7 +160,11 @@ fn fill(mut values: Vec<f64>) -> std::result::Result<Filled, Unfillable> {
     for &(from, to) in &gaps {
         let cycles = (to - from) as f64 * edge;
         if cycles > MODEL_CYCLES {
-            let what = format!("{} missing samples span {} cycles of the content: too many to fill", to - from, figure(cycles));
+            let what = format!(
+                "{} missing samples span {} cycles of the content: too many to fill",
+                to - from,
+                figure(cycles)
+            );
             return Err(Unfillable { sample: from, what });
         }
         if cycles <= CUBIC_CYCLES && !noisy {

@@ -51,7 +51,8 @@ pub fn regrid(
     for channel in &mut table.raw.channels {
         let finite: Vec<f64> = channel.values.iter().copied().filter(|v| v.is_finite()).collect();
         let spread = standard_deviation(&finite);
-        let steps: Vec<f64> = channel.values.windows(2).map(|pair| pair[1] - pair[0]).filter(|d| d.is_finite()).collect();
+        let steps: Vec<f64> =
+            channel.values.windows(2).map(|pair| pair[1] - pair[0]).filter(|d| d.is_finite()).collect();
         if spread > 0.0 {
             worst = worst.max(rms(&steps) / spread * deviation);
         }

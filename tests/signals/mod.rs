@@ -1,13 +1,12 @@
 //! Invented channels, clipped and not, with and without spikes.
 
-pub use super::columns::Random;
+use super::random::Random;
 
 /// A sum of three to six tones between 0.002 and 0.15 cycles a sample, about unit RMS.
 pub fn tones(random: &mut Random, len: usize) -> Vec<f64> {
     let count = 3 + (random.next() % 4) as usize;
-    let parts: Vec<(f64, f64, f64)> = (0..count)
-        .map(|_| (0.3 + random.uniform(), random.logarithmic(0.002, 0.15), random.uniform() * 6.3))
-        .collect();
+    let parts: Vec<(f64, f64, f64)> =
+        (0..count).map(|_| (0.3 + random.uniform(), random.logarithmic(0.002, 0.15), random.uniform() * 6.3)).collect();
     let power: f64 = parts.iter().map(|(a, ..)| a * a / 2.0).sum();
     let value = |n: usize| -> f64 {
         parts.iter().map(|(a, f, p)| a * (std::f64::consts::TAU * f * n as f64 + p).sin()).sum::<f64>() / power.sqrt()
@@ -15,8 +14,11 @@ pub fn tones(random: &mut Random, len: usize) -> Vec<f64> {
     (0..len).map(value).collect()
 }
 
+/// A channel of a length.
+type Kind = fn(&mut Random, usize) -> Vec<f64>;
+
 /// Kinds of channel that nothing has clipped. Each is quantised to a random lsb half of the time.
-pub const UNCLIPPED: &[(&str, fn(&mut Random, usize) -> Vec<f64>)] = &[
+pub const UNCLIPPED: &[(&str, Kind)] = &[
     ("white noise", |random, len| (0..len).map(|_| random.normal()).collect()),
     ("tones", tones),
     ("tones and noise", |random, len| {
@@ -40,7 +42,12 @@ pub const UNCLIPPED: &[(&str, fn(&mut Random, usize) -> Vec<f64>)] = &[
     }),
     ("drift", |random, len| {
         let mut sum = 0.0;
-        (0..len).map(|_| { sum += random.normal(); sum * 0.05 }).collect()
+        (0..len)
+            .map(|_| {
+                sum += random.normal();
+                sum * 0.05
+            })
+            .collect()
     }),
     ("few bits", |random, len| (0..len).map(|_| (random.normal() * 1.5).round()).collect()),
     ("ring-down", |random, len| {

@@ -97,7 +97,8 @@ impl<'a> Clock<'a> {
             let step = (raw[row] - raw[row - 1]) as f64;
             if step < 0.0 {
                 let period = |k: usize| MODULI[k].0 / self.scale / self.tick;
-                let fits = |&k: &usize| step < -0.5 * period(k) && step + period(k) > 0.0 && step + period(k) <= longest;
+                let fits =
+                    |&k: &usize| step < -0.5 * period(k) && step + period(k) > 0.0 && step + period(k) <= longest;
                 let Some(k) = (0..MODULI.len()).find(fits) else { return Err(row) };
                 turns[k] += 1;
                 // Rounded once in all, so that many turns do not add their roundings.

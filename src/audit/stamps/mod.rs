@@ -209,7 +209,8 @@ impl StampReading {
             let within = |[low, high]: [f64; 2]| step >= low * (1.0 - 1e-12) && step <= high * (1.0 + 1e-12);
             // Several rounding steps in one direction show a rate beside the round one; a single one does not.
             let believable = rows.and_then(|strip| strip.interval(clock.resolution)).is_none_or(within);
-            let only_rounding = rows.is_some() && whole.gaps.is_empty() && !whole.repeated.iter().any(|&n| (beside.same_row)(n));
+            let only_rounding =
+                rows.is_some() && whole.gaps.is_empty() && !whole.repeated.iter().any(|&n| (beside.same_row)(n));
             if believable && !only_rounding {
                 self.step = Some(step * clock.tick);
                 if !whole.repeated.is_empty() {
