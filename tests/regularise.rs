@@ -148,7 +148,7 @@ fn jitter_is_noted_and_interpolated_away() {
     // Band edge 0.032 cycles a sample: below the 1.7e-6 measured for 0.05 with more jitter, plus 1e-4 steps of print
     // resolution times a slope of 0.2.
     assert!(error(&record) < 1e-4, "{}", error(&record));
-    let options = RegulariseOptions { regrid: Regrid::Off, ..RegulariseOptions::default() };
+    let options = RegulariseOptions { regrid: Some(Regrid::Off), ..RegulariseOptions::default() };
     let (taken, rows) = with(raw, &options);
     assert_eq!(rows, RowMap::Even { first: 0, every: 1, count: 2000 });
     assert_eq!(codes(&taken), ["jittered"]);

@@ -16,10 +16,15 @@ use super::{Regrid, RowMap, fill};
 /// Band edge in cycles per sample above which a cubic spline leaves more than a thousandth of the RMS.
 const CUBIC_BAND: f64 = 0.2;
 
-/// True for stamps that jitter or drift, unless the user vouches for a rate or wants the samples as they are.
-pub fn wanted(table: &Table, reading: &StampReading, regrid: Regrid) -> bool {
+/// True for stamps that jitter or drift, or that deviate at all where the user asks for it; never against a given rate.
+pub fn wanted(table: &Table, reading: &StampReading, regrid: Option<Regrid>) -> bool {
     let given = table.raw.stated_rate.as_ref().is_some_and(|rate| rate.given);
-    regrid == Regrid::Cubic && !given && matches!(reading.spacing, Spacing::Jittered | Spacing::Drifting)
+    let by_itself = matches!(reading.spacing, Spacing::Jittered | Spacing::Drifting);
+    match regrid {
+        Some(Regrid::Off) => false,
+        Some(Regrid::Cubic) => !given && (by_itself || reading.spacing == Spacing::NearUniform),
+        None => !given && by_itself,
+    }
 }
 
 /// The record on the even grid of `axis`, its phase the median of the stamps'. Missing rows are filled afterwards.
