@@ -2,11 +2,14 @@
 
 #[path = "../tests/columns/mod.rs"]
 mod columns;
+#[path = "../tests/random/mod.rs"]
+mod random;
 
 use std::collections::BTreeMap;
 use std::time::Instant;
 
-use columns::{Column, Random, read, stamps};
+use columns::{Column, read, stamps};
+use random::Random;
 
 fn main() {
     let mut arguments = std::env::args().skip(1).map(|a| a.parse::<u64>());
@@ -46,7 +49,8 @@ fn main() {
 /// Five million stamps of each kind.
 fn speed() {
     let mut random = Random(5);
-    for (name, jitter, step) in [("whole steps", 0.0, 100.0), ("rounded steps", 0.0, 39.0625), ("jitter", 0.05, 1000.0)] {
+    for (name, jitter, step) in [("whole steps", 0.0, 100.0), ("rounded steps", 0.0, 39.0625), ("jitter", 0.05, 1000.0)]
+    {
         let ticks = (0..5_000_000).map(|n| ((f64::from(n) + jitter * random.normal()) * step).round() as i64).collect();
         let column = stamps(1e-6, 1e-6, ticks);
         let timed = (0..5).map(|_| {

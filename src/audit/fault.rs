@@ -69,7 +69,12 @@ pub fn stamp_fault(stamps: &Stamps, reading: &StampReading, place_of: &dyn Fn(us
                 count => format!(", the first of {count} repeated stamps"),
             };
             let what = format!("repeats {before}{more}");
-            fault("repeated_stamp", Some(row), Error::malformed(what), "--duplicates drop leaves repeated rows out".to_owned())
+            fault(
+                "repeated_stamp",
+                Some(row),
+                Error::malformed(what),
+                "--duplicates drop leaves repeated rows out".to_owned(),
+            )
         }
         Spacing::Slipped => {
             let row = reading.slip?;
@@ -123,20 +128,28 @@ pub fn stamp_remarks(reading: &StampReading, place_of: &dyn Fn(usize) -> Place) 
     };
     let per_unit = if reading.unit.is_length() { "per m" } else { "Hz" };
     let scale = reading.unit.meaning().map_or(1.0, |m| m.scale);
-    let rate = reading.rate.map_or_else(|| reading.step.map(|h| figure(1.0 / (h * scale))), |r| Some(figure(r.value())));
+    let rate =
+        reading.rate.map_or_else(|| reading.step.map(|h| figure(1.0 / (h * scale))), |r| Some(figure(r.value())));
     let rate = rate.unwrap_or_else(|| "unknown".to_owned());
     if let Some(wrap) = reading.wraps.first() {
         let times = if reading.wraps.len() == 1 { "once".to_owned() } else { format!("{} times", reading.wraps.len()) };
         let code = if wrap.what == "midnight" { "unwrapped_midnight" } else { "unwrapped_clock" };
-        say(code, format!("the clock starts over at {}, {times}; carried on by {} s", wrap.what, wrap.modulus_seconds), Some(wrap.row));
+        say(
+            code,
+            format!("the clock starts over at {}, {times}; carried on by {} s", wrap.what, wrap.modulus_seconds),
+            Some(wrap.row),
+        );
     }
     if let Some(rows) = reading.rows_per_stamp {
         say("coarse_stamps", format!("{} rows per stamp, rate {rate} {per_unit}", figure(rows)), None);
     }
     if let Some(s) = reading.scatter {
-        let sizes = format!("stamps scatter by {} of a step, at most {}", figure(s.deviation_steps), figure(s.largest_steps));
+        let sizes =
+            format!("stamps scatter by {} of a step, at most {}", figure(s.deviation_steps), figure(s.largest_steps));
         match reading.spacing {
-            Spacing::NearUniform => say("near_uniform", format!("{sizes}: taken as even, rate {rate} {per_unit}"), None),
+            Spacing::NearUniform => {
+                say("near_uniform", format!("{sizes}: taken as even, rate {rate} {per_unit}"), None)
+            }
             Spacing::Jittered => say("jittered", format!("{sizes}, rate {rate} {per_unit} on average"), None),
             Spacing::Drifting => say(
                 "drifting",

@@ -35,7 +35,16 @@ impl Level {
         // Values near the largest float overflow when squared: everything is formed in parts of the largest.
         let unit = low.abs().max(high.abs());
         if unit == 0.0 || low == high {
-            let constant = Level { mean: low, rms: low.abs(), deviation: 0.0, low, high, peak: 0.0, crest_factor: None, kurtosis: None };
+            let constant = Level {
+                mean: low,
+                rms: low.abs(),
+                deviation: 0.0,
+                low,
+                high,
+                peak: 0.0,
+                crest_factor: None,
+                kurtosis: None,
+            };
             return Some(constant);
         }
         let centre = if unit < 1e300 { sum(values) / count / unit } else { sum_of(values, |v| v / unit) / count };
@@ -63,7 +72,8 @@ mod tests {
 
     #[test]
     fn a_sine_over_whole_periods() {
-        let values: Vec<f64> = (0..1000).map(|n| 5.0 + 2.0 * (f64::from(n) * std::f64::consts::TAU / 40.0).sin()).collect();
+        let values: Vec<f64> =
+            (0..1000).map(|n| 5.0 + 2.0 * (f64::from(n) * std::f64::consts::TAU / 40.0).sin()).collect();
         let Some(level) = Level::of(&values) else { panic!("there are values") };
         // Closed forms: mean 5, deviation sqrt 2, crest sqrt 2, kurtosis 3/2.
         assert!((level.mean - 5.0).abs() < 1e-12);

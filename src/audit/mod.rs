@@ -83,7 +83,11 @@ pub struct Check {
 
 /// All checks of a channel, in order: later ones use what earlier ones found.
 pub static CHECKS: &[Check] = &[
-    Check { name: "missing values", about: "rows without a value, and channels recorded at a lower rate", run: missing },
+    Check {
+        name: "missing values",
+        about: "rows without a value, and channels recorded at a lower rate",
+        run: missing,
+    },
     Check { name: "level", about: "offset, RMS, peak, crest factor, kurtosis, constant channels", run: levels },
     Check { name: "quantisation", about: "least significant bit, bits in use, 32-bit floats", run: quantised },
     Check { name: "clipping", about: "samples at full scale and plateaus that look like it", run: clipped },
@@ -194,7 +198,11 @@ impl<'a> Sheet<'a> {
 
 fn missing(sheet: &mut Sheet<'_>) {
     match (sheet.audit.sparse, sheet.audit.first_missing) {
-        (Some(sparse), _) => sheet.say("sparse_channel", format!("a value on every {} rows: a channel at its own rate", sparse.every), None),
+        (Some(sparse), _) => sheet.say(
+            "sparse_channel",
+            format!("a value on every {} rows: a channel at its own rate", sparse.every),
+            None,
+        ),
         (None, Some(first)) => {
             let spelling = sheet.channel.missing_spelling.as_deref().unwrap_or_default();
             let text = format!("no value ({spelling:?}), the first of {}", sheet.audit.missing);
@@ -228,12 +236,8 @@ fn clipped(sheet: &mut Sheet<'_>) {
     let Clipping { high, low } = sheet.audit.clipping.clone();
     for clip in [high, low].into_iter().flatten() {
         let how = if clip.certainty == Certainty::Certain { "clipped" } else { "looks clipped" };
-        let text = format!(
-            "{how} at {}: {} samples, longest run {}",
-            fault::figure(clip.level),
-            clip.count,
-            clip.longest_run
-        );
+        let text =
+            format!("{how} at {}: {} samples, longest run {}", fault::figure(clip.level), clip.count, clip.longest_run);
         sheet.say("clipping", text, Some(sheet.row(clip.first)));
     }
 }

@@ -69,7 +69,8 @@ mod tests {
         // From -1434 to 1434 steps: log2(2869).
         assert!((q.bits.unwrap_or(0.0) - 2869f64.log2()).abs() < 0.01);
         // The same printed with five decimals.
-        let printed = Quantisation::of(&sorted((0..3000).map(|n| ((wave(n) / 0.01).round() * 1e3).round() / 1e5).collect()));
+        let printed =
+            Quantisation::of(&sorted((0..3000).map(|n| ((wave(n) / 0.01).round() * 1e3).round() / 1e5).collect()));
         assert!((printed.lsb.unwrap_or(0.0) - 0.01).abs() < 1e-12);
         assert!(!printed.single_precision);
     }

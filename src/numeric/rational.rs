@@ -56,7 +56,8 @@ impl Rational {
 
     /// The product with another fraction; `None` when it does not fit.
     pub fn times(self, other: Rational) -> Option<Rational> {
-        let (a, b) = (Rational::new(self.numerator, other.denominator)?, Rational::new(other.numerator, self.denominator)?);
+        let (a, b) =
+            (Rational::new(self.numerator, other.denominator)?, Rational::new(other.numerator, self.denominator)?);
         Rational::new(a.numerator.checked_mul(b.numerator)?, a.denominator.checked_mul(b.denominator)?)
     }
 
@@ -149,7 +150,7 @@ mod tests {
         assert_eq!(plainest(70.0, 130.0), "100");
         assert_eq!(plainest(1023.7, 1024.2), "1024");
         assert_eq!(plainest(33.3332, 33.3334), "100/3");
-        assert_eq!(plainest(3.14, 3.15), "22/7"); // the classic approximation of pi
+        assert_eq!(plainest(3.1408, 3.1429), "22/7"); // 22/7 = 3.142857, no denominator below 7 comes near
         assert_eq!(plainest(1.0 / 3601.0, 1.0 / 3599.0), "1/3600");
         assert_eq!(plainest(52.73, 52.74), "791/15"); // 15 x 52.73 = 790.95, 15 x 52.74 = 791.1; by hand none below
         assert_eq!(plainest(-1.0, 2.0), "none");

@@ -98,6 +98,13 @@ impl Axis {
         self
     }
 
+    /// The same axis with another first stamp, in the axis unit.
+    #[must_use]
+    pub fn with_start(mut self, start: f64) -> Axis {
+        self.start = start;
+        self
+    }
+
     /// The same axis with what the stamps say about the spacing of the rows.
     #[must_use]
     pub fn with_spacing(mut self, spacing: Spacing) -> Axis {

@@ -73,17 +73,3 @@ pub struct StatedRate {
     /// What says so, for messages: `header key "rate"`, `--rate`.
     pub origin: String,
 }
-
-impl RawChannel {
-    /// Name, unit and full scale, without values.
-    pub fn clone_head(&self) -> RawChannel {
-        RawChannel {
-            name: self.name.clone(),
-            unit: self.unit.clone(),
-            values: Vec::new(),
-            missing: Vec::new(),
-            missing_spelling: self.missing_spelling.clone(),
-            full_scale: self.full_scale,
-        }
-    }
-}

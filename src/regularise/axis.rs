@@ -28,7 +28,8 @@ pub fn decide(table: &Table, reading: Option<&StampReading>) -> Result<(Axis, Ve
         (Some((reading, step)), Some(rate)) if !rate.given => {
             let axis = from_stamps(table, reading, step, len)?;
             let remark = disagreement(rate, reading, step).map(|text| {
-                let text = format!("{} states {}, {text}; the stamps are used", rate.origin, with_unit(rate, rate.rate_base));
+                let text =
+                    format!("{} states {}, {text}; the stamps are used", rate.origin, with_unit(rate, rate.rate_base));
                 Finding::new("stated_rate_differs", text).at(file.clone())
             });
             return Ok((axis, remark.into_iter().collect()));
@@ -38,7 +39,12 @@ pub fn decide(table: &Table, reading: Option<&StampReading>) -> Result<(Axis, Ve
             let axis = from_rate(table, reading, rate, source, len)?;
             let remark = measured.and_then(|(reading, step)| {
                 let text = disagreement(rate, reading, step)?;
-                let text = format!("{} sets {}, {text}; {} is used", rate.origin, with_unit(rate, rate.rate_base), rate.origin);
+                let text = format!(
+                    "{} sets {}, {text}; {} is used",
+                    rate.origin,
+                    with_unit(rate, rate.rate_base),
+                    rate.origin
+                );
                 Some(Finding::new("rate_overrides_stamps", text).at(file.clone()))
             });
             return Ok((axis, remark.into_iter().collect()));
@@ -83,8 +89,11 @@ fn from_rate(
     }
     if let Some(reading) = reading {
         axis = axis.with_spacing(reading.spacing);
-        if let Some(interval) = reading.interval {
-            axis = axis.with_interval(interval);
+        // An interval that the rate contradicts belongs to the remark, not to the axis.
+        if let Some([low, high]) = reading.interval
+            && (low..=high).contains(&axis.step())
+        {
+            axis = axis.with_interval([low, high]);
         }
     }
     Ok(dated(axis, table))

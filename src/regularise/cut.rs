@@ -23,7 +23,8 @@ impl Bound {
     /// # Errors
     /// `Usage` without a number or without a unit of time or length.
     pub fn parse(text: &str) -> Result<Bound> {
-        let wrong = || Error::usage(format!("not a place on the axis: {text:?}")).remedy("write it with its unit: 2.5s, 30mm");
+        let wrong =
+            || Error::usage(format!("not a place on the axis: {text:?}")).remedy("write it with its unit: 2.5s, 30mm");
         let trimmed = text.trim();
         // The longest head that is a number: `2e3s` is 2000 s.
         let heads = (1..=trimmed.len()).rev().filter(|&at| trimmed.is_char_boundary(at));
@@ -85,7 +86,9 @@ pub fn cut(table: &mut Table, options: &RegulariseOptions) -> Result<()> {
         (Some(first), Some(last)) if first < last && last <= rows => table.cut(first, last),
         _ => {
             let remedy = "--from and --to must leave rows between them";
-            return Err(Error::unsupported("nothing lies in the cut").at(Place::file(&table.raw.source.path)).remedy(remedy));
+            return Err(Error::unsupported("nothing lies in the cut")
+                .at(Place::file(&table.raw.source.path))
+                .remedy(remedy));
         }
     }
     Ok(())

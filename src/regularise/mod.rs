@@ -1,6 +1,8 @@
 //! From a record as read to one of uniform, finite samples: what is right is taken, what is doubtful is refused by place.
 
 mod axis;
+mod band;
+mod choice;
 mod cut;
 mod fill;
 mod regrid;
@@ -13,6 +15,7 @@ use crate::error::{Error, Finding, Kind, Result};
 use crate::place::Place;
 use crate::record::{RawRecord, Record, Spacing};
 
+pub use choice::{Duplicates, Gaps, Regrid};
 pub use cut::Bound;
 pub use rows::RowMap;
 
@@ -29,38 +32,8 @@ pub struct RegulariseOptions {
     pub gaps: Gaps,
     /// Rows that repeat the stamp of the row before.
     pub duplicates: Duplicates,
-    /// Jittered and drifting stamps.
-    pub regrid: Regrid,
-}
-
-/// What happens to missing rows and values.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
-pub enum Gaps {
-    /// They are an error.
-    #[default]
-    Reject,
-    /// They are interpolated where the content allows it, and are an error where it does not.
-    Fill,
-}
-
-/// What happens to rows that repeat the stamp of the row before.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
-pub enum Duplicates {
-    /// They are an error.
-    #[default]
-    Reject,
-    /// Those that repeat the values too are left out; others stay an error.
-    Drop,
-}
-
-/// What happens to jittered or drifting stamps.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
-pub enum Regrid {
-    /// The samples are interpolated onto an even grid by a cubic spline.
-    #[default]
-    Cubic,
-    /// The samples are taken as even: right where the stamps scatter and the sampling does not.
-    Off,
+    /// Uneven stamps; `None` regrids those that jitter or drift and takes nearly even ones as even.
+    pub regrid: Option<Regrid>,
 }
 
 /// A uniform record, and which rows of the file its samples came from. Channels recorded at a lower rate are left out

@@ -31,30 +31,28 @@ pub fn by_rate(raw: RawRecord) -> Vec<Table> {
         }
     }
     let columns: Vec<Option<u64>> = (0..raw.channels.len()).map(|index| column_of(&raw.layout, index)).collect();
-    let RawRecord { source, mut channels, stamps, stated_rate, metadata, findings, layout } = raw;
-    let mut groups = Vec::new();
-    for pattern in patterns {
-        let mut chosen = Vec::new();
-        let mut at = Vec::new();
-        for (index, channel) in channels.iter_mut().enumerate().filter(|(index, _)| own[*index] == pattern) {
-            let blank = RawChannel { values: Vec::new(), missing: Vec::new(), ..channel.clone_head() };
-            chosen.push(std::mem::replace(channel, blank));
-            at.push(columns[index]);
+    let RawRecord { source, channels, stamps, stated_rate, metadata, findings, layout } = raw;
+    let shell = RawRecord { source, channels: Vec::new(), stamps, stated_rate, metadata, findings, layout };
+    let rows = RowMap::Even { first: 0, every: 1, count };
+    // Stamps are as large as a channel: only lower rates get copies of them.
+    let mut groups: Vec<Table> = patterns
+        .iter()
+        .skip(1)
+        .map(|_| Table { raw: shell.clone(), rows: rows.clone(), columns: Vec::new() })
+        .collect();
+    if !patterns.is_empty() {
+        groups.insert(0, Table { raw: shell, rows, columns: Vec::new() });
+    }
+    for ((channel, pattern), column) in channels.into_iter().zip(own).zip(columns) {
+        if let Some(group) = patterns.iter().position(|p| *p == pattern).and_then(|at| groups.get_mut(at)) {
+            group.raw.channels.push(channel);
+            group.columns.push(column);
         }
-        let raw = RawRecord {
-            source: source.clone(),
-            channels: chosen,
-            stamps: stamps.clone(),
-            stated_rate: stated_rate.clone(),
-            metadata: metadata.clone(),
-            findings: findings.clone(),
-            layout: layout.clone(),
-        };
-        let mut table = Table { raw, rows: RowMap::Even { first: 0, every: 1, count }, columns: at };
+    }
+    for (group, pattern) in groups.iter_mut().zip(&patterns) {
         if let Some(sparse) = pattern {
-            table.thin(sparse);
+            group.thin(*sparse);
         }
-        groups.push(table);
     }
     groups
 }
@@ -136,7 +134,11 @@ impl Table {
             stamps.ticks = kept.iter().map(|&row| stamps.ticks[row]).collect();
         }
         self.rows = RowMap::Listed(kept.iter().map(|&row| self.rows.row(row)).collect());
-        let rows = if repeated.len() == 1 { "one repeated row".to_owned() } else { format!("{} repeated rows", repeated.len()) };
+        let rows = if repeated.len() == 1 {
+            "one repeated row".to_owned()
+        } else {
+            format!("{} repeated rows", repeated.len())
+        };
         Ok(Finding::new("repeats_dropped", format!("{rows} left out")).at(place))
     }
 

@@ -97,7 +97,8 @@ impl<'a> Clock<'a> {
             let step = (raw[row] - raw[row - 1]) as f64;
             if step < 0.0 {
                 let period = |k: usize| MODULI[k].0 / self.scale / self.tick;
-                let fits = |&k: &usize| step < -0.5 * period(k) && step + period(k) > 0.0 && step + period(k) <= longest;
+                let fits =
+                    |&k: &usize| step < -0.5 * period(k) && step + period(k) > 0.0 && step + period(k) <= longest;
                 let Some(k) = (0..MODULI.len()).find(fits) else { return Err(row) };
                 turns[k] += 1;
                 // Rounded once in all, so that many turns do not add their roundings.
@@ -125,22 +126,19 @@ fn median_step(ticks: &[i64]) -> f64 {
     median(&mut steps).unwrap_or(0.0)
 }
 
-/// Distance of neighbouring 32-bit floats at the largest stamp, in ticks, when every stamp is one: then that is how
-/// finely the clock was kept, however many digits are printed. Otherwise 0.
+/// Distance of neighbouring 32-bit floats at the largest stamp, in ticks, when every stamp is one to the last digit and
+/// that distance is at least ten ticks: then that is how finely the clock was kept, however many digits are printed.
+/// Otherwise 0. Stamps of another clock pass at most once in ten each.
 fn single_precision(stamps: &Stamps) -> f64 {
     let value = |tick: i64| stamps.first + tick as f64 * stamps.tick;
-    // Decimal text brings a double to within 2 ulp of the single it shows; other numbers come that close once in 1e8.
-    let is_single = |v: f64| (v - f64::from(v as f32)).abs() <= 2.0 * f64::EPSILON * v.abs();
-    if !stamps.ticks.iter().all(|&tick| is_single(value(tick))) {
-        return 0.0;
-    }
-    let largest = stamps.ticks.iter().map(|&tick| value(tick).abs()).fold(0.0, f64::max);
-    let single = largest as f32;
-    if !single.is_finite() {
-        return 0.0;
-    }
-    let spacing = f64::from(single.next_up()) - f64::from(single);
-    if spacing.is_finite() { spacing / stamps.tick } else { 0.0 }
+    // Half a tick for the last printed digit, 2 ulp for the way from text to double.
+    let slack = 0.5 * stamps.tick * (1.0 + 1e-9);
+    let is_single = |v: f64| (v - f64::from(v as f32)).abs() <= slack + 2.0 * f64::EPSILON * v.abs();
+    let ends = [stamps.ticks.first(), stamps.ticks.last()].into_iter().flatten();
+    let largest = ends.map(|&tick| value(tick).abs()).fold(0.0, f64::max) as f32;
+    let spacing = (f64::from(largest.next_up()) - f64::from(largest)) / stamps.tick;
+    let coarse = spacing.is_finite() && spacing >= 10.0;
+    if coarse && stamps.ticks.iter().all(|&tick| is_single(value(tick))) { spacing } else { 0.0 }
 }
 
 /// Four ulp of the largest stamp, in ticks, where ticks are binary fractions: such stamps were computed, not printed.

@@ -116,6 +116,21 @@ impl StampReading {
         })
     }
 
+    /// Distance of every stamp from the first, in `unit`, on the clock carried on through `wraps`.
+    pub fn positions(&self, stamps: &Stamps) -> Vec<f64> {
+        let scale = self.unit.meaning().map_or(1.0, |m| m.scale);
+        let first = stamps.ticks.first().copied().unwrap_or(0);
+        let mut wraps = self.wraps.iter().peekable();
+        let mut carried = 0.0;
+        let at = |(row, &tick): (usize, &i64)| {
+            while let Some(wrap) = wraps.next_if(|wrap| wrap.row <= row) {
+                carried += wrap.modulus_seconds / scale;
+            }
+            tick.saturating_sub(first) as f64 * stamps.tick + carried
+        };
+        stamps.ticks.iter().enumerate().map(at).collect()
+    }
+
     fn blank(stamps: &Stamps) -> StampReading {
         StampReading {
             spacing: Spacing::Single,
@@ -194,7 +209,8 @@ impl StampReading {
             let within = |[low, high]: [f64; 2]| step >= low * (1.0 - 1e-12) && step <= high * (1.0 + 1e-12);
             // Several rounding steps in one direction show a rate beside the round one; a single one does not.
             let believable = rows.and_then(|strip| strip.interval(clock.resolution)).is_none_or(within);
-            let only_rounding = rows.is_some() && whole.gaps.is_empty() && !whole.repeated.iter().any(|&n| (beside.same_row)(n));
+            let only_rounding =
+                rows.is_some() && whole.gaps.is_empty() && !whole.repeated.iter().any(|&n| (beside.same_row)(n));
             if believable && !only_rounding {
                 self.step = Some(step * clock.tick);
                 if !whole.repeated.is_empty() {

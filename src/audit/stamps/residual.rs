@@ -54,15 +54,18 @@ pub fn judge(clock: &Clock<'_>, track: &Track) -> (Spacing, Scatter, Option<usiz
         drift_ppm: drift_ppm(track, &slow),
     };
     let calm = deviation <= 0.005 * h + q / 2.0 && largest <= 0.05 * h + q;
-    if calm {
-        let spacing = if drift <= 0.02 * h + q { Spacing::NearUniform } else { Spacing::Drifting };
-        return (spacing, scatter, None);
+    if calm && drift <= 0.02 * h + q {
+        return (Spacing::NearUniform, scatter, None);
     }
+    // Before drift: a running median keeps the edge of a step, so that a slip looks like slow deviations only.
     if deviation <= 0.1 * h
         && let Some((row, size)) = largest_step(&rest)
         && size > (0.1 * h).max(5.0 * deviation) + q
     {
         return (Spacing::Slipped, scatter, Some(row));
+    }
+    if calm {
+        return (Spacing::Drifting, scatter, None);
     }
     // Rounding alone has a robust deviation of 1.4826 q / 4, which adds to that of the instants.
     let jittered = deviation <= (0.11 * h).hypot(0.37 * q) && largest <= 0.5 * h + q;
