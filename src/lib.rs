@@ -7,4 +7,5 @@ pub mod error;
 pub mod unit;
 pub mod numeric;
 pub mod record;
+pub mod read;
 pub mod ends;
