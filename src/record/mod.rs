@@ -1,6 +1,7 @@
 //! A record: channels of uniform, finite samples over one axis, and what was read before it became one.
 
 mod axis;
+mod lines;
 mod raw;
 mod source;
 
@@ -11,8 +12,9 @@ use crate::place::Place;
 use crate::unit::Unit;
 
 pub use axis::{Axis, RateSource, Spacing};
+pub use lines::RowLines;
 pub use raw::{RawChannel, RawRecord, Stamps, StatedRate};
-pub use source::{ColumnRole, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
+pub use source::{ColumnRole, Encoding, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
 
 /// Channels over one axis. Every sample is finite, every channel has the axis' length, and there is at least one of each.
 #[derive(Debug, Clone)]

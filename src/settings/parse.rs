@@ -8,16 +8,13 @@ use crate::operator::{Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
-use crate::regularise::{Bound, Duplicates, Gaps, Regrid};
+use crate::regularise::Bound;
 use crate::settings::Settings;
 use crate::unit::Unit;
 
 /// Words of an option and what they stand for; the first is the default.
 type Words<T> = &'static [(&'static str, T)];
 
-const GAPS: Words<Gaps> = &[("reject", Gaps::Reject), ("fill", Gaps::Fill)];
-const DUPLICATES: Words<Duplicates> = &[("reject", Duplicates::Reject), ("drop", Duplicates::Drop)];
-const REGRID: Words<Regrid> = &[("cubic", Regrid::Cubic), ("off", Regrid::Off)];
 const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
@@ -45,9 +42,9 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
         "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
         "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
-        "gaps" => settings.regularise.gaps = one_of(key, text, GAPS)?,
-        "duplicates" => settings.regularise.duplicates = one_of(key, text, DUPLICATES)?,
-        "regrid" => settings.regularise.regrid = one_of(key, text, REGRID)?,
+        "gaps" => settings.regularise.gaps = context(key, text.parse())?,
+        "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
+        "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
         "strict" => settings.strict = switch(key, text)?,
         "extension" => settings.stage.extension = Some(context(key, text.parse())?),
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
@@ -64,9 +61,8 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
 /// The default that results show for a key that was not given; `None` where the record or the chain decides.
 pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
     match key {
-        "gaps" => spelling(GAPS, settings.regularise.gaps),
-        "duplicates" => spelling(DUPLICATES, settings.regularise.duplicates),
-        "regrid" => spelling(REGRID, settings.regularise.regrid),
+        "gaps" => Some(settings.regularise.gaps.to_string()),
+        "duplicates" => Some(settings.regularise.duplicates.to_string()),
         "seat" => spelling(SEATS, settings.stage.seat),
         "shape" => Some(settings.shape.to_string()),
         _ => None,
