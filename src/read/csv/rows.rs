@@ -116,6 +116,7 @@ impl Plan {
                         break;
                     }
                     Err(cause) => {
+                        let field = field.filter(|_| !matches!(cause, Cause::Fields(_)));
                         let cause = if line.contains(&b'"') { Cause::Quote } else { cause };
                         fault = Some(Fault { byte: at, field, cause });
                         break;

@@ -209,7 +209,7 @@ fn reduced(text: &[u8], decimal: u8, exponent: i64) -> Option<(i64, u8)> {
         digits.pop();
         decimals -= 1;
     }
-    if decimals < -18 || decimals > 18 {
+    if !(-18..=18).contains(&decimals) {
         return None;
     }
     let mut mantissa: i64 = 0;
