@@ -137,7 +137,7 @@ fn stamped(head: &str, delimiter: &str, stamp: impl Fn(usize) -> String) -> Vec<
 #[test]
 fn every_row_of_the_matrix() {
     let blank_lines = |lines: Vec<String>| lines.iter().flat_map(|l| [l.clone(), String::new()]).collect::<Vec<_>>();
-    let aligned: Vec<String> = (0..ROWS).map(|n| row(n)).map(|(t, a, b)| format!("{t:8.2} {a:9.2} {b:9.2}")).collect();
+    let aligned: Vec<String> = (0..ROWS).map(row).map(|(t, a, b)| format!("{t:8.2} {a:9.2} {b:9.2}")).collect();
     let quoted = |line: &String| line.split(',').map(|f| format!("\"{f}\"")).collect::<Vec<_>>().join(",");
     let all_quoted: Vec<String> = data(",", ".").iter().map(quoted).collect();
     let comma_quoted: Vec<String> =
