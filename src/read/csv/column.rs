@@ -309,9 +309,7 @@ fn find(
     } else if first_rises && others && !counts_rows(&columns[0], &tracks[0]) {
         let name = escape(&columns[0].name);
         if !named {
-            let text = format!(
-                "there is no header: the first column rises steadily and is taken for the time (--time-column)"
-            );
+            let text = "there is no header: the first column rises steadily and is taken for the time (--time-column)";
             findings.push(Finding::new("time_column_guessed", text));
             return Ok(Some(0));
         }

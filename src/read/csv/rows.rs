@@ -116,6 +116,7 @@ impl Plan {
                         break;
                     }
                     Err(cause) => {
+                        let field = field.filter(|_| !matches!(cause, Cause::Fields(_)));
                         let cause = if line.contains(&b'"') { Cause::Quote } else { cause };
                         fault = Some(Fault { byte: at, field, cause });
                         break;
@@ -292,14 +293,18 @@ impl Plan {
         Some(text.iter().copied().filter(|&byte| Some(byte) != self.dialect.thousands).collect())
     }
 
-    /// What to make of a faulty line: NUL bytes explain it better than what they led to. `Ok` when the line is a declared
+    /// What to make of a faulty line: NUL bytes or another number of fields explain it better than what they led to. `Ok` when the line is a declared
     /// loss; without stamps nobody could tell how long it is.
     fn excused(&self, line: &[u8], cause: Cause) -> std::result::Result<(), Cause> {
         let nuls = memchr::memchr_iter(0, line).count();
         match cause {
             _ if nuls > 0 && self.missing.nul_rows() && self.form.is_some() => Ok(()),
             _ if nuls > 0 => Err(Cause::Nul(nuls)),
-            cause => Err(cause),
+            Cause::Fields(count) => Err(Cause::Fields(count)),
+            cause => match field::fields(line, self.dialect.delimiter).len() {
+                count if count == self.tasks.len() => Err(cause),
+                count => Err(Cause::Fields(count)),
+            },
         }
     }
 }
