@@ -73,7 +73,8 @@ pub(super) fn short(text: &[u8; SPAN], decimal: u8) -> Option<Printed> {
 pub(super) fn short_value(printed: &Printed) -> f64 {
     // Clinger 1990: both operands are exact, so one division rounds correctly.
     let size = printed.mantissa as f64 / POWERS[printed.decimals];
-    if printed.negative { -size } else { size }
+    // The sign of a vibration is a coin toss, so a branch on it would be guessed wrong half of the time.
+    f64::from_bits(size.to_bits() | u64::from(printed.negative) << 63)
 }
 
 /// Integers up to this are exact as floats.
