@@ -442,7 +442,7 @@ fn odd_headers_and_columns_of_text() {
             data(",", ".").iter().enumerate().map(|(n, line)| format!("{line},{}", cell(n))).collect();
         take(&text(head, &lines), &ReadOptions::default())
     };
-    let note = |n: usize| if n % 5 == 0 { "door open".to_owned() } else { String::new() };
+    let note = |n: usize| if n.is_multiple_of(5) { "door open".to_owned() } else { String::new() };
     let record = with_column("t,ax,ay,remark\n", &note).expect("a table");
     check_numbers("a column of remarks", &record, ROWS);
     assert_eq!(codes(&record), [""; 0]);
