@@ -33,7 +33,7 @@ impl Polynomial {
     /// Value at x.
     pub fn at(&self, x: f64) -> f64 {
         let u = (x - self.centre) / self.half_width;
-        self.coefficients.iter().rev().fold(0.0, |sum, &c| sum.mul_add(u, c))
+        self.coefficients.iter().rev().fold(0.0, |sum, &c| sum * u + c)
     }
 
     /// Coefficients of u.

@@ -7,6 +7,7 @@ mod csv;
 mod fingerprint;
 mod options;
 mod selection;
+mod wav;
 
 use std::fs::File;
 use std::io::{self, Cursor, ErrorKind, Read};
@@ -48,7 +49,10 @@ struct Intake<'a> {
 }
 
 /// The formats, in the order in which they are tried; delimited text takes what is left.
-static READERS: &[Reader] = &[Reader { format: Format::Csv, sniff: |_, _| true, read: csv::read }];
+static READERS: &[Reader] = &[
+    Reader { format: Format::Wav, sniff: wav::is_wave, read: read_wave },
+    Reader { format: Format::Csv, sniff: |_, _| true, read: csv::read },
+];
 
 /// Files that are no records but are often handed in as one: first bytes, name, what to do.
 static FOREIGN: &[(&[u8], &str, &str)] = &[
@@ -100,6 +104,16 @@ pub fn reopen(source: &Source, layout: &TableLayout) -> Result<Box<dyn Read + Se
             Ok(Box::new(csv::Decoded::new(stream, layout.encoding)?))
         }
     }
+}
+
+/// WAV: what the options say of tables does not concern it.
+fn read_wave(intake: &mut Intake<'_>, options: &ReadOptions) -> Result<RawRecord> {
+    let wanted = wav::Options {
+        allow_truncated: options.allow_truncated,
+        channels: options.channels.as_deref(),
+        rate_hz: options.rate.as_ref().filter(|rate| rate.unit.is_time()).map(|rate| rate.rate_base),
+    };
+    wav::read(intake.stream, intake.name, &wanted)
 }
 
 /// Text in memory, read by several at once.

@@ -11,7 +11,7 @@ use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::unit::Unit;
 
-pub use axis::{Axis, RateSource};
+pub use axis::{Axis, RateSource, Spacing};
 pub use lines::RowLines;
 pub use raw::{RawChannel, RawRecord, Stamps, StatedRate};
 pub use source::{ColumnRole, Encoding, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
@@ -54,7 +54,8 @@ impl Record {
         if names.len() != channels || units.len() != channels || axis.len() != len {
             return Err(Error::usage("names, units, axis and samples differ in number"));
         }
-        let samples = samples.as_standard_layout().into_owned();
+        // Copies only what is not contiguous already: a record may fill half the memory.
+        let samples = if samples.is_standard_layout() { samples } else { samples.as_standard_layout().into_owned() };
         for (name, row) in names.iter().zip(samples.rows()) {
             if let Some(n) = row.iter().position(|v| !v.is_finite()) {
                 let place = Place { sample: Some(n as u64), ..Place::channel(name) };
