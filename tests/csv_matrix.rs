@@ -424,6 +424,44 @@ fn the_time_or_position_column_is_chosen_with_care() {
 }
 
 #[test]
+fn odd_headers_and_columns_of_text() {
+    let names = |head: &str| {
+        let record = take(&plain(head), &ReadOptions::default()).unwrap_or_else(|error| panic!("{head}: {error}"));
+        let channels: Vec<String> = record.channels.iter().map(|c| format!("{} [{}]", c.name, c.unit)).collect();
+        (record.stamps.map(|stamps| stamps.name), channels.join(", "), record.findings.len())
+    };
+    let expected = |stamps: &str, channels: &str| (Some(stamps.to_owned()), channels.to_owned(), 0);
+    assert_eq!(names("\"t\n(s)\",\"ax\n(g)\",ay\n"), expected("t", "ax [g], ay []"));
+    assert_eq!(names("Time,1,2\n"), expected("Time", "1 [], 2 []"));
+    assert_eq!(names("Time,Acc X,Acc Y\nof sample,from mount,from floor\n"), expected("Time", "Acc X [], Acc Y []"));
+    assert_eq!(names("# t ax ay\n# t,ax,ay\n"), expected("t", "ax [], ay []"));
+    assert_eq!(names("t / s,a in g,b [m/s^2]\n"), expected("t", "a [g], b [m/s2]"));
+
+    let with_column = |head: &str, cell: &dyn Fn(usize) -> String| {
+        let lines: Vec<String> =
+            data(",", ".").iter().enumerate().map(|(n, line)| format!("{line},{}", cell(n))).collect();
+        take(&text(head, &lines), &ReadOptions::default())
+    };
+    let note = |n: usize| if n.is_multiple_of(5) { "door open".to_owned() } else { String::new() };
+    let record = with_column("t,ax,ay,remark\n", &note).expect("a table");
+    check_numbers("a column of remarks", &record, ROWS);
+    assert_eq!(codes(&record), [""; 0]);
+    let late = |n: usize| if n == 40 { "door open".to_owned() } else { String::new() };
+    let record = with_column("t,ax,ay,remark\n", &late).expect("a table");
+    check_numbers("a remark late in the file", &record, ROWS);
+    let record = with_column("t,ax,ay,load\n", &|n| format!("{n}%")).expect("a table");
+    assert_eq!(codes(&record), ["text_column"]);
+    let record = with_column("t,ax,ay,\n", &|_| String::new()).expect("a table");
+    assert_eq!(codes(&record), [""; 0]);
+    let refused = with_column("t,ax,ay\n", &|n| if n == 30 { "x".to_owned() } else { String::new() });
+    assert!(refused.is_err_and(|error| error.to_string().starts_with("-:2:1: the header")));
+    let mut long: Vec<String> = (0..400).map(|n| format!("{n}.5,{n},{n},")).collect();
+    long[300].push('x');
+    let refused = take(&text("t,ax,ay\n", &long), &ReadOptions::default());
+    assert!(refused.is_err_and(|error| error.to_string().starts_with("-:302:4: text after the last separator")));
+}
+
+#[test]
 fn faulty_spacing_is_handed_on_as_it_is() {
     // Cases 20 to 24 are judged by the audit: the reader keeps every stamp and its line.
     let repeated = take(&with_line(33, "0.30,1,2"), &ReadOptions::default()).expect("a table");
