@@ -9,3 +9,4 @@ pub mod numeric;
 pub mod record;
 pub mod ends;
 pub mod baseline;
+pub mod forecast;
