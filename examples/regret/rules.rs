@@ -1,8 +1,10 @@
 //! The rules to be scored, and their errors at the edges.
 
+use std::collections::BTreeMap;
+
 use endgrain::baseline::{Baseline, BaselineKind, EndEstimates, Scale, Side};
 use endgrain::ends::Ends;
-use endgrain::forecast::{Response, Shape};
+use endgrain::forecast::{Evidence, Forecast, Response, Shape};
 use endgrain::numeric::polynomial::Polynomial;
 use endgrain::numeric::{fourier, sum};
 use rayon::prelude::*;
@@ -16,6 +18,8 @@ pub struct Score {
     pub group: String,
     pub file: String,
     pub len: usize,
+    /// Predicted error of the forecast.
+    pub predicted: f64,
     /// Named errors; the first `HINDSIGHT` are the reference.
     pub errors: Vec<(&'static str, f64)>,
 }
@@ -29,13 +33,19 @@ pub fn score_all(windows: &[Window], wanted: Option<&str>, fine: bool) -> Vec<Sc
 }
 
 fn score_window(window: &Window, wanted: Option<&str>, fine: bool) -> Vec<Score> {
+    // One set of fits serves every operator with the same block length.
+    let mut evidence: BTreeMap<usize, Option<Evidence>> = BTreeMap::new();
     operators::trials(window.len, fine)
         .filter(|trial| wanted.is_none_or(|name| trial.name == name))
-        .map(|trial| score_case(window, &trial))
+        .map(|trial| {
+            let block = Evidence::block_length(trial.shortest);
+            let evidence = evidence.entry(block).or_insert_with(|| Evidence::gather(window.samples(), block));
+            score_case(window, &trial, evidence.as_ref())
+        })
         .collect()
 }
 
-fn score_case(window: &Window, trial: &Trial) -> Score {
+fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>) -> Score {
     let x = window.samples();
     let n = x.len();
     let shape = Shape { gain: &*trial.gain, turns: 0, shortest_wavelength: trial.shortest };
@@ -75,7 +85,11 @@ fn score_case(window: &Window, trial: &Trial) -> Score {
     let pad = response.reach().max(8).min(n);
     errors.push(("zero", error(&padded(trial, x, &vec![0.0; n], &vec![0.0; n]))));
     errors.push(("hold", error(&padded(trial, x, &vec![x[0]; pad], &vec![x[n - 1]; pad]))));
-    Score { operator: trial.name, group: window.group.clone(), file: window.file.clone(), len: n, errors }
+    let forecast = evidence.map(|e| Forecast::combine(e, &response));
+    let foretold = forecast.as_ref().map(|f| padded(trial, x, &f.left, &f.right));
+    errors.push(("forecast", foretold.as_ref().map_or(f64::NAN, |y| error(y))));
+    let predicted = forecast.as_ref().map_or(f64::NAN, |f| f.predicted_error().max(floor));
+    Score { predicted, operator: trial.name, group: window.group.clone(), file: window.file.clone(), len: n, errors }
 }
 
 /// RMS difference over both edge zones together.

@@ -12,6 +12,16 @@ pub fn print(scores: &[Score]) {
         let mean = regrets.iter().sum::<f64>() / regrets.len() as f64;
         println!("{name:<18} {mean:>8.3} {:>8.3} {:>8.3}", share(0.10), share(0.25));
     }
+    for factor in [1.6, 2.0, 2.25, 2.5, 3.0, 4.0] {
+        for len in [64, 256, 1024] {
+            let (mut n, mut covered, mut brick, mut brick_covered) = (0, 0, 0, 0);
+            for s in scores.iter().filter(|s| s.len == len) {
+                let ok = s.errors.last().is_some_and(|e| e.1 <= factor * s.predicted);
+                if s.operator.starts_with("brick") { brick += 1; brick_covered += usize::from(ok) } else { n += 1; covered += usize::from(ok) }
+            }
+            println!("{factor} {len} {:.3} brick {:.3}", covered as f64 / n as f64, brick_covered as f64 / brick as f64);
+        }
+    }
 }
 
 fn regret(score: &Score, at: usize) -> f64 {

@@ -6,4 +6,5 @@ pub mod covariance;
 pub mod fourier;
 pub mod noise;
 pub mod polynomial;
+pub mod quantum;
 pub mod sum;
