@@ -86,7 +86,7 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>) -> Sc
     errors.push(("zero", error(&padded(trial, x, &vec![0.0; n], &vec![0.0; n]))));
     errors.push(("hold", error(&padded(trial, x, &vec![x[0]; pad], &vec![x[n - 1]; pad]))));
     let forecast = evidence.map(|e| Forecast::combine(e, &response));
-    let foretold = forecast.as_ref().map(|f| padded(trial, x, &f.left, &f.right));
+    let foretold = forecast.as_ref().map(|f| padded(trial, x, &f.continuation(Side::Left), &f.continuation(Side::Right)));
     errors.push(("forecast", foretold.as_ref().map_or(f64::NAN, |y| error(y))));
     let predicted = forecast.as_ref().map_or(f64::NAN, |f| f.predicted_error().max(floor));
     Score { predicted, operator: trial.name, group: window.group.clone(), file: window.file.clone(), len: n, errors }

@@ -2,8 +2,9 @@
 
 use crate::baseline::Side;
 use crate::forecast::evidence::{EndEvidence, Evidence};
-use crate::forecast::member::COUNT;
+use crate::forecast::member::{COUNT, Fits};
 use crate::forecast::{Response, variance};
+use crate::numeric::sum;
 
 /// How many places of the edge zone the backcasts are judged at.
 const PLACES: usize = 16;
@@ -13,18 +14,20 @@ const LONG_ANALOGUES_FROM: usize = 128;
 
 /// The record's continuation past both ends and its predicted error in the operator's output.
 pub struct Forecast {
-    /// Past the left end, outwards.
-    pub left: Vec<f64>,
-    /// Past the right end, outwards.
-    pub right: Vec<f64>,
+    /// Samples per block of the continuation.
+    block: usize,
+    /// Continuation in samples at each end.
+    pad: usize,
+    /// Past the left and the right end, outwards, block by block.
+    blocks: [Vec<f64>; 2],
     /// Weight of each forecaster at the left and the right end, in the order of `member::NAMES`.
     pub weights: [[f64; COUNT]; 2],
     /// Mean squared error of the output in the edge zones that the autoregression's innovations lead to.
     pub innovation_variance: f64,
     /// The same from the backcasts.
     pub backcast_variance: f64,
-    /// Output variance by distance from the left and the right end, sample by sample.
-    pub profiles: [Vec<f64>; 2],
+    /// Output variance by distance from the left and the right end, sample by sample, as far as an end can be trimmed.
+    profiles: [Vec<f64>; 2],
 }
 
 impl Forecast {
@@ -39,32 +42,46 @@ impl Forecast {
         let sides = [Side::Left, Side::Right].map(|side| evidence.at(side));
         let scores = sides.map(|end| Backcasts::of(end, &sight, steps));
         let weights = weights(&scores, sides[0].past.len());
-        let continuation = |end: &EndEvidence, weights: &[f64; COUNT]| {
-            let members = end.fits.continued(&end.past, steps);
-            let mut ahead = Vec::with_capacity(steps * block);
-            for step in 0..steps {
-                let value: f64 = members.iter().zip(weights).map(|(m, w)| if *w > 0.0 { w * m[step] } else { 0.0 }).sum();
-                ahead.extend(std::iter::repeat_n(value, block));
-            }
-            ahead.truncate(pad);
-            ahead
-        };
+        let blocks = [0, 1].map(|side| mixture(&sides[side].fits.continued(&sides[side].past, steps), &weights[side]));
+        let farthest = response.trimmable(len).max(zone);
         let by_innovations =
-            sides.map(|end| variance::profile(&end.fits, response, block, steps, zone, evidence.quantum()));
-        let by_backcasts = [0, 1].map(|side| scores[side].variances(&weights[side]));
-        let mean = |v: &[f64]| if v.is_empty() { 0.0 } else { v.iter().sum::<f64>() / v.len() as f64 };
+            sides.map(|end| variance::profile(&end.fits, response, block, steps, farthest, evidence.quantum()));
+        let by_backcasts = [0, 1].map(|side| scores[side].variances(&sight, &weights[side]));
+        let wide = Sight::of(response, farthest, steps, block);
         let profiles = [0, 1].map(|side| {
-            let backcast = sight.spread(&by_backcasts[side], zone);
+            let backcast = wide.spread(&scores[side].variances(&wide, &weights[side]), farthest);
             by_innovations[side].iter().zip(&backcast).map(|(a, b)| 0.5 * (a + b)).collect()
         });
         Forecast {
-            left: continuation(sides[0], &weights[0]),
-            right: continuation(sides[1], &weights[1]),
-            innovation_variance: 0.5 * (mean(&by_innovations[0]) + mean(&by_innovations[1])),
-            backcast_variance: 0.5 * (mean(&by_backcasts[0]) + mean(&by_backcasts[1])),
+            block,
+            pad,
+            blocks,
+            innovation_variance: 0.5 * (sum::mean(&by_innovations[0][..zone]) + sum::mean(&by_innovations[1][..zone])),
+            backcast_variance: 0.5 * (sum::mean(&by_backcasts[0]) + sum::mean(&by_backcasts[1])),
             weights,
             profiles,
         }
+    }
+
+    /// The continuation past one end in samples, outwards.
+    pub fn continuation(&self, side: Side) -> Vec<f64> {
+        let samples = self.blocks(side).iter().flat_map(|&value| std::iter::repeat_n(value, self.block));
+        samples.take(self.pad).collect()
+    }
+
+    /// The continuation past one end in blocks, outwards; beyond them it is reflected evenly.
+    pub fn blocks(&self, side: Side) -> &[f64] {
+        &self.blocks[side as usize]
+    }
+
+    /// Samples per block.
+    pub fn block(&self) -> usize {
+        self.block
+    }
+
+    /// Predicted variance of the output at distances 0, 1, ... samples from an end.
+    pub fn profile(&self, side: Side) -> &[f64] {
+        &self.profiles[side as usize]
     }
 
     /// Predicted RMS error of the output over both edge zones.
@@ -115,23 +132,35 @@ impl Sight {
     }
 }
 
-/// Errors in the output that each forecaster would have made after each cut of one end.
+/// Weighted sum of the forecasters' values; one without weight may be anything.
+fn mixture(members: &[Vec<f64>; COUNT], weights: &[f64; COUNT]) -> Vec<f64> {
+    let mut mixed = vec![0.0; members[0].len()];
+    for (member, weight) in members.iter().zip(weights).filter(|(_, w)| **w > 0.0) {
+        for (value, m) in mixed.iter_mut().zip(member) {
+            *value += weight * m;
+        }
+    }
+    mixed
+}
+
+/// Errors that each forecaster would have made after each cut of one end.
 struct Backcasts {
-    /// Cut by cut, forecaster by forecaster, place by place.
-    errors: Vec<[[f64; PLACES]; COUNT]>,
+    /// Cut by cut, forecaster by forecaster, block by block.
+    errors: Vec<[Vec<f64>; COUNT]>,
+    /// The same in the output, place by place.
+    outputs: Vec<[[f64; PLACES]; COUNT]>,
 }
 
 impl Backcasts {
     fn of(end: &EndEvidence, sight: &Sight, steps: usize) -> Backcasts {
         let n = end.past.len();
-        let cut = |(h, fits): &(usize, super::member::Fits)| {
+        let cut = |(h, fits): &(usize, Fits)| {
             let (past, truth) = end.past.split_at(n - h);
-            fits.continued(past, *h.min(&steps)).map(|ahead| {
-                let errors: Vec<f64> = ahead.iter().zip(truth).map(|(a, t)| a - t).collect();
-                sight.output(&errors)
-            })
+            fits.continued(past, *h.min(&steps)).map(|ahead| ahead.iter().zip(truth).map(|(a, t)| a - t).collect())
         };
-        Backcasts { errors: end.cuts.iter().map(cut).collect() }
+        let errors: Vec<[Vec<f64>; COUNT]> = end.cuts.iter().map(cut).collect();
+        let output = |members: &[Vec<f64>; COUNT]| std::array::from_fn(|k| sight.output(&members[k]));
+        Backcasts { outputs: errors.iter().map(output).collect(), errors }
     }
 
     /// (mean over the cuts of the RMS output error)^2 of each forecaster: the root keeps one bad cut from deciding.
@@ -139,18 +168,18 @@ impl Backcasts {
         let mut scores = [0.0; COUNT];
         for (member, score) in scores.iter_mut().enumerate() {
             let rms = |cut: &[[f64; PLACES]; COUNT]| mean_square(&cut[member]).sqrt();
-            let mean = self.errors.iter().map(rms).sum::<f64>() / self.errors.len().max(1) as f64;
+            let mean = self.outputs.iter().map(rms).sum::<f64>() / self.outputs.len().max(1) as f64;
             *score = mean * mean;
         }
         scores
     }
 
     /// Mean squared output error of the weighted forecast at each place, over the cuts.
-    fn variances(&self, weights: &[f64; COUNT]) -> [f64; PLACES] {
+    fn variances(&self, sight: &Sight, weights: &[f64; COUNT]) -> [f64; PLACES] {
         let mut variances = [0.0; PLACES];
         for cut in &self.errors {
-            for (place, variance) in variances.iter_mut().enumerate() {
-                let error: f64 = (0..COUNT).map(|k| if weights[k] > 0.0 { weights[k] * cut[k][place] } else { 0.0 }).sum();
+            let output = sight.output(&mixture(cut, weights));
+            for (variance, error) in variances.iter_mut().zip(output) {
                 *variance += error * error / self.errors.len() as f64;
             }
         }

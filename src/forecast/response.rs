@@ -64,6 +64,11 @@ impl<'a> Response<'a> {
         self.reach.min(len / 4).max(4).min(len)
     }
 
+    /// How far an end of a record of `len` samples can be trimmed: to the reach, at most to the middle.
+    pub fn trimmable(&self, len: usize) -> usize {
+        self.reach.min(len / 2)
+    }
+
     /// Sum of the kernel over lags from..to; beyond the grid it counts as zero.
     pub fn area(&self, from: usize, to: usize) -> f64 {
         let last = self.steps.len() - 1;
