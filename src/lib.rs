@@ -10,3 +10,4 @@ pub mod record;
 pub mod ends;
 pub mod baseline;
 pub mod forecast;
+pub mod metric;
