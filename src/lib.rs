@@ -11,3 +11,4 @@ pub mod ends;
 pub mod baseline;
 pub mod forecast;
 pub mod metric;
+pub mod verdict;

@@ -3,6 +3,7 @@
 //! `cargo run --release --example regret -- FOLDER`: FOLDER holds one-column CSV files, `manifest.json` and `windows.json`.
 
 mod operators;
+mod output;
 mod records;
 mod rules;
 mod table;

@@ -2,14 +2,16 @@
 
 use std::collections::BTreeMap;
 
-use endgrain::baseline::{Baseline, BaselineKind, EndEstimates, Scale, Side};
+use endgrain::baseline::{Baseline, BaselineKind, Side};
 use endgrain::ends::Ends;
-use endgrain::forecast::{Evidence, Forecast, Response, Shape};
+use endgrain::forecast::{Evidence, Response, Shape};
 use endgrain::numeric::polynomial::Polynomial;
-use endgrain::numeric::{fourier, sum};
+use endgrain::numeric::{noise, sum};
+use endgrain::verdict::{self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Level, Structure, Tolerance, Verdict};
 use rayon::prelude::*;
 
 use crate::operators::{self, Trial};
+use crate::output::{extended, padded, with_baseline};
 use crate::records::Window;
 
 /// What one case gives.
@@ -18,14 +20,32 @@ pub struct Score {
     pub group: String,
     pub file: String,
     pub len: usize,
-    /// Predicted error of the forecast.
-    pub predicted: f64,
-    /// Named errors; the first `HINDSIGHT` are the reference.
-    pub errors: Vec<(&'static str, f64)>,
+    /// Error of every fixed extension; the first `HINDSIGHT` are the reference.
+    pub fixed: Vec<(&'static str, f64)>,
+    pub level: Level,
+    pub choice_immaterial: bool,
+    /// Largest error among the ties, relative to the output's standard deviation.
+    pub worst_tie: f64,
+    /// The symmetric pick, the forecast, and what `auto` takes.
+    pub chosen: [Chosen; 3],
+}
+
+/// One judged extension and what it really costs.
+pub struct Chosen {
+    pub name: &'static str,
+    pub error: f64,
+    pub edge: Edge,
+    /// Standard deviation that relative figures refer to.
+    pub deviation: f64,
+    /// At each end: share of the reach that is trimmed, and whether the rest keeps to the tolerance.
+    pub sides: [(f64, bool); 2],
 }
 
 /// The number of symmetric candidates that the best in hindsight is taken from.
 pub const HINDSIGHT: usize = 14;
+
+/// The trial's tolerance, as a share of the output's standard deviation.
+pub const TOLERANCE: f64 = 0.10;
 
 pub fn score_all(windows: &[Window], wanted: Option<&str>, fine: bool) -> Vec<Score> {
     let per_window: Vec<Vec<Score>> = windows.par_iter().map(|window| score_window(window, wanted, fine)).collect();
@@ -35,17 +55,18 @@ pub fn score_all(windows: &[Window], wanted: Option<&str>, fine: bool) -> Vec<Sc
 fn score_window(window: &Window, wanted: Option<&str>, fine: bool) -> Vec<Score> {
     // One set of fits serves every operator with the same block length.
     let mut evidence: BTreeMap<usize, Option<Evidence>> = BTreeMap::new();
+    let structure = verdict::structure(window.samples());
     operators::trials(window.len, fine)
         .filter(|trial| wanted.is_none_or(|name| trial.name == name))
         .map(|trial| {
             let block = Evidence::block_length(trial.shortest);
             let evidence = evidence.entry(block).or_insert_with(|| Evidence::gather(window.samples(), block));
-            score_case(window, &trial, evidence.as_ref())
+            score_case(window, &trial, evidence.as_ref(), structure)
         })
         .collect()
 }
 
-fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>) -> Score {
+fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>, structure: Structure) -> Score {
     let x = window.samples();
     let n = x.len();
     let shape = Shape { gain: &*trial.gain, turns: 0, shortest_wavelength: trial.shortest };
@@ -55,10 +76,10 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>) -> Sc
     let floor = 1e-4 * sum::standard_deviation(&truth);
     let error = |y: &[f64]| edge_rms(y, &truth, zone).max(floor);
 
-    let scale = Scale { shortest_wavelength: trial.shortest, zone };
-    let found = EndEstimates::of(x, Ends::EVEN, scale);
-    let (left, right) = (found.left, found.right);
+    let estimates = verdict::estimates(x, &response, noise::sigma(x));
+    let (left, right) = (estimates.left, estimates.right);
     let length = n as f64;
+    let scale = endgrain::baseline::Scale { shortest_wavelength: trial.shortest, zone };
     let kind = |ends, kind| match Baseline::fit(kind, x, ends, scale) {
         Ok(baseline) => with_baseline(trial, ends, baseline.polynomial(), x),
         Err(_) => vec![f64::NAN; n],
@@ -66,30 +87,60 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>) -> Sc
     let powers = |ends, powers: &[f64]| with_baseline(trial, ends, &Polynomial::from_powers(length, powers), x);
     // Through the first and last sample: positions 1/2 and N - 1/2.
     let chord = if n > 1 { (x[n - 1] - x[0]) / (length - 1.0) } else { 0.0 };
-    let mut errors = vec![
-        ("even", error(&kind(Ends::EVEN, BaselineKind::None))),
-        ("periodic", error(&kind(Ends::Periodic, BaselineKind::None))),
-        ("even-slope", error(&kind(Ends::EVEN, BaselineKind::Slopes))),
-        ("odd-ends", error(&kind(Ends::ODD, BaselineKind::Line))),
-        ("odd-mean", error(&kind(Ends::ODD, BaselineKind::Mean))),
-        ("even-odd", error(&kind(Ends::EVEN_ODD, BaselineKind::Level(Some(Side::Right))))),
-        ("odd-even", error(&kind(Ends::ODD_EVEN, BaselineKind::Level(Some(Side::Left))))),
-        ("periodic-line", error(&kind(Ends::Periodic, BaselineKind::Line))),
-        ("odd-zero", error(&kind(Ends::ODD, BaselineKind::None))),
-        ("odd first/last", error(&powers(Ends::ODD, &[x[0] - 0.5 * chord, chord]))),
-        ("even-odd slope", error(&powers(Ends::EVEN_ODD, &[right.value - left.slope * length, left.slope]))),
-        ("odd-even slope", error(&powers(Ends::ODD_EVEN, &[left.value, right.slope]))),
-        ("even-odd value", error(&powers(Ends::EVEN_ODD, &[right.value]))),
-        ("odd-even value", error(&powers(Ends::ODD_EVEN, &[left.value]))),
-    ];
+    let mut outputs: Vec<(&'static str, Vec<f64>)> =
+        CANDIDATES.iter().map(|c| (c.name, kind(c.ends, c.baseline))).collect();
+    outputs.extend([
+        ("periodic-line", kind(Ends::Periodic, BaselineKind::Line)),
+        ("odd-zero", kind(Ends::ODD, BaselineKind::None)),
+        ("odd first/last", powers(Ends::ODD, &[x[0] - 0.5 * chord, chord])),
+        ("even-odd slope", powers(Ends::EVEN_ODD, &[right.value - left.slope * length, left.slope])),
+        ("odd-even slope", powers(Ends::ODD_EVEN, &[left.value, right.slope])),
+        ("even-odd value", powers(Ends::EVEN_ODD, &[right.value])),
+        ("odd-even value", powers(Ends::ODD_EVEN, &[left.value])),
+    ]);
     let pad = response.reach().max(8).min(n);
-    errors.push(("zero", error(&padded(trial, x, &vec![0.0; n], &vec![0.0; n]))));
-    errors.push(("hold", error(&padded(trial, x, &vec![x[0]; pad], &vec![x[n - 1]; pad]))));
-    let forecast = evidence.map(|e| Forecast::combine(e, &response));
-    let foretold = forecast.as_ref().map(|f| padded(trial, x, &f.continuation(Side::Left), &f.continuation(Side::Right)));
-    errors.push(("forecast", foretold.as_ref().map_or(f64::NAN, |y| error(y))));
-    let predicted = forecast.as_ref().map_or(f64::NAN, |f| f.predicted_error().max(floor));
-    Score { predicted, operator: trial.name, group: window.group.clone(), file: window.file.clone(), len: n, errors }
+    outputs.push(("zero", padded(trial, x, &vec![0.0; n], &vec![0.0; n])));
+    outputs.push(("hold", padded(trial, x, &vec![x[0]; pad], &vec![x[n - 1]; pad])));
+
+    let output = |extension: Extension| match extension {
+        Extension::Symmetric(candidate) => kind(candidate.ends, candidate.baseline),
+        Extension::Continued { left, right } => padded(trial, x, left, right),
+    };
+    let tolerance = Tolerance::Share(TOLERANCE);
+    let case = Case { samples: x, evidence, structure, estimates, response: &response, output: &output, tolerance };
+    let verdict = Verdict::of(&case, FlatEnds::Ignored);
+    let foretold = evidence.map(|evidence| {
+        let forecast = endgrain::forecast::Forecast::combine(evidence, &response);
+        padded(trial, x, &forecast.continuation(Side::Left), &forecast.continuation(Side::Right))
+    });
+    outputs.push(("forecast", foretold.unwrap_or_else(|| vec![f64::NAN; n])));
+
+    let chosen = |name: &'static str| {
+        let y = outputs.iter().find(|(other, _)| *other == name).map_or(&outputs[0].1, |(_, y)| y);
+        let edge = verdict.edge(name).cloned().unwrap_or(Edge {
+            name,
+            predicted_error: f64::NAN,
+            relative_error: f64::NAN,
+            bound: f64::INFINITY,
+            adequacy: Adequacy::Outside,
+            trusted: None,
+        });
+        let sides = sides(y, &truth, &edge, response.trimmable(n), TOLERANCE * verdict.output_deviation);
+        Chosen { name, error: error(y), edge, deviation: verdict.output_deviation, sides }
+    };
+    let ties = outputs.iter().filter(|(name, _)| verdict.pick.ties.contains(name));
+    let worst_tie = ties.map(|(_, y)| error(y)).fold(0.0, f64::max) / verdict.output_deviation;
+    Score {
+        operator: trial.name,
+        group: window.group.clone(),
+        file: window.file.clone(),
+        len: n,
+        level: verdict.pick.level,
+        choice_immaterial: verdict.pick.choice_immaterial,
+        worst_tie,
+        chosen: [chosen(verdict.pick.name), chosen("forecast"), chosen(verdict.auto.name())],
+        fixed: outputs.iter().map(|(name, y)| (*name, error(y))).collect(),
+    }
 }
 
 /// RMS difference over both edge zones together.
@@ -99,34 +150,13 @@ fn edge_rms(y: &[f64], truth: &[f64], zone: usize) -> f64 {
     ((squares(0..zone) + squares(n - zone..n)) / (2 * zone) as f64).sqrt()
 }
 
-/// The operator over a record extended by `ends`.
-fn extended(trial: &Trial, ends: Ends, x: &[f64]) -> Vec<f64> {
-    let n = x.len();
-    let period = match ends {
-        Ends::Periodic => n,
-        Ends::Mirror { left, right, .. } => n * if left == right { 2 } else { 4 },
+/// Trimmed share of the reach at each end, and whether every sample left within the reach keeps to the tolerance.
+fn sides(y: &[f64], truth: &[f64], edge: &Edge, trimmable: usize, tolerance: f64) -> [(f64, bool); 2] {
+    let n = y.len();
+    let trimmed = edge.trusted.map_or([trimmable; 2], |t| [t.first, n - 1 - t.last]);
+    let keeps = |trim: usize, at: &dyn Fn(usize) -> usize| {
+        (trim..trimmable).all(|j| (y[at(j)] - truth[at(j)]).abs() <= tolerance)
     };
-    let mut line: Vec<f64> =
-        (0..period as i64).map(|i| ends.fold(n, i).map_or(0.0, |(at, sign)| sign * x[at])).collect();
-    fourier::filter(&mut line, &trial.gain, 0);
-    line.truncate(n);
-    line
-}
-
-/// The baseline is split off, the remainder extended, and what the operator makes of the baseline put back.
-fn with_baseline(trial: &Trial, ends: Ends, baseline: &Polynomial, x: &[f64]) -> Vec<f64> {
-    let rest: Vec<f64> = x.iter().enumerate().map(|(j, v)| v - baseline.at(j as f64 + 0.5)).collect();
-    let mut y = extended(trial, ends, &rest);
-    let [value, bend] = trial.at_zero;
-    let carried = baseline.scaled(value).plus(&baseline.derivative().derivative().scaled(-0.5 * bend));
-    for (j, v) in y.iter_mut().enumerate() {
-        *v += carried.at(j as f64 + 0.5);
-    }
-    y
-}
-
-/// The operator over the record with given continuations (outwards from each end), even beyond.
-fn padded(trial: &Trial, x: &[f64], left: &[f64], right: &[f64]) -> Vec<f64> {
-    let line: Vec<f64> = left.iter().rev().chain(x).chain(right).copied().collect();
-    extended(trial, Ends::EVEN, &line)[left.len()..left.len() + x.len()].to_vec()
+    let ok = [keeps(trimmed[0], &|j| j), keeps(trimmed[1], &|j| n - 1 - j)];
+    [0, 1].map(|side| (trimmed[side] as f64 / trimmable.max(1) as f64, ok[side]))
 }

@@ -73,6 +73,11 @@ impl Evidence {
         self.quantum
     }
 
+    /// Block means of the history at one end, oldest first: the last one touches the end.
+    pub fn blocks(&self, side: Side) -> &[f64] {
+        &self.at(side).past
+    }
+
     pub(super) fn at(&self, side: Side) -> &EndEvidence {
         match side {
             Side::Left => &self.left,

@@ -69,6 +69,14 @@ impl<'a> Response<'a> {
         self.reach.min(len / 2)
     }
 
+    /// Sum of the changes of the kernel from lag 1 on, relative to its area from there: the share by which it changes over
+    /// one sample.
+    pub fn roughness(&self) -> f64 {
+        let changes: f64 = self.kernel.windows(2).skip(1).map(|w| (w[1] - w[0]).abs()).sum();
+        let area: f64 = self.kernel.iter().skip(1).map(|h| h.abs()).sum();
+        if area > 0.0 { changes / area } else { 0.0 }
+    }
+
     /// Sum of the kernel over lags from..to; beyond the grid it counts as zero.
     pub fn area(&self, from: usize, to: usize) -> f64 {
         let last = self.steps.len() - 1;
