@@ -24,6 +24,8 @@ pub struct Score {
     pub fixed: Vec<(&'static str, f64)>,
     pub level: Level,
     pub choice_immaterial: bool,
+    /// Predicted RMS distance from even to the forecast.
+    pub even_distance: f64,
     /// Largest error among the ties, relative to the output's standard deviation.
     pub worst_tie: f64,
     /// The symmetric pick, the forecast, and what `auto` takes.
@@ -136,6 +138,7 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>, struc
         file: window.file.clone(),
         len: n,
         level: verdict.pick.level,
+        even_distance: verdict.distances.first().copied().unwrap_or(f64::NAN),
         choice_immaterial: verdict.pick.choice_immaterial,
         worst_tie,
         chosen: [chosen(verdict.pick.name), chosen("forecast"), chosen(verdict.auto.name())],

@@ -26,6 +26,19 @@ pub fn print(scores: &[Score]) {
     by_record(scores);
 }
 
+/// One line a case, comma-separated.
+pub fn print_cases(scores: &[Score]) {
+    println!("file,group,operator,n,level,even_distance,forecast_error,deviation,best{}", CHOSEN.map(|c| format!(",{c} name,{c} error,{c} predicted,{c} bound")).concat());
+    for s in scores {
+        let best = s.fixed[..HINDSIGHT].iter().map(|e| e.1).fold(f64::INFINITY, f64::min);
+        let chosen = s.chosen.iter().map(|c| format!(",{},{:e},{:e},{:e}", c.name, c.error, c.edge.predicted_error, c.edge.bound));
+        println!(
+            "{},{},{},{},{:?},{:e},{:e},{:e},{best:e}{}",
+            s.file, s.group, s.operator, s.len, s.level, s.even_distance, s.chosen[1].edge.predicted_error, s.chosen[1].deviation, chosen.collect::<String>()
+        );
+    }
+}
+
 fn regret(score: &Score, error: f64) -> f64 {
     let best = score.fixed[..HINDSIGHT].iter().map(|e| e.1).fold(f64::INFINITY, f64::min);
     (error / best).ln()

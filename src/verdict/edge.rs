@@ -7,14 +7,13 @@ use crate::forecast::Forecast;
 
 use super::difference::Difference;
 
-/// The bound is this many predicted errors where the reach is shorter than the record.
-const BOUND: f64 = 2.5;
-/// The same where the reach exceeds the record.
-const BOUND_LONG_REACH: f64 = 4.0;
-/// With such a reach the share of the squared distance from even to forecast that is added to the squared error.
-const LONG_REACH_SHARE: f64 = 0.05;
+/// The bound is this many predicted errors of the forecast, so that the poorest operator and length of the trial records
+/// are still covered in 95 of 100 cases.
+const BOUND: f64 = 2.6;
+/// The share of a symmetric extension's own distance from the forecast that counts with the predicted error.
+const DISTANCE_SHARE: f64 = 0.5;
 /// Standard deviations added to the distance from the forecast when the ends are trimmed.
-const TRUST: f64 = 2.0;
+const TRUST: f64 = 2.5;
 /// The same where the forecast itself is the extension.
 const TRUST_FORECAST: f64 = 3.0;
 /// An error is outside tolerance when this share of it already is.
@@ -83,12 +82,10 @@ impl Scene<'_> {
         let distance = difference.map_or(0.0, |d| d.rms(self.zone));
         let own = self.forecast_error();
         let predicted_error = own.hypot(distance);
-        let bound = if self.reach_exceeds_record {
-            let widened = own.hypot(LONG_REACH_SHARE.sqrt() * self.even_distance);
-            (BOUND_LONG_REACH * widened).hypot(distance)
-        } else {
-            (BOUND * own).hypot(distance)
-        };
+        // Where the reach exceeds the record, the error far outside counts as well: it is of the size by which even and
+        // forecast differ.
+        let far = if self.reach_exceeds_record { self.even_distance } else { 0.0 };
+        let bound = BOUND * own.hypot(far).hypot(DISTANCE_SHARE * distance);
         let adequacy = if bound <= self.tolerance {
             Adequacy::Within
         } else if OUTSIDE * predicted_error > self.tolerance {
