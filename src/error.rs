@@ -20,6 +20,8 @@ pub enum Kind {
     Io,
     /// Interrupted; run it again (exit code 75).
     Interrupted,
+    /// The reader of an output pipe went away: the program ends quietly (exit code 0).
+    Closed,
 }
 
 /// An error: where, then what, then what would do.
@@ -112,7 +114,8 @@ impl std::error::Error for Error {}
 
 impl From<std::io::Error> for Error {
     fn from(error: std::io::Error) -> Self {
-        Self::io(error.to_string())
+        let kind = if error.kind() == std::io::ErrorKind::BrokenPipe { Kind::Closed } else { Kind::Io };
+        Self::new(kind, error.to_string())
     }
 }
 

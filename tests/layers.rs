@@ -17,8 +17,7 @@ fn sources() -> Files {
                 folders.push(path);
             } else if path.extension().is_some_and(|e| e == "rs") {
                 let inside = path.strip_prefix(&root).expect("inside src").with_extension("");
-                let mut parts: Vec<String> =
-                    inside.iter().map(|part| part.to_string_lossy().into_owned()).collect();
+                let mut parts: Vec<String> = inside.iter().map(|part| part.to_string_lossy().into_owned()).collect();
                 if parts.last().is_some_and(|last| last == "mod") {
                     parts.pop();
                 }
@@ -31,10 +30,7 @@ fn sources() -> Files {
 
 /// Top-level modules in the order of the data.
 fn order(lib: &str) -> Vec<String> {
-    lib.lines()
-        .filter_map(|line| line.trim().strip_prefix("pub mod ")?.strip_suffix(';'))
-        .map(str::to_owned)
-        .collect()
+    lib.lines().filter_map(|line| line.trim().strip_prefix("pub mod ")?.strip_suffix(';')).map(str::to_owned).collect()
 }
 
 /// The text without comments and without what follows `#[cfg(test)]`: tests may look anywhere.
@@ -128,7 +124,8 @@ fn faults(files: &Files) -> Vec<String> {
     for (module, text) in files {
         let top = module.split("::").next().unwrap_or_default();
         if top == "cli" || module == "main" {
-            if code_of(text).contains("crate::") && mentioned(module, &code_of(text)).iter().any(|m| order.contains(m)) {
+            if code_of(text).contains("crate::") && mentioned(module, &code_of(text)).iter().any(|m| order.contains(m))
+            {
                 faults.push(format!("{module} reaches into the library by crate:: instead of endgrain::"));
             }
         } else if module != "lib" && rank(top).is_none() {

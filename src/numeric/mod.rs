@@ -2,9 +2,16 @@
 
 pub mod analogue;
 pub mod autoregression;
+pub mod autoregressive_gap;
+pub mod compensated;
 pub mod covariance;
 pub mod fourier;
 pub mod noise;
 pub mod polynomial;
+pub mod quantile;
 pub mod quantum;
+pub mod rational;
+pub mod running_median;
+pub mod spline;
+pub mod strip;
 pub mod sum;

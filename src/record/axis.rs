@@ -3,6 +3,7 @@
 use serde::Serialize;
 
 use crate::error::{Error, Result};
+use crate::numeric::rational::Rational;
 use crate::unit::Unit;
 
 /// A uniform axis in time (`s`, `ms`) or length (`m`, `mm`).
@@ -13,6 +14,8 @@ pub struct Axis {
     step: f64,
     len: usize,
     interval: Option<[f64; 2]>,
+    rate: Option<Rational>,
+    spacing: Option<Spacing>,
     source: RateSource,
     epoch: Option<String>,
 }
@@ -29,6 +32,32 @@ pub enum RateSource {
     Stamps,
 }
 
+/// What a column of stamps says about the spacing of its rows.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash, Serialize)]
+#[serde(rename_all = "snake_case")]
+pub enum Spacing {
+    /// Even to the print resolution of the stamps.
+    Uniform,
+    /// Even but for deviations too small to matter.
+    NearUniform,
+    /// The rate wanders slowly.
+    Drifting,
+    /// The clock jumped by a part of a step.
+    Slipped,
+    /// Single stamps scatter by up to half a step.
+    Jittered,
+    /// No even grid fits.
+    Irregular,
+    /// The stamps are too coarse to tell.
+    Unresolved,
+    /// A stamp repeats the one before it.
+    Repeated,
+    /// A stamp lies before the one above it.
+    Backwards,
+    /// Fewer than two rows: there is no step to see.
+    Single,
+}
+
 impl Axis {
     /// An axis of `len` samples: first stamp `start` and `step` in `unit`.
     ///
@@ -42,7 +71,7 @@ impl Axis {
         if !(step.is_finite() && step > 0.0 && start.is_finite()) {
             return Err(Error::unsupported(format!("a sampling step of {step} {unit} makes no axis")));
         }
-        Ok(Axis { unit, start, step, len, interval: None, source, epoch: None })
+        Ok(Axis { unit, start, step, len, interval: None, rate: None, spacing: None, source, epoch: None })
     }
 
     /// A time axis from a sampling rate in Hz, starting at 0 s.
@@ -57,6 +86,29 @@ impl Axis {
     #[must_use]
     pub fn with_interval(mut self, interval: [f64; 2]) -> Axis {
         self.interval = Some(interval);
+        self
+    }
+
+    /// The same axis with its rate as a fraction of samples per second or metre; the step follows it.
+    #[must_use]
+    pub fn with_rate(mut self, rate: Rational) -> Axis {
+        let scale = self.unit.meaning().map_or(1.0, |m| m.scale);
+        self.step = rate.reciprocal().value() / scale;
+        self.rate = Some(rate);
+        self
+    }
+
+    /// The same axis with another first stamp, in the axis unit.
+    #[must_use]
+    pub fn with_start(mut self, start: f64) -> Axis {
+        self.start = start;
+        self
+    }
+
+    /// The same axis with what the stamps say about the spacing of the rows.
+    #[must_use]
+    pub fn with_spacing(mut self, spacing: Spacing) -> Axis {
+        self.spacing = Some(spacing);
         self
     }
 
@@ -111,12 +163,28 @@ impl Axis {
 
     /// Stamp of sample `n`, in the axis unit.
     pub fn stamp(&self, n: usize) -> f64 {
-        self.start + n as f64 * self.step
+        match self.rate {
+            // One rounding instead of two: sample 3 at 10 Hz stands at 0.3, not at 0.30000000000000004.
+            Some(rate) if self.unit.label() == "s" || self.unit.label() == "m" => {
+                self.start + n as f64 * rate.denominator as f64 / rate.numerator as f64
+            }
+            _ => self.start + n as f64 * self.step,
+        }
     }
 
     /// The hard interval for the step, in the axis unit, where stamps gave one.
     pub fn interval(&self) -> Option<[f64; 2]> {
         self.interval
+    }
+
+    /// The rate as a fraction, samples per second or metre, where it is a plain one.
+    pub fn rate(&self) -> Option<Rational> {
+        self.rate
+    }
+
+    /// What the stamps say about the spacing of the rows, where there are stamps.
+    pub fn spacing(&self) -> Option<Spacing> {
+        self.spacing
     }
 
     /// Where the step came from.

@@ -1,6 +1,7 @@
 //! A record: channels of uniform, finite samples over one axis, and what was read before it became one.
 
 mod axis;
+mod lines;
 mod raw;
 mod source;
 
@@ -10,9 +11,10 @@ use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::unit::Unit;
 
-pub use axis::{Axis, RateSource};
+pub use axis::{Axis, RateSource, Spacing};
+pub use lines::RowLines;
 pub use raw::{RawChannel, RawRecord, Stamps, StatedRate};
-pub use source::{ColumnRole, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
+pub use source::{ColumnRole, Encoding, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
 
 /// Channels over one axis. Every sample is finite, every channel has the axis' length, and there is at least one of each.
 #[derive(Debug, Clone)]
@@ -52,7 +54,8 @@ impl Record {
         if names.len() != channels || units.len() != channels || axis.len() != len {
             return Err(Error::usage("names, units, axis and samples differ in number"));
         }
-        let samples = samples.as_standard_layout().into_owned();
+        // Copies only what is not contiguous already: a record may fill half the memory.
+        let samples = if samples.is_standard_layout() { samples } else { samples.as_standard_layout().into_owned() };
         for (name, row) in names.iter().zip(samples.rows()) {
             if let Some(n) = row.iter().position(|v| !v.is_finite()) {
                 let place = Place { sample: Some(n as u64), ..Place::channel(name) };

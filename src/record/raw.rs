@@ -1,6 +1,7 @@
 //! What a reader found, before any check of spacing or finiteness: the audit sees this, nothing below does.
 
 use crate::error::Finding;
+use crate::place::Place;
 use crate::record::{Layout, Source};
 use crate::unit::Unit;
 
@@ -23,6 +24,27 @@ pub struct RawRecord {
     pub layout: Layout,
 }
 
+impl RawRecord {
+    /// Where sample `row` (from 0) of channel `channel` stands: file, line and column of a text file, channel, sample.
+    pub fn place(&self, channel: usize, row: usize) -> Place {
+        let name = self.channels.get(channel).map(|channel| channel.name.clone());
+        let field = match &self.layout {
+            Layout::Table(table) => table.field_of(channel).map(|field| field as u64 + 1),
+            Layout::Wave(_) => None,
+        };
+        Place { column: field, channel: name, sample: Some(row as u64), ..self.row_place(row) }
+    }
+
+    /// Where row `row` (from 0) stands: file, and line of a text file.
+    pub fn row_place(&self, row: usize) -> Place {
+        let line = match &self.layout {
+            Layout::Table(table) => table.lines.line(row as u64),
+            Layout::Wave(_) => None,
+        };
+        Place { line, ..Place::file(&self.source.path) }
+    }
+}
+
 /// One channel as read.
 #[derive(Debug, Clone)]
 pub struct RawChannel {
@@ -41,6 +63,9 @@ pub struct RawChannel {
 }
 
 /// A column of stamps: integer ticks of a stated size, so that an epoch in nanoseconds loses nothing.
+///
+/// `ticks` has one entry a row and starts with 0. Nothing else holds: stamps may repeat, go back or leave gaps. A clock
+/// that restarts at midnight has already been unwrapped, with a remark.
 #[derive(Debug, Clone)]
 pub struct Stamps {
     /// Name of the column.
@@ -51,13 +76,14 @@ pub struct Stamps {
     pub tick: f64,
     /// Ticks since `first`.
     pub ticks: Vec<i64>,
-    /// The first stamp, in `unit`, as exactly as f64 allows.
+    /// The first stamp, in `unit`, as exactly as f64 allows: seconds since 1970 for dates, since midnight for clock times.
     pub first: f64,
-    /// Print resolution in `unit`: the coarsest step the text can show.
+    /// Print resolution in `unit`: the step of the last printed digit at the largest stamp.
     pub resolution: f64,
-    /// Civil time of the first stamp where the column holds dates (RFC 3339).
+    /// Civil time of the first stamp where the column holds dates or an epoch (RFC 3339, in UTC; without `Z` where the
+    /// file tells no offset); `None` where day and month are ambiguous.
     pub civil: Option<String>,
-    /// Line of each row where it is not `first_line + row`.
+    /// Line of the first row. Other rows: `RawRecord::row_place`, since blank lines and dropped rows make gaps.
     pub first_line: u64,
 }
 

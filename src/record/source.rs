@@ -5,6 +5,8 @@ use std::sync::Arc;
 
 use serde::{Deserialize, Serialize};
 
+use super::RowLines;
+
 /// A file format that is read and written.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "snake_case")]
@@ -38,28 +40,59 @@ pub enum Layout {
 }
 
 /// The layout of a delimited text file: enough to write it back with untouched fields kept byte for byte.
+///
+/// Offsets and `head` count in the decoded text: UTF-8 without a byte order mark.
 #[derive(Debug, Clone)]
 pub struct TableLayout {
     /// The text again, to copy untouched fields from.
     pub text: TextSource,
-    /// Field separator; blank stands for runs of blanks.
+    /// How the text is stored.
+    pub encoding: Encoding,
+    /// Field separator; blank stands for runs of blanks and tabs.
     pub delimiter: u8,
     /// Decimal mark, `.` or `,`.
     pub decimal: u8,
-    /// Text that precedes the data block, as decoded UTF-8 (preamble, header, units row), complete lines with their ends.
+    /// Mark between groups of three digits, where one was declared.
+    pub thousands: Option<u8>,
+    /// Text that precedes the data block (preamble, header, units row): complete lines with their ends.
     pub head: String,
     /// Line of `head` (from 0) that holds the column names, where there is one.
     pub header_line: Option<usize>,
     /// Line of `head` (from 0) that holds the units, where they stand on a row of their own.
     pub units_line: Option<usize>,
-    /// Byte offset in the decoded text at which the data block starts.
+    /// Byte offset at which the data block starts: the length of `head`.
     pub data_start: u64,
     /// Line number (from 1) of the first data row.
     pub data_line: u64,
-    /// Role of each column of the data block.
+    /// Role of each field of a data row, in order; a field that is always empty after a trailing delimiter counts.
     pub columns: Vec<ColumnRole>,
+    /// Line of each sample. Other lines of the data block (blank, dropped, footer) hold no sample.
+    pub lines: RowLines,
     /// Line end of the data block: `\n`, `\r\n` or `\r`.
     pub newline: &'static str,
+}
+
+impl TableLayout {
+    /// Field (from 0) of the data rows that holds channel `channel` of the raw record.
+    pub fn field_of(&self, channel: usize) -> Option<usize> {
+        self.columns.iter().position(|role| *role == ColumnRole::Channel(channel))
+    }
+}
+
+/// How text is stored.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "snake_case")]
+pub enum Encoding {
+    /// UTF-8 without a byte order mark; plain ASCII too.
+    Utf8,
+    /// UTF-8 with a byte order mark.
+    Utf8Marked,
+    /// UTF-16, low byte first.
+    Utf16Le,
+    /// UTF-16, high byte first.
+    Utf16Be,
+    /// Windows-1252, which includes Latin-1.
+    Windows1252,
 }
 
 /// What a column of a table is.
@@ -79,7 +112,7 @@ pub enum TextSource {
     /// From the file; its fingerprint must still agree.
     File(PathBuf),
     /// From memory, as decoded UTF-8 (standard input, small files).
-    Held(Arc<[u8]>),
+    Held(Arc<Vec<u8>>),
 }
 
 /// The layout of a WAV file.

@@ -1,0 +1,94 @@
+//! `condition`: the main job on one record.
+
+use std::path::PathBuf;
+use std::process::ExitCode;
+
+use clap::{Arg, ArgAction, ArgMatches, Command};
+use endgrain::error::{Error, Result};
+use endgrain::job::{self, Target};
+use endgrain::report;
+use endgrain::settings::Group;
+use endgrain::write::Overwrite;
+
+use crate::cli::{args, exit, stream};
+
+const GROUPS: &[Group] = &[Group::Operators, Group::Stage, Group::Cut, Group::Repair, Group::Input, Group::Output];
+
+const EXAMPLES: &str = "\
+Examples:
+  endgrain condition log.csv --lowpass 40Hz -o clean.csv
+  endgrain condition log.csv --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.csv
+  endgrain condition log.csv --channel ax --integrate 1 --highpass 0.5Hz -o velocity.csv
+  endgrain condition profile.csv --lowpass 0.8mm --shape gaussian -o waviness.csv
+  endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
+  logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
+  endgrain condition log.csv --lowpass 40Hz --dry-run
+";
+
+/// The subcommand.
+pub fn command() -> Command {
+    args::subcommand("condition", "Extend, transform, filter, reconstruct and write a record in its own format", EXAMPLES, GROUPS)
+        .arg(Arg::new("input").value_name("FILE").required(true).help("The record: CSV or WAV, '-' for standard input"))
+        .arg(
+            Arg::new("output")
+                .short('o')
+                .long("output")
+                .value_name("OUT")
+                .required_unless_present("dry-run")
+                .help_heading(Group::Output.heading())
+                .help("Where the result goes, '-' for standard output; the JSON sidecar is OUT with .json appended"),
+        )
+        .arg(
+            Arg::new("force")
+                .long("force")
+                .action(ArgAction::SetTrue)
+                .help_heading(Group::Output.heading())
+                .help("Replace files that are in the way"),
+        )
+        .arg(
+            Arg::new("dry-run")
+                .long("dry-run")
+                .action(ArgAction::SetTrue)
+                .help_heading(Group::Output.heading())
+                .help("Print the resolved plan and the gain at and around each corner; write nothing"),
+        )
+        .after_help(exit::HELP)
+}
+
+/// Runs it.
+///
+/// # Errors
+/// Whatever stops the job.
+pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
+    let settings = args::settings(matches, GROUPS)?;
+    let Some(file) = matches.get_one::<String>("input") else { return Err(Error::usage("no input file")) };
+    let json = matches.get_one::<String>("json").map(PathBuf::from);
+    let quiet = matches.get_flag("quiet");
+    if matches.get_flag("dry-run") {
+        let plan = job::plan(stream::input(file)?, &settings)?;
+        stream::print(&report::plan_text(&plan))?;
+        return Ok(ExitCode::SUCCESS);
+    }
+    let Some(output) = matches.get_one::<String>("output").map(PathBuf::from) else {
+        return Err(Error::usage("no output").remedy("name one with -o OUT"));
+    };
+    let to_stdout = stream::is_stdout(&output);
+    if to_stdout && json.as_deref().is_some_and(stream::is_stdout) {
+        return Err(Error::usage("the record and the JSON cannot both go to standard output").remedy("give one of them a file name"));
+    }
+    let overwrite = if matches.get_flag("force") { Overwrite::Force } else { Overwrite::Refuse };
+    let json_file = json.as_deref().filter(|path| !stream::is_stdout(path));
+    let target = if to_stdout {
+        Target::stream(Box::new(std::io::stdout()), json_file, overwrite)
+    } else {
+        Target::file(&output, json_file, overwrite)
+    };
+    let report = job::condition(stream::input(file)?, target, &settings)?;
+    if json.as_deref().is_some_and(stream::is_stdout) {
+        stream::print(&report::to_json(&report)?)?;
+    }
+    if !quiet {
+        stream::tell(&report::summary(&report));
+    }
+    Ok(ExitCode::SUCCESS)
+}

@@ -1,0 +1,152 @@
+//! One pass of the chain over one channel: baseline off, transform, multiply, back, baseline carried and added.
+
+use crate::baseline::Baseline;
+use crate::basis::{Planner, series};
+use crate::ends::{Ends, Parity};
+use crate::error::Result;
+use crate::numeric::polynomial::Polynomial;
+use crate::numeric::sum;
+use crate::operator::Pass;
+
+/// What a pass made of a record.
+#[derive(Debug, Clone)]
+pub struct Passed {
+    /// The output at the record's own sample positions, per step^turns (see `apply`).
+    pub output: Vec<f64>,
+    /// Relative difference between the energy of the remainder and that of its coefficients: rounding only.
+    pub parseval: f64,
+}
+
+/// Applies `pass` to `samples` under `ends` after splitting `baseline` off.
+///
+/// Derivatives are per step and integrals in steps: the caller multiplies by step^(-turns). Integrals start at rest: the
+/// first is zero at the left mirror, and so is the second.
+///
+/// # Errors
+/// `Unsupported` for a record of no samples.
+pub fn apply(samples: &[f64], ends: Ends, baseline: &Baseline, pass: &Pass, planner: &Planner) -> Result<Passed> {
+    let len = samples.len();
+    let plan = planner.plan(ends, len)?;
+    let first = ends.first_position();
+    let position = |n: usize| n as f64 + first;
+
+    let split = baseline.polynomial();
+    let mut work: Vec<f64> = if split.is_zero() {
+        samples.to_vec()
+    } else {
+        samples.iter().enumerate().map(|(n, v)| v - split.at(position(n))).collect()
+    };
+    let energy = weighted_energy(&work, ends);
+    let mut scratch = vec![0.0; plan.scratch_len()];
+    plan.forward(&mut work, &mut scratch);
+    let kept = sum::sum_of_squares(&work);
+    let parseval = if energy > 0.0 { (kept - energy).abs() / energy } else { 0.0 };
+
+    let turns = pass.turns();
+    let mut carried = split.clone();
+    if turns < 0 && has_constant(ends) {
+        // The constant has no integral in the basis: it joins the baseline, where it has one.
+        carried = carried.plus_constant(work[0] / constant_norm(ends, len));
+        work[0] = 0.0;
+    }
+    multiply(&mut work, ends, pass);
+    let start = if turns < 0 { start_at_rest(&work, ends, turns) } else { [0.0; 2] };
+    if turns.rem_euclid(2) == 1 {
+        plan.inverse_turned(&mut work, &mut scratch);
+    } else {
+        plan.inverse(&mut work, &mut scratch);
+    }
+    let polynomial = turned(pass.carry(&carried), turns).plus_constant(-start[0]).plus_slope(-start[1]);
+    if !polynomial.is_zero() {
+        for (n, value) in work.iter_mut().enumerate() {
+            *value += polynomial.at(position(n));
+        }
+    }
+    Ok(Passed { output: work, parseval })
+}
+
+/// Sum of w x^2 with the weight 1/2 on even whole-sample mirrors.
+fn weighted_energy(samples: &[f64], ends: Ends) -> f64 {
+    let last = samples.len() - 1;
+    let mut energy = sum::sum_of_squares(samples);
+    for n in if last == 0 { vec![0] } else { vec![0, last] } {
+        energy -= (1.0 - ends.weight(samples.len(), n)) * samples[n] * samples[n];
+    }
+    energy
+}
+
+/// True where function 0 of the basis is the constant.
+fn has_constant(ends: Ends) -> bool {
+    matches!(ends, Ends::Periodic | Ends::Mirror { left: Parity::Even, right: Parity::Even, .. })
+}
+
+/// The weighted norm of the constant 1: coefficient 0 divided by it is the mean.
+fn constant_norm(ends: Ends, len: usize) -> f64 {
+    let ends_off = (1.0 - ends.weight(len, 0)) + if len > 1 { 1.0 - ends.weight(len, len - 1) } else { 0.0 };
+    (len as f64 - ends_off).sqrt()
+}
+
+/// True where basis function `k` is a cosine about the left mirror.
+fn is_cosine(ends: Ends, k: usize) -> bool {
+    match ends {
+        Ends::Periodic => k == 0 || k % 2 == 1,
+        Ends::Mirror { left, .. } => left == Parity::Even,
+    }
+}
+
+/// Multiplies every coefficient by the gain and by the power of angular frequency (per step) that the turns ask for.
+///
+/// A derivative takes a cosine to -omega sine and a sine to +omega cosine; an integral takes a cosine to +1/omega sine
+/// and a sine to -1/omega cosine; two of either multiply by -omega^2 or -1/omega^2.
+fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
+    let len = coefficients.len();
+    let turns = pass.turns();
+    let (mut last_frequency, mut last_gain) = (f64::NAN, 0.0);
+    for (k, c) in coefficients.iter_mut().enumerate() {
+        let frequency = ends.frequency(len, k);
+        // Periodic functions come in pairs of one frequency: the gain is worked out once.
+        if frequency != last_frequency {
+            let omega = std::f64::consts::TAU * frequency;
+            last_gain = match turns {
+                0 => pass.gain(frequency),
+                _ if frequency == 0.0 => 0.0,
+                _ => pass.gain(frequency) * omega.powi(turns),
+            };
+            last_frequency = frequency;
+        }
+        let sign = match turns {
+            0 => 1.0,
+            2 | -2 => -1.0,
+            1 if is_cosine(ends, k) => -1.0,
+            -1 if !is_cosine(ends, k) => -1.0,
+            _ => 1.0,
+        };
+        *c *= sign * last_gain;
+    }
+}
+
+/// Constant and slope that the integrated series has at the left mirror, to be taken off so that it starts at rest.
+fn start_at_rest(coefficients: &[f64], ends: Ends, turns: i32) -> [f64; 2] {
+    let len = coefficients.len();
+    if turns == -1 {
+        return [series::turned_value_at(ends, len, coefficients, 0.0), 0.0];
+    }
+    // Slope of the second integral at x = 0 = value of the first: a sine has slope omega there, a cosine none.
+    let slopes: Vec<f64> = coefficients
+        .iter()
+        .enumerate()
+        .map(|(k, c)| {
+            let omega = std::f64::consts::TAU * ends.frequency(len, k);
+            if is_cosine(ends, k) { -omega * c } else { omega * c }
+        })
+        .collect();
+    [series::value_at(ends, len, coefficients, 0.0), series::turned_value_at(ends, len, &slopes, 0.0)]
+}
+
+/// The polynomial after `turns` derivatives (positive) or integrals from x = 0 (negative).
+fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
+    for _ in 0..turns.abs() {
+        polynomial = if turns > 0 { polynomial.derivative() } else { polynomial.integral() };
+    }
+    polynomial
+}

@@ -1,0 +1,384 @@
+//! Rows of a block as numbers: the fast path for plain fields, and the general one for quoted fields.
+
+use super::field::{self, Dialect, Field, grouped};
+use super::missing::Missing;
+use super::ticks::{Form, Ticks};
+use super::{number, shown};
+use crate::record::RowLines;
+
+/// What to do with one field of every row.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Task {
+    /// Pass over it.
+    Skip,
+    /// Read it as a number of that channel.
+    Value(usize),
+    /// Read it as the stamp.
+    Stamp,
+    /// It must be empty: the field after a trailing separator.
+    Empty,
+}
+
+/// How to read the rows of one file.
+#[derive(Debug, Clone)]
+pub(super) struct Plan {
+    pub(super) dialect: Dialect,
+    pub(super) newline: u8,
+    /// One task a field.
+    pub(super) tasks: Vec<Task>,
+    /// Number of channels.
+    pub(super) channels: usize,
+    pub(super) missing: Missing,
+    /// What the stamps are, where there are any.
+    pub(super) form: Option<Form>,
+}
+
+/// Rows of consecutive lines.
+#[derive(Debug, Clone)]
+pub(super) struct Rows {
+    /// Channels x rows; NaN where missing.
+    pub(super) values: Vec<Vec<f64>>,
+    /// For each channel the rows without a value, and the first spelling.
+    pub(super) missing: Vec<(Vec<usize>, Option<String>)>,
+    pub(super) ticks: Option<Ticks>,
+    /// Line of each row, the first line of the text being 0.
+    pub(super) lines: RowLines,
+    /// Lines read.
+    pub(super) line_count: u64,
+    /// Lines of NUL bytes passed over.
+    pub(super) nul_lines: Vec<u64>,
+}
+
+/// Where reading stopped.
+#[derive(Debug, Clone)]
+pub(super) struct Fault {
+    /// Byte of the block at which the line starts.
+    pub(super) byte: usize,
+    /// Field (from 0), where one is at fault.
+    pub(super) field: Option<usize>,
+    pub(super) cause: Cause,
+}
+
+/// Why a line is no row.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub(super) enum Cause {
+    /// Another number of fields.
+    Fields(usize),
+    /// A field that should be a number, shortened for people.
+    NotANumber(String),
+    /// A number with undeclared marks between groups of digits.
+    Grouped(String),
+    /// A number beyond the range of floats.
+    TooLarge(String),
+    /// A field that should be a stamp.
+    NotAStamp(String),
+    /// Text after a trailing separator that ends all other rows.
+    NotEmpty(String),
+    /// So many NUL bytes.
+    Nul(usize),
+    /// A quote, which the fast path does not read.
+    Quote,
+    /// A quote that is never closed.
+    OpenQuote,
+}
+
+type Outcome = std::result::Result<(), (Option<usize>, Cause)>;
+
+impl Plan {
+    /// Reads a block of whole lines up to the first fault. With `quoted`, fields may be quoted and hold line ends.
+    pub(super) fn read(&self, block: &[u8], quoted: bool) -> (Rows, Option<Fault>) {
+        let mut rows = Rows::new(self);
+        let fault = match (quoted, self.dialect.delimiter) {
+            (true, _) => self.read_quoted(block, &mut rows),
+            (false, b' ') => self.read_plain::<true>(block, &mut rows),
+            (false, _) => self.read_plain::<false>(block, &mut rows),
+        };
+        (rows, fault)
+    }
+
+    fn read_plain<const BLANKS: bool>(&self, block: &[u8], rows: &mut Rows) -> Option<Fault> {
+        let (mut at, mut line_number, mut run_start, mut row) = (0, 0_u64, 0_u64, 0_usize);
+        let mut fault = None;
+        while at < block.len() {
+            let end = memchr::memchr(self.newline, &block[at..]).map_or(block.len(), |length| at + length);
+            let line = if BLANKS { block[at..end].trim_ascii_end() } else { trim_end(&block[at..end]) };
+            if line.is_empty() || line.iter().all(u8::is_ascii_whitespace) {
+                rows.lines.push_consecutive(run_start, line_number - run_start);
+                run_start = line_number + 1;
+            } else if let Err((field, cause)) = self.plain_row::<BLANKS>(line, row, rows) {
+                rows.lines.push_consecutive(run_start, line_number - run_start);
+                run_start = line_number + 1;
+                rows.truncate(row);
+                match self.excused(line, cause) {
+                    Ok(()) => rows.nul_lines.push(line_number),
+                    Err(Cause::Nul(count)) => {
+                        fault = Some(Fault { byte: at, field, cause: Cause::Nul(count) });
+                        break;
+                    }
+                    Err(cause) => {
+                        let cause = if line.contains(&b'"') { Cause::Quote } else { cause };
+                        fault = Some(Fault { byte: at, field, cause });
+                        break;
+                    }
+                }
+            } else {
+                row += 1;
+            }
+            line_number += 1;
+            at = end + 1;
+        }
+        if fault.is_none() {
+            rows.lines.push_consecutive(run_start, line_number - run_start);
+        }
+        rows.line_count = line_number;
+        fault
+    }
+
+    /// Reads one row of plain fields.
+    #[inline]
+    fn plain_row<const BLANKS: bool>(&self, line: &[u8], row: usize, rows: &mut Rows) -> Outcome {
+        let delimiter = self.dialect.delimiter;
+        let separates = |byte: u8| if BLANKS { byte == b' ' || byte == b'\t' } else { byte == delimiter };
+        let mut at = 0;
+        for (index, task) in self.tasks.iter().enumerate() {
+            let mut start = at;
+            while start < line.len() && (line[start] == b' ' || line[start] == b'\t' && (BLANKS || delimiter != b'\t'))
+            {
+                start += 1;
+            }
+            let rest = &line[start..];
+            let scanned = match *task {
+                Task::Value(channel) => {
+                    number::scan(rest, self.dialect.decimal).filter(|n| ends(rest, n.len, &separates)).map(|n| {
+                        let value = number::value(&n, rest, self.dialect.decimal);
+                        self.take_value(channel, value, &rest[..n.len], row, rows).map(|()| n.len)
+                    })
+                }
+                Task::Stamp if self.form == Some(Form::Number) => rows.ticks.as_mut().and_then(|ticks| {
+                    let length = ticks.push_number(rest)?;
+                    if ends(rest, length, &separates) {
+                        return Some(Ok(length));
+                    }
+                    ticks.truncate(row);
+                    None
+                }),
+                _ => None,
+            };
+            let length = match scanned {
+                Some(taken) => taken.map_err(|cause| (Some(index), cause))?,
+                None => {
+                    let length = rest.iter().position(|&byte| separates(byte)).unwrap_or(rest.len());
+                    self.take_text(*task, rest[..length].trim_ascii(), row, rows)
+                        .map_err(|cause| (Some(index), cause))?;
+                    length
+                }
+            };
+            at = start + length;
+            while at < line.len() && !separates(line[at]) {
+                at += 1; // blanks, as `ends` made sure
+            }
+            let last = index + 1 == self.tasks.len();
+            if last != (at >= line.len()) {
+                return Err((None, Cause::Fields(field::fields(line, delimiter).len())));
+            }
+            at += 1;
+        }
+        Ok(())
+    }
+
+    fn read_quoted(&self, block: &[u8], rows: &mut Rows) -> Option<Fault> {
+        let mut fields: Vec<Field<'_>> = Vec::with_capacity(self.tasks.len());
+        let (mut at, mut row) = (0, 0);
+        while at < block.len() {
+            let end = field::split(block, at, self.dialect.delimiter, self.newline, &mut fields);
+            let Some(end) = end else {
+                return Some(Fault { byte: at, field: None, cause: Cause::OpenQuote });
+            };
+            let record = block[at..end].trim_ascii();
+            if !record.is_empty() {
+                match self.quoted_row(&fields, row, rows) {
+                    Ok(()) => {
+                        rows.lines.push(rows.line_count);
+                        row += 1;
+                    }
+                    Err((field, cause)) => {
+                        rows.truncate(row);
+                        match self.excused(record, cause) {
+                            Ok(()) => rows.nul_lines.push(rows.line_count),
+                            Err(cause) => return Some(Fault { byte: at, field, cause }),
+                        }
+                    }
+                }
+            }
+            let ended = block[at..end].last() == Some(&self.newline);
+            rows.line_count += memchr::memchr_iter(self.newline, &block[at..end]).count() as u64 + u64::from(!ended);
+            at = end;
+        }
+        None
+    }
+
+    fn quoted_row(&self, fields: &[Field<'_>], row: usize, rows: &mut Rows) -> Outcome {
+        if fields.len() != self.tasks.len() {
+            return Err((None, Cause::Fields(fields.len())));
+        }
+        for (index, (task, field)) in self.tasks.iter().zip(fields).enumerate() {
+            let text: &[u8] = &field.text;
+            let whole = match (*task, number::scan(text, self.dialect.decimal)) {
+                (Task::Value(channel), Some(n)) if n.len == text.len() => {
+                    let value = number::value(&n, text, self.dialect.decimal);
+                    Some(self.take_value(channel, value, text, row, rows))
+                }
+                _ => None,
+            };
+            whole.unwrap_or_else(|| self.take_text(*task, text, row, rows)).map_err(|cause| (Some(index), cause))?;
+        }
+        Ok(())
+    }
+
+    #[inline]
+    fn take_value(
+        &self,
+        channel: usize,
+        value: f64,
+        text: &[u8],
+        row: usize,
+        rows: &mut Rows,
+    ) -> std::result::Result<(), Cause> {
+        if self.missing.sentinel(value) {
+            rows.miss(channel, row, text);
+        } else if value.is_finite() {
+            rows.values[channel].push(value);
+        } else {
+            return Err(Cause::TooLarge(shown(text)));
+        }
+        Ok(())
+    }
+
+    /// A field that is no plain number.
+    fn take_text(&self, task: Task, text: &[u8], row: usize, rows: &mut Rows) -> std::result::Result<(), Cause> {
+        match task {
+            Task::Skip => Ok(()),
+            Task::Empty if text.is_empty() => Ok(()),
+            Task::Empty => Err(Cause::NotEmpty(shown(text))),
+            Task::Stamp => {
+                let pushed = rows.ticks.as_mut().and_then(|ticks| match ticks.form {
+                    Form::Number => {
+                        let plain = self.ungrouped(text)?;
+                        let whole = ticks.push_number(&plain)? == plain.len();
+                        if !whole {
+                            ticks.truncate(row);
+                        }
+                        whole.then_some(())
+                    }
+                    _ => ticks.push_civil(text),
+                });
+                pushed.ok_or_else(|| Cause::NotAStamp(shown(text)))
+            }
+            Task::Value(channel) => match field::number(text, self.dialect) {
+                Some(value) => self.take_value(channel, value, text, row, rows),
+                None if self.missing.spelling(text) => {
+                    rows.miss(channel, row, text);
+                    Ok(())
+                }
+                None if grouped(text, self.dialect.decimal) => Err(Cause::Grouped(shown(text))),
+                None => Err(Cause::NotANumber(shown(text))),
+            },
+        }
+    }
+
+    /// The text without declared marks between groups of digits.
+    fn ungrouped(&self, text: &[u8]) -> Option<Vec<u8>> {
+        field::number(text, self.dialect)?;
+        Some(text.iter().copied().filter(|&byte| Some(byte) != self.dialect.thousands).collect())
+    }
+
+    /// What to make of a faulty line: NUL bytes explain it better than what they led to. `Ok` when the line is a declared
+    /// loss; without stamps nobody could tell how long it is.
+    fn excused(&self, line: &[u8], cause: Cause) -> std::result::Result<(), Cause> {
+        let nuls = memchr::memchr_iter(0, line).count();
+        match cause {
+            _ if nuls > 0 && self.missing.nul_rows() && self.form.is_some() => Ok(()),
+            _ if nuls > 0 => Err(Cause::Nul(nuls)),
+            cause => Err(cause),
+        }
+    }
+}
+
+impl Rows {
+    /// No rows yet.
+    pub(super) fn new(plan: &Plan) -> Rows {
+        Rows {
+            values: vec![Vec::new(); plan.channels],
+            missing: vec![(Vec::new(), None); plan.channels],
+            ticks: plan.form.map(|form| Ticks::new(form, plan.dialect.decimal)),
+            lines: RowLines::new(),
+            line_count: 0,
+            nul_lines: Vec::new(),
+        }
+    }
+
+    /// Joins the next rows.
+    pub(super) fn append(&mut self, next: &Rows) {
+        let before = self.lines.rows() as usize;
+        for (values, more) in self.values.iter_mut().zip(&next.values) {
+            values.extend_from_slice(more);
+        }
+        for ((missing, spelling), (more, next_spelling)) in self.missing.iter_mut().zip(&next.missing) {
+            missing.extend(more.iter().map(|row| row + before));
+            if spelling.is_none() {
+                spelling.clone_from(next_spelling);
+            }
+        }
+        if let (Some(ticks), Some(more)) = (&mut self.ticks, &next.ticks) {
+            ticks.append(more);
+        }
+        self.nul_lines.extend(next.nul_lines.iter().map(|line| line + self.line_count));
+        self.lines.append(&next.lines, self.line_count);
+        self.line_count += next.line_count;
+    }
+
+    fn miss(&mut self, channel: usize, row: usize, text: &[u8]) {
+        self.values[channel].push(f64::NAN);
+        let (rows, spelling) = &mut self.missing[channel];
+        rows.push(row);
+        if spelling.is_none() {
+            *spelling = Some(String::from_utf8_lossy(text).into_owned());
+        }
+    }
+
+    /// Drops what a faulty row left behind.
+    fn truncate(&mut self, rows: usize) {
+        self.values.iter_mut().for_each(|values| values.truncate(rows));
+        for (missing, spelling) in &mut self.missing {
+            missing.truncate(missing.partition_point(|&row| row < rows));
+            if missing.is_empty() {
+                *spelling = None;
+            }
+        }
+        if let Some(ticks) = &mut self.ticks {
+            ticks.truncate(rows);
+        }
+    }
+}
+
+/// True when the field that starts `rest` ends after `length` bytes, blanks aside.
+#[inline]
+fn ends(rest: &[u8], length: usize, separates: &impl Fn(u8) -> bool) -> bool {
+    match rest.get(length) {
+        None => true,
+        Some(&byte) if separates(byte) => true,
+        Some(b' ' | b'\t') => {
+            rest[length..].iter().find(|byte| !matches!(byte, b' ' | b'\t')).is_none_or(|&byte| separates(byte))
+        }
+        Some(_) => false,
+    }
+}
+
+#[inline]
+fn trim_end(line: &[u8]) -> &[u8] {
+    let mut end = line.len();
+    while end > 0 && matches!(line[end - 1], b' ' | b'\r' | b'\n') {
+        end -= 1;
+    }
+    &line[..end]
+}

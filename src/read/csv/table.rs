@@ -1,0 +1,89 @@
+//! All rows of the data block, read in blocks side by side and joined in order.
+
+use std::io::Read;
+
+use super::blocks::Blocks;
+use super::ending::settle;
+use super::rows::{Cause, Plan, Rows};
+use crate::error::{Finding, Result};
+use crate::place::Place;
+
+/// The data block as read.
+#[derive(Debug)]
+pub(super) struct Table {
+    pub(super) rows: Rows,
+    pub(super) findings: Vec<Finding>,
+}
+
+/// Reads all rows of a text whose next line is line `first_line` (from 1). The result does not depend on the size of the
+/// blocks nor on the number of threads.
+///
+/// # Errors
+/// `Malformed` at the first line that is no row, unless it ends the data.
+pub(super) fn read<R: Read>(
+    blocks: &mut Blocks<R>,
+    plan: &Plan,
+    first_line: u64,
+    mut quoted: bool,
+    allow_truncated: bool,
+) -> Result<Table> {
+    let mut table = Table { rows: Rows::new(plan), findings: Vec::new() };
+    let width = rayon::current_num_threads().max(1);
+    let mut quotes = quoted.then_some(plan.dialect.delimiter);
+    let mut batch = blocks.batch(width, quotes)?;
+    while !batch.is_empty() {
+        let mut parts = Vec::new();
+        let mut next = Ok(Vec::new());
+        if batch.len() == 1 && blocks.is_drained() {
+            parts.push(Some(plan.read(&batch[0], quoted)));
+        } else {
+            parts.resize_with(batch.len(), || None);
+            // This thread reads on while the others work on what is read.
+            rayon::in_place_scope(|scope| {
+                for (part, block) in parts.iter_mut().zip(&batch) {
+                    scope.spawn(move |_| *part = Some(plan.read(block, quoted)));
+                }
+                next = blocks.batch(width, quotes);
+            });
+        }
+        let mut fault = None;
+        for (index, part) in parts.into_iter().enumerate() {
+            let Some((rows, found)) = part else { continue };
+            table.rows.append(&rows);
+            if let Some(found) = found {
+                fault = Some((index, found));
+                break;
+            }
+        }
+        let Some((index, fault)) = fault else {
+            batch.into_iter().for_each(|block| blocks.recycle(block));
+            batch = next?;
+            continue;
+        };
+        let mut rest = batch[index].split_off(fault.byte);
+        let following = batch.drain(index + 1..).chain(next?);
+        following.for_each(|block| rest.extend_from_slice(&block));
+        blocks.push_back(rest);
+        if fault.cause == Cause::Quote && !quoted {
+            quoted = true;
+            quotes = Some(plan.dialect.delimiter);
+            batch = blocks.batch(width, quotes)?;
+            continue;
+        }
+        table.findings.extend(settle(
+            blocks,
+            plan,
+            &fault,
+            first_line + table.rows.line_count,
+            quoted,
+            allow_truncated,
+        )?);
+        return Ok(table);
+    }
+    if !blocks.is_terminated() {
+        let line = first_line + table.rows.line_count - 1;
+        let text = "the file does not end in a line end: the last value may be cut";
+        table.findings.push(Finding::new("no_final_line_end", text).at(Place::line(line)));
+    }
+    Ok(table)
+}

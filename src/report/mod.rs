@@ -1,0 +1,234 @@
+//! Results as plain data: what the JSON and the summaries show. Holds no samples.
+
+mod examination;
+mod json;
+mod plan;
+mod text;
+
+use serde::Serialize;
+use serde_json::{Map, Value};
+
+use crate::audit::level::Level;
+use crate::operator::ChainDescription;
+use crate::error::Finding;
+use crate::record::{Axis, RateSource, Source};
+use crate::unit::Unit;
+
+pub use examination::AuditReport;
+pub use json::to_json;
+pub use plan::Plan;
+pub use text::{audit_text, plan_text, summary};
+
+/// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
+pub const SCHEMA: u32 = 1;
+
+/// A whole result.
+#[derive(Debug, Clone, Serialize)]
+pub struct Report {
+    /// `SCHEMA`.
+    pub schema: u32,
+    /// What made it.
+    pub tool: Tool,
+    /// The command that ran.
+    pub command: &'static str,
+    /// Every setting as resolved: giving them again gives the same bytes.
+    pub settings: Map<String, Value>,
+    /// What was read.
+    pub input: InputReport,
+    /// Remarks on the whole record.
+    pub notes: Vec<Finding>,
+    /// The resolved operators, in the order in which they run.
+    pub chain: ChainDescription,
+    /// One entry a channel.
+    pub channels: Vec<ChannelReport>,
+    /// What was written.
+    pub outputs: Vec<OutputReport>,
+    /// What results of this kind may and may not be used for.
+    pub caution: &'static str,
+}
+
+/// The program.
+#[derive(Debug, Clone, Serialize)]
+pub struct Tool {
+    /// Name.
+    pub name: &'static str,
+    /// Version.
+    pub version: &'static str,
+}
+
+impl Tool {
+    /// This program.
+    pub const THIS: Tool = Tool { name: env!("CARGO_PKG_NAME"), version: env!("CARGO_PKG_VERSION") };
+}
+
+/// The caution that goes with every conditioned record.
+pub const CAUTION: &str = "Filtered, integrated or restored records are estimates under the stated assumption about the \
+ends. Decisions on machine protection, structural safety or human exposure follow the applicable standards and local \
+codes under qualified practice; this program does not certify.";
+
+/// What was read.
+#[derive(Debug, Clone, Serialize)]
+pub struct InputReport {
+    /// Path as given, `-` for standard input.
+    pub path: String,
+    /// SHA-256 of the bytes as stored.
+    pub sha256: String,
+    /// Bytes as stored.
+    pub bytes: u64,
+    /// `csv` or `wav`.
+    pub format: crate::record::Format,
+    /// Samples a channel after cutting and repair.
+    pub samples: usize,
+    /// The axis.
+    pub axis: AxisReport,
+}
+
+impl InputReport {
+    /// The report of a source and the axis made from it.
+    pub fn new(source: &Source, axis: &Axis) -> InputReport {
+        InputReport {
+            path: source.path.clone(),
+            sha256: source.sha256.clone(),
+            bytes: source.bytes,
+            format: source.format,
+            samples: axis.len(),
+            axis: AxisReport::new(axis),
+        }
+    }
+}
+
+/// The axis of a record.
+#[derive(Debug, Clone, Serialize)]
+pub struct AxisReport {
+    /// `time` or `length`.
+    pub kind: &'static str,
+    /// Unit of start, step and interval.
+    pub unit: Unit,
+    /// First stamp.
+    pub start: f64,
+    /// Step.
+    pub step: f64,
+    /// Samples per second, or per metre.
+    pub rate: f64,
+    /// Hard interval of the rate from the stamps.
+    pub rate_interval: Option<[f64; 2]>,
+    /// Where the rate came from.
+    pub how: RateSource,
+    /// Civil time of stamp 0.
+    pub epoch: Option<String>,
+}
+
+impl AxisReport {
+    /// The report of an axis.
+    pub fn new(axis: &Axis) -> AxisReport {
+        let base = axis.step_base() / axis.step();
+        AxisReport {
+            kind: if axis.is_time() { "time" } else { "length" },
+            unit: axis.unit().clone(),
+            start: axis.start(),
+            step: axis.step(),
+            rate: axis.rate_base(),
+            rate_interval: axis.interval().map(|[low, high]| [1.0 / (high * base), 1.0 / (low * base)]),
+            how: axis.source(),
+            epoch: axis.epoch().map(str::to_owned),
+        }
+    }
+}
+
+/// One channel's result.
+#[derive(Debug, Clone, Serialize)]
+pub struct ChannelReport {
+    /// Name.
+    pub name: String,
+    /// Unit of the output.
+    pub unit: Unit,
+    /// Unit of the input.
+    pub unit_in: Unit,
+    /// Remarks on this channel.
+    pub notes: Vec<Finding>,
+    /// What was split off first.
+    pub baseline: BaselineReport,
+    /// What was assumed past the ends.
+    pub extension: ExtensionReport,
+    /// How far the ends reach into the output.
+    pub reach: ReachReport,
+    /// RMS before and after.
+    pub rms: InOut<Option<f64>>,
+    /// Mean, RMS, peak, crest factor, kurtosis before and after.
+    pub level: InOut<Option<Level>>,
+    /// Relative difference of energy between remainder and coefficients: rounding only.
+    pub parseval: f64,
+}
+
+/// A figure before and after.
+#[derive(Debug, Clone, Serialize)]
+pub struct InOut<T> {
+    /// Of the input.
+    #[serde(rename = "in")]
+    pub before: T,
+    /// Of the output.
+    #[serde(rename = "out")]
+    pub after: T,
+}
+
+/// The baseline of a channel.
+#[derive(Debug, Clone, Serialize)]
+pub struct BaselineReport {
+    /// Spelling as in the option.
+    pub kind: String,
+    /// Who chose it.
+    pub how: How,
+    /// Coefficients p_j of sum p_j u^j with u = (x - centre) / half_width, x in steps from the left mirror.
+    pub coefficients: Vec<f64>,
+    /// Centre of u in steps.
+    pub centre: f64,
+    /// Half width of u in steps.
+    pub half_width: f64,
+    /// Width in samples that end values and slopes are fitted to at most; null where the baseline needs none.
+    pub fit_width: Option<f64>,
+    /// True where no corner gives that width and an eighth of the record is assumed.
+    pub fit_width_assumed: bool,
+}
+
+/// The extension of a channel.
+#[derive(Debug, Clone, Serialize)]
+pub struct ExtensionReport {
+    /// `even`, `periodic` and so on.
+    pub kind: String,
+    /// `half-sample` or `whole-sample`.
+    pub seat: &'static str,
+    /// The forward transform that follows.
+    pub transform: &'static str,
+    /// Who chose it.
+    pub how: How,
+}
+
+/// Who made a choice.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "snake_case")]
+pub enum How {
+    /// The user.
+    Asked,
+    /// A default: not a finding about the record.
+    Default,
+}
+
+/// How far the ends reach in.
+#[derive(Debug, Clone, Copy, Serialize)]
+pub struct ReachReport {
+    /// Samples beyond which less than 0.1 % of the kernel's area lies; null where it is unbounded.
+    pub samples: Option<f64>,
+    /// The same along the axis, in the axis unit.
+    pub axis: Option<f64>,
+    /// Samples beyond which less than 1e-13 of the kernel's area lies; null where none is.
+    pub numeric_samples: Option<f64>,
+}
+
+/// A file that was written.
+#[derive(Debug, Clone, Serialize)]
+pub struct OutputReport {
+    /// Path as given.
+    pub path: String,
+    /// SHA-256 of its bytes.
+    pub sha256: String,
+}

@@ -1,0 +1,45 @@
+//! The summary of a conditioned record.
+
+use crate::place::escape;
+use crate::report::Report;
+use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
+
+/// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
+pub fn summary(report: &Report) -> String {
+    let mut text = input_line(&report.input);
+    if let Some(first) = report.channels.first() {
+        text.push_str(&format!("{}\n", extension_text(&first.extension)));
+        text.push_str(&super::planned::operators_text(&report.chain, &report.input.axis));
+    }
+    let mut rows = table(&["channel", "baseline", "RMS in", "RMS out", "peak in", "peak out", "unit"]);
+    for channel in &report.channels {
+        let shown = |value: Option<f64>| value.map_or_else(|| "-".to_owned(), |v| figure(v, 4));
+        let unit = if channel.unit == channel.unit_in {
+            channel.unit.to_string()
+        } else {
+            format!("{} -> {}", channel.unit_in, channel.unit)
+        };
+        rows.add_row(vec![
+            escape(&channel.name),
+            channel.baseline.kind.clone(),
+            shown(channel.rms.before),
+            shown(channel.rms.after),
+            shown(channel.level.before.as_ref().map(|l| l.peak)),
+            shown(channel.level.after.as_ref().map(|l| l.peak)),
+            unit,
+        ]);
+    }
+    text.push_str(&indented(&rows));
+    text.push_str(&notes_text(&report.notes));
+    for channel in &report.channels {
+        text.push_str(&notes_text(&channel.notes));
+    }
+    for output in &report.outputs {
+        if output.path == "-" {
+            text.push_str("wrote to standard output\n");
+        } else {
+            text.push_str(&format!("wrote {0} and {0}.json\n", escape(&output.path)));
+        }
+    }
+    text
+}

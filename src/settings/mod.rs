@@ -1,0 +1,144 @@
+//! Everything that changes a result, under one name each: command line, recipes and JSON share these keys.
+
+mod parse;
+mod table;
+
+use std::collections::BTreeMap;
+
+use serde_json::{Map, Value};
+
+use crate::condition::Stage;
+use crate::error::{Error, Result};
+use crate::operator::{Request, Shape};
+use crate::read::ReadOptions;
+use crate::record::Format;
+use crate::regularise::RegulariseOptions;
+
+pub use table::{Arity, Group, OptionRow, find, rows};
+
+/// Settings of a run. `Settings::default()` is what runs without any option.
+#[derive(Debug, Clone, Default)]
+pub struct Settings {
+    /// How the file is read.
+    pub read: ReadOptions,
+    /// Cut and repair.
+    pub regularise: RegulariseOptions,
+    /// Extension, baseline, seat.
+    pub stage: Stage,
+    /// Operators, in the order given; they commute.
+    pub requests: Vec<Request>,
+    /// Roll-off of all filters.
+    pub shape: Shape,
+    /// Format of the output; that of the input when `None`.
+    pub format: Option<Format>,
+    /// Sample type of WAV output, by name in `write`'s table; float32 when `None`.
+    pub encoding: Option<String>,
+    /// Fixed decimals of CSV output; shortest digits when `None`.
+    pub decimals: Option<u8>,
+    /// Notes are errors.
+    pub strict: bool,
+    /// What was set, as written.
+    texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+impl Settings {
+    /// Sets one key from its text; a key that may be repeated gains a value.
+    ///
+    /// # Errors
+    /// `Usage` for an unknown key (with the nearest known one), for a value that does not parse, and for a second value
+    /// of a key that takes one.
+    pub fn set(&mut self, key: &str, text: &str) -> Result<()> {
+        let Some(row) = find(key) else {
+            let all = rows();
+            let nearest = all
+                .iter()
+                .map(|row| (strsim::jaro_winkler(row.key, key), row.key))
+                .max_by(|a, b| a.0.total_cmp(&b.0))
+                .filter(|(likeness, _)| *likeness > 0.8);
+            let error = Error::usage(format!("unknown setting {key:?}"));
+            return Err(match nearest {
+                Some((_, known)) => error.remedy(format!("did you mean {known:?}?")),
+                None => error,
+            });
+        };
+        let texts = self.texts.entry(row.key).or_default();
+        if row.arity != Arity::Many && !texts.is_empty() {
+            return Err(Error::usage(format!("--{key} is given twice")));
+        }
+        texts.push(text.to_owned());
+        parse::set(self, row.key, text)
+    }
+
+    /// Every setting as resolved, for results: what was not given stands as its default, `null` where it is decided by
+    /// the record.
+    pub fn to_map(&self) -> Map<String, Value> {
+        rows()
+            .into_iter()
+            .map(|row| {
+                let texts = self.texts.get(row.key);
+                let value = match row.arity {
+                    Arity::Switch => Value::Bool(texts.is_some_and(|t| t.last().is_some_and(|v| v == "true"))),
+                    Arity::Many => Value::from(texts.cloned().unwrap_or_default()),
+                    Arity::Once => match texts.and_then(|t| t.last()) {
+                        Some(text) => Value::from(text.clone()),
+                        None => parse::default_of(self, row.key).map_or(Value::Null, Value::from),
+                    },
+                };
+                (row.key.to_owned(), value)
+            })
+            .collect()
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn an_unknown_key_names_the_nearest() {
+        let error = Settings::default().set("lowpas", "40Hz").expect_err("unknown");
+        assert_eq!(error.to_string(), "unknown setting \"lowpas\"; did you mean \"lowpass\"?");
+    }
+
+    #[test]
+    fn a_map_set_again_gives_the_same_map() {
+        let mut settings = Settings::default();
+        for (key, text) in [
+            ("lowpass", "40Hz"),
+            ("notch", "50Hz:2Hz"),
+            ("notch", "60Hz:2Hz"),
+            ("extension", "odd"),
+            ("baseline", "line"),
+            ("seat", "whole-sample"),
+            ("shape", "gaussian"),
+            ("channel", "ax"),
+            ("from", "1s"),
+            ("strict", "true"),
+        ] {
+            settings.set(key, text).expect("a good value");
+        }
+        let map = settings.to_map();
+        let mut again = Settings::default();
+        for (key, value) in &map {
+            match value {
+                Value::String(text) => again.set(key, text).expect("a good value"),
+                Value::Bool(true) => again.set(key, "true").expect("a good value"),
+                Value::Array(texts) => {
+                    texts.iter().filter_map(Value::as_str).for_each(|t| again.set(key, t).expect("a good value"));
+                }
+                _ => {}
+            }
+        }
+        assert_eq!(again.to_map(), map);
+    }
+
+    #[test]
+    fn every_row_has_a_parser() {
+        for row in rows() {
+            // A value no option takes: it must be refused as a value, never as an unknown key.
+            if let Err(error) = Settings::default().set(row.key, "\u{1}") {
+                assert!(!error.what().contains("unknown setting"), "{}", row.key);
+            }
+        }
+    }
+}

@@ -1,0 +1,156 @@
+//! From the text of an option to its value, and the defaults that results show.
+
+use std::str::FromStr;
+
+use crate::ends::Seat;
+use crate::error::{Error, Result};
+use crate::operator::{Request, STEPS, Shape};
+use crate::place::escape;
+use crate::read::Calibration;
+use crate::record::{Format, StatedRate};
+use crate::regularise::Bound;
+use crate::settings::Settings;
+use crate::unit::Unit;
+
+/// Words of an option and what they stand for; the first is the default.
+type Words<T> = &'static [(&'static str, T)];
+
+const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
+const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
+
+/// Sets the value of a known key.
+pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
+    if STEPS.iter().any(|step| step.key == key) {
+        settings.requests.push(Request::parse(key, text)?);
+        return Ok(());
+    }
+    match key {
+        "channel" => settings.read.channels.get_or_insert_default().push(text.to_owned()),
+        "rate" => settings.read.rate = Some(StatedRate::parse(text)?),
+        "time-column" => settings.read.time_column = Some(text.to_owned()),
+        "time-unit" => settings.read.time_unit = Some(axis_unit(key, text)?),
+        "delimiter" => settings.read.delimiter = Some(delimiter(text)?),
+        "decimal" => settings.read.decimal = Some(mark(key, text, b".,")?),
+        "thousands" => settings.read.thousands = Some(mark(key, text, b".,' ")?),
+        "header-lines" => settings.read.header_lines = Some(named(key, text, "a number of lines")?),
+        "missing" => settings.read.missing.push(text.to_owned()),
+        "unit" => {
+            let (name, unit) = pair(key, text, "NAME=UNIT, such as ax=g")?;
+            settings.read.units.push((name.to_owned(), Unit::parse(unit)));
+        }
+        "calibrate" => settings.read.calibrate.push(calibration(text)?),
+        "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
+        "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
+        "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
+        "gaps" => settings.regularise.gaps = context(key, text.parse())?,
+        "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
+        "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
+        "strict" => settings.strict = switch(key, text)?,
+        "extension" => settings.stage.extension = Some(context(key, text.parse())?),
+        "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
+        "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
+        "shape" => settings.shape = context(key, Shape::parse(text))?,
+        "format" => settings.format = Some(one_of(key, text, FORMATS)?),
+        "encoding" => settings.encoding = Some(text.to_owned()),
+        "decimals" => settings.decimals = Some(decimals(text)?),
+        other => return Err(Error::usage(format!("the setting {other:?} has no parser"))),
+    }
+    Ok(())
+}
+
+/// The default that results show for a key that was not given; `None` where the record or the chain decides.
+pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
+    match key {
+        "gaps" => Some(settings.regularise.gaps.to_string()),
+        "duplicates" => Some(settings.regularise.duplicates.to_string()),
+        "seat" => spelling(SEATS, settings.stage.seat),
+        "shape" => Some(settings.shape.to_string()),
+        _ => None,
+    }
+}
+
+fn one_of<T: Copy>(key: &str, text: &str, words: Words<T>) -> Result<T> {
+    words.iter().find(|(word, _)| *word == text).map(|(_, value)| *value).ok_or_else(|| {
+        let known: Vec<&str> = words.iter().map(|(word, _)| *word).collect();
+        Error::usage(format!("--{key}: \"{}\" is not known", escape(text))).remedy(format!("use {}", known.join(" or ")))
+    })
+}
+
+fn spelling<T: PartialEq>(words: Words<T>, value: T) -> Option<String> {
+    words.iter().find(|(_, known)| *known == value).map(|(word, _)| (*word).to_owned())
+}
+
+/// Names the option in an error.
+fn context<T>(key: &str, value: Result<T>) -> Result<T> {
+    value.map_err(|error| {
+        let named = Error::new(error.kind(), format!("--{key}: {}", error.what()));
+        match error.advice() {
+            Some(advice) => named.remedy(advice),
+            None => named,
+        }
+    })
+}
+
+fn named<T: FromStr>(key: &str, text: &str, wanted: &str) -> Result<T> {
+    text.trim().parse().map_err(|_| Error::usage(format!("--{key}: not {wanted}: \"{}\"", escape(text))))
+}
+
+fn switch(key: &str, text: &str) -> Result<bool> {
+    named(key, text, "true or false")
+}
+
+fn decimals(text: &str) -> Result<u8> {
+    let count: u8 = named("decimals", text, "a number of decimals")?;
+    if count > 17 {
+        return Err(Error::usage(format!("--decimals: {count} is more than a double can show")).remedy("use at most 17"));
+    }
+    Ok(count)
+}
+
+fn axis_unit(key: &str, text: &str) -> Result<Unit> {
+    let unit = Unit::parse(text);
+    if unit.is_time() || unit.is_length() {
+        return Ok(unit);
+    }
+    Err(Error::usage(format!("--{key}: not a unit of time or length: \"{}\"", escape(text))).remedy("use s, ms, us, ns, m, mm or um"))
+}
+
+fn delimiter(text: &str) -> Result<u8> {
+    match text {
+        "tab" | "\t" | "\\t" => Ok(b'\t'),
+        "blank" | "space" | " " => Ok(b' '),
+        _ => mark("delimiter", text, b",;|"),
+    }
+}
+
+fn mark(key: &str, text: &str, allowed: &[u8]) -> Result<u8> {
+    match text.as_bytes() {
+        [byte] if allowed.contains(byte) => Ok(*byte),
+        _ => {
+            let shown: Vec<String> = allowed.iter().map(|b| format!("'{}'", *b as char)).collect();
+            Err(Error::usage(format!("--{key}: \"{}\" cannot be that", escape(text))).remedy(format!("use one of {}", shown.join(" "))))
+        }
+    }
+}
+
+fn pair<'a>(key: &str, text: &'a str, form: &str) -> Result<(&'a str, &'a str)> {
+    // The last '=': a channel name may hold one, a unit cannot.
+    text.rsplit_once('=')
+        .filter(|(name, _)| !name.is_empty())
+        .ok_or_else(|| Error::usage(format!("--{key}: \"{}\" is not NAME=VALUE", escape(text))).remedy(format!("write {form}")))
+}
+
+/// `ch1=98.1m/s2`: name, factor, unit of the result.
+fn calibration(text: &str) -> Result<Calibration> {
+    let (name, value) = pair("calibrate", text, "NAME=FACTOR[UNIT], such as ch1=98.1m/s2")?;
+    // The longest prefix that is a number: the unit may start with e (as in `1e3`) only after a complete number.
+    let split = (1..=value.len())
+        .rev()
+        .find(|&n| value.is_char_boundary(n) && value[..n].trim().parse::<f64>().is_ok_and(f64::is_finite))
+        .ok_or_else(|| {
+            Error::usage(format!("--calibrate: no factor in \"{}\"", escape(value))).remedy("write NAME=FACTOR[UNIT], such as ch1=98.1m/s2")
+        })?;
+    let factor = named("calibrate", &value[..split], "a factor")?;
+    let unit = value[split..].trim();
+    Ok(Calibration { channel: name.to_owned(), factor, unit: (!unit.is_empty()).then(|| Unit::parse(unit)) })
+}

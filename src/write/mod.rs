@@ -1,0 +1,126 @@
+//! Writes records: the forms that are written, and outputs that appear whole or not at all.
+
+mod blocks;
+mod csv;
+mod field;
+mod header;
+mod number;
+mod origin;
+mod stamp;
+mod table;
+mod text;
+mod wav;
+mod wave_header;
+mod whole;
+
+use std::io::Write;
+use std::path::Path;
+
+use crate::error::{Error, Finding, Result};
+use crate::record::{Format, Record};
+pub use number::Digits;
+pub use origin::{Origin, Rows};
+pub use wave_header::{WAVE_ENCODINGS, WaveEncoding};
+pub use whole::{Overwrite, Pending, Written, discard_pending, finish_all};
+
+/// A form that is written.
+pub struct Writer {
+    /// The format.
+    pub format: Format,
+    /// Name on the command line.
+    pub name: &'static str,
+    /// File name extensions, in lower case, without the dot.
+    pub extensions: &'static [&'static str],
+    /// One line of help.
+    pub about: &'static str,
+    /// Tells whether the content fits the form, before anything is written; remarks say what the form cannot carry.
+    pub check: fn(&Content<'_>) -> Result<Vec<Finding>>,
+    /// Writes the content from first to last byte; the sink need not seek.
+    pub write: fn(&Content<'_>, &mut (dyn Write + Send)) -> Result<()>,
+}
+
+/// The forms, in the order of help texts.
+pub static WRITERS: &[Writer] = &[csv::WRITER, wav::WRITER];
+
+/// What goes into an output.
+#[derive(Clone, Copy)]
+pub struct Content<'a> {
+    /// The result.
+    pub record: &'a Record,
+    /// The table it came from, to write it back in its own form; `None` writes a plain new table. For text only.
+    pub origin: Option<&'a Origin<'a>>,
+    /// Columns appended at the right, such as `trusted`. For text only.
+    pub extra: &'a [Extra<'a>],
+    /// Digits of conditioned values. For text only.
+    pub digits: Digits,
+    /// How a sample is stored. For WAV only.
+    pub encoding: WaveEncoding,
+}
+
+impl<'a> Content<'a> {
+    /// A record in plain form: shortest digits, or 32-bit floats.
+    pub fn new(record: &'a Record) -> Content<'a> {
+        Content { record, origin: None, extra: &[], digits: Digits::Shortest, encoding: WaveEncoding::Float32 }
+    }
+}
+
+/// A column of its own beside the channels.
+#[derive(Debug, Clone, Copy)]
+pub struct Extra<'a> {
+    /// Name in the header.
+    pub name: &'a str,
+    /// One cell for each sample of the record.
+    pub cells: Cells<'a>,
+}
+
+/// Cells of an extra column.
+#[derive(Debug, Clone, Copy)]
+pub enum Cells<'a> {
+    /// Numbers; a cell stays blank where there is none.
+    Numbers(&'a [Option<f64>]),
+    /// `1` or `0`; a cell stays blank where it is not known.
+    Flags(&'a [Option<bool>]),
+}
+
+impl Cells<'_> {
+    /// Number of cells.
+    pub fn count(&self) -> usize {
+        match self {
+            Cells::Numbers(cells) => cells.len(),
+            Cells::Flags(cells) => cells.len(),
+        }
+    }
+}
+
+/// Checks the content, writes it into `output` and finishes that; remarks say what the form could not carry.
+///
+/// # Errors
+/// Those of the writer and of `Pending::finish`; nothing is left behind then.
+pub fn save(writer: &Writer, content: &Content<'_>, mut output: Pending<'_>) -> Result<(Written, Vec<Finding>)> {
+    let findings = (writer.check)(content)?;
+    match (writer.write)(content, &mut output) {
+        Ok(()) => output.finish().map(|written| (written, findings)),
+        Err(error) => Err(output.placed(error)),
+    }
+}
+
+/// The writer of a format.
+pub fn writer(format: Format) -> &'static Writer {
+    match format {
+        Format::Csv => &csv::WRITER,
+        Format::Wav => &wav::WRITER,
+    }
+}
+
+/// The writer that a file name's extension asks for.
+///
+/// # Errors
+/// `Usage` when the extension is none of a writer's.
+pub fn writer_by_name(path: &Path) -> Result<&'static Writer> {
+    let extension = path.extension().map(|e| e.to_string_lossy().to_ascii_lowercase()).unwrap_or_default();
+    WRITERS.iter().find(|writer| writer.extensions.contains(&extension.as_str())).ok_or_else(|| {
+        let known: Vec<&str> = WRITERS.iter().map(|writer| writer.name).collect();
+        Error::usage(format!("the name {:?} does not tell a format", path.display()))
+            .remedy(format!("give one with --format: {}", known.join(", ")))
+    })
+}
