@@ -56,14 +56,17 @@ pub fn score_all(windows: &[Window], wanted: Option<&str>, fine: bool) -> Vec<Sc
 
 fn score_window(window: &Window, wanted: Option<&str>, fine: bool) -> Vec<Score> {
     // One set of fits serves every operator with the same block length.
-    let mut evidence: BTreeMap<usize, Option<Evidence>> = BTreeMap::new();
-    let structure = verdict::structure(window.samples());
+    let mut evidence: BTreeMap<usize, (Option<Evidence>, Structure)> = BTreeMap::new();
     operators::trials(window.len, fine)
         .filter(|trial| wanted.is_none_or(|name| trial.name == name))
         .map(|trial| {
             let block = Evidence::block_length(trial.shortest);
-            let evidence = evidence.entry(block).or_insert_with(|| Evidence::gather(window.samples(), block));
-            score_case(window, &trial, evidence.as_ref(), structure)
+            let (evidence, structure) = evidence.entry(block).or_insert_with(|| {
+                let evidence = Evidence::gather(window.samples(), block);
+                let structure = evidence.as_ref().map(verdict::structure).unwrap_or_default();
+                (evidence, structure)
+            });
+            score_case(window, &trial, evidence.as_ref(), *structure)
         })
         .collect()
 }

@@ -23,6 +23,12 @@ pub struct Response<'a> {
     reach: usize,
 }
 
+/// Wavelengths of the first grid.
+const SPAN: f64 = 16.0;
+
+/// Half the grid must hold the reach this many times.
+const SETTLED: usize = 3;
+
 /// The share of the kernel's absolute area that may lie beyond the reach.
 const BEYOND_REACH: f64 = 1e-3;
 
@@ -42,6 +48,21 @@ impl<'a> Response<'a> {
         }
         let reach = reach(&kernel);
         Self { shape, kernel, steps, reach }
+    }
+
+    /// The response as far as a record of `len` samples needs it: on a grid of a few wavelengths that grows until the reach
+    /// settles, at most four times the record.
+    pub fn of(shape: Shape<'a>, len: usize) -> Self {
+        let most = (4 * len).max(8);
+        let mut grid = ((SPAN * shape.shortest_wavelength) as usize).next_power_of_two().max(1024);
+        loop {
+            let response = Self::on_grid(shape, grid.min(most));
+            // Tails that go once round the grid are folded back: by then they must have died away.
+            if grid >= most || SETTLED * response.reach <= grid / 2 {
+                return response;
+            }
+            grid *= 4;
+        }
     }
 
     /// The operator's own description.

@@ -2,12 +2,17 @@
 
 use serde::Serialize;
 
-use crate::baseline::Side;
 use crate::numeric::autoregression::{Burg, dot};
 use crate::numeric::sum;
 
-/// Shorter records are not tested: the test would cost more than it tells.
+/// Shorter histories are not tested: the test would cost more than it tells.
 pub const SHORTEST: usize = 256;
+
+/// Highest order of the autoregression behind the periodic join.
+const PERIODIC_ORDER: usize = 16;
+
+/// Highest order of the autoregression behind even joins.
+const EVEN_ORDER: usize = 32;
 
 /// Interior pairs of places that a periodic join is compared with.
 const PAIRS: usize = 1024;
@@ -26,115 +31,86 @@ pub struct Join {
     pub median: f64,
 }
 
-/// A short autoregression over the record, and the innovations it leaves.
-struct Innovations {
-    centred: Vec<f64>,
-    /// Weight of lag p first, lag 1 last.
-    forward: Vec<f64>,
-    /// Weight of lag 1 first.
-    backward: Vec<f64>,
+/// The history towards one end, oldest first, and a short autoregression that foretells it from its past.
+struct Course {
+    /// Less `mean`.
+    values: Vec<f64>,
+    /// Weight of the highest lag first, lag 1 last.
+    weights: Vec<f64>,
+    /// Mean squared one-step error in the interior.
     variance: f64,
 }
 
-impl Innovations {
-    /// `None` when the record is shorter than `SHORTEST` or is foretold without any error.
-    fn of(samples: &[f64], highest_order: usize) -> Option<Innovations> {
-        let n = samples.len();
+impl Course {
+    /// `None` when the history is short or is foretold without any error.
+    fn of(history: &[f64], mean: f64, highest_order: usize) -> Option<Course> {
+        let n = history.len();
         if n < SHORTEST {
             return None;
         }
-        let mean = sum::mean(samples);
-        let centred: Vec<f64> = samples.iter().map(|v| v - mean).collect();
+        let values: Vec<f64> = history.iter().map(|v| v - mean).collect();
         let order = (n / 8).clamp(2, highest_order);
-        let backward = Burg::fit(&centred, order).predictor(order).weights;
-        let forward: Vec<f64> = backward.iter().rev().copied().collect();
-        let mut found = Innovations { centred, forward, backward, variance: 1.0 };
-        let errors = |t: usize| {
-            let x = &found.centred;
-            found.ahead(&x[t - order..=t]).powi(2) + found.back(&x[t - order..=t]).powi(2)
-        };
-        let total: f64 = (order..n).map(errors).sum();
-        found.variance = total / (2 * (n - order)) as f64;
-        (found.variance > 0.0 && found.variance.is_finite()).then_some(found)
+        let weights: Vec<f64> = Burg::fit(&values, order).predictor(order).weights.into_iter().rev().collect();
+        let mut course = Course { values, weights, variance: 1.0 };
+        let total: f64 = course.values.windows(order + 1).map(|w| course.squared_error(w)).sum();
+        course.variance = total / (n - order) as f64;
+        (course.variance > 0.0 && course.variance.is_finite()).then_some(course)
     }
 
     fn order(&self) -> usize {
-        self.forward.len()
+        self.weights.len()
     }
 
-    /// Error at the last of p + 1 values, foretold from those before it.
-    fn ahead(&self, window: &[f64]) -> f64 {
+    /// Squared error at the last of p + 1 values, foretold from those before it, relative to the interior.
+    fn squared_error(&self, window: &[f64]) -> f64 {
         let (past, now) = window.split_at(self.order());
-        now[0] - dot(&self.forward, past)
+        (now[0] - dot(&self.weights, past)).powi(2) / self.variance
     }
 
-    /// Error at the first of p + 1 values, foretold from those after it.
-    fn back(&self, window: &[f64]) -> f64 {
-        window[0] - dot(&self.backward, &window[1..])
-    }
-
-    /// Mean squared error of the 2 p innovations that straddle the middle of 2 p values, relative to the interior.
-    fn ratio(&self, line: &[f64]) -> f64 {
+    /// Mean squared error of the p values that follow the first `stop` ones when they are `next`.
+    fn ratio(&self, stop: usize, next: impl Iterator<Item = f64>) -> f64 {
         let p = self.order();
-        let straddling = (0..p).map(|i| &line[i..=i + p]);
-        let total: f64 = straddling.map(|w| self.ahead(w).powi(2) + self.back(w).powi(2)).sum();
-        total / (2 * p) as f64 / self.variance
-    }
-
-    /// The record up to `stop` continued by the record from `start`.
-    fn joined(&self, stop: usize, start: usize) -> f64 {
-        let p = self.order();
-        let line: Vec<f64> = self.centred[stop - p..stop].iter().chain(&self.centred[start..start + p]).copied().collect();
-        self.ratio(&line)
-    }
-
-    /// The record from `start` on, before it its even reflection.
-    fn mirrored(&self, start: usize) -> f64 {
-        let p = self.order();
-        let half = &self.centred[start..start + p];
-        let line: Vec<f64> = half.iter().rev().chain(half).copied().collect();
-        self.ratio(&line)
-    }
-
-    /// The record up to `stop`, after it its even reflection.
-    fn mirrored_after(&self, stop: usize) -> f64 {
-        let p = self.order();
-        let half = &self.centred[stop - p..stop];
-        let line: Vec<f64> = half.iter().chain(half.iter().rev()).copied().collect();
-        self.ratio(&line)
+        let line: Vec<f64> = self.values[stop - p..stop].iter().copied().chain(next.take(p)).collect();
+        line.windows(p + 1).map(|w| self.squared_error(w)).sum::<f64>() / p as f64
     }
 }
 
-/// The join of the record's end to its own start; `None` below `SHORTEST` samples.
-pub fn periodic(samples: &[f64]) -> Option<Join> {
-    let found = Innovations::of(samples, 16)?;
-    let (n, p) = (samples.len(), found.order());
+/// The join of the record's end to its own start. `left` and `right` are the histories towards both ends, oldest first:
+/// the last value of each touches its end. `None` for histories shorter than `SHORTEST`.
+pub fn periodic(left: &[f64], right: &[f64]) -> Option<Join> {
+    let mean = sum::mean(right);
+    let (left, right) = (Course::of(left, mean, PERIODIC_ORDER)?, Course::of(right, mean, PERIODIC_ORDER)?);
+    let p = left.order().max(right.order());
+    // Onwards from the end into the start, and backwards from the start into the end.
+    let joined = |stop: usize, start: usize| {
+        let after = left.values[..start].iter().rev().copied();
+        let before = right.values[..stop].iter().rev().copied();
+        0.5 * (right.ratio(stop, after) + left.ratio(start, before))
+    };
+    let n = left.values.len().min(right.values.len());
     let room = n - 2 * p;
     // Two irrational steps spread the pairs evenly over the square of places (additive recurrence, Roberts 2018).
-    let place = |i: usize, step: f64| p + ((0.5 + step * i as f64).fract() * (room + 1) as f64) as usize;
+    let place = |i: usize, step: f64| p + ((0.5 + step * i as f64).fract() * room as f64) as usize;
     let mut pairs: Vec<f64> = Vec::with_capacity(PAIRS);
     for i in 1..=4 * PAIRS {
         let (stop, start) = (place(i, 0.754_877_666_246_693), place(i, 0.569_840_290_998_053));
-        // A place joined to itself, or nearly, is the record as it is.
-        if stop.abs_diff(start) >= p && pairs.len() < PAIRS {
-            pairs.push(found.joined(stop.min(n), start.min(n - p)));
+        // The start counts from the other end. A place joined to itself, or nearly, is the record as it is.
+        if stop.abs_diff(n - start) >= p && pairs.len() < PAIRS {
+            pairs.push(joined(stop, start));
         }
     }
-    Some(compare(found.joined(n, 0), pairs))
+    Some(compare(joined(right.values.len(), left.values.len()), pairs))
 }
 
-/// The join of one end to its own even reflection; `None` below `SHORTEST` samples.
-pub fn even(samples: &[f64], side: Side) -> Option<Join> {
-    let found = Innovations::of(samples, 32)?;
-    let (n, p) = (samples.len(), found.order());
-    let room = n - 2 * p;
+/// The join of one end to its own even reflection, from the history towards it, oldest first. `None` for a history
+/// shorter than `SHORTEST`.
+pub fn even(history: &[f64]) -> Option<Join> {
+    let course = Course::of(history, sum::mean(history), EVEN_ORDER)?;
+    let (n, p) = (history.len(), course.order());
+    let mirrored = |stop: usize| course.ratio(stop, course.values[..stop].iter().rev().copied());
+    let room = n - p;
     let count = MIRRORS.min(room);
-    let place = |i: usize| p + i * room / count;
-    let (own, others) = match side {
-        Side::Left => (found.mirrored(0), (0..count).map(|i| found.mirrored(place(i))).collect()),
-        Side::Right => (found.mirrored_after(n), (0..count).map(|i| found.mirrored_after(place(i) + 1)).collect()),
-    };
-    Some(compare(own, others))
+    Some(compare(mirrored(n), (0..count).map(|i| mirrored(p + i * room / count)).collect()))
 }
 
 fn compare(ratio: f64, mut others: Vec<f64>) -> Join {
@@ -161,11 +137,16 @@ mod tests {
         (0..len).map(|n| at(n, cycles) + 0.3 * at(n, 3.0 * cycles) + 0.01 * noise()).collect()
     }
 
+    fn reversed(x: &[f64]) -> Vec<f64> {
+        x.iter().rev().copied().collect()
+    }
+
     #[test]
     fn whole_revolutions_join_and_broken_ones_do_not() {
-        let whole = periodic(&tones(1024, 8.0)).expect("long enough");
+        let join = |x: &[f64]| periodic(&reversed(x), x).expect("long enough");
+        let whole = join(&tones(1024, 8.0));
         assert!(whole.ratio < 2.0 && whole.share < 0.05 && whole.median > 25.0, "{whole:?}");
-        let broken = periodic(&tones(1024, 8.4)).expect("long enough");
+        let broken = join(&tones(1024, 8.4));
         assert!(broken.ratio > 25.0, "{broken:?}");
     }
 
@@ -173,21 +154,24 @@ mod tests {
     fn a_crest_at_the_end_joins_its_own_reflection() {
         // Cosines over half cycles of the mirror interval are even about both ends.
         let both = tones(1024, 7.5);
-        for side in [Side::Left, Side::Right] {
-            let join = even(&both, side).expect("long enough");
+        for history in [both.clone(), reversed(&both)] {
+            let join = even(&history).expect("long enough");
             assert!(join.ratio < 2.0 && join.share < 0.1 && join.median > 6.0, "{join:?}");
         }
-        let right = even(&tones(1024, 7.3), Side::Right).expect("long enough");
+        let right = even(&tones(1024, 7.3)).expect("long enough");
         assert!(right.ratio > 6.0, "{right:?}");
     }
 
     #[test]
-    fn scale_and_offset_change_nothing_and_short_records_are_not_tested() {
+    fn scale_offset_and_direction_change_nothing_and_short_records_are_not_tested() {
         let x = tones(512, 5.2);
         let moved: Vec<f64> = x.iter().map(|v| 3.0 - 40.0 * v).collect();
-        let (a, b) = (periodic(&x).expect("long"), periodic(&moved).expect("long"));
-        assert!((a.ratio / b.ratio - 1.0).abs() < 1e-6 && a.share == b.share);
-        assert!(periodic(&x[..255]).is_none() && even(&x[..255], Side::Left).is_none());
-        assert!(periodic(&[1.0; 300]).is_none());
+        let a = periodic(&reversed(&x), &x).expect("long");
+        for b in [periodic(&reversed(&moved), &moved), periodic(&x, &reversed(&x))] {
+            let b = b.expect("long");
+            assert!((a.ratio / b.ratio - 1.0).abs() < 1e-6, "{a:?} {b:?}");
+        }
+        assert!(periodic(&x[..255], &x[..255]).is_none() && even(&x[..255]).is_none());
+        assert!(periodic(&[1.0; 300], &[1.0; 300]).is_none());
     }
 }

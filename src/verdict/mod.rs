@@ -166,13 +166,10 @@ impl Tolerance {
     }
 }
 
-/// The joins of a record with itself: one test serves all operators.
-pub fn structure(samples: &[f64]) -> Structure {
-    Structure {
-        periodic: join::periodic(samples),
-        even_left: join::even(samples, Side::Left),
-        even_right: join::even(samples, Side::Right),
-    }
+/// The joins of a record with itself: one test serves all operators with the same block length.
+pub fn structure(evidence: &Evidence) -> Structure {
+    let [left, right] = [Side::Left, Side::Right].map(|side| evidence.blocks(side));
+    Structure { periodic: join::periodic(left, right), even_left: join::even(left), even_right: join::even(right) }
 }
 
 /// The end estimates that the candidates' baselines rest on.
