@@ -12,6 +12,9 @@ const TIE: f64 = 1.25;
 /// The runner-up must be this much worse for the best to be supported.
 const SUPPORTED: f64 = 1.5;
 
+/// Arbitrary joins must typically be this rough, or a smooth join proves nothing.
+const POWER: f64 = 25.0;
+
 /// How clearly one symmetric extension stands out.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
 #[serde(rename_all = "snake_case")]
@@ -59,7 +62,7 @@ impl Pick {
         let margin = error(second) / error(best);
         let tied: Vec<&Edge> = edges.iter().filter(|e| e.predicted_error <= TIE * error(best)).collect();
         let ties = tied.iter().map(|e| e.name).collect();
-        let closed = periodic.is_some_and(|join| join.share <= 0.01 && join.ratio <= 2.0)
+        let closed = periodic.is_some_and(|join| join.share <= 0.01 && join.ratio <= 2.0 && join.median >= POWER)
             && error(PERIODIC) <= SUPPORTED * error(best);
         let (pick, level) = if closed {
             (PERIODIC, Level::SupportedByStructure)

@@ -16,7 +16,7 @@ use crate::record::{Source, TableLayout, TextSource};
 /// `Io` when the file cannot be opened again; reading to the end fails when it has changed.
 pub(super) fn reopen(source: &Source, layout: &TableLayout) -> Result<Box<dyn Read + Send>> {
     let path = match &layout.text {
-        TextSource::Held(text) => return Ok(Box::new(Cursor::new(Arc::clone(text)))),
+        TextSource::Held(text) => return Ok(Box::new(Cursor::new(text.as_ref().clone()))),
         TextSource::File(path) => path,
     };
     let at_file = |error: io::Error| Error::from(error).at(Place::file(path.display().to_string()));
