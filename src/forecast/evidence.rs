@@ -89,9 +89,11 @@ impl Evidence {
 impl EndEvidence {
     fn of(past: Vec<f64>) -> EndEvidence {
         let n = past.len();
-        let cut = |q: usize| q * n / CUT_FRACTION;
-        let cuts = (1..=CUTS).map(cut).filter(|h| *h >= 2).map(|h| (h, Fits::to(&past[..n - h]))).collect();
-        EndEvidence { fits: Fits::to(&past), cuts, past }
+        let cuts: Vec<usize> = (1..=CUTS).map(|q| q * n / CUT_FRACTION).filter(|h| *h >= 2).collect();
+        let stops: Vec<usize> = std::iter::once(n).chain(cuts.iter().map(|h| n - h)).collect();
+        let mut fits = Fits::to(&past, &stops);
+        let rest = fits.split_off(1);
+        EndEvidence { fits: fits.swap_remove(0), cuts: cuts.into_iter().zip(rest).collect(), past }
     }
 }
 

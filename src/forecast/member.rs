@@ -1,7 +1,10 @@
 //! The forecasters that are combined: six ways to continue a sequence from its own past.
 
+use std::ops::Range;
+
 use crate::numeric::analogue::{self, Search};
 use crate::numeric::autoregression::{Burg, Predictor};
+use crate::numeric::lag::LagTable;
 use crate::numeric::{covariance, sum};
 
 /// How many forecasters there are.
@@ -42,14 +45,27 @@ struct Pair {
 }
 
 impl Fits {
-    /// Fits to `past`, oldest first, at least two values.
-    pub fn to(past: &[f64]) -> Fits {
-        let n = past.len();
-        let recent = &past[n - (n / 2).max(16).min(n)..];
-        let long = Pair::to(past);
-        let centred: Vec<f64> = past.iter().map(|v| v - long.mean).collect();
-        let squares = covariance::fit(&centred, (n / 3).clamp(2, LONGEST_ORDER), RIDGE);
-        Fits { recent: Pair::to(recent), long, squares, len: n }
+    /// Fits to every stretch 0..stop of `past`, oldest first, each stop at least 2.
+    pub fn to(past: &[f64], stops: &[usize]) -> Vec<Fits> {
+        let recent = |stop: usize| stop - (stop / 2).max(16).min(stop);
+        let borders = || stops.iter().flat_map(|&stop| [recent(stop), stop]);
+        let centre = sum::mean(past);
+        let values: Vec<f64> = past.iter().map(|v| v - centre).collect();
+        let differences: Vec<f64> = past.windows(2).map(|w| w[1] - w[0]).collect();
+        let tables = [
+            LagTable::of(&values, LONGEST_ORDER, borders()),
+            LagTable::of(&differences, LONGEST_ORDER, borders().map(|b| b.saturating_sub(1)).chain(borders())),
+        ];
+        let sequences = Sequences { centre, values: &values, differences: &differences, tables: &tables };
+        stops.iter().map(|&stop| Fits::between(&sequences, recent(stop), stop)).collect()
+    }
+
+    fn between(sequences: &Sequences, recent: usize, stop: usize) -> Fits {
+        let (long, long_values, long_products) = sequences.pair(0..stop);
+        let (recent, ..) = sequences.pair(recent..stop);
+        let order = (stop / 3).clamp(2, LONGEST_ORDER);
+        let squares = covariance::from_products(&long_values, &long_products, order, RIDGE);
+        Fits { recent, long, squares, len: stop }
     }
 
     /// The continuation of every forecaster by `steps` values, in the order of `NAMES`. `past` is what was fitted to.
@@ -89,15 +105,44 @@ fn long_order(n: usize) -> usize {
     (n / 4).clamp(2, LONGEST_ORDER)
 }
 
-impl Pair {
-    fn to(past: &[f64]) -> Pair {
-        let order = long_order(past.len());
-        let mean = sum::mean(past);
-        let centred: Vec<f64> = past.iter().map(|v| v - mean).collect();
-        let steps: Vec<f64> = past.windows(2).map(|w| w[1] - w[0]).collect();
-        Pair { len: past.len(), mean, values: Burg::fit(&centred, order), differences: Burg::fit(&steps, order) }
-    }
+/// One history less its mean, its first differences, and the lag products of both.
+struct Sequences<'a> {
+    centre: f64,
+    values: &'a [f64],
+    differences: &'a [f64],
+    tables: &'a [LagTable; 2],
+}
 
+impl Sequences<'_> {
+    /// The pair of models over one stretch, its values less their mean, and their lag products.
+    fn pair(&self, stretch: Range<usize>) -> (Pair, Vec<f64>, Vec<f64>) {
+        let len = stretch.len();
+        let order = long_order(len);
+        let mean = sum::mean(&self.values[stretch.clone()]);
+        let centred: Vec<f64> = self.values[stretch.clone()].iter().map(|v| v - mean).collect();
+        let products = self.tables[0].products(self.values, stretch.clone(), mean);
+        // Removing the mean afterwards leaves the rounding of the products as they were.
+        let rounded = products[0] + len as f64 * mean * mean;
+        let changes = stretch.start..stretch.end - 1;
+        let differences = &self.differences[changes.clone()];
+        let change_products = self.tables[1].products(self.differences, changes, 0.0);
+        let pair = Pair {
+            len,
+            mean: self.centre + mean,
+            values: burg(&centred, &products, order, rounded),
+            differences: burg(differences, &change_products, order, change_products[0]),
+        };
+        (pair, centred, products)
+    }
+}
+
+/// Burg's recursion from lag products where they carry it, otherwise over the values.
+fn burg(values: &[f64], products: &[f64], order: usize, rounded: f64) -> Burg {
+    let order = order.min(values.len().saturating_sub(1));
+    Burg::from_products(values, products, order, rounded).unwrap_or_else(|| Burg::fit(values, order))
+}
+
+impl Pair {
     /// Mean of the two continuations; `past` ends with the values fitted to.
     fn continued(&self, past: &[f64], steps: usize, order: usize) -> Vec<f64> {
         let past = &past[past.len() - self.len..];

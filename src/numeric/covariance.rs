@@ -8,12 +8,19 @@ use crate::numeric::autoregression::{Predictor, dot};
 /// the normal matrix times the squared weights. Values are taken as they are: remove a mean first. All weights are zero
 /// when the values say nothing (constant zero, or too few).
 pub fn fit(values: &[f64], order: usize, ridge: f64) -> Predictor {
-    let n = values.len();
-    let order = order.min(n.saturating_sub(1));
+    let order = order.min(values.len().saturating_sub(1));
+    let product = |lag: usize| dot(&values[lag..], &values[..values.len() - lag]);
+    let products: Vec<f64> = if values.is_empty() { vec![0.0] } else { (0..=order).map(product).collect() };
+    from_products(values, &products, order, ridge)
+}
+
+/// The same from the lag products c(d) = sum of x(t) x(t - d) over the whole sequence, d = 0 to at least `order`.
+pub fn from_products(values: &[f64], products: &[f64], order: usize, ridge: f64) -> Predictor {
+    let order = order.min(values.len().saturating_sub(1)).min(products.len().saturating_sub(1));
     if order == 0 {
         return Predictor { weights: Vec::new() };
     }
-    let products = lag_products(values, order);
+    let products = normal_products(values, products, order);
     let at = |i: usize, j: usize| products[i * (order + 1) + j];
     // Backward errors are forward errors of the reversed stretch: c(p - i, p - j).
     let both = |i: usize, j: usize| at(i, j) + at(order - i, order - j);
@@ -37,14 +44,14 @@ pub fn fit(values: &[f64], order: usize, ridge: f64) -> Predictor {
     Predictor { weights: right }
 }
 
-/// c(i, j) = sum over t = order..n of x(t-i) x(t-j), row by row. Only the first row is summed; each further entry
-/// differs from its upper left neighbour by two products at the ends.
-fn lag_products(x: &[f64], order: usize) -> Vec<f64> {
+/// c(i, j) = sum over t = order..n of x(t-i) x(t-j), row by row. The first row is that of the whole sequence less its
+/// first pairs; each further entry differs from its upper left neighbour by two products at the ends.
+fn normal_products(x: &[f64], whole: &[f64], order: usize) -> Vec<f64> {
     let n = x.len();
     let width = order + 1;
     let mut c = vec![0.0; width * width];
     for j in 0..width {
-        c[j] = dot(&x[order..n], &x[order - j..n - j]);
+        c[j] = whole[j] - dot(&x[j..order], &x[..order - j]);
         c[j * width] = c[j];
     }
     for i in 0..order {
@@ -107,7 +114,8 @@ mod tests {
     fn lag_products_equal_their_definition() {
         let x: Vec<f64> = (0..40).map(|n| ((n * n) % 17) as f64 - 8.0).collect();
         let order = 5;
-        let c = lag_products(&x, order);
+        let whole: Vec<f64> = (0..=order).map(|d| x[d..].iter().zip(&x).map(|(a, b)| a * b).sum()).collect();
+        let c = normal_products(&x, &whole, order);
         for i in 0..=order {
             for j in 0..=order {
                 let sum: f64 = (order..40).map(|t| x[t - i] * x[t - j]).sum();

@@ -6,6 +6,7 @@ pub mod autoregressive_gap;
 pub mod compensated;
 pub mod covariance;
 pub mod fourier;
+pub mod lag;
 pub mod noise;
 pub mod polynomial;
 pub mod quantile;
