@@ -88,7 +88,7 @@ pub fn condition_with(
     let (unit, unit_factor) = channel.unit.turned(turns, channel.axis.unit());
     let mut parseval = 0.0;
     let mut output: Option<Vec<f64>> = None;
-    for (index, pass) in chain.passes().iter().enumerate() {
+    for (index, pass) in chain.passes().iter().enumerate().filter(|(_, pass)| !pass.is_identity()) {
         let passed = match &output {
             None => {
                 let passed = apply(channel.samples, ends, &baseline, pass, planner)?;

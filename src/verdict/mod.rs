@@ -197,8 +197,7 @@ fn differences(
         let ahead = [Side::Left, Side::Right].map(|side| near.foretold(forecast, side));
         let mean = sum::mean(samples);
         for candidate in symmetric {
-            let outside =
-                [Side::Left, Side::Right].map(|side| near.symmetric(candidate, &case.estimates, mean, side));
+            let outside = [Side::Left, Side::Right].map(|side| near.symmetric(candidate, &case.estimates, mean, side));
             found.push((candidate.name, near.difference(&outside, &ahead)));
         }
         let constant = |left, right| near.difference(&[near.constant(left), near.constant(right)], &ahead);

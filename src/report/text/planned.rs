@@ -16,11 +16,14 @@ pub fn plan_text(plan: &Plan) -> String {
     text.push_str(&format!("baseline {baseline}, {how}\n"));
     text.push_str(&operators_text(&plan.chain, &plan.input.axis));
     if !plan.gains.is_empty() {
-        let mut rows = table(&["corner", "octave", "frequency", "gain"]);
+        let mut rows = table(&["corner", "where", "frequency", "gain"]);
         for point in &plan.gains {
             rows.add_row(vec![
                 point.corner.clone(),
-                format!("{:+}", point.octave),
+                match point.octave {
+                    0 => "at it".to_owned(),
+                    octave => format!("{octave:+} octave"),
+                },
                 format!("{} {}", figure(point.frequency, 6), point.unit),
                 point.gain.map_or_else(|| "above Nyquist".to_owned(), |gain| figure(gain, 6)),
             ]);
@@ -48,6 +51,7 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     for (index, pass) in chain.passes.iter().enumerate() {
         let mut parts: Vec<String> =
             pass.operators.iter().map(|operator| format!("{} {}", operator.option, operator.value)).collect();
+        parts.dedup(); // a band-pass stands for two gains
         if !pass.operators.is_empty() {
             parts.push(chain.shape.clone());
         }
