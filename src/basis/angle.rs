@@ -56,11 +56,13 @@ mod tests {
     }
 
     #[test]
-    fn a_phase_of_a_million_laps_keeps_its_digits() {
-        // cos(pi (10^6 + 1/2)(2 10^6 + 1/4) / (2 10^6)): the product is 2000001250000.125 = 500000 periods of 4 10^6 plus
-        // 1250000.125, so the angle is pi 0.6250000625.
-        let (c, s) = at_position(1e6 + 0.5, 2e6 + 0.25, 2e6);
-        let angle = std::f64::consts::PI * 0.625_000_062_5;
-        assert!((c - angle.cos()).abs() < 4.0 * f64::EPSILON && (s - angle.sin()).abs() < 4.0 * f64::EPSILON);
+    fn a_phase_past_the_last_digit_of_the_product_is_kept() {
+        // (2^27 + 1)(2^27 + 3/2) = 2^54 + 5 2^26 + 3/2 has more than 53 bits; modulo 2^28 it is 2^26 + 3/2, so that the
+        // angle is pi/2 + 3 pi/2^28.
+        let length = 2_f64.powi(27);
+        let (c, s) = at_position(length + 1.0, length + 1.5, length);
+        let beyond = 3.0 * std::f64::consts::PI / 2_f64.powi(28);
+        // One rounding of an angle below 2 pi.
+        assert!((c + beyond.sin()).abs() < 4.0 * f64::EPSILON && (s - beyond.cos()).abs() < 4.0 * f64::EPSILON);
     }
 }

@@ -3,7 +3,7 @@
 use clap::builder::{PossibleValuesParser, StyledStr};
 use clap::{Arg, ArgAction, ArgMatches, Command};
 use endgrain::error::Result;
-use endgrain::settings::{Arity, Group, OPTIONS, Settings};
+use endgrain::settings::{Arity, Group, Settings, rows};
 
 use crate::cli::{audit, condition, exit};
 
@@ -34,7 +34,7 @@ pub fn command() -> Command {
 /// A subcommand with its examples, the options of the given groups, and what every command has.
 pub fn subcommand(name: &'static str, about: &'static str, examples: &'static str, groups: &[Group]) -> Command {
     let mut command = Command::new(name).about(about).before_help(examples).help_template(TEMPLATE);
-    for row in OPTIONS.iter().filter(|row| groups.contains(&row.group)) {
+    for row in rows().into_iter().filter(|row| groups.contains(&row.group)) {
         let arg = Arg::new(row.key).long(row.key).help(row.help).help_heading(row.group.heading());
         command = command.arg(match row.arity {
             Arity::Switch => arg.action(ArgAction::SetTrue),
@@ -52,7 +52,14 @@ pub fn subcommand(name: &'static str, about: &'static str, examples: &'static st
                 .help_heading("Report")
                 .help("Also write the result as JSON; '-' (the default) is standard output"),
         )
-        .arg(Arg::new("quiet").long("quiet").short('q').action(ArgAction::SetTrue).help_heading("Report").help("No summary"))
+        .arg(
+            Arg::new("quiet")
+                .long("quiet")
+                .short('q')
+                .action(ArgAction::SetTrue)
+                .help_heading("Report")
+                .help("No summary"),
+        )
         .arg(
             Arg::new("color")
                 .long("color")
@@ -70,7 +77,7 @@ pub fn subcommand(name: &'static str, about: &'static str, examples: &'static st
 /// `Usage` with the option's name for a value that does not parse.
 pub fn settings(matches: &ArgMatches, groups: &[Group]) -> Result<Settings> {
     let mut settings = Settings::default();
-    for row in OPTIONS.iter().filter(|row| groups.contains(&row.group)) {
+    for row in rows().into_iter().filter(|row| groups.contains(&row.group)) {
         match row.arity {
             Arity::Switch => {
                 if matches.get_flag(row.key) {

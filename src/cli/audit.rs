@@ -22,7 +22,13 @@ Examples:
 /// The subcommand.
 pub fn command() -> Command {
     args::subcommand("audit", "Tell what is in a record and whether it is fit", EXAMPLES, GROUPS)
-        .arg(Arg::new("input").value_name("FILE").required(true).num_args(1..).help("Records: CSV or WAV, '-' for standard input"))
+        .arg(
+            Arg::new("input")
+                .value_name("FILE")
+                .required(true)
+                .num_args(1..)
+                .help("Records: CSV or WAV, '-' for standard input"),
+        )
         .after_help(exit::HELP)
 }
 

@@ -27,32 +27,37 @@ Examples:
 
 /// The subcommand.
 pub fn command() -> Command {
-    args::subcommand("condition", "Extend, transform, filter, reconstruct and write a record in its own format", EXAMPLES, GROUPS)
-        .arg(Arg::new("input").value_name("FILE").required(true).help("The record: CSV or WAV, '-' for standard input"))
-        .arg(
-            Arg::new("output")
-                .short('o')
-                .long("output")
-                .value_name("OUT")
-                .required_unless_present("dry-run")
-                .help_heading(Group::Output.heading())
-                .help("Where the result goes, '-' for standard output; the JSON sidecar is OUT with .json appended"),
-        )
-        .arg(
-            Arg::new("force")
-                .long("force")
-                .action(ArgAction::SetTrue)
-                .help_heading(Group::Output.heading())
-                .help("Replace files that are in the way"),
-        )
-        .arg(
-            Arg::new("dry-run")
-                .long("dry-run")
-                .action(ArgAction::SetTrue)
-                .help_heading(Group::Output.heading())
-                .help("Print the resolved plan and the gain at and around each corner; write nothing"),
-        )
-        .after_help(exit::HELP)
+    args::subcommand(
+        "condition",
+        "Extend, transform, filter, reconstruct and write a record in its own format",
+        EXAMPLES,
+        GROUPS,
+    )
+    .arg(Arg::new("input").value_name("FILE").required(true).help("The record: CSV or WAV, '-' for standard input"))
+    .arg(
+        Arg::new("output")
+            .short('o')
+            .long("output")
+            .value_name("OUT")
+            .required_unless_present("dry-run")
+            .help_heading(Group::Output.heading())
+            .help("Where the result goes, '-' for standard output; the JSON sidecar is OUT with .json appended"),
+    )
+    .arg(
+        Arg::new("force")
+            .long("force")
+            .action(ArgAction::SetTrue)
+            .help_heading(Group::Output.heading())
+            .help("Replace files that are in the way"),
+    )
+    .arg(
+        Arg::new("dry-run")
+            .long("dry-run")
+            .action(ArgAction::SetTrue)
+            .help_heading(Group::Output.heading())
+            .help("Print the resolved plan and the gain at and around each corner; write nothing"),
+    )
+    .after_help(exit::HELP)
 }
 
 /// Runs it.
@@ -74,7 +79,8 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     };
     let to_stdout = stream::is_stdout(&output);
     if to_stdout && json.as_deref().is_some_and(stream::is_stdout) {
-        return Err(Error::usage("the record and the JSON cannot both go to standard output").remedy("give one of them a file name"));
+        return Err(Error::usage("the record and the JSON cannot both go to standard output")
+            .remedy("give one of them a file name"));
     }
     let overwrite = if matches.get_flag("force") { Overwrite::Force } else { Overwrite::Refuse };
     let json_file = json.as_deref().filter(|path| !stream::is_stdout(path));

@@ -10,6 +10,7 @@ pub const NOT_MET: u8 = 1;
 /// The exit code of an error.
 pub fn code(error: &Error) -> ExitCode {
     ExitCode::from(match error.kind() {
+        Kind::Closed => 0,
         Kind::Usage => 2,
         Kind::Malformed => 3,
         Kind::Unsupported => 4,

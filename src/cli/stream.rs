@@ -16,7 +16,9 @@ pub fn input(argument: &str) -> Result<Input> {
         return Ok(Input::Path(PathBuf::from(argument)));
     }
     if io::stdin().is_terminal() {
-        return Err(Error::usage("'-' reads standard input, which is a terminal").remedy("pipe a record in, or name a file"));
+        return Err(
+            Error::usage("'-' reads standard input, which is a terminal").remedy("pipe a record in, or name a file")
+        );
     }
     let stdin: Box<dyn Read + Send> = Box::new(io::stdin());
     Ok(Input::Stream(stdin))

@@ -111,4 +111,3 @@ pub fn condition_with(
     let output = output.unwrap_or_else(|| channel.samples.to_vec());
     Ok(Outcome { output, unit, ends, baseline, scale, parseval })
 }
-

@@ -18,8 +18,8 @@ use crate::read::Input;
 use crate::record::{Channel, Format, Layout, Record};
 use crate::regularise::RowMap;
 use crate::report::{
-    self, BaselineReport, CAUTION, ChannelReport, ExtensionReport, How, InOut, InputReport, OutputReport, Plan, ReachReport, Report,
-    SCHEMA, Tool,
+    self, BaselineReport, CAUTION, ChannelReport, ExtensionReport, How, InOut, InputReport, OutputReport, Plan,
+    ReachReport, Report, SCHEMA, Tool,
 };
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, Origin, Rows, WaveEncoding};
@@ -127,7 +127,9 @@ fn run(record: Record, resolved: &Resolved) -> Result<(Record, Vec<ChannelReport
         let outcome = condition::condition(channel, &resolved.chain, resolved.ends, resolved.baseline, &planner)?;
         if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
             let place = crate::place::Place { sample: Some(n as u64), ..crate::place::Place::channel(&names[index]) };
-            return Err(Error::unsupported("the result is too large for a double").at(place).remedy("scale the channel with --calibrate"));
+            return Err(Error::unsupported("the result is too large for a double")
+                .at(place)
+                .remedy("scale the channel with --calibrate"));
         }
         let report = channel_report(channel, &outcome, resolved, before);
         row.copy_from_slice(&outcome.output);
@@ -143,7 +145,12 @@ fn run(record: Record, resolved: &Resolved) -> Result<(Record, Vec<ChannelReport
     Ok((Record::new(axis, names, units, samples)?, reports))
 }
 
-fn channel_report(channel: Channel<'_>, outcome: &Outcome, resolved: &Resolved, before: Option<Level>) -> ChannelReport {
+fn channel_report(
+    channel: Channel<'_>,
+    outcome: &Outcome,
+    resolved: &Resolved,
+    before: Option<Level>,
+) -> ChannelReport {
     let after = Level::of(&outcome.output);
     let polynomial = outcome.baseline.polynomial();
     let reaches = resolved.chain.reaches();
@@ -194,7 +201,8 @@ fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     let Some(name) = &settings.encoding else { return Ok(WaveEncoding::Float32) };
     write::WAVE_ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
         let known: Vec<&str> = write::WAVE_ENCODINGS.iter().map(|(name, _)| *name).collect();
-        Error::usage(format!("--encoding: not a sample type: {name:?}")).remedy(format!("use one of {}", known.join(", ")))
+        Error::usage(format!("--encoding: not a sample type: {name:?}"))
+            .remedy(format!("use one of {}", known.join(", ")))
     })
 }
 

@@ -9,8 +9,8 @@ use serde::Serialize;
 use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
-use crate::operator::ChainDescription;
 use crate::error::Finding;
+use crate::operator::ChainDescription;
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 

@@ -72,7 +72,8 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
 fn one_of<T: Copy>(key: &str, text: &str, words: Words<T>) -> Result<T> {
     words.iter().find(|(word, _)| *word == text).map(|(_, value)| *value).ok_or_else(|| {
         let known: Vec<&str> = words.iter().map(|(word, _)| *word).collect();
-        Error::usage(format!("--{key}: \"{}\" is not known", escape(text))).remedy(format!("use {}", known.join(" or ")))
+        Error::usage(format!("--{key}: \"{}\" is not known", escape(text)))
+            .remedy(format!("use {}", known.join(" or ")))
     })
 }
 
@@ -102,7 +103,9 @@ fn switch(key: &str, text: &str) -> Result<bool> {
 fn decimals(text: &str) -> Result<u8> {
     let count: u8 = named("decimals", text, "a number of decimals")?;
     if count > 17 {
-        return Err(Error::usage(format!("--decimals: {count} is more than a double can show")).remedy("use at most 17"));
+        return Err(
+            Error::usage(format!("--decimals: {count} is more than a double can show")).remedy("use at most 17")
+        );
     }
     Ok(count)
 }
@@ -112,7 +115,8 @@ fn axis_unit(key: &str, text: &str) -> Result<Unit> {
     if unit.is_time() || unit.is_length() {
         return Ok(unit);
     }
-    Err(Error::usage(format!("--{key}: not a unit of time or length: \"{}\"", escape(text))).remedy("use s, ms, us, ns, m, mm or um"))
+    Err(Error::usage(format!("--{key}: not a unit of time or length: \"{}\"", escape(text)))
+        .remedy("use s, ms, us, ns, m, mm or um"))
 }
 
 fn delimiter(text: &str) -> Result<u8> {
@@ -128,16 +132,17 @@ fn mark(key: &str, text: &str, allowed: &[u8]) -> Result<u8> {
         [byte] if allowed.contains(byte) => Ok(*byte),
         _ => {
             let shown: Vec<String> = allowed.iter().map(|b| format!("'{}'", *b as char)).collect();
-            Err(Error::usage(format!("--{key}: \"{}\" cannot be that", escape(text))).remedy(format!("use one of {}", shown.join(" "))))
+            Err(Error::usage(format!("--{key}: \"{}\" cannot be that", escape(text)))
+                .remedy(format!("use one of {}", shown.join(" "))))
         }
     }
 }
 
 fn pair<'a>(key: &str, text: &'a str, form: &str) -> Result<(&'a str, &'a str)> {
     // The last '=': a channel name may hold one, a unit cannot.
-    text.rsplit_once('=')
-        .filter(|(name, _)| !name.is_empty())
-        .ok_or_else(|| Error::usage(format!("--{key}: \"{}\" is not NAME=VALUE", escape(text))).remedy(format!("write {form}")))
+    text.rsplit_once('=').filter(|(name, _)| !name.is_empty()).ok_or_else(|| {
+        Error::usage(format!("--{key}: \"{}\" is not NAME=VALUE", escape(text))).remedy(format!("write {form}"))
+    })
 }
 
 /// `ch1=98.1m/s2`: name, factor, unit of the result.
@@ -148,7 +153,8 @@ fn calibration(text: &str) -> Result<Calibration> {
         .rev()
         .find(|&n| value.is_char_boundary(n) && value[..n].trim().parse::<f64>().is_ok_and(f64::is_finite))
         .ok_or_else(|| {
-            Error::usage(format!("--calibrate: no factor in \"{}\"", escape(value))).remedy("write NAME=FACTOR[UNIT], such as ch1=98.1m/s2")
+            Error::usage(format!("--calibrate: no factor in \"{}\"", escape(value)))
+                .remedy("write NAME=FACTOR[UNIT], such as ch1=98.1m/s2")
         })?;
     let factor = named("calibrate", &value[..split], "a factor")?;
     let unit = value[split..].trim();

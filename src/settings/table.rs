@@ -57,13 +57,7 @@ pub struct OptionRow {
     pub help: &'static str,
 }
 
-const fn row(
-    key: &'static str,
-    value: &'static str,
-    arity: Arity,
-    group: Group,
-    help: &'static str,
-) -> OptionRow {
+const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group, help: &'static str) -> OptionRow {
     OptionRow { key, value, arity, group, help }
 }
 

@@ -8,7 +8,6 @@ mod number;
 mod origin;
 mod stamp;
 mod table;
-mod text;
 mod wav;
 mod wave_header;
 mod whole;

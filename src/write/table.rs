@@ -9,10 +9,11 @@ use super::csv::push_cell;
 use super::field::{Fields, row_end};
 use super::header::{self, Change};
 use super::number;
-use super::text;
+
 use super::{Content, Origin};
 use crate::error::{Error, Result};
 use crate::place::Place;
+use crate::read;
 use crate::record::{Channel, ColumnRole, TextSource};
 
 /// Whether the result fits the table.
@@ -321,7 +322,7 @@ type Parted = (Arc<Vec<u8>>, Vec<(Range<usize>, u64)>);
 
 impl Source {
     fn open(origin: &Origin<'_>) -> Result<Source> {
-        let reader = text::reopen(&origin.source, &origin.layout)?;
+        let reader = read::reopen(&origin.source, &origin.layout)?;
         let mut source = Source { reader, line_end: line_end(origin), carried: Vec::new(), ended: false };
         let mut head = Vec::new();
         source.pull(&mut head, origin.layout.head.len()).map_err(|error| error.at(place(origin)))?;

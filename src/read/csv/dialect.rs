@@ -172,6 +172,10 @@ fn choose(beginning: Beginning<'_>, mut runs: Vec<Found>) -> Result<Option<Found
     if runs.iter().any(|run| run.dialect.delimiter != b' ' && run.fields > 1) {
         runs.retain(|run| run.dialect.delimiter != b' ');
     }
+    // The reading that leaves the fewest fields as text.
+    let texts = |run: &Found| run.looks.iter().flatten().filter(|look| **look == Look::Text).count();
+    let fewest = runs.iter().map(texts).min().unwrap_or(0);
+    runs.retain(|run| texts(run) == fewest);
     let mut readings: Vec<(Vec<Option<u64>>, Found)> = Vec::new();
     for run in runs {
         let reading = reading(beginning, &run);
@@ -218,7 +222,11 @@ fn header_agrees(beginning: Beginning<'_>, run: &Found) -> bool {
 }
 
 fn described(line: &[u8], run: &Found) -> String {
-    let fields: Vec<String> = fields(line, run.dialect.delimiter).iter().map(|field| shown(&field.text)).collect();
+    let read = |field: &Field<'_>| match super::field::number(&field.text, run.dialect) {
+        Some(value) => format!("{value}"),
+        None => shown(&field.text),
+    };
+    let fields: Vec<String> = fields(line, run.dialect.delimiter).iter().map(read).collect();
     let delimiter = match run.dialect.delimiter {
         b'\t' => "tab".to_owned(),
         b' ' => "blanks".to_owned(),

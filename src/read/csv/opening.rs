@@ -87,7 +87,7 @@ fn judge(beginning: Beginning<'_>, found: Found, newline: u8, options: &ReadOpti
     let header = header::find(beginning, &found, empty_last, options.header_lines.is_some())?;
     let roles = column::roles(&header, &rows, &found, options)?;
     let data = beginning.lines[found.first].clone();
-    let skipped = [header.names_line, header.units_line];
+    let skipped = [header.names.clone(), header.units.clone()];
     Ok(Opening {
         metadata: metadata::pairs(beginning, found.first, &skipped, found.dialect),
         head: String::from_utf8_lossy(&beginning.text[..data.start]).into_owned(),

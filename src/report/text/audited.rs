@@ -19,7 +19,11 @@ pub fn audit_text(report: &AuditReport) -> String {
         None => text.push_str(&format!("{} rows\n", report.audit.rows)),
     }
     if let Some(stamps) = &report.audit.stamps {
-        let gaps = if stamps.missing > 0 { format!(", {} rows missing in {} gaps", stamps.missing, stamps.gaps.len()) } else { String::new() };
+        let gaps = if stamps.missing > 0 {
+            format!(", {} rows missing in {} gaps", stamps.missing, stamps.gaps.len())
+        } else {
+            String::new()
+        };
         text.push_str(&format!(
             "stamps {}, resolution {} {}{gaps}\n",
             spacing_text(stamps.spacing),
@@ -27,7 +31,10 @@ pub fn audit_text(report: &AuditReport) -> String {
             stamps.unit
         ));
     }
-    let mut rows = table(&["channel", "unit", "mean", "RMS", "peak", "crest", "kurtosis", "noise", "step", "bits", "clipped", "spikes", "missing", "ends"]);
+    let mut rows = table(&[
+        "channel", "unit", "mean", "RMS", "peak", "crest", "kurtosis", "noise", "step", "bits", "clipped", "spikes",
+        "missing", "ends",
+    ]);
     for channel in &report.audit.channels {
         let level = channel.level.as_ref();
         let shown = |value: Option<f64>| value.map_or_else(|| "-".to_owned(), |v| figure(v, 4));

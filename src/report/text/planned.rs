@@ -74,7 +74,9 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
             figure(samples * axis.step, 4),
             axis.unit
         )),
-        Reach::Unbounded => text.push_str("reach unbounded: the whole result depends on what is assumed past the ends\n"),
+        Reach::Unbounded => {
+            text.push_str("reach unbounded: the whole result depends on what is assumed past the ends\n")
+        }
     }
     text
 }
