@@ -35,10 +35,7 @@ const BEYOND_REACH: f64 = 1e-3;
 impl<'a> Response<'a> {
     /// The response on a periodic grid of `grid` samples (at least 8).
     pub fn on_grid(shape: Shape<'a>, grid: usize) -> Self {
-        let mut kernel = vec![0.0; grid.max(8)];
-        kernel[0] = 1.0;
-        fourier::filter(&mut kernel, shape.gain, shape.turns);
-        kernel.truncate(kernel.len() / 2 + 1);
+        let kernel = fourier::impulse_response(grid.max(8), shape.gain, shape.turns);
         let mut sum = 0.0;
         let mut steps = Vec::with_capacity(kernel.len() + 1);
         steps.push(0.0);

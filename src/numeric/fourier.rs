@@ -42,13 +42,33 @@ pub fn filter(period: &mut [f64], gain: impl Fn(f64) -> f64, turns: i32) {
         for (k, value) in spectrum.iter_mut().enumerate() {
             *value *= turn * (gain(k as f64 / len as f64) / len as f64);
         }
-        // Constant and Nyquist are real in a real sequence; an odd number of quarter turns removes them.
-        spectrum[0].im = 0.0;
-        if len % 2 == 0 {
-            spectrum[len / 2].im = 0.0;
-        }
+        real_ends(&mut spectrum, len);
         let _ = inverse.process(&mut spectrum, period);
     });
+}
+
+/// The impulse response of `gain(f)` i^`turns` on a periodic grid of `grid` samples: lags 0 to grid/2.
+pub fn impulse_response(grid: usize, gain: impl Fn(f64) -> f64, turns: i32) -> Vec<f64> {
+    with_planner(|planner| {
+        let inverse = planner.plan_fft_inverse(grid);
+        let turn = quarter_turns(turns);
+        let line = |k: usize| turn * (gain(k as f64 / grid as f64) / grid as f64);
+        let mut spectrum: Vec<Complex<f64>> = (0..grid / 2 + 1).map(line).collect();
+        real_ends(&mut spectrum, grid);
+        let mut response = vec![0.0; grid];
+        // The lengths are the plan's own, the only thing this call can reject.
+        let _ = inverse.process(&mut spectrum, &mut response);
+        response.truncate(grid / 2 + 1);
+        response
+    })
+}
+
+/// Constant and Nyquist are real in a real sequence; an odd number of quarter turns removes them.
+fn real_ends(spectrum: &mut [Complex<f64>], len: usize) {
+    spectrum[0].im = 0.0;
+    if len.is_multiple_of(2) {
+        spectrum[len / 2].im = 0.0;
+    }
 }
 
 /// i^turns.

@@ -14,5 +14,6 @@ pub mod quantum;
 pub mod rational;
 pub mod running_median;
 pub mod spline;
+pub mod stretch;
 pub mod strip;
 pub mod sum;
