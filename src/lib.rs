@@ -39,6 +39,7 @@ pub mod forecast;
 pub mod condition;
 pub mod metric;
 pub mod verdict;
+pub mod compare;
 pub mod settings;
 pub mod report;
 pub mod write;

@@ -4,6 +4,9 @@ use std::process::ExitCode;
 
 use endgrain::error::{Error, Kind};
 
+/// Complete, but a requirement was not met.
+pub const NOT_MET: u8 = 1;
+
 /// The exit code of an error.
 pub fn code(error: &Error) -> ExitCode {
     ExitCode::from(match error.kind() {

@@ -225,6 +225,9 @@ impl<'a> Plan<'a> {
     /// A conditioned value; in quotes where its decimal mark is the delimiter and the source has none.
     fn value(&self, channel: usize, sample: usize, quoted: bool, out: &mut Vec<u8>) {
         let layout = &self.origin.layout;
+        if self.content.is_blank(channel, sample) {
+            return self.blank(out);
+        }
         let quote = layout.delimiter == layout.decimal && !quoted;
         out.extend(quote.then_some(b'"'));
         number::push(out, self.channels[channel].samples[sample], self.content.digits, layout.decimal);
