@@ -137,12 +137,12 @@ mod tests {
     #[test]
     fn a_quoted_line_end_ends_no_row() {
         assert_eq!(row_end(b"a,\"b\nc\"\nd", 0, b',', b'\n'), Some((7, 2)));
-        assert_eq!(row_end(b"x\n \"a \"\"b\nc\" ,1\n", 2, b',', b'\n'), Some((17, 2)));
+        assert_eq!(row_end(b"x\n \"a \"\"b\nc\" ,1\n", 2, b',', b'\n'), Some((15, 2)));
         assert_eq!(row_end(b"abc", 0, b',', b'\n'), None);
         assert_eq!(row_end(b"a,\"open\n", 0, b',', b'\n'), None);
         // Inches: a quote inside a field is a character like any other.
         assert_eq!(row_end(b"1,5\" pipe\n2", 0, b',', b'\n'), Some((9, 1)));
-        assert_eq!(row_end(b"1 \"a\n\" 2\n", 0, b' ', b'\n'), Some((9, 2)));
+        assert_eq!(row_end(b"1 \"a\n\" 2\n", 0, b' ', b'\n'), Some((8, 2)));
     }
 
     #[test]
