@@ -134,7 +134,10 @@ fn asserted(
     let left = parities[0].map_or_else(|| forecast[0].clone(), |parity| reflected(parity, Side::Left));
     let right = parities[1].map_or_else(|| forecast[1].clone(), |parity| reflected(parity, Side::Right));
     Ok(Chosen {
-        name: format!("{assertion}, forecast at the other end"),
+        name: match assertion.left {
+            Some(_) => format!("{assertion}/forecast"),
+            None => format!("forecast/{assertion}"),
+        },
         continuation: Continuation::Given([left, right]),
         how: How::Asserted,
     })

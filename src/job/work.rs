@@ -17,6 +17,7 @@ use crate::report::{
     BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport,
 };
 use crate::settings::Settings;
+use crate::unit::Unit;
 use crate::verdict::{Auto, Edge};
 
 /// A channel this long is worked on alone: several at once would hold several times its transform memory.
@@ -116,7 +117,7 @@ fn report(
     let kind = outcome.baseline.kind();
     let fitted = matches!(kind, BaselineKind::Level(_) | BaselineKind::Line | BaselineKind::Slopes);
     let edge = edge_of(chosen, judgement);
-    let verdict = verdict_report(channel, settings, judgement, edge);
+    let verdict = verdict_report(channel, &outcome.unit, settings, judgement, edge);
     let mut notes = Vec::new();
     if let Some(standing) = verdict.as_ref().and_then(|v| v.assertion)
         && standing == compare::Standing::Contradicted
@@ -182,6 +183,7 @@ pub fn trusted_report(first: usize, last: usize, axis: &Axis) -> TrustedReport {
 
 fn verdict_report(
     channel: Channel<'_>,
+    unit: &Unit,
     settings: &Settings,
     judgement: Option<&Judgement>,
     edge: Option<&Edge>,
@@ -192,7 +194,7 @@ fn verdict_report(
         .then(|| settings.assertion.standing(judgement, sum::standard_deviation(channel.samples)));
     let mut sentence = verdict.pick_sentence();
     if let Some(edge) = edge {
-        sentence = format!("{sentence}; {}: {}", edge.name, verdict.edge_sentence(edge, channel.samples.len()));
+        sentence = format!("{sentence}; {}: {}", edge.name, verdict.edge_sentence(edge, unit, channel.axis));
     }
     Some(VerdictReport {
         pick: verdict.pick.name,
