@@ -352,7 +352,9 @@ fn case_25_floats_that_are_not_finite() {
 fn a_rate_of_0_needs_one_given() {
     let bytes = riff(&[chunk(b"fmt ", &fmt(1, 1, 0, 2, 16)), chunk(b"data", &words(&[16384]))]);
     assert!(refused(&bytes).contains("--rate"));
-    let record = try_read(&bytes, &ReadOptions { rate: Some(StatedRate::parse("100").unwrap()), ..ReadOptions::default() }).unwrap();
+    let record =
+        try_read(&bytes, &ReadOptions { rate: Some(StatedRate::parse("100").unwrap()), ..ReadOptions::default() })
+            .unwrap();
     assert_eq!((values(&record), record.stated_rate), (vec![vec![0.5]], None));
 }
 
@@ -411,7 +413,8 @@ fn only_wanted_channels_are_kept_in_file_order() {
     assert_eq!(values(&record)[1], [3.0 / 32768.0, 6.0 / 32768.0]);
     for wrong in ["ch4", "ch0", "ch01", "ax"] {
         let wanted = [wrong.to_owned()];
-        let error = try_read(&bytes, &ReadOptions { channels: Some(wanted.to_vec()), ..ReadOptions::default() }).unwrap_err();
+        let error =
+            try_read(&bytes, &ReadOptions { channels: Some(wanted.to_vec()), ..ReadOptions::default() }).unwrap_err();
         assert_eq!(error.kind(), Kind::Usage);
         assert!(error.to_string().contains("ch1 to ch3"));
     }
