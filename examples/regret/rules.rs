@@ -77,7 +77,7 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>, struc
     let x = window.samples();
     let n = x.len();
     let shape = Shape { gain: &*trial.gain, turns: 0, shortest_wavelength: trial.shortest };
-    let response = Response::on_grid(shape, 4 * n);
+    let response = Response::of(shape, n);
     let zone = response.zone(n);
     let truth = extended(trial, Ends::EVEN, &window.whole)[window.start..window.start + n].to_vec();
     let floor = 1e-4 * sum::standard_deviation(&truth);

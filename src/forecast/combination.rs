@@ -44,8 +44,12 @@ impl Forecast {
         let weights = weights(&scores, sides[0].past.len());
         let blocks = [0, 1].map(|side| mixture(&sides[side].fits.continued(&sides[side].past, steps), &weights[side]));
         let farthest = response.trimmable(len).max(zone);
-        let by_innovations =
-            sides.map(|end| variance::profile(&end.fits, response, block, steps, farthest, evidence.quantum()));
+        // Rounding to the quantisation step is the least that is unforeseen.
+        let rounding = evidence.quantum().powi(2) / (12.0 * block as f64);
+        let by_innovations = sides.map(|end| {
+            let (predictor, innovation) = end.fits.innovations();
+            variance::profile(&predictor, innovation.max(rounding), response, block, steps, farthest)
+        });
         let by_backcasts = [0, 1].map(|side| scores[side].variances(&sight, &weights[side]));
         let wide = Sight::of(response, farthest, steps, block);
         let profiles = [0, 1].map(|side| {
@@ -72,6 +76,15 @@ impl Forecast {
     /// The continuation past one end in blocks, outwards; beyond them it is reflected evenly.
     pub fn blocks(&self, side: Side) -> &[f64] {
         &self.blocks[side as usize]
+    }
+
+    /// The record with both continuations, and where it starts in there.
+    pub fn padded(&self, samples: &[f64]) -> (Vec<f64>, usize) {
+        let left = self.continuation(Side::Left);
+        let mut line: Vec<f64> = left.iter().rev().copied().collect();
+        line.extend_from_slice(samples);
+        line.extend(self.continuation(Side::Right));
+        (line, left.len())
     }
 
     /// Samples per block.
@@ -212,3 +225,6 @@ fn weights(ends: &[Backcasts; 2], blocks: usize) -> [[f64; COUNT]; 2] {
         if total > 0.0 { weights.map(|w| w / total) } else { [1.0 / COUNT as f64; COUNT] }
     })
 }
+
+#[cfg(test)]
+mod tests;

@@ -114,3 +114,41 @@ fn reach(kernel: &[f64]) -> usize {
     }
     0
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn reach_of(gain: &(dyn Fn(f64) -> f64 + Sync), len: usize) -> f64 {
+        let shape = Shape { gain, turns: 0, shortest_wavelength: 100.0 };
+        Response::of(shape, len).reach() as f64 / 100.0
+    }
+
+    #[test]
+    fn reaches_are_those_of_the_closed_forms() {
+        // Gaussian: erfc(pi r/sqrt(ln 2)) = 0.001 gives r = 0.617 wavelengths (tables of the error function). The squared
+        // Butterworth response of order 4 has the envelope exp(-2 pi r sin(pi/8)): a thousandth at about 2.7.
+        assert!((reach_of(&|f| (-(f * 100.0).powi(2)).exp2(), 10_000) - 0.617).abs() < 0.01);
+        assert!((reach_of(&|f| 1.0 / (1.0 + (f * 100.0).powi(8)), 10_000) - 2.7).abs() < 0.05);
+        // The tail of a brick wall falls as 1/n only: no number of samples holds it.
+        assert!(reach_of(&|f| if f < 0.01 { 1.0 } else { 0.0 }, 10_000) > 100.0);
+        assert_eq!(reach_of(&|_| 1.0, 1000), 0.0);
+    }
+
+    #[test]
+    fn areas_add_up_to_the_gain_at_zero_frequency() {
+        let gain = |f: f64| (-(f * 100.0).powi(2)).exp2();
+        let response = Response::of(Shape { gain: &gain, turns: 0, shortest_wavelength: 100.0 }, 10_000);
+        let outside = response.area(1, usize::MAX);
+        assert!((response.kernel()[0] + 2.0 * outside - 1.0).abs() < 1e-12);
+        assert!((response.area(5, 9) - response.kernel()[5..9].iter().sum::<f64>()).abs() < 1e-15);
+    }
+
+    #[test]
+    fn a_derivative_has_no_kernel_at_lag_zero() {
+        let gain = |f: f64| std::f64::consts::TAU * f * (-(f * 100.0).powi(2)).exp2();
+        let response = Response::of(Shape { gain: &gain, turns: 1, shortest_wavelength: 100.0 }, 10_000);
+        // h(n) < 0 for n > 0: a rise ahead means a fall behind; the kernel is odd, y(j) = sum h(j - n) x(n).
+        assert!(response.kernel()[0].abs() < 1e-15 && response.kernel()[20] < 0.0);
+    }
+}

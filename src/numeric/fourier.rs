@@ -1,4 +1,4 @@
-//! Filtering one period of a periodic sequence by its Fourier transform.
+//! One period of a periodic sequence by its Fourier transform: filtering, impulse responses, energy in a band.
 
 use std::cell::RefCell;
 
@@ -60,6 +60,23 @@ pub fn impulse_response(grid: usize, gain: impl Fn(f64) -> f64, turns: i32) -> V
         let _ = inverse.process(&mut spectrum, &mut response);
         response.truncate(grid / 2 + 1);
         response
+    })
+}
+
+/// Mean square of the part of one period that lies above `frequency`, in cycles per sample.
+pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
+    let len = period.len();
+    if len == 0 {
+        return 0.0;
+    }
+    with_planner(|planner| {
+        let forward = planner.plan_fft_forward(len);
+        let mut spectrum = forward.make_output_vec();
+        let _ = forward.process(&mut period.to_vec(), &mut spectrum);
+        // Every line but the constant and the Nyquist line stands for a pair.
+        let share = |k: usize| if k == 0 || 2 * k == len { 1.0 } else { 2.0 };
+        let lines = spectrum.iter().enumerate().filter(|(k, _)| *k as f64 > frequency * len as f64);
+        lines.map(|(k, c)| share(k) * c.norm_sqr()).sum::<f64>() / (len as f64 * len as f64)
     })
 }
 
