@@ -90,4 +90,3 @@ pub fn judge(
     let continuation_len = response.reach().max(8).min(len);
     Ok(Judgement { verdict: Some(verdict), estimates, forecast, continuation_len, structure })
 }
-

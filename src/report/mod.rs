@@ -10,13 +10,13 @@ use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
 use crate::baseline::EndEstimates;
-use crate::compare::Standing;
 use crate::compare::How;
+use crate::compare::Standing;
 use crate::error::Finding;
 use crate::operator::ChainDescription;
-use crate::verdict::{self, Adequacy, Edge, Structure};
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
+use crate::verdict::{self, Adequacy, Edge, Structure};
 
 pub use examination::AuditReport;
 pub use json::to_json;

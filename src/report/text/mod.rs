@@ -8,8 +8,8 @@ mod planned;
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
 
-use crate::error::Finding;
 use crate::compare::How;
+use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
 
 pub use audited::audit_text;
