@@ -48,7 +48,9 @@ fn verdicts(c: &mut Criterion) {
         let corner = LEN as f64 / divisor;
         let gain = move |f: f64| 1.0 / (1.0 + (f * corner).powi(8));
         let label = format!("N/{divisor}");
-        group.bench_function(BenchmarkId::new("one conditioning", &label), |b| b.iter(|| conditioned(&plan, &samples, gain)));
+        group.bench_function(BenchmarkId::new("one conditioning", &label), |b| {
+            b.iter(|| conditioned(&plan, &samples, gain))
+        });
         let shape = Shape { gain: &gain, turns: 0, shortest_wavelength: corner };
         let even = conditioned(&plan, &samples, gain);
         let output = |_: Extension| even.clone();

@@ -22,7 +22,10 @@ fn main() -> ExitCode {
 
 fn run() -> Result<(), String> {
     let arguments: Vec<String> = std::env::args().skip(1).collect();
-    let folder = arguments.iter().find(|a| !a.starts_with("--")).ok_or("usage: regret FOLDER [--operator NAME] [--fine] [--cases]")?;
+    let folder = arguments
+        .iter()
+        .find(|a| !a.starts_with("--"))
+        .ok_or("usage: regret FOLDER [--operator NAME] [--fine] [--cases]")?;
     let wanted = arguments.iter().position(|a| a == "--operator").and_then(|at| arguments.get(at + 1));
     let cases = records::load(std::path::Path::new(folder))?;
     let scores = rules::score_all(&cases, wanted.map(String::as_str), arguments.iter().any(|a| a == "--fine"));

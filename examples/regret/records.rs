@@ -42,7 +42,8 @@ pub fn load(folder: &Path) -> Result<Vec<Window>, String> {
         fs::read_to_string(&path).map_err(|e| format!("{}: {e}", path.display()))
     };
     let places: Vec<Place> = serde_json::from_str(&read("windows.json")?).map_err(|e| format!("windows.json: {e}"))?;
-    let entries: Vec<Entry> = serde_json::from_str(&read("manifest.json")?).map_err(|e| format!("manifest.json: {e}"))?;
+    let entries: Vec<Entry> =
+        serde_json::from_str(&read("manifest.json")?).map_err(|e| format!("manifest.json: {e}"))?;
     let groups: BTreeMap<String, String> = entries.into_iter().map(|e| (e.file, e.group)).collect();
     let mut files: BTreeMap<String, Arc<Vec<f64>>> = BTreeMap::new();
     let mut windows = Vec::new();

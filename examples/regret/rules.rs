@@ -7,7 +7,9 @@ use endgrain::ends::Ends;
 use endgrain::forecast::{Evidence, Response, Shape};
 use endgrain::numeric::polynomial::Polynomial;
 use endgrain::numeric::{noise, sum};
-use endgrain::verdict::{self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Level, Structure, Tolerance, Verdict};
+use endgrain::verdict::{
+    self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Level, Structure, Tolerance, Verdict,
+};
 use rayon::prelude::*;
 
 use crate::operators::{self, Trial};

@@ -28,13 +28,27 @@ pub fn print(scores: &[Score]) {
 
 /// One line a case, comma-separated.
 pub fn print_cases(scores: &[Score]) {
-    println!("file,group,operator,n,level,even_distance,forecast_error,deviation,best{}", CHOSEN.map(|c| format!(",{c} name,{c} error,{c} predicted,{c} bound")).concat());
+    println!(
+        "file,group,operator,n,level,even_distance,forecast_error,deviation,best{}",
+        CHOSEN.map(|c| format!(",{c} name,{c} error,{c} predicted,{c} bound")).concat()
+    );
     for s in scores {
         let best = s.fixed[..HINDSIGHT].iter().map(|e| e.1).fold(f64::INFINITY, f64::min);
-        let chosen = s.chosen.iter().map(|c| format!(",{},{:e},{:e},{:e}", c.name, c.error, c.edge.predicted_error, c.edge.bound));
+        let chosen = s
+            .chosen
+            .iter()
+            .map(|c| format!(",{},{:e},{:e},{:e}", c.name, c.error, c.edge.predicted_error, c.edge.bound));
         println!(
             "{},{},{},{},{:?},{:e},{:e},{:e},{best:e}{}",
-            s.file, s.group, s.operator, s.len, s.level, s.even_distance, s.chosen[1].edge.predicted_error, s.chosen[1].deviation, chosen.collect::<String>()
+            s.file,
+            s.group,
+            s.operator,
+            s.len,
+            s.level,
+            s.even_distance,
+            s.chosen[1].edge.predicted_error,
+            s.chosen[1].deviation,
+            chosen.collect::<String>()
         );
     }
 }
@@ -74,7 +88,11 @@ fn levels(scores: &[Score]) {
     }
     let immaterial: Vec<&Score> = scores.iter().filter(|s| s.choice_immaterial).collect();
     let right = share(immaterial.iter().map(|s| s.worst_tie <= TOLERANCE));
-    println!("choice immaterial        {:>6} {:>6.3} worst tie within tolerance {right:.3}", immaterial.len(), immaterial.len() as f64 / scores.len() as f64);
+    println!(
+        "choice immaterial        {:>6} {:>6.3} worst tie within tolerance {right:.3}",
+        immaterial.len(),
+        immaterial.len() as f64 / scores.len() as f64
+    );
 }
 
 fn adequacy(name: &str, scores: &[Score], at: usize) {
@@ -83,7 +101,12 @@ fn adequacy(name: &str, scores: &[Score], at: usize) {
         let of_word: Vec<&Chosen> = scores.iter().map(|s| &s.chosen[at]).filter(|c| c.edge.adequacy == word).collect();
         let within = |limit: f64| share(of_word.iter().map(|c| c.error <= limit * c.deviation));
         let part = of_word.len() as f64 / scores.len() as f64;
-        println!("{:<30} {part:>6.3} {:>10.3} {:>10.3}", format!("{word:?}"), within(TOLERANCE), within(2.0 * TOLERANCE));
+        println!(
+            "{:<30} {part:>6.3} {:>10.3} {:>10.3}",
+            format!("{word:?}"),
+            within(TOLERANCE),
+            within(2.0 * TOLERANCE)
+        );
     }
 }
 
@@ -91,7 +114,12 @@ fn trusted(name: &str, scores: &[Score], at: usize) {
     let sides = || scores.iter().flat_map(|s| s.chosen[at].sides);
     let by_len: Vec<String> = lengths(scores)
         .iter()
-        .map(|len| format!("N={len} {:.3}", share(scores.iter().filter(|s| s.len == *len).flat_map(|s| s.chosen[at].sides).map(|s| s.1))))
+        .map(|len| {
+            format!(
+                "N={len} {:.3}",
+                share(scores.iter().filter(|s| s.len == *len).flat_map(|s| s.chosen[at].sides).map(|s| s.1))
+            )
+        })
         .collect();
     println!(
         "{name}: trusted span without violation on {:.3} of sides ({}), trimmed share of the reach {:.3}",
@@ -128,13 +156,22 @@ fn by_record(scores: &[Score]) {
     let mut files: Vec<&str> = scores.iter().map(|s| s.file.as_str()).collect();
     files.sort_unstable();
     files.dedup();
-    println!("\n{:<28} {:>6} {:>8} {:>8} {:>8} {:>8} {:>8}", "record", "cases", "even", "pick", "forecast", "auto", "covered");
+    println!(
+        "\n{:<28} {:>6} {:>8} {:>8} {:>8} {:>8} {:>8}",
+        "record", "cases", "even", "pick", "forecast", "auto", "covered"
+    );
     for file in files {
         let of = || scores.iter().filter(move |s| s.file == file);
         let row = |at: usize| mean(of().map(|s| regret(s, s.chosen[at].error)));
         let even = mean(of().map(|s| regret(s, s.fixed[0].1)));
         let covered = share(of().map(|s| s.chosen[2].error <= s.chosen[2].edge.bound));
-        println!("{file:<28} {:>6} {even:>8.3} {:>8.3} {:>8.3} {:>8.3} {covered:>8.3}", of().count(), row(0), row(1), row(2));
+        println!(
+            "{file:<28} {:>6} {even:>8.3} {:>8.3} {:>8.3} {:>8.3} {covered:>8.3}",
+            of().count(),
+            row(0),
+            row(1),
+            row(2)
+        );
     }
 }
 

@@ -52,4 +52,3 @@ fn blackman_harris(x: f64) -> f64 {
 fn decibels(ratio: f64) -> Option<f64> {
     (ratio > 0.0 && ratio.is_finite()).then(|| 10.0 * ratio.log10())
 }
-

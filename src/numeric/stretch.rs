@@ -14,7 +14,10 @@ pub fn evenly_spread(len: usize) -> Vec<Range<usize>> {
         return vec![0..len; 1];
     }
     let width = WHOLE / COUNT;
-    (0..COUNT).map(|k| (len - width) / (COUNT - 1) * k + ((len - width) % (COUNT - 1)) * k / (COUNT - 1)).map(|at| at..at + width).collect()
+    (0..COUNT)
+        .map(|k| (len - width) / (COUNT - 1) * k + ((len - width) % (COUNT - 1)) * k / (COUNT - 1))
+        .map(|at| at..at + width)
+        .collect()
 }
 
 #[cfg(test)]

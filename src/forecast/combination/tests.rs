@@ -42,7 +42,8 @@ fn two_tones_go_on_past_both_ends() {
     let tones = |n: f64| (TAU * n / 37.0).sin() + 0.5 * (TAU * n / 90.7 + 1.0).cos();
     let samples: Vec<f64> = (0..1024).map(|n| tones(f64::from(n))).collect();
     let found = foretold(&samples, 1);
-    for (step, (left, right)) in found.continuation(Side::Left).iter().zip(found.continuation(Side::Right)).enumerate() {
+    for (step, (left, right)) in found.continuation(Side::Left).iter().zip(found.continuation(Side::Right)).enumerate()
+    {
         let step = step as f64;
         // Held back by the ridge and by Burg's small frequency bias: a few per cent after two periods.
         assert!((left - tones(-1.0 - step)).abs() < 0.1 && (right - tones(1024.0 + step)).abs() < 0.1, "{step}");
