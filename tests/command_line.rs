@@ -73,7 +73,18 @@ fn ramp() -> String {
 fn a_record_comes_back_in_its_own_format_with_a_sidecar() {
     let run = Run::new();
     run.file("in.csv", &ramp());
-    let told = run.ok(&["condition", "in.csv", "--lowpass", "10Hz", "--extension", "odd", "--baseline", "line", "-o", "out.csv"]);
+    let told = run.ok(&[
+        "condition",
+        "in.csv",
+        "--lowpass",
+        "10Hz",
+        "--extension",
+        "odd",
+        "--baseline",
+        "line",
+        "-o",
+        "out.csv",
+    ]);
     assert!(told.contains("wrote out.csv and out.csv.json"), "{told}");
     let (source, result) = (run.text("in.csv"), run.text("out.csv"));
     assert_eq!(source.lines().next(), result.lines().next());
@@ -118,7 +129,10 @@ fn without_an_operator_it_is_a_plain_conversion() {
     run.file("in.csv", &ramp());
     run.ok(&["condition", "in.csv", "-o", "same.csv"]);
     let values = |text: &str| -> Vec<f64> {
-        text.lines().skip(1).flat_map(|l| l.split(',').skip(1).take(2).map(|v| v.parse::<f64>().expect("a number")).collect::<Vec<_>>()).collect()
+        text.lines()
+            .skip(1)
+            .flat_map(|l| l.split(',').skip(1).take(2).map(|v| v.parse::<f64>().expect("a number")).collect::<Vec<_>>())
+            .collect()
     };
     assert_eq!(values(&run.text("in.csv")), values(&run.text("same.csv")));
     run.ok(&["condition", "in.csv", "--encoding", "float64", "-o", "same.wav"]);
@@ -308,7 +322,8 @@ fn the_same_settings_give_the_same_bytes() {
 #[test]
 fn audit_tells_rate_units_and_what_a_run_would_refuse() {
     let run = Run::new();
-    run.file("in.csv", &ramp()).file("gap.csv", "t [s],a [g]\n0.0,1\n0.1,2\n0.2,3\n0.3,1\n0.4,2\n0.9,3\n1.0,1\n1.1,2\n1.2,4\n1.3,2\n");
+    run.file("in.csv", &ramp())
+        .file("gap.csv", "t [s],a [g]\n0.0,1\n0.1,2\n0.2,3\n0.3,1\n0.4,2\n0.9,3\n1.0,1\n1.1,2\n1.2,4\n1.3,2\n");
     let output = endgrain(run.folder.path(), &["audit", "in.csv", "gap.csv", "--json"]);
     assert!(output.status.success());
     let found: Value = serde_json::from_slice(&output.stdout).expect("JSON");

@@ -5,8 +5,8 @@ mod random;
 use endgrain::audit::audit;
 use endgrain::error::Kind;
 use endgrain::record::{
-    ColumnRole, Format, Layout, RateSource, RawChannel, RawRecord, Record, Source, Spacing, Stamps, StatedRate,
-    TableLayout, TextSource,
+    ColumnRole, Encoding, Format, Layout, RateSource, RawChannel, RawRecord, Record, RowLines, Source, Spacing, Stamps,
+    StatedRate, TableLayout, TextSource,
 };
 use endgrain::regularise::{Bound, Duplicates, Gaps, Regrid, RegulariseOptions, RowMap, regularise, regularise_each};
 use endgrain::unit::Unit;
@@ -31,6 +31,7 @@ fn log(tick: f64, ticks: Vec<i64>, channels: Vec<Vec<f64>>) -> RawRecord {
 
 /// The same without a time column.
 fn bare(channels: Vec<Vec<f64>>) -> RawRecord {
+    let rows = channels.iter().map(Vec::len).max().unwrap_or(0);
     let mut columns = vec![ColumnRole::Stamps];
     columns.extend((0..channels.len()).map(ColumnRole::Channel));
     let channel = |(k, values): (usize, Vec<f64>)| RawChannel {
@@ -50,14 +51,17 @@ fn bare(channels: Vec<Vec<f64>>) -> RawRecord {
         findings: Vec::new(),
         layout: Layout::Table(TableLayout {
             text: TextSource::Held(Vec::new().into()),
+            encoding: Encoding::Utf8,
             delimiter: b',',
             decimal: b'.',
+            thousands: None,
             head: "t,a0\n".to_owned(),
             header_line: Some(0),
             units_line: None,
             data_start: 5,
             data_line: 2,
             columns,
+            lines: RowLines::consecutive(2, rows as u64),
             newline: "\n",
         }),
     }

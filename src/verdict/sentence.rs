@@ -1,5 +1,8 @@
 //! The verdict in words.
 
+use crate::record::Axis;
+use crate::unit::Unit;
+
 use super::{Adequacy, Edge, Level, Pick, Trusted, Verdict};
 
 impl Verdict {
@@ -27,8 +30,10 @@ impl Verdict {
         }
     }
 
-    /// Edge error and trusted span of one extension in one sentence, for a record of `len` samples.
-    pub fn edge_sentence(&self, edge: &Edge, len: usize) -> String {
+    /// Edge error in `unit` and trusted span along `axis` of one extension in one sentence.
+    pub fn edge_sentence(&self, edge: &Edge, unit: &Unit, axis: &Axis) -> String {
+        let len = axis.len();
+        let unit = if unit.is_unknown() { String::new() } else { format!(" {unit}") };
         let share = |value: f64| rounded(100.0 * value / self.output_deviation);
         let adequacy = match edge.adequacy {
             Adequacy::Within => "within tolerance",
@@ -36,13 +41,19 @@ impl Verdict {
             Adequacy::Outside => "outside tolerance",
         };
         let span = match edge.trusted {
-            Some(Trusted { first, last }) => format!("trusted span {first}..{last} of {len}"),
+            Some(Trusted { first, last }) => {
+                let stamp = |n: usize| (axis.stamp(n) * 1e9).round() / 1e9;
+                format!("trusted span {first}..{last} of {len} ({}..{} {})", stamp(first), stamp(last), axis.unit())
+            }
             None => "no trusted span".to_owned(),
         };
         format!(
-            "edge error about {} % of output s.d. (bound {} %, events outside the record excepted), {adequacy}; {span}",
+            "edge error about {}{unit}, {} % of output s.d. (bound {}{unit}, {} %, events outside the record excepted), \
+             {adequacy}; {span}",
+            rounded(edge.predicted_error),
             share(edge.predicted_error),
-            share(edge.bound)
+            rounded(edge.bound),
+            share(edge.bound),
         )
     }
 }

@@ -109,17 +109,24 @@ enum Motion {
     Mixed,
 }
 
-/// Decides what each column is, from its name and its first rows.
+/// Decides what each column is, from its name and its first rows; `later` rows, which may be faulty, tell of columns that are
+/// empty at first.
 ///
 /// # Errors
 /// `Usage` for columns that do not exist or hold no numbers, and for a position column without a unit; `Unsupported` when
 /// no channel is left.
-pub(super) fn roles(header: &Header, rows: &Rows<'_>, found: &Found, options: &ReadOptions) -> Result<Roles> {
+pub(super) fn roles(
+    header: &Header,
+    rows: &Rows<'_>,
+    later: &Rows<'_>,
+    found: &Found,
+    options: &ReadOptions,
+) -> Result<Roles> {
     let columns = &header.columns;
     let named = header.names.is_some();
     let missing = Missing::new(&options.missing, found.dialect.decimal);
     let contents: Vec<Content> =
-        (0..columns.len()).map(|field| content(field, rows, found.dialect, &missing)).collect();
+        (0..columns.len()).map(|field| content(field, rows, later, found.dialect, &missing)).collect();
     let tracks: Vec<Vec<f64>> = (0..columns.len()).map(|field| track(field, rows, found.dialect)).collect();
     let candidates: Vec<Candidate> = (columns.iter().enumerate())
         .map(|(index, c)| Candidate { name: c.name.clone(), header: c.header.clone(), number: index + 1 })
@@ -169,10 +176,10 @@ pub(super) fn roles(header: &Header, rows: &Rows<'_>, found: &Found, options: &R
         findings.extend(measured_text(columns, &contents, rows));
     }
     if channels.is_empty() {
-        return Err(Error::unsupported(
-            "no column holds a channel: there are numbers in none beside stamps and counters",
-        )
-        .remedy("name one with --channel, or say --time-column none"));
+        let text = findings.iter().find(|finding| finding.code == "text_column");
+        let reason = text.map_or("there are numbers in none beside stamps and counters", |finding| &finding.text);
+        return Err(Error::unsupported(format!("no column holds a channel: {reason}"))
+            .remedy("name one with --channel, or say --time-column none"));
     }
     let stamps = stamps.map(|field| match contents[field] {
         Content::Stamp(form) => (field, form),
@@ -181,8 +188,8 @@ pub(super) fn roles(header: &Header, rows: &Rows<'_>, found: &Found, options: &R
     Ok(Roles { stamps, stamps_unit, channels, findings })
 }
 
-/// What most of the cells hold that are not missing.
-fn content(field: usize, rows: &Rows<'_>, dialect: Dialect, missing: &Missing) -> Content {
+/// What most of the cells hold that are not missing, in the first rows or else in `later` ones.
+fn content(field: usize, rows: &Rows<'_>, later: &Rows<'_>, dialect: Dialect, missing: &Missing) -> Content {
     let looks: Vec<Look> =
         rows.iter().filter_map(|row| row.get(field)).map(|cell| look(cell, dialect, missing)).collect();
     let count = |wanted: &[Look]| looks.iter().filter(|look| wanted.contains(look)).count();
@@ -195,8 +202,10 @@ fn content(field: usize, rows: &Rows<'_>, dialect: Dialect, missing: &Missing) -
         Content::Stamp(if 2 * dates >= civil.count() { Form::Date } else { Form::Clock })
     } else if numbers > 0 {
         Content::Number
-    } else {
+    } else if later.is_empty() {
         Content::Empty
+    } else {
+        content(field, later, &[], dialect, missing)
     }
 }
 

@@ -25,6 +25,8 @@ pub(super) struct Found {
     pub(super) dialect: Dialect,
     /// Index of the block's first line.
     pub(super) first: usize,
+    /// Index behind the last line that was found to belong to it; more may follow.
+    pub(super) end: usize,
     /// Fields of its lines.
     pub(super) fields: usize,
     /// Looks of the fields in each of its first lines, blank lines left out.
@@ -147,10 +149,12 @@ fn run(
             } else if options.header_lines.is_some() && looks.is_none() {
                 return None;
             }
-            current = looks.as_ref().map(|l| Found { dialect, first: index, fields: l.len(), looks: Vec::new() });
+            current =
+                looks.as_ref().map(|l| Found { dialect, first: index, end: index, fields: l.len(), looks: Vec::new() });
         }
         if let (Some(run), Some(looks)) = (&mut current, looks) {
             run.looks.push(looks);
+            run.end = index + 1;
             if run.looks.len() == SAMPLE {
                 return current;
             }
@@ -249,6 +253,7 @@ pub(super) fn reach_up(beginning: Beginning<'_>, found: &mut Found, options: &Re
     let missing = Missing::new(&options.missing, found.dialect.decimal);
     let first = found.first;
     let Some(model) = found.looks.first().cloned() else { return Ok(()) };
+    let mut other_width = None;
     for index in (0..first).rev().filter(|&index| !beginning.is_blank(index)) {
         let fields = fields(beginning.line(index), found.dialect.delimiter);
         let looks: Vec<Look> = fields.iter().map(|field| look(field, found.dialect, &missing)).collect();
@@ -260,11 +265,35 @@ pub(super) fn reach_up(beginning: Beginning<'_>, found: &mut Found, options: &Re
         if alike(&looks, &model) && values > 0 {
             found.first = index;
         } else if beginning.above(first) == Some(index) && values == looks.len() && looks.len() != found.fields {
-            let what = format!("{} fields where the line above has {}", found.fields, looks.len());
-            return Err(Error::malformed(what).at(Place::line(first as u64 + 1)).remedy(
-                "say how to split it with --delimiter and --decimal, or where the data start with --header-lines",
-            ));
+            other_width = Some(looks.len());
         }
     }
-    Ok(())
+    match other_width.filter(|_| found.first == first) {
+        Some(width) => Err(Error::malformed(format!("{} fields where the line above has {width}", found.fields))
+            .at(Place::line(first as u64 + 1))
+            .remedy("say how to split it with --delimiter and --decimal, or where the data start with --header-lines")),
+        None => Ok(()),
+    }
+}
+
+/// Takes lines right above the block in as data that must be rows, whatever is wrong with them: those of `above` with as many
+/// fields and a number or stamp among them, in the first field where no header stands above.
+pub(super) fn take_in(
+    beginning: Beginning<'_>,
+    found: &mut Found,
+    above: impl Iterator<Item = usize>,
+    named: bool,
+    options: &ReadOptions,
+) {
+    let missing = Missing::new(&options.missing, found.dialect.decimal);
+    let valued = |look: Look| matches!(look, Look::Number | Look::Grouped | Look::Stamp);
+    for index in above.filter(|&index| index < found.first && !beginning.is_blank(index)) {
+        let cells = fields(beginning.line(index), found.dialect.delimiter);
+        let mut looks = cells.iter().map(|cell| look(cell, found.dialect, &missing));
+        let data = if named { looks.any(valued) } else { looks.next().is_some_and(valued) };
+        if data && cells.len() == found.fields {
+            found.first = index;
+            return;
+        }
+    }
 }

@@ -165,8 +165,8 @@ fn sparse(channel: &RawChannel) -> Option<Finding> {
     let present: Vec<usize> = (0..rows).filter(|&row| !channel.values[row].is_nan()).collect();
     let stride = present[1] - present[0];
     let name = escape(&channel.name);
-    let text = if present.windows(2).all(|pair| pair[1] - pair[0] == stride) {
-        format!("channel \"{name}\" has a value on every {stride}th row only: it has a rate of its own")
+    let text = if stride > 1 && present.windows(2).all(|pair| pair[1] - pair[0] == stride) {
+        format!("channel \"{name}\" has a value on one row in {stride} only: it has a rate of its own")
     } else {
         format!("channel \"{name}\" has a value on {} of {rows} rows only", present.len())
     };

@@ -52,11 +52,11 @@ pub(super) fn open<R: Read>(blocks: &mut Blocks<R>, options: &ReadOptions) -> Re
             blocks.newline = newline;
             return Ok(opening);
         }
-        let searched = text.len() >= LONGEST_HEAD && lines.len() > 1000 || text.len() > LONGEST_LINE;
+        let searched = text.len() >= LONGEST_HEAD && lines.len() > 1000 || text.len() >= LONGEST_LINE;
         if complete || searched {
             return Err(no_data(beginning, options));
         }
-        window *= 4;
+        window = (4 * window).min(LONGEST_LINE);
     }
 }
 
@@ -74,18 +74,33 @@ fn lines(text: &[u8], newline: u8, complete: bool) -> Vec<Range<usize>> {
     lines
 }
 
-fn judge(beginning: Beginning<'_>, found: Found, newline: u8, options: &ReadOptions) -> Result<Opening> {
-    let rows: Vec<Vec<Field<'_>>> = (found.first..beginning.lines.len())
-        .filter(|&index| !beginning.is_blank(index))
-        .take(ROWS)
-        .map(|index| fields(beginning.line(index), found.dialect.delimiter))
-        .filter(|row| row.len() == found.fields)
-        .collect();
-    let empty_last = found.fields > 1
-        && found.dialect.delimiter != b' '
-        && rows.iter().all(|row| row.last().is_some_and(|cell| cell.text.is_empty() && !cell.quoted));
-    let header = header::find(beginning, &found, empty_last, options.header_lines.is_some())?;
-    let roles = column::roles(&header, &rows, &found, options)?;
+fn judge(beginning: Beginning<'_>, mut found: Found, newline: u8, options: &ReadOptions) -> Result<Opening> {
+    let header = header::find(beginning, &found, empty_last(beginning, &found), options.header_lines.is_some())?;
+    if options.header_lines.is_none() {
+        let above = header.names.clone().map_or_else(
+            || beginning.above(found.first).map_or(0..0, |line| line..line + 1),
+            |names| names.end..found.first,
+        );
+        let units = header.units.clone().unwrap_or_default();
+        dialect::take_in(
+            beginning,
+            &mut found,
+            above.filter(|line| !units.contains(line)),
+            header.names.is_some(),
+            options,
+        );
+    }
+    let rows_of = |lines: Range<usize>| -> Vec<Vec<Field<'_>>> {
+        lines
+            .filter(|&index| !beginning.is_blank(index))
+            .take(ROWS)
+            .map(|index| fields(beginning.line(index), found.dialect.delimiter))
+            .filter(|row| row.len() == found.fields)
+            .collect()
+    };
+    let rows = rows_of(found.first..found.end);
+    let later = rows_of(found.end..beginning.lines.len());
+    let roles = column::roles(&header, &rows, &later, &found, options)?;
     let data = beginning.lines[found.first].clone();
     let skipped = [header.names.clone(), header.units.clone()];
     Ok(Opening {
@@ -104,13 +119,23 @@ fn judge(beginning: Beginning<'_>, found: Found, newline: u8, options: &ReadOpti
     })
 }
 
+/// True when the last field of the block's first rows is always empty.
+fn empty_last(beginning: Beginning<'_>, found: &Found) -> bool {
+    let mut rows = (found.first..found.end)
+        .filter(|&index| !beginning.is_blank(index))
+        .map(|index| fields(beginning.line(index), found.dialect.delimiter))
+        .filter(|row| row.len() == found.fields);
+    let empty = |row: Vec<Field<'_>>| row.last().is_some_and(|cell| cell.text.is_empty() && !cell.quoted);
+    found.fields > 1 && found.dialect.delimiter != b' ' && rows.all(empty)
+}
+
 fn no_data(beginning: Beginning<'_>, options: &ReadOptions) -> Error {
     let filled: Vec<usize> = (0..beginning.lines.len()).filter(|&index| !beginning.is_blank(index)).take(2).collect();
     let Some(&first) = filled.first() else {
-        return Error::malformed(if beginning.complete {
-            "the file holds nothing but blanks"
-        } else {
+        return Error::malformed(if beginning.lines.is_empty() {
             "the first line does not end within 64 MiB"
+        } else {
+            "the text holds nothing but blanks"
         });
     };
     let line = beginning.line(first);
