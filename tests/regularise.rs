@@ -254,6 +254,7 @@ fn a_channel_at_its_own_rate_is_left_out_or_taken_alone() {
     let raw = log(0.001, ticks.clone(), vec![tones(0..400), sparse.clone()]);
     let (record, _) = plain(raw.clone());
     assert_eq!((record.channel_count(), codes(&record)), (1, vec!["sparse_channel"]));
+    assert_eq!(audit(&raw).findings.iter().map(|f| f.code).collect::<Vec<_>>(), ["sparse_channel"]);
     let (alone, rows) = plain(log(0.001, ticks, vec![sparse]));
     assert_eq!((alone.len(), alone.axis().step(), alone.axis().start()), (40, 0.1, 0.03));
     assert_eq!(rows, RowMap::Even { first: 3, every: 10, count: 40 });
