@@ -60,11 +60,6 @@ pub fn trials(len: usize, fine: bool) -> impl Iterator<Item = Trial> {
     rows.iter().map(move |&(name, kind, divisor)| trial(name, kind, len as f64 / divisor)).filter(|t| t.shortest >= 4.0)
 }
 
-/// Names in order, for tables.
-pub fn names(fine: bool) -> Vec<&'static str> {
-    (if fine { FINE } else { TRIALS }).iter().map(|row| row.0).collect()
-}
-
 fn trial(name: &'static str, kind: Kind, lam: f64) -> Trial {
     let gauss = |lam: f64| move |f: f64| (-LN_2 * (f * lam).powi(2)).exp();
     // Squared magnitude of order 4: gain 1/2 at the corner, all derivatives up to the seventh zero at 0.

@@ -24,11 +24,24 @@ impl Difference {
         Difference { spacing: 1, ends: [Vec::new(), Vec::new()] }
     }
 
-    /// Root mean square over both zones of `zone` samples together.
+    /// Root mean square over both zones of `zone` samples together, by straight lines between neighbours.
     pub fn rms(&self, zone: usize) -> f64 {
-        let count = zone.div_ceil(self.spacing);
-        let squares = |end: &Vec<f64>| end.iter().take(count).map(|d| d * d).sum::<f64>();
-        ((squares(&self.ends[0]) + squares(&self.ends[1])) / (2 * count.max(1)) as f64).sqrt()
+        let total = self.squares(0, zone) + self.squares(1, zone);
+        (total / (2 * zone.max(1)) as f64).sqrt()
+    }
+
+    /// Sum of squares over the first `zone` samples of one end.
+    fn squares(&self, end: usize, zone: usize) -> f64 {
+        let values = &self.ends[end];
+        let step = self.spacing as f64;
+        let mut total = 0.0;
+        for (k, &a) in values.iter().enumerate().take(zone.div_ceil(self.spacing)) {
+            let rise = (values.get(k + 1).unwrap_or(&a) - a) / step;
+            // Sum of (a + rise s)^2 over s = 0 .. m - 1.
+            let m = (zone - k * self.spacing).min(self.spacing) as f64;
+            total += m * a * a + a * rise * m * (m - 1.0) + rise * rise * (m - 1.0) * m * (2.0 * m - 1.0) / 6.0;
+        }
+        total
     }
 
     /// The difference at distance `j` from an end, by a straight line between neighbours.

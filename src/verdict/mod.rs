@@ -97,7 +97,8 @@ impl Verdict {
         let response = case.response;
         let zone = response.zone(len);
         let too_small = len < SHORTEST_RECORD || response.shape().shortest_wavelength < SHORTEST_WAVELENGTH;
-        let (Some(evidence), false) = (case.evidence, too_small) else {
+        let is_constant = case.samples.windows(2).all(|w| w[0] == w[1]);
+        let (Some(evidence), false) = (case.evidence, too_small || is_constant) else {
             return Verdict::not_judged(case, zone);
         };
         let forecast = Forecast::combine(evidence, response);
@@ -179,45 +180,59 @@ pub fn estimates(samples: &[f64], response: &Response, noise: f64) -> EndEstimat
     EndEstimates::with_noise(samples, Ends::EVEN, scale, noise)
 }
 
-/// The difference of every extension's output to the forecast's, near the ends.
+/// The difference of every extension's output to the forecast's, near the ends, in the order of `Verdict::edges`.
 fn differences(
     case: &Case,
     evidence: &Evidence,
     forecast: &Forecast,
     foretold: &[f64],
 ) -> Vec<(&'static str, Difference)> {
-    let samples = case.samples;
-    let len = samples.len();
-    let response = case.response;
-    let farthest = response.trimmable(len).max(response.zone(len));
-    let symmetric = CANDIDATES.iter().chain([&ODD_ZERO]);
-    let (first, last) = (samples[0], samples[len - 1]);
-    let mut found = Vec::new();
-    if let Some(near) = Near::new(evidence, response, farthest) {
-        let ahead = [Side::Left, Side::Right].map(|side| near.foretold(forecast, side));
-        let mean = sum::mean(samples);
-        for candidate in symmetric {
-            let outside = [Side::Left, Side::Right].map(|side| near.symmetric(candidate, &case.estimates, mean, side));
-            found.push((candidate.name, near.difference(&outside, &ahead)));
-        }
-        let constant = |left, right| near.difference(&[near.constant(left), near.constant(right)], &ahead);
-        found.push(("zero", constant(0.0, 0.0)));
-        found.push(("hold", constant(first, last)));
-    } else {
-        for candidate in symmetric {
-            let output = (case.output)(Extension::Symmetric(candidate));
-            found.push((candidate.name, Difference::between(&output, foretold, farthest)));
-        }
-        let pad = response.reach().max(8).min(len);
-        let mut constant = |name, left: f64, right: f64, pad: usize| {
-            let output = (case.output)(Extension::Continued { left: &vec![left; pad], right: &vec![right; pad] });
-            found.push((name, Difference::between(&output, foretold, farthest)));
-        };
-        constant("zero", 0.0, 0.0, len);
-        constant("hold", first, last, pad);
+    let len = case.samples.len();
+    let farthest = case.response.trimmable(len).max(case.response.zone(len));
+    match Near::new(evidence, case.response, farthest) {
+        Some(near) => near_differences(case, forecast, &near),
+        None => whole_differences(case, foretold, farthest),
     }
-    let references = found.split_off(CANDIDATES.len());
+}
+
+/// From the blocks next to the ends.
+fn near_differences(case: &Case, forecast: &Forecast, near: &Near) -> Vec<(&'static str, Difference)> {
+    let samples = case.samples;
+    let ahead = [Side::Left, Side::Right].map(|side| near.foretold(forecast, side));
+    let mean = sum::mean(samples);
+    let symmetric = |candidate: &'static Candidate| {
+        let outside = [Side::Left, Side::Right].map(|side| near.symmetric(candidate, &case.estimates, mean, side));
+        (candidate.name, near.difference(&outside, &ahead))
+    };
+    let constant = |name, left, right| (name, near.difference(&[near.constant(left), near.constant(right)], &ahead));
+    let mut found: Vec<(&'static str, Difference)> = CANDIDATES.iter().map(symmetric).collect();
     found.push((Auto::Forecast.name(), Difference::none()));
-    found.extend(references);
+    found.push(symmetric(&ODD_ZERO));
+    found.push(constant("zero", 0.0, 0.0));
+    found.push(constant("hold", samples[0], samples[samples.len() - 1]));
     found
 }
+
+/// From the whole output under every extension.
+fn whole_differences(case: &Case, foretold: &[f64], farthest: usize) -> Vec<(&'static str, Difference)> {
+    let samples = case.samples;
+    let len = samples.len();
+    let symmetric = |candidate: &'static Candidate| {
+        let output = (case.output)(Extension::Symmetric(candidate));
+        (candidate.name, Difference::between(&output, foretold, farthest))
+    };
+    let constant = |name, left: f64, right: f64, pad: usize| {
+        let output = (case.output)(Extension::Continued { left: &vec![left; pad], right: &vec![right; pad] });
+        (name, Difference::between(&output, foretold, farthest))
+    };
+    let pad = case.response.reach().max(8).min(len);
+    let mut found: Vec<(&'static str, Difference)> = CANDIDATES.iter().map(symmetric).collect();
+    found.push((Auto::Forecast.name(), Difference::none()));
+    found.push(symmetric(&ODD_ZERO));
+    found.push(constant("zero", 0.0, 0.0, len));
+    found.push(constant("hold", samples[0], samples[len - 1], pad));
+    found
+}
+
+#[cfg(test)]
+mod tests;

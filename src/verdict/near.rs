@@ -60,22 +60,22 @@ impl<'a> Near<'a> {
         // Mean of a polynomial of degree 3 or less over the samples of block k outwards, exactly.
         let spread = ((block * block) as f64 - 1.0) / 24.0;
         let average = |p: &Polynomial, x: f64| p.at(x) + spread * bend.at(x);
-        let middle = |k: usize| (k as f64 + 0.5) * block as f64;
-        let (inside, outside): (fn(f64, f64) -> f64, fn(f64, f64) -> f64) = match side {
-            Side::Left => (|x, _| x, |x, _| -x),
-            Side::Right => (|x, length| length - x, |x, length| length + x),
+        // The end itself, the direction out of the record, and the end whose blocks are repeated outside.
+        let (end, outwards) = if side == Side::Left { (0.0, -1.0) } else { (length, 1.0) };
+        let (source, sign) = match (candidate.ends, side) {
+            (Ends::Periodic, Side::Left) => (Side::Right, 1.0),
+            (Ends::Periodic, Side::Right) => (Side::Left, 1.0),
+            (Ends::Mirror { left, .. }, Side::Left) => (side, sign(left)),
+            (Ends::Mirror { right, .. }, Side::Right) => (side, sign(right)),
         };
-        let (source, sign, at): (Side, f64, fn(f64, f64) -> f64) = match (candidate.ends, side) {
-            (Ends::Periodic, Side::Left) => (Side::Right, 1.0, |x, length| length - x),
-            (Ends::Periodic, Side::Right) => (Side::Left, 1.0, |x, _| x),
-            (Ends::Mirror { left, .. }, Side::Left) => (side, sign(left), inside),
-            (Ends::Mirror { right, .. }, Side::Right) => (side, sign(right), inside),
-        };
-        let values = self.evidence.blocks(source).iter().rev().take(self.blocks).enumerate();
-        values
+        let own_end = if source == Side::Left { 0.0 } else { length };
+        let inwards = if source == Side::Left { 1.0 } else { -1.0 };
+        let blocks = self.evidence.blocks(source).iter().rev().take(self.blocks).enumerate();
+        blocks
             .map(|(k, value)| {
-                let x = middle(k);
-                sign * (value - average(&baseline, at(x, length))) + average(&baseline, outside(x, length))
+                let middle = (k as f64 + 0.5) * block as f64;
+                let rest = value - average(&baseline, own_end + inwards * middle);
+                sign * rest + average(&baseline, end + outwards * middle)
             })
             .collect()
     }
