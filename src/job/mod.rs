@@ -1,9 +1,12 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
 mod conditioning;
+mod edges;
 mod examination;
 mod intake;
+mod origin;
 mod target;
+mod work;
 
 pub use conditioning::{condition, plan};
 pub use examination::audit;

@@ -9,7 +9,8 @@ use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
 
 use crate::error::Finding;
-use crate::report::{AxisReport, ExtensionReport, How, InputReport};
+use crate::compare::How;
+use crate::report::{AxisReport, ExtensionReport, InputReport};
 
 pub use audited::audit_text;
 pub use conditioned::summary;
@@ -66,6 +67,8 @@ fn axis_text(axis: &AxisReport, samples: usize) -> String {
 fn extension_text(extension: &ExtensionReport) -> String {
     let chosen = match extension.how {
         How::Asked => "as asked",
+        How::Asserted => "as asserted",
+        How::Verdict => "by the verdict",
         How::Default => "a default, not a finding about this record",
     };
     let seat = if extension.kind == "periodic" { String::new() } else { format!("{} seat, ", extension.seat) };
