@@ -161,7 +161,7 @@ fn report(
 }
 
 /// The row of the verdict that belongs to the continuation in use, where there is one.
-fn edge_of<'a>(chosen: &Chosen, judgement: Option<&'a Judgement>) -> Option<&'a Edge> {
+pub fn edge_of<'a>(chosen: &Chosen, judgement: Option<&'a Judgement>) -> Option<&'a Edge> {
     let verdict = judgement?.verdict.as_ref()?;
     match &chosen.continuation {
         Continuation::Given(_) if chosen.how != How::Asserted => verdict.edge(Auto::Forecast.name()),
@@ -186,7 +186,8 @@ pub fn trusted_report(first: usize, last: usize, axis: &Axis) -> TrustedReport {
     TrustedReport { first, last, from: axis.stamp(first), to: axis.stamp(last) }
 }
 
-fn verdict_report(
+/// The verdict as a report: its sentence ends with the cost of the extension in use.
+pub fn verdict_report(
     channel: Channel<'_>,
     unit: &Unit,
     settings: &Settings,
