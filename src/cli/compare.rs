@@ -12,8 +12,7 @@ use endgrain::{job, report};
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] =
-    &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input];
+const GROUPS: &[Group] = &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input];
 
 const EXAMPLES: &str = "\
 Examples:
@@ -25,17 +24,28 @@ Examples:
 
 /// The subcommand.
 pub fn command() -> Command {
-    args::subcommand("compare", "Compare the extensions of a record: what each costs at the ends, and which the record supports", EXAMPLES, GROUPS)
-        .arg(Arg::new("input").value_name("FILE").required(true).help("The record: CSV or WAV, '-' for standard input"))
-        .arg(
-            Arg::new("plot")
-                .long("plot")
-                .value_name("FILE")
-                .help_heading("Report")
-                .help("Draw the continuations past both ends and the outputs over the edges, as SVG"),
-        )
-        .arg(Arg::new("force").long("force").action(ArgAction::SetTrue).help_heading("Report").help("Replace files that are in the way"))
-        .after_help(exit::HELP)
+    args::subcommand(
+        "compare",
+        "Compare the extensions of a record: what each costs at the ends, and which the record supports",
+        EXAMPLES,
+        GROUPS,
+    )
+    .arg(Arg::new("input").value_name("FILE").required(true).help("The record: CSV or WAV, '-' for standard input"))
+    .arg(
+        Arg::new("plot")
+            .long("plot")
+            .value_name("FILE")
+            .help_heading("Report")
+            .help("Draw the continuations past both ends and the outputs over the edges, as SVG"),
+    )
+    .arg(
+        Arg::new("force")
+            .long("force")
+            .action(ArgAction::SetTrue)
+            .help_heading("Report")
+            .help("Replace files that are in the way"),
+    )
+    .after_help(exit::HELP)
 }
 
 /// Runs it.

@@ -36,7 +36,9 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
         .collect::<Result<_>>()?;
     let (channels, pictures): (Vec<_>, Vec<_>) = compared.into_iter().unzip();
     let requirement_met = settings.require.is_none_or(|required| {
-        channels.iter().all(|c: &ChannelComparison| c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required))
+        channels.iter().all(|c: &ChannelComparison| {
+            c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required)
+        })
     });
     let report = Comparison {
         schema: SCHEMA,
@@ -61,8 +63,7 @@ fn one(
     picture: bool,
 ) -> Result<(ChannelComparison, Option<Picture>)> {
     let judgement = compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner)?;
-    let chosen =
-        compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
+    let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
     let edge = work::edge_of(&chosen, Some(&judgement));
     let unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
     let verdict = work::verdict_report(channel, &unit, settings, Some(&judgement), edge);
@@ -96,9 +97,7 @@ fn rows(channel: Channel<'_>, chain: &Chain, judgement: &Judgement, planner: &Pl
             relative_error: edge.map(|e| e.relative_error),
             bound: edge.map(|e| e.bound),
             adequacy: edge.map(|e| e.adequacy),
-            trusted: edge
-                .and_then(|e| e.trusted)
-                .map(|span| work::trusted_report(span.first, span.last, channel.axis)),
+            trusted: edge.and_then(|e| e.trusted).map(|span| work::trusted_report(span.first, span.last, channel.axis)),
             metrics,
         }
     };

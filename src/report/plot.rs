@@ -70,7 +70,9 @@ const HEIGHT: u32 = 760;
 /// `Unsupported` when there is nothing to draw; `Io` when the drawing fails.
 pub fn svg(pictures: &[Picture]) -> Result<String> {
     if pictures.is_empty() {
-        return Err(Error::unsupported("nothing was judged, so there is no picture").remedy("give operators with a corner"));
+        return Err(
+            Error::unsupported("nothing was judged, so there is no picture").remedy("give operators with a corner")
+        );
     }
     let mut text = String::new();
     {
@@ -122,14 +124,18 @@ fn continuations(picture: &Picture, side: usize, area: &Area<'_>) -> Result<()> 
     let len = picture.record.len();
     let past = picture.curves[0].past[side].len();
     let shown = (2 * past).clamp(8, len);
-    let inside: Vec<(f64, f64)> = indices(side, len, shown).map(|n| (stamp(picture, n as i64), picture.record[n])).collect();
+    let inside: Vec<(f64, f64)> =
+        indices(side, len, shown).map(|n| (stamp(picture, n as i64), picture.record[n])).collect();
     let lines: Vec<Vec<(f64, f64)>> = picture
         .curves
         .iter()
         .map(|curve| {
             let outwards = curve.past[side].iter().enumerate();
             let place = |k: usize| if side == 0 { -1 - k as i64 } else { (len + k) as i64 };
-            outwards.map(|(k, v)| (stamp(picture, place(k)), *v)).collect()
+            // From the record's last sample outwards, so that the eye follows without a gap.
+            let end = if side == 0 { 0 } else { len - 1 };
+            let start = std::iter::once((stamp(picture, end as i64), picture.record[end]));
+            start.chain(outwards.map(|(k, v)| (stamp(picture, place(k)), *v))).collect()
         })
         .collect();
     let end = if side == 0 { "left" } else { "right" };
@@ -160,7 +166,8 @@ fn outputs(picture: &Picture, side: usize, area: &Area<'_>) -> Result<()> {
         indices(side, len, shown).map(|n| (stamp(picture, n as i64), forecast.output[n] + deviation(n))).collect();
     band.extend(indices(side, len, shown).rev().map(|n| (stamp(picture, n as i64), forecast.output[n] - deviation(n))));
     let end = if side == 0 { "left" } else { "right" };
-    let caption = format!("outputs near the {end} end, forecast ± 2 s.d.");
+    let mark = if picture.trusted.is_some() { ", upright line: trusted span" } else { "" };
+    let caption = format!("outputs near the {end} end, grey: forecast ± 2 s.d.{mark}");
     let mut chart = panel(picture, area, &caption, &picture.unit, lines.iter().flatten().chain(&band))?;
     let grey = RGBColor(120, 120, 120).mix(0.3);
     chart.draw_series(std::iter::once(Polygon::new(band, grey))).map_err(failed)?;

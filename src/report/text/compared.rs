@@ -27,7 +27,17 @@ fn channel_text(channel: &ChannelComparison, report: &Comparison) -> String {
         return text;
     };
     let mut rows = table(&[
-        "extension", "edge error", "% of s.d.", "bound", "adequacy", "trusted", "jump", "slope jump", "leakage dB", "excess dB", "decay",
+        "extension",
+        "edge error",
+        "% of s.d.",
+        "bound",
+        "adequacy",
+        "trusted",
+        "jump",
+        "slope jump",
+        "leakage dB",
+        "excess dB",
+        "decay",
     ]);
     for row in &channel.candidates {
         let shown = |value: Option<f64>| value.map_or_else(|| "-".to_owned(), |v| figure(v, 3));
@@ -58,7 +68,12 @@ fn channel_text(channel: &ChannelComparison, report: &Comparison) -> String {
                 figure(end.slope_error, 2)
             )
         };
-        text.push_str(&format!("  {}; {}; noise {}\n", side("left", &ends.left), side("right", &ends.right), figure(ends.noise, 3)));
+        text.push_str(&format!(
+            "  {}; {}; noise {}\n",
+            side("left", &ends.left),
+            side("right", &ends.right),
+            figure(ends.noise, 3)
+        ));
     }
     text.push_str(&format!("  {}\n", verdict.sentence));
     text.push_str(&format!("  condition would take {}", channel.takes));
