@@ -10,7 +10,7 @@ use endgrain::basis::Plan;
 use endgrain::ends::Ends;
 use endgrain::forecast::{Evidence, Forecast, Response, Shape};
 use endgrain::numeric::{noise, quantum};
-use endgrain::verdict::{self, Case, Extension, FlatEnds, Tolerance, Verdict};
+use endgrain::verdict::{self, Case, Extension, FlatEnds, Formed, Tolerance, Verdict};
 
 const LEN: usize = 1_000_000;
 
@@ -79,8 +79,10 @@ fn judged(samples: &[f64], shape: Shape, output: &dyn Fn(Extension) -> Vec<f64>)
     let structure = evidence.as_ref().map(verdict::structure).unwrap_or_default();
     let estimates = verdict::estimates(samples, &response, noise::sigma(samples));
     let tolerance = Tolerance::Share(0.1);
-    let evidence = evidence.as_ref();
-    let case = Case { samples, evidence, structure, estimates, response: &response, output, tolerance };
+    let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
+    let past = evidence.as_ref().zip(forecast.as_ref());
+    let formed = Formed::InOnePass;
+    let case = Case { samples, past, structure, estimates, response: &response, output, formed, tolerance };
     Verdict::of(&case, FlatEnds::Ignored)
 }
 

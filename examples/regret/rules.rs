@@ -4,11 +4,11 @@ use std::collections::BTreeMap;
 
 use endgrain::baseline::{Baseline, BaselineKind, Side};
 use endgrain::ends::Ends;
-use endgrain::forecast::{Evidence, Response, Shape};
+use endgrain::forecast::{Evidence, Forecast, Response, Shape};
 use endgrain::numeric::polynomial::Polynomial;
 use endgrain::numeric::{noise, sum};
 use endgrain::verdict::{
-    self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Level, Structure, Tolerance, Verdict,
+    self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Formed, Level, Structure, Tolerance, Verdict,
 };
 use rayon::prelude::*;
 
@@ -114,12 +114,20 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>, struc
         Extension::Continued { left, right } => padded(trial, x, left, right),
     };
     let tolerance = Tolerance::Share(TOLERANCE);
-    let case = Case { samples: x, evidence, structure, estimates, response: &response, output: &output, tolerance };
+    let forecast = evidence.map(|evidence| Forecast::combine(evidence, &response));
+    let case = Case {
+        samples: x,
+        past: evidence.zip(forecast.as_ref()),
+        structure,
+        estimates,
+        response: &response,
+        output: &output,
+        formed: Formed::InOnePass,
+        tolerance,
+    };
     let verdict = Verdict::of(&case, FlatEnds::Ignored);
-    let foretold = evidence.map(|evidence| {
-        let forecast = endgrain::forecast::Forecast::combine(evidence, &response);
-        padded(trial, x, &forecast.continuation(Side::Left), &forecast.continuation(Side::Right))
-    });
+    let foretold =
+        forecast.as_ref().map(|f| padded(trial, x, &f.continuation(Side::Left), &f.continuation(Side::Right)));
     outputs.push(("forecast", foretold.unwrap_or_else(|| vec![f64::NAN; n])));
 
     let chosen = |name: &'static str| {

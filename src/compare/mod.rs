@@ -6,14 +6,14 @@ mod tolerance;
 
 use crate::baseline::{EndEstimates, Side};
 use crate::basis::Planner;
-use crate::condition::{condition, condition_continued};
+use crate::condition::{condition, condition_continued, scaling};
 use crate::ends::{Ends, Seat};
 use crate::error::Result;
-use crate::forecast::{Evidence, Forecast, Response, Shape};
+use crate::forecast::{Evidence, Forecast, Response, Shape, turned};
 use crate::numeric::noise;
 use crate::operator::Chain;
 use crate::record::Channel;
-use crate::verdict::{self, Case, Extension, FlatEnds, Verdict};
+use crate::verdict::{self, Case, Extension, FlatEnds, Formed, Verdict};
 
 pub use assertion::{Assertion, Property, Standing};
 pub use choice::{Chosen, Continuation, How, choose};
@@ -50,7 +50,8 @@ pub fn judge(
     let output_unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
     let tolerance = tolerance.resolve(&output_unit)?;
     let noise = noise::sigma(samples);
-    let gain = |f: f64| chain.gain(f);
+    let (_, factor) = scaling(channel, chain);
+    let gain = |f: f64| factor * turned(chain.gain(f), f, chain.turns());
     let integrates_offset = chain.turns() < 0 && chain.gain(0.0) != 0.0;
     let Some(shortest_wavelength) = chain.shortest_wavelength_samples().filter(|_| !integrates_offset) else {
         let estimates = EndEstimates::with_noise(samples, Ends::EVEN, crate::condition::scale_of(chain, len), noise);
@@ -72,18 +73,20 @@ pub fn judge(
         };
         outcome.map_or_else(|_| vec![f64::NAN; len], |outcome| outcome.output)
     };
+    let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
     let case = Case {
         samples,
-        evidence: evidence.as_ref(),
+        past: evidence.as_ref().zip(forecast.as_ref()),
         structure,
         estimates,
         response: &response,
         output: &output,
+        formed: if chain.passes().len() > 1 { Formed::InSeveral } else { Formed::InOnePass },
         tolerance,
     };
     let verdict = Verdict::of(&case, FlatEnds::Ignored);
     let judged = !verdict.edges.is_empty();
-    let forecast = evidence.as_ref().filter(|_| judged).map(|evidence| Forecast::combine(evidence, &response));
+    let forecast = forecast.filter(|_| judged);
     let sides = [Side::Left, Side::Right];
     let deviation = sides.map(|side| {
         forecast.as_ref().map_or_else(Vec::new, |f| f.profile(side).iter().map(|variance| variance.sqrt()).collect())
@@ -91,3 +94,6 @@ pub fn judge(
     let forecast = forecast.map(|forecast| sides.map(|side| forecast.continuation(side)));
     Ok(Judgement { verdict: Some(verdict), estimates, forecast, deviation, structure })
 }
+
+#[cfg(test)]
+mod tests;

@@ -117,7 +117,7 @@ pub fn condition_continued(
 }
 
 /// Unit of the output, and the factor that brings numbers formed in steps into it.
-fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
+pub fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     let turns = chain.turns();
     let (unit, factor) = channel.unit.turned(turns, channel.axis.unit());
     (unit, channel.axis.step_base().powi(-turns) * factor)

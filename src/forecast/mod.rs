@@ -8,4 +8,4 @@ mod variance;
 
 pub use combination::Forecast;
 pub use evidence::{Evidence, LONGEST_HISTORY};
-pub use response::{Response, Shape};
+pub use response::{Response, Shape, turned};

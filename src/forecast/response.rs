@@ -1,16 +1,25 @@
 //! What an operator does to one sample: gain, impulse response, reach.
 
+use std::f64::consts::TAU;
+
 use crate::numeric::fourier;
 
 /// An operator as the edges see it. Frequencies in cycles per sample, lengths in samples.
 #[derive(Clone, Copy)]
 pub struct Shape<'a> {
-    /// Real gain at a frequency from 0 to 1/2.
+    /// Size of the gain at a frequency from 0 to 1/2, in units of the output per unit of the record; with turns see
+    /// [`turned`].
     pub gain: &'a (dyn Fn(f64) -> f64 + Sync),
     /// Quarter turns of the phase: derivative +1, integral -1.
     pub turns: i32,
     /// Shortest corner wavelength.
     pub shortest_wavelength: f64,
+}
+
+/// The size of `gain` (i w)^`turns` at `f` cycles per sample, as `Shape::gain` wants it. An integral leaves zero frequency
+/// out: what it makes of a constant is no matter of frequencies.
+pub fn turned(gain: f64, f: f64, turns: i32) -> f64 {
+    if turns < 0 && f == 0.0 { 0.0 } else { gain * (TAU * f).powi(turns) }
 }
 
 /// The impulse response on a grid, and the reach: beyond it lies a thousandth of the kernel's absolute area.

@@ -34,18 +34,30 @@ pub const SHORTEST_WAVELENGTH: f64 = 4.0;
 pub struct Case<'a> {
     /// The record.
     pub samples: &'a [f64],
-    /// Its fits, for the block length that suits the operator; `None` where there are too few blocks.
-    pub evidence: Option<&'a Evidence>,
+    /// Its fits, for the block length that suits the operator, and the forecast from them under the operator; `None`
+    /// where there are too few blocks.
+    pub past: Option<(&'a Evidence, &'a Forecast)>,
     /// Its structure, from `structure`.
     pub structure: Structure,
     /// The end estimates, for the half-sample seat.
     pub estimates: EndEstimates,
-    /// The operator.
+    /// The operator, in the unit of the output.
     pub response: &'a Response<'a>,
     /// The operator's whole output of the record under an extension.
     pub output: &'a dyn Fn(Extension) -> Vec<f64>,
+    /// How the output is formed.
+    pub formed: Formed,
     /// What edge error is tolerable.
     pub tolerance: Tolerance,
+}
+
+/// How an output is formed.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Formed {
+    /// By the operator's impulse response over the extended record.
+    InOnePass,
+    /// In several passes with extensions of their own: the impulse response alone does not give the edges.
+    InSeveral,
 }
 
 /// A tolerable edge error.
@@ -98,20 +110,19 @@ impl Verdict {
         let zone = response.zone(len);
         let too_small = len < SHORTEST_RECORD || response.shape().shortest_wavelength < SHORTEST_WAVELENGTH;
         let is_constant = case.samples.windows(2).all(|w| w[0] == w[1]);
-        let (Some(evidence), false) = (case.evidence, too_small || is_constant) else {
+        let (Some((evidence, forecast)), false) = (case.past, too_small || is_constant) else {
             return Verdict::not_judged(case, zone);
         };
-        let forecast = Forecast::combine(evidence, response);
         let continuations = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
         let foretold = (case.output)(Extension::Continued { left: &continuations[0], right: &continuations[1] });
         let output_deviation = sum::standard_deviation(&foretold);
         if output_deviation.is_nan() || output_deviation <= 0.0 {
             return Verdict::not_judged(case, zone);
         }
-        let differences = differences(case, evidence, &forecast, &foretold);
+        let differences = differences(case, evidence, forecast, &foretold);
         let tolerance = case.tolerance.absolute(output_deviation);
         let scene = Scene {
-            forecast: &forecast,
+            forecast,
             len,
             zone,
             trimmable: response.trimmable(len),
@@ -189,7 +200,7 @@ fn differences(
 ) -> Vec<(&'static str, Difference)> {
     let len = case.samples.len();
     let farthest = case.response.trimmable(len).max(case.response.zone(len));
-    match Near::new(evidence, case.response, farthest) {
+    match Near::new(evidence, case.response, farthest).filter(|_| case.formed == Formed::InOnePass) {
         Some(near) => near_differences(case, forecast, &near),
         None => whole_differences(case, foretold, farthest),
     }

@@ -58,9 +58,17 @@ fn judged(samples: &[f64], wavelength: f64) -> Verdict {
     let evidence = Evidence::gather(samples, Evidence::block_length(wavelength));
     let structure = evidence.as_ref().map(structure).unwrap_or_default();
     let output = |extension: Extension| pass.output(samples, extension, &estimates);
-    let tolerance = Tolerance::Share(0.1);
-    let evidence = evidence.as_ref();
-    let case = Case { samples, evidence, structure, estimates, response: &response, output: &output, tolerance };
+    let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
+    let case = Case {
+        samples,
+        past: evidence.as_ref().zip(forecast.as_ref()),
+        structure,
+        estimates,
+        response: &response,
+        output: &output,
+        formed: Formed::InOnePass,
+        tolerance: Tolerance::Share(0.1),
+    };
     Verdict::of(&case, FlatEnds::Ignored)
 }
 
@@ -100,16 +108,17 @@ fn blocks_next_to_the_ends_tell_the_same_as_the_whole_output() {
         let estimates = estimates(&samples, &response, noise::sigma(&samples));
         let evidence = Evidence::gather(&samples, Evidence::block_length(wavelength)).expect("blocks");
         let output = |extension: Extension| pass.output(&samples, extension, &estimates);
+        let forecast = Forecast::combine(&evidence, &response);
         let case = Case {
             samples: &samples,
-            evidence: Some(&evidence),
+            past: Some((&evidence, &forecast)),
             structure: Structure::default(),
             estimates,
             response: &response,
             output: &output,
+            formed: Formed::InOnePass,
             tolerance: Tolerance::Share(0.1),
         };
-        let forecast = Forecast::combine(&evidence, &response);
         let [left, right] = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
         let foretold = output(Extension::Continued { left: &left, right: &right });
         let zone = response.zone(samples.len());
@@ -228,12 +237,20 @@ fn a_stricter_tolerance_trims_more() {
     let gain = |f: f64| pass.gain(f);
     let response = Response::of(Shape { gain: &gain, turns: 0, shortest_wavelength: 50.0 }, samples.len());
     let estimates = estimates(&samples, &response, noise::sigma(&samples));
-    let evidence = Evidence::gather(&samples, 1);
+    let evidence = Evidence::gather(&samples, 1).expect("blocks");
+    let forecast = Forecast::combine(&evidence, &response);
     let output = |extension: Extension| pass.output(&samples, extension, &estimates);
     let verdict = |tolerance| {
-        let (evidence, structure) = (evidence.as_ref(), Structure::default());
-        let case =
-            Case { samples: &samples, evidence, structure, estimates, response: &response, output: &output, tolerance };
+        let case = Case {
+            samples: &samples,
+            past: Some((&evidence, &forecast)),
+            structure: Structure::default(),
+            estimates,
+            response: &response,
+            output: &output,
+            formed: Formed::InOnePass,
+            tolerance,
+        };
         Verdict::of(&case, FlatEnds::Ignored)
     };
     let shares = [1e-4, 0.01, 0.1, 10.0].map(|share| verdict(Tolerance::Share(share)));
