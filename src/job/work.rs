@@ -202,6 +202,14 @@ pub fn verdict_report(
     if let Some(edge) = edge {
         sentence = format!("{sentence}; {}: {}", edge.name, verdict.edge_sentence(edge, unit, channel.axis));
     }
+    if let Some(standing) = standing {
+        let word = match standing {
+            compare::Standing::NotContradicted => "not contradicted",
+            compare::Standing::Contradicted => "contradicted",
+            compare::Standing::Untested => "untested",
+        };
+        sentence = format!("{sentence}; asserted {}: {word} by this record", settings.assertion);
+    }
     Some(VerdictReport {
         pick: verdict.pick.name,
         level: verdict.pick.level,
