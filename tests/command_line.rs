@@ -114,13 +114,98 @@ fn a_record_comes_back_in_its_own_format_with_a_sidecar() {
 }
 
 #[test]
-fn a_default_extension_is_called_a_default() {
+fn what_cannot_be_judged_is_called_a_default() {
     let run = Run::new();
-    run.file("in.csv", &ramp());
-    let told = run.ok(&["condition", "in.csv", "--lowpass", "10Hz", "-o", "out.csv"]);
+    let rows: String = (0..12).map(|n| format!("{},{}\n", n as f64 / 100.0, (n * n) % 7)).collect();
+    run.file("short.csv", &format!("t [s],a [g]\n{rows}"));
+    let told = run.ok(&["condition", "short.csv", "--lowpass", "10Hz", "-o", "out.csv"]);
     assert!(told.contains("even ends") && told.contains("a default, not a finding"), "{told}");
     let sidecar: Value = serde_json::from_str(&run.text("out.csv.json")).expect("JSON");
     assert_eq!(sidecar["channels"][0]["extension"]["how"], "default");
+    assert_eq!(sidecar["channels"][0]["verdict"]["level"], "not_judged");
+}
+
+#[test]
+fn by_default_the_verdict_chooses_and_says_what_it_costs() {
+    let run = Run::new();
+    let hoist = fixture("hoist.csv");
+    let hoist = hoist.to_str().expect("UTF-8");
+    let told = run.ok(&["condition", hoist, "--lowpass", "12Hz", "-o", "out.csv"]);
+    assert!(told.contains("by the verdict") && told.contains("trusted span"), "{told}");
+    let sidecar: Value = serde_json::from_str(&run.text("out.csv.json")).expect("JSON");
+    let channel = &sidecar["channels"][0];
+    assert_eq!(channel["extension"]["how"], "verdict");
+    // Seven candidates, the forecast, and three references.
+    assert_eq!(channel["candidates"].as_array().map(Vec::len), Some(11));
+    assert!(channel["verdict"]["predicted_error"].as_f64().is_some_and(|error| error > 0.0));
+}
+
+#[test]
+fn edges_are_marked_blanked_or_trimmed() {
+    let run = Run::new();
+    let hoist = fixture("hoist.csv");
+    let hoist = hoist.to_str().expect("UTF-8");
+    let common = ["condition", hoist, "--channel", "az", "--lowpass", "3Hz", "--tolerance", "2%", "-q"];
+    let with = |rest: &[&str]| run.ok(&[&common[..], rest].concat());
+    with(&["--edges", "mark", "-o", "mark.csv"]);
+    with(&["--edges", "blank", "-o", "blank.csv"]);
+    with(&["--edges", "trim", "-o", "trim.csv"]);
+    let sidecar: Value = serde_json::from_str(&run.text("mark.csv.json")).expect("JSON");
+    let span = &sidecar["channels"][0]["trusted"];
+    let (first, last) = (span["first"].as_u64().expect("a span"), span["last"].as_u64().expect("a span"));
+    assert!(first > 0 && last < 2399, "{first} {last}");
+    let marked = run.text("mark.csv");
+    assert!(marked.lines().nth(1).is_some_and(|header| header.ends_with(",trusted")));
+    let flags: Vec<&str> = marked.lines().skip(2).map(|line| line.rsplit(',').next().unwrap_or_default()).collect();
+    assert_eq!(flags.iter().position(|flag| *flag == "1"), Some(first as usize));
+    assert_eq!(flags.iter().filter(|flag| **flag == "1").count() as u64, last - first + 1);
+    let blank = run.text("blank.csv");
+    let empty = blank.lines().skip(2).filter(|line| line.ends_with(',')).count() as u64;
+    assert_eq!(empty, 2400 - (last - first + 1));
+    let trimmed = run.text("trim.csv");
+    let start = format!("{:.3},", first as f64 / 200.0);
+    assert!(trimmed.lines().nth(2).is_some_and(|line| line.starts_with(&start)), "{start}");
+}
+
+#[test]
+fn a_requirement_that_is_not_met_exits_with_1_and_writes_all_the_same() {
+    let run = Run::new();
+    let hoist = fixture("hoist.csv");
+    let hoist = hoist.to_str().expect("UTF-8");
+    let told = run.fails(
+        1,
+        &["condition", hoist, "--lowpass", "3Hz", "--tolerance", "0.01%", "--require", "within", "-o", "out.csv"],
+    );
+    assert!(told.contains("not met"), "{told}");
+    assert!(run.files().contains(&"out.csv".to_owned()));
+    run.ok(&["condition", hoist, "--lowpass", "3Hz", "--tolerance", "0.5g", "--require", "within", "-o", "loose.csv"]);
+}
+
+#[test]
+fn assertions_are_followed_and_checked() {
+    let run = Run::new();
+    // A half sine bulge: zero at both ends, not flat there.
+    let rows: String = (0..400)
+        .map(|n| {
+            format!(
+                "{},{}\n",
+                n as f64 / 100.0,
+                (std::f64::consts::PI * (n as f64 + 0.5) / 400.0).sin() + 1e-3 * ((n * 7919) % 13) as f64
+            )
+        })
+        .collect();
+    run.file("rod.csv", &format!("t [s],a [mm]\n{rows}"));
+    let zero = run.ok(&["condition", "rod.csv", "--lowpass", "3Hz", "--assert", "zero-value", "-o", "zero.csv"]);
+    assert!(zero.contains("odd ends") && zero.contains("as asserted"), "{zero}");
+    let flat = run.ok(&["condition", "rod.csv", "--lowpass", "3Hz", "--assert", "zero-slope", "-o", "flat.csv"]);
+    assert!(flat.contains("even ends"), "{flat}");
+    let one = run.ok(&["condition", "rod.csv", "--lowpass", "3Hz", "--assert", "left:zero-value", "-o", "one.csv"]);
+    assert!(one.contains("left:zero-value/forecast"), "{one}");
+    let told = run.fails(
+        2,
+        &["condition", "rod.csv", "--lowpass", "3Hz", "--assert", "closed", "--extension", "odd", "-o", "x.csv"],
+    );
+    assert!(told.contains("--assert"), "{told}");
 }
 
 #[test]

@@ -83,6 +83,43 @@ fn check(bytes: Vec<u8>, options: &ReadOptions) {
     }
 }
 
+/// Fields that turn up where a number should stand.
+const FIELDS: &[&str] = &[
+    "x",
+    "",
+    "NA",
+    "1.5",
+    "-9999",
+    "1;5",
+    "\"1\"",
+    "\"",
+    "0.07",
+    "1e400",
+    "10:00:00",
+    "2026-01-01",
+    "  ",
+    "# 1",
+    "1.200",
+    "\0",
+    "7%",
+    "\u{e9}",
+    "5.",
+    "-",
+    "1 2",
+    "0x1F",
+    "1:2",
+    "\"a,b\"",
+];
+
+/// A table of 30 rows, of which row `row` is replaced.
+fn replaced(row: usize, by: &str, header: bool) -> (Vec<u8>, Vec<[f64; 2]>) {
+    let values: Vec<[f64; 2]> = (0..30).map(|n| [f64::from(n * n % 17) + 0.5, 2.5 - f64::from(n)]).collect();
+    let line = |n: usize| format!("0.{n:02},{},{}", values[n][0], values[n][1]);
+    let lines: Vec<String> = (0..30).map(|n| if n == row { by.to_owned() } else { line(n) }).collect();
+    let head = if header { "t,ax,ay\n" } else { "" };
+    (format!("{head}{}\n", lines.join("\n")).into_bytes(), values)
+}
+
 proptest! {
     #![proptest_config(ProptestConfig { cases: 400, ..ProptestConfig::default() })]
 
@@ -100,5 +137,37 @@ proptest! {
     #[test]
     fn random_bytes_are_read_or_refused(bytes in proptest::collection::vec(proptest::sample::select(BYTES), 1..600)) {
         check(bytes, &ReadOptions::default());
+    }
+
+    /// Whatever one row holds, the others are read as they stand, and no row is lost without a word.
+    #[test]
+    fn one_odd_row_harms_no_other(
+        row in 0..30_usize,
+        cells in proptest::collection::vec(proptest::sample::select(FIELDS), 1..5),
+        header in any::<bool>(),
+    ) {
+        prop_assume!(header || row > 0); // words above a table without a header are its header or preamble
+        let line = cells.join(",");
+        let (bytes, values) = replaced(row, &line, header);
+        let shown = String::from_utf8_lossy(&bytes).into_owned();
+        let Ok(record) = read(Input::Stream(Box::new(Cursor::new(bytes))), &ReadOptions::default()) else { return Ok(()) };
+        let codes: Vec<&str> = record.findings.iter().map(|finding| finding.code).collect();
+        let rows = record.channels[0].values.len();
+        let blank = line.trim().is_empty();
+        let told = row == 29 && (codes.contains(&"last_row_cut") || codes.contains(&"footer"));
+        if codes.contains(&"rows_above_header") {
+            return Ok(()); // a row of words within a table without a header was taken for one, and that is said
+        }
+        // A row of words right under the header belongs to it.
+        let remark = row == 0 && (codes.contains(&"line_left_out") || !line.contains(|c: char| c.is_ascii_digit()));
+        prop_assert!(rows == 30 || rows == 29 && (blank || told || remark), "{rows} rows, {codes:?}\n{shown}");
+        // Without a header the stamps are only guessed, and not where a row contradicts.
+        let first = record.channels.len() - 2;
+        prop_assert!(first == 0 || first == 1 && !header && record.stamps.is_none(), "{:?}
+{}", codes, shown);
+        let left: Vec<usize> = (0..30).filter(|&n| rows == 30 || n != row).collect();
+        for (at, &n) in left.iter().enumerate().filter(|(_, n)| **n != row) {
+            prop_assert_eq!([record.channels[first].values[at], record.channels[first + 1].values[at]], values[n], "{:?}\n{}", codes, shown);
+        }
     }
 }

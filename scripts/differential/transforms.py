@@ -44,9 +44,9 @@ class Transforms:
     """The compiled example, asked line by line."""
 
     def __init__(self):
-        build = ["cargo", "build", "--quiet", "--release", "--example", "transforms"]
+        build = ["cargo", "build", "--quiet", "--example", "transforms"]
         subprocess.run(build, cwd=ROOT, check=True)
-        command = ["cargo", "run", "--quiet", "--release", "--example", "transforms"]
+        command = ["cargo", "run", "--quiet", "--example", "transforms"]
         self.process = subprocess.Popen(
             command, cwd=ROOT, stdin=subprocess.PIPE, stdout=subprocess.PIPE, text=True
         )

@@ -12,7 +12,8 @@ use endgrain::write::Overwrite;
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] = &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
+const GROUPS: &[Group] =
+    &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
 
 const EXAMPLES: &str = "\
 Examples:

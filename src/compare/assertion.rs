@@ -87,10 +87,12 @@ impl FromStr for Property {
     type Err = Error;
 
     fn from_str(text: &str) -> Result<Self> {
-        [Self::ZeroSlope, Self::ZeroValue, Self::Closed].into_iter().find(|known| known.word() == text).ok_or_else(|| {
-            Error::usage(format!("not an assertion: \"{}\"", escape(text)))
-                .remedy("use zero-slope, zero-value or closed, with left: or right: for one end")
-        })
+        [Self::ZeroSlope, Self::ZeroValue, Self::Closed].into_iter().find(|known| known.word() == text).ok_or_else(
+            || {
+                Error::usage(format!("not an assertion: \"{}\"", escape(text)))
+                    .remedy("use zero-slope, zero-value or closed, with left: or right: for one end")
+            },
+        )
     }
 }
 

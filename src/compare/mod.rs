@@ -28,8 +28,8 @@ pub struct Judgement {
     pub estimates: EndEstimates,
     /// The forecast past the left and the right end, counted outwards; `None` where nothing could be judged.
     pub forecast: Option<[Vec<f64>; 2]>,
-    /// How far a continuation must reach, in samples.
-    pub continuation_len: usize,
+    /// Standard deviation that the forecast gives the output, by distance from the left and the right end.
+    pub deviation: [Vec<f64>; 2],
     /// Joins of the ends, where the record is long enough.
     pub structure: verdict::Structure,
 }
@@ -56,7 +56,7 @@ pub fn judge(
     let Some(shortest_wavelength) = chain.shortest_wavelength_samples().filter(|_| !integrates_offset) else {
         let estimates = EndEstimates::with_noise(samples, Ends::EVEN, crate::condition::scale_of(chain, len), noise);
         let structure = verdict::Structure::default();
-        return Ok(Judgement { verdict: None, estimates, forecast: None, continuation_len: len, structure });
+        return Ok(Judgement { verdict: None, estimates, forecast: None, deviation: Default::default(), structure });
     };
     let response = Response::of(Shape { gain: &gain, turns: chain.turns(), shortest_wavelength }, len);
     let estimates = verdict::estimates(samples, &response, noise);
@@ -86,10 +86,13 @@ pub fn judge(
     };
     let verdict = Verdict::of(&case, FlatEnds::Ignored);
     let judged = !verdict.edges.is_empty();
-    let continued = |forecast: Forecast| [Side::Left, Side::Right].map(|side| forecast.continuation(side));
-    let forecast = forecast.filter(|_| judged).map(continued);
-    let continuation_len = response.reach().max(8).min(len);
-    Ok(Judgement { verdict: Some(verdict), estimates, forecast, continuation_len, structure })
+    let forecast = forecast.filter(|_| judged);
+    let sides = [Side::Left, Side::Right];
+    let deviation = sides.map(|side| {
+        forecast.as_ref().map_or_else(Vec::new, |f| f.profile(side).iter().map(|variance| variance.sqrt()).collect())
+    });
+    let forecast = forecast.map(|forecast| sides.map(|side| forecast.continuation(side)));
+    Ok(Judgement { verdict: Some(verdict), estimates, forecast, deviation, structure })
 }
 
 #[cfg(test)]

@@ -105,7 +105,8 @@ fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     let Some(name) = &settings.encoding else { return Ok(WaveEncoding::Float32) };
     write::WAVE_ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
         let known: Vec<&str> = write::WAVE_ENCODINGS.iter().map(|(name, _)| *name).collect();
-        Error::usage(format!("--encoding: not a sample type: {name:?}")).remedy(format!("use one of {}", known.join(", ")))
+        Error::usage(format!("--encoding: not a sample type: {name:?}"))
+            .remedy(format!("use one of {}", known.join(", ")))
     })
 }
 

@@ -15,7 +15,12 @@ use crate::write::{Cells, Extra};
 ///
 /// # Errors
 /// `Unsupported` when no sample is trusted by all channels.
-pub fn trimmed(record: Record, rows: RowMap, channels: &[ChannelReport], settings: &Settings) -> Result<(Record, RowMap)> {
+pub fn trimmed(
+    record: Record,
+    rows: RowMap,
+    channels: &[ChannelReport],
+    settings: &Settings,
+) -> Result<(Record, RowMap)> {
     if settings.edges != Edges::Trim {
         return Ok((record, rows));
     }

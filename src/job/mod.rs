@@ -1,5 +1,6 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod comparison;
 mod conditioning;
 mod edges;
 mod examination;
@@ -8,6 +9,7 @@ mod origin;
 mod target;
 mod work;
 
+pub use comparison::compare;
 pub use conditioning::{condition, plan};
 pub use examination::audit;
 pub use target::Target;

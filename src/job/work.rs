@@ -13,9 +13,7 @@ use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Axis, Channel, Record};
-use crate::report::{
-    BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport,
-};
+use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport};
 use crate::settings::Settings;
 use crate::unit::Unit;
 use crate::verdict::{Auto, Edge};
@@ -52,7 +50,12 @@ pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked>
     Ok(Worked { record, channels })
 }
 
-fn one(channel: Channel<'_>, chain: &Chain, settings: &Settings, planner: &Planner) -> Result<(ChannelReport, Vec<f64>)> {
+fn one(
+    channel: Channel<'_>,
+    chain: &Chain,
+    settings: &Settings,
+    planner: &Planner,
+) -> Result<(ChannelReport, Vec<f64>)> {
     let (chosen, judgement) = choose(channel, chain, settings, planner)?;
     let outcome = match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
@@ -62,7 +65,9 @@ fn one(channel: Channel<'_>, chain: &Chain, settings: &Settings, planner: &Plann
     };
     if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
         let place = Place { sample: Some(n as u64), ..Place::channel(channel.name) };
-        return Err(Error::unsupported("the result is too large for a double").at(place).remedy("scale the channel with --calibrate"));
+        return Err(Error::unsupported("the result is too large for a double")
+            .at(place)
+            .remedy("scale the channel with --calibrate"));
     }
     let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
     Ok((report, outcome.output))
@@ -156,7 +161,7 @@ fn report(
 }
 
 /// The row of the verdict that belongs to the continuation in use, where there is one.
-fn edge_of<'a>(chosen: &Chosen, judgement: Option<&'a Judgement>) -> Option<&'a Edge> {
+pub fn edge_of<'a>(chosen: &Chosen, judgement: Option<&'a Judgement>) -> Option<&'a Edge> {
     let verdict = judgement?.verdict.as_ref()?;
     match &chosen.continuation {
         Continuation::Given(_) if chosen.how != How::Asserted => verdict.edge(Auto::Forecast.name()),
@@ -181,7 +186,8 @@ pub fn trusted_report(first: usize, last: usize, axis: &Axis) -> TrustedReport {
     TrustedReport { first, last, from: axis.stamp(first), to: axis.stamp(last) }
 }
 
-fn verdict_report(
+/// The verdict as a report: its sentence ends with the cost of the extension in use.
+pub fn verdict_report(
     channel: Channel<'_>,
     unit: &Unit,
     settings: &Settings,

@@ -1,3 +1,5 @@
+//! Leakage, decay and jumps against closed forms.
+
 use std::f64::consts::PI;
 
 use super::*;

@@ -1,8 +1,10 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod comparison;
 mod examination;
 mod json;
 mod plan;
+mod plot;
 mod text;
 
 use serde::Serialize;
@@ -10,18 +12,20 @@ use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
 use crate::baseline::EndEstimates;
-use crate::compare::Standing;
 use crate::compare::How;
+use crate::compare::Standing;
 use crate::error::Finding;
 use crate::operator::ChainDescription;
-use crate::verdict::{self, Adequacy, Edge, Structure};
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
+use crate::verdict::{self, Adequacy, Edge, Structure};
 
+pub use comparison::{ChannelComparison, Comparison, Jump, Row};
 pub use examination::AuditReport;
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
-pub use text::{audit_text, plan_text, summary};
+pub use plot::{Curve, Picture, svg};
+pub use text::{audit_text, comparison_text, plan_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;

@@ -1,3 +1,5 @@
+//! The verdict: near and whole differences, levels, invariances.
+
 use std::f64::consts::TAU;
 
 use super::*;

@@ -62,7 +62,14 @@ pub struct Content<'a> {
 impl<'a> Content<'a> {
     /// A record in plain form: shortest digits, or 32-bit floats.
     pub fn new(record: &'a Record) -> Content<'a> {
-        Content { record, origin: None, extra: &[], shown: None, digits: Digits::Shortest, encoding: WaveEncoding::Float32 }
+        Content {
+            record,
+            origin: None,
+            extra: &[],
+            shown: None,
+            digits: Digits::Shortest,
+            encoding: WaveEncoding::Float32,
+        }
     }
 }
 

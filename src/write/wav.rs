@@ -26,9 +26,8 @@ fn check(content: &Content<'_>) -> Result<Vec<Finding>> {
     rate_hz(record.axis())?;
     channel_count(content)?;
     if !content.extra.is_empty() || content.shown.is_some() {
-        return Err(
-            Error::unsupported("a WAV file has no room for extra columns or blank cells").remedy("write text with --format csv")
-        );
+        return Err(Error::unsupported("a WAV file has no room for extra columns or blank cells")
+            .remedy("write text with --format csv"));
     }
     let channels: Vec<Channel<'_>> = record.channels().collect();
     let faults: Vec<Option<Error>> =

@@ -1,3 +1,5 @@
+//! The forecast against closed forms and invariances.
+
 use std::f64::consts::TAU;
 
 use super::*;

@@ -337,22 +337,23 @@ fn find(
     if let Some(field) = position(columns, contents, tracks, options)? {
         return Ok(Some(field));
     }
-    let first_rises =
-        contents.first() == Some(&Content::Number) && motion(&tracks[0]) == Motion::Strict && steady(&tracks[0]);
+    let first = motion(&tracks[0]);
+    let rises = contents[0] == Content::Number && first <= Motion::Rising && steady(&tracks[0]);
     let others = contents.iter().skip(1).any(|content| *content == Content::Number);
     let unsure =
         |text: String| Finding::new("time_column_unsure", format!("{text}; if it is the time, say --time-column"));
     if let Some(field) = doubtful {
         let name = escape(&columns[field].name);
         findings.push(unsure(format!("column \"{name}\" does not rise and is not taken for the time")));
-    } else if first_rises && others && !counts_rows(&columns[0], &tracks[0]) {
+    } else if rises && others && !counts_rows(&columns[0], &tracks[0]) {
         let name = escape(&columns[0].name);
-        if !named {
+        if !named && first == Motion::Strict {
             let text = "there is no header: the first column rises steadily and is taken for the time (--time-column)";
             findings.push(Finding::new("time_column_guessed", text));
             return Ok(Some(0));
         }
-        findings.push(unsure(format!("column \"{name}\" rises steadily but is not named as time")));
+        let but = if named { "but is not named as time" } else { "but not on every row" };
+        findings.push(unsure(format!("column \"{name}\" rises steadily {but}")));
     }
     Ok(None)
 }

@@ -276,21 +276,28 @@ pub(super) fn reach_up(beginning: Beginning<'_>, found: &mut Found, options: &Re
     }
 }
 
-/// Takes lines right above the block in as data that must be rows, whatever is wrong with them: those of `above` with as many
-/// fields and a number or stamp among them, in the first field where no header stands above.
+/// Takes lines above the block in as data that must be rows, whatever is wrong with them: of the lines `below` the
+/// header, those with as many fields and a number or stamp among them; without a header, those
+/// of nothing but values, and the one right above when it starts with a value.
 pub(super) fn take_in(
     beginning: Beginning<'_>,
     found: &mut Found,
-    above: impl Iterator<Item = usize>,
+    below: &[usize],
     named: bool,
     options: &ReadOptions,
 ) {
     let missing = Missing::new(&options.missing, found.dialect.decimal);
-    let valued = |look: Look| matches!(look, Look::Number | Look::Grouped | Look::Stamp);
-    for index in above.filter(|&index| index < found.first && !beginning.is_blank(index)) {
+    let valued = |look: &Look| matches!(look, Look::Number | Look::Grouped | Look::Stamp);
+    let next = beginning.above(found.first);
+    for &index in below {
         let cells = fields(beginning.line(index), found.dialect.delimiter);
-        let mut looks = cells.iter().map(|cell| look(cell, found.dialect, &missing));
-        let data = if named { looks.any(valued) } else { looks.next().is_some_and(valued) };
+        let looks: Vec<Look> = cells.iter().map(|cell| look(cell, found.dialect, &missing)).collect();
+        let values = looks.iter().any(valued);
+        let data = match named {
+            true => values,
+            false if next == Some(index) && looks.first().is_some_and(valued) => true,
+            false => values && !looks.contains(&Look::Text),
+        };
         if data && cells.len() == found.fields {
             found.first = index;
             return;

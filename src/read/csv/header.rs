@@ -60,10 +60,24 @@ pub(super) fn find(beginning: Beginning<'_>, found: &Found, empty_last: bool, gi
         let text = "every row ends in a separator that the header lacks: the empty last field is left out";
         findings.push(Finding::new("trailing_separator", text).at(Place::line(found.first as u64 + 1)));
     }
+    if let Some(line) = (0..names.start).find(|&line| !given && is_row(beginning, line, found)) {
+        let text = "this line looks like data but stands above the header: it is left out (--header-lines)";
+        findings.push(Finding::new("rows_above_header", text).at(Place::line(line as u64 + 1)));
+    }
     let units = units_at.map(|at| &block[at]);
     let (columns, doubled) = columns(headers, units.map_or(&[][..], |(_, units)| units), Some(names.start as u64 + 1));
     findings.extend(doubled);
     Ok(Header { columns, names: Some(names.clone()), units: units.map(|(lines, _)| lines.clone()), findings })
+}
+
+/// True for a line of numbers, stamps and missing values, as many as a row has.
+fn is_row(beginning: Beginning<'_>, line: usize, found: &Found) -> bool {
+    let missing = Missing::default();
+    let cells = fields(beginning.line(line), found.dialect.delimiter);
+    let mut looks = cells.iter().map(|cell| look(cell, found.dialect, &missing));
+    cells.len() == found.fields
+        && looks.clone().any(|look| look == Look::Number)
+        && looks.all(|look| look != Look::Text)
 }
 
 /// The nearest lines above the block that can name `kept` columns, nearest first.
@@ -108,6 +122,9 @@ fn names(
     let plain = uncommented(line);
     if plain.len() < line.trim_ascii().len() && plain.iter().any(|byte| matches!(byte, b'=' | b':')) {
         return None; // `# key = value`
+    }
+    if memchr::memchr(0, line).is_some() {
+        return None; // lost data
     }
     let missing = Missing::default();
     let mut cells = Vec::new();
@@ -162,7 +179,9 @@ fn roles(block: &[Named]) -> (Option<usize>, Option<usize>) {
     if block.len() < 2 {
         return ((!block.is_empty()).then_some(0), None);
     }
-    let units = |cells: &[String]| cells.iter().filter(|cell| is_unit(unit_cell(cell).label())).count();
+    // A dash, "1", says as little as a missing value does.
+    let unit = |cell: &String| is_unit(unit_cell(cell).label()) && unit_cell(cell).label() != "1";
+    let units = |cells: &[String]| cells.iter().filter(|cell| unit(cell)).count();
     let short = |cells: &[String]| cells.iter().all(|cell| cell.chars().count() <= 16);
     // A units row stands under the names and holds more units than they do.
     let found = (0..block.len() - 1).find(|&at| {
@@ -173,11 +192,12 @@ fn roles(block: &[Named]) -> (Option<usize>, Option<usize>) {
         return (Some(at + 1), Some(at));
     }
     // A row of remarks may stand under the names.
-    if let Some(timed) = block.iter().position(|(_, cells)| cells.iter().any(|cell| is_time_name(cell))) {
-        return (Some(timed), None);
-    }
-    let full = block.iter().position(|(_, cells)| cells.iter().all(|cell| !cell.is_empty()));
-    (Some(full.unwrap_or(0)), None)
+    let full = |cells: &[String]| cells.iter().all(|cell| !cell.is_empty());
+    let timed = |cells: &[String]| cells.iter().any(|cell| is_time_name(cell));
+    let names = (block.iter().position(|(_, cells)| full(cells) && timed(cells)))
+        .or_else(|| block.iter().position(|(_, cells)| timed(cells)))
+        .or_else(|| block.iter().position(|(_, cells)| full(cells)));
+    (Some(names.unwrap_or(0)), None)
 }
 
 /// An error where the line above the data is a header of another width.

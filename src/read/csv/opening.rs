@@ -9,7 +9,7 @@ use super::dialect::{self, Beginning, Found};
 use super::field::{Field, MOST, fields};
 use super::header::{self, Header};
 use super::{WINDOW, metadata, shown};
-use crate::error::{Error, Result};
+use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::read::ReadOptions;
 
@@ -75,20 +75,16 @@ fn lines(text: &[u8], newline: u8, complete: bool) -> Vec<Range<usize>> {
 }
 
 fn judge(beginning: Beginning<'_>, mut found: Found, newline: u8, options: &ReadOptions) -> Result<Opening> {
-    let header = header::find(beginning, &found, empty_last(beginning, &found), options.header_lines.is_some())?;
+    let mut header = header::find(beginning, &found, empty_last(beginning, &found), options.header_lines.is_some())?;
     if options.header_lines.is_none() {
-        let above = header.names.clone().map_or_else(
-            || beginning.above(found.first).map_or(0..0, |line| line..line + 1),
-            |names| names.end..found.first,
-        );
+        let below = header.names.as_ref().map_or(0, |names| names.end)..found.first;
         let units = header.units.clone().unwrap_or_default();
-        dialect::take_in(
-            beginning,
-            &mut found,
-            above.filter(|line| !units.contains(line)),
-            header.names.is_some(),
-            options,
-        );
+        let below: Vec<usize> = below.filter(|line| !units.contains(line) && !beginning.is_blank(*line)).collect();
+        dialect::take_in(beginning, &mut found, &below, header.names.is_some(), options);
+        if header.names.is_some() {
+            let between = below.into_iter().take_while(|&line| line < found.first);
+            header.findings.extend(between.filter_map(|line| left_out(beginning, line, &found)));
+        }
     }
     let rows_of = |lines: Range<usize>| -> Vec<Vec<Field<'_>>> {
         lines
@@ -117,6 +113,15 @@ fn judge(beginning: Beginning<'_>, mut found: Found, newline: u8, options: &Read
         header,
         roles,
     })
+}
+
+/// A remark on a line between header and data that is neither a ruler nor a row of words as wide as the data.
+fn left_out(beginning: Beginning<'_>, line: usize, found: &Found) -> Option<Finding> {
+    let text = beginning.line(line);
+    let ruler = text.iter().all(|byte| matches!(byte, b'-' | b'=' | b'_' | b'+' | b'|' | b'#' | b' ' | b'\t' | b'\r'));
+    let wide = fields(text, found.dialect.delimiter).len() == found.fields && !text.iter().any(u8::is_ascii_digit);
+    let said = format!("a line between the header and the data is left out: {}", shown(text));
+    (!ruler && !wide).then(|| Finding::new("line_left_out", said).at(Place::line(line as u64 + 1)))
 }
 
 /// True when the last field of the block's first rows is always empty.

@@ -1,6 +1,7 @@
 //! Results for people: short lines and tables, units everywhere, nothing that a file could use to command a terminal.
 
 mod audited;
+mod compared;
 mod conditioned;
 mod figure;
 mod planned;
@@ -8,11 +9,12 @@ mod planned;
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
 
-use crate::error::Finding;
 use crate::compare::How;
+use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
 
 pub use audited::audit_text;
+pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
 

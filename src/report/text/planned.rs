@@ -26,7 +26,11 @@ pub fn plan_text(plan: &Plan) -> String {
     for channel in &plan.channels {
         let name = crate::place::escape(&channel.name);
         let unit = if channel.unit.is_unknown() { String::new() } else { format!(" [{}]", channel.unit) };
-        text.push_str(&format!("{name}{unit}: {}, baseline {}\n", extension_text(&channel.extension), channel.baseline));
+        text.push_str(&format!(
+            "{name}{unit}: {}, baseline {}\n",
+            extension_text(&channel.extension),
+            channel.baseline
+        ));
     }
     text.push_str(&notes_text(&plan.notes));
     text.push_str("nothing was written\n");
