@@ -15,7 +15,7 @@ const DISTANCE_SHARE: f64 = 0.5;
 /// Standard deviations added to the distance from the forecast when the ends are trimmed.
 const TRUST: f64 = 2.5;
 /// The same where the forecast itself is the extension.
-const TRUST_FORECAST: f64 = 3.0;
+const TRUST_FORECAST: f64 = 3.5;
 /// An error is outside tolerance when this share of it already is.
 const OUTSIDE: f64 = 0.5;
 
