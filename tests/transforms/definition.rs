@@ -31,7 +31,9 @@ fn every_short_length_and_some_primes() {
 
 #[test]
 fn long_records_at_256_coefficients() {
-    for len in [4096, 65537] {
+    // A short one, then smooth, odd, with a factor above 13 on one and on both sides of the grid, with a large prime
+    // factor, prime.
+    for len in [4096, 8192, 10_125, 81 * 127, 19 * 23 * 25, 2 * 20_011, 65_537] {
         let x = noise(len, 7);
         for ends in Ends::all() {
             let c = forward(ends, &x);
