@@ -41,11 +41,6 @@ impl AwkwardCosine {
         })
     }
 
-    /// Points of the transform.
-    pub fn len(&self) -> usize {
-        self.grid.height * self.grid.width
-    }
-
     /// Numbers of scratch that a transform needs.
     pub fn scratch_len(&self) -> usize {
         self.spectra_len() + self.column.scratch_len().max(2 * self.row.space())

@@ -41,11 +41,6 @@ impl LongFour {
         }
     }
 
-    /// Points of the transform.
-    pub fn len(&self) -> usize {
-        2 * self.grid.height * self.grid.width
-    }
-
     /// Numbers of scratch that a transform needs.
     pub fn scratch_len(&self) -> usize {
         self.grid.space() + 2 * self.column.space().max(self.row.space())

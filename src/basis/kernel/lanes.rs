@@ -182,3 +182,44 @@ fn one_by_one(fft: &dyn Fft<f64>, points: &mut [f64], space: &mut [f64]) {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Every way of computing that this processor has.
+    fn ways() -> Vec<Arch> {
+        let mut ways = vec![Arch::Scalar, Arch::new()];
+        #[cfg(target_arch = "x86_64")]
+        ways.extend(pulp::x86::V3::try_new().map(Arch::V3));
+        ways
+    }
+
+    #[test]
+    fn every_lane_is_a_transform_of_its_own() {
+        // One stage of each kind, mixed stages, and a factor above 13.
+        for len in [1, 2, 3, 4, 5, 7, 8, 11, 13, 16, 17, 30, 77, 96, 169, 250, 1001, 17 * 12] {
+            let plan = LaneTransform::new(len);
+            let x: Vec<f64> = (0..plan.space()).map(|i| ((i * i + 7) % 89) as f64 / 89.0 - 0.5).collect();
+            let norm = x.iter().map(|v| v * v).sum::<f64>().sqrt();
+            for arch in ways() {
+                let (mut from, mut to) = (x.clone(), vec![f64::NAN; plan.space()]);
+                let (done, _) = plan.run(arch, &mut from, &mut to);
+                for k in (0..len).step_by(len.div_ceil(40)) {
+                    for l in 0..LANES {
+                        let mut want = [0.0; 2];
+                        for n in 0..len {
+                            let [c, s] = root((k * n % len) as u64, len as u64);
+                            let (re, im) = (x[n * POINT + l], x[n * POINT + LANES + l]);
+                            want = [want[0] + re * c - im * s, want[1] + re * s + im * c];
+                        }
+                        let far = (done[k * POINT + l] - want[0]).hypot(done[k * POINT + LANES + l] - want[1]);
+                        // len terms, each within some eps of its share of the norm of all eight lanes.
+                        let bound = 4.0 * f64::EPSILON * (1.0 + (len as f64).log2()) * norm;
+                        assert!(far < bound, "{len}, {k}, lane {l}, {arch:?}: {far:e}");
+                    }
+                }
+            }
+        }
+    }
+}
