@@ -30,7 +30,7 @@ pub struct AwkwardCosine {
 impl AwkwardCosine {
     /// A plan for columns of `prime` points and rows of `width` points, or none where the prime has none.
     pub fn new(prime: usize, width: usize) -> Option<Self> {
-        let grid = Grid::new(prime, width, prime / 2 + 1);
+        let grid = Grid::half(prime, width);
         Some(Self {
             grid,
             column: PrimeTransform::new(prime)?,

@@ -18,7 +18,7 @@ pub struct Convolution {
 impl Convolution {
     /// A plan for columns of `height` points and rows of `width` points, at least 16.
     pub fn new(height: usize, width: usize) -> Self {
-        let grid = Grid::new(height, width, height / 2 + 1);
+        let grid = Grid::half(height, width);
         let len = height * width;
         // Twice in a convolution: 1/M, and 1/2 to undo the parting of the pairs.
         let scale = (0.5 / len as f64).sqrt();

@@ -28,7 +28,7 @@ pub struct LongCosine {
 impl LongCosine {
     /// A plan for columns of `height` points and rows of `width` points, at least 16.
     pub fn new(height: usize, width: usize) -> Self {
-        let grid = Grid::new(height, width, height / 2 + 1);
+        let grid = Grid::half(height, width);
         let len = height * width;
         // 1/2 undoes the parting of the pairs.
         let scale = 0.5 * (2.0 / len as f64).sqrt();
@@ -188,6 +188,7 @@ pub fn sign(mirrors: Parity) -> f64 {
 mod tests {
     use super::*;
     use crate::basis::angle;
+    use crate::numeric::compensated::Compensated;
 
     /// cos(pi k (n + 1/2)/N) or sin(pi (k + 1)(n + 1/2)/N), normalised.
     fn function(mirrors: Parity, len: usize, k: usize, n: usize) -> f64 {
@@ -213,7 +214,7 @@ mod tests {
                 let mut c = x.clone();
                 plan.forward(&mut c, &mut scratch, mirrors);
                 for k in (0..len).step_by(len / 61).chain([len - 1]) {
-                    let want: f64 = (0..len).map(|n| x[n] * function(mirrors, len, k, n)).sum();
+                    let want = (0..len).map(|n| x[n] * function(mirrors, len, k, n)).collect::<Compensated>().value();
                     assert!((c[k] - want).abs() < bound, "{height} x {width} {mirrors:?} {k}: {} {want}", c[k]);
                 }
                 scratch.fill(f64::NAN);

@@ -28,7 +28,7 @@ pub struct LongFour {
 impl LongFour {
     /// A plan for columns of `height` points and rows of `width` points, at least 16.
     pub fn new(height: usize, width: usize) -> Self {
-        let grid = Grid::new(height, width, height);
+        let grid = Grid::full(height, width);
         let len = 2 * height * width;
         let quarters = |n: usize| (0..n as u64).map(|k| root(k, 4 * n as u64)).collect();
         Self {
@@ -94,25 +94,30 @@ impl LongFour {
         }
     }
 
-    /// Writes a block of rows: real parts to the even places, imaginary parts to the odd ones.
+    /// Writes a block of rows: real parts of point k to place 2k, imaginary parts of the point as far from the end to
+    /// place 2k + 1; that one is in the same block, width - 1 - k2 along the opposite row.
     #[inline(always)]
     fn store(&self, points: &[f64], x: &mut [f64], block: usize, left: Parity) {
-        let Grid { height, .. } = self.grid;
-        let first = block * LANES;
-        let last = x.len() - 1;
+        const HALF: usize = LANES / 2;
+        let Grid { height, width, .. } = self.grid;
+        let first = block * HALF;
         let sign = if left == Parity::Even { -1.0 } else { 1.0 };
         let (points, _) = points.as_chunks::<POINT>();
-        for (k2, (point, w)) in points.iter().zip(&self.after).enumerate() {
-            let k = first + height * k2;
+        for (k2, (point, w)) in points[..width].iter().zip(&self.after).enumerate() {
+            let (back, turn) = (&points[width - 1 - k2], &self.after[width - 1 - k2]);
             let (mut evens, mut odds) = ([0.0; LANES], [0.0; LANES]);
             for l in 0..LANES {
                 evens[l] = point[l] * w[0] - point[LANES + l] * w[1];
-                odds[l] = sign * (point[l] * w[1] + point[LANES + l] * w[0]);
+                odds[l] = sign * (back[l] * turn[1] + back[LANES + l] * turn[0]);
             }
-            for l in 0..LANES.min(height - first) {
-                x[2 * (k + l)] = evens[l];
-                x[last - 2 * (k + l)] = odds[l];
+            let (mut near, mut far) = ([0.0; LANES], [0.0; LANES]);
+            for l in 0..HALF {
+                (near[2 * l], near[2 * l + 1]) = (evens[l], odds[HALF + l]);
+                (far[LANES - 2 - 2 * l], far[LANES - 1 - 2 * l]) = (evens[HALF + l], odds[l]);
             }
+            let line = &mut x[2 * height * k2..][..2 * height];
+            line[2 * first..][..LANES].copy_from_slice(&near);
+            line[2 * (height - HALF - first)..][..LANES].copy_from_slice(&far);
         }
     }
 }
@@ -120,5 +125,42 @@ impl LongFour {
 impl fmt::Debug for LongFour {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         write!(f, "LongFour({} x {})", self.grid.height, self.grid.width)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::basis::angle;
+    use crate::numeric::compensated::Compensated;
+
+    #[test]
+    fn grids_of_every_shape_meet_the_definition_and_come_back() {
+        // Even and odd sides, whole and partial blocks, and 17 and 19 by the general kernel.
+        for (height, width) in [(16, 16), (17, 16), (16, 17), (18, 22), (21, 33), (39, 49), (12, 24)] {
+            let plan = LongFour::new(height, width);
+            let len = 2 * height * width;
+            let x: Vec<f64> = (0..len).map(|n| ((n * n + 5) % 97) as f64 / 97.0 - 0.5).collect();
+            let norm = x.iter().map(|v| v * v).sum::<f64>().sqrt();
+            let mut scratch = vec![f64::NAN; plan.scratch_len()];
+            // As for the cosines: below an eps in the mean for each of log2(N) stages.
+            let bound = 0.5 * f64::EPSILON * (len as f64).log2() * norm;
+            for left in [Parity::Even, Parity::Odd] {
+                let mut c = x.clone();
+                plan.transform(&mut c, &mut scratch, left);
+                for k in (0..len).step_by(len / 61).chain([len - 1]) {
+                    let term = |n: usize| {
+                        let (c, s) = angle::of_turns(((2 * k + 1) * (2 * n + 1)) as u64, 8 * len as u64);
+                        x[n] * (2.0 / len as f64).sqrt() * if left == Parity::Even { c } else { s }
+                    };
+                    let want = (0..len).map(term).collect::<Compensated>().value();
+                    assert!((c[k] - want).abs() < bound, "{height} x {width} {left:?} {k}: {} {want}", c[k]);
+                }
+                scratch.fill(f64::NAN);
+                plan.transform(&mut c, &mut scratch, left);
+                let far = x.iter().zip(&c).map(|(a, b)| (a - b) * (a - b)).sum::<f64>().sqrt();
+                assert!(far < bound, "{height} x {width} {left:?}: back {far:e}, bound {bound:e}");
+            }
+        }
     }
 }

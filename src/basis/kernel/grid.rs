@@ -15,11 +15,27 @@ pub struct Grid {
     pub width: usize,
     /// Rows that are transformed.
     pub rows: usize,
+    pub order: Order,
+}
+
+/// Which rows share a block.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Order {
+    /// Eight neighbours.
+    Neighbours,
+    /// Four neighbours and the four rows as far from the last row as these are from the first.
+    Opposites,
 }
 
 impl Grid {
-    pub fn new(height: usize, width: usize, rows: usize) -> Self {
-        Self { height, width, rows }
+    /// The grid of real columns, where half the rows suffice.
+    pub fn half(height: usize, width: usize) -> Self {
+        Self { height, width, rows: height / 2 + 1, order: Order::Neighbours }
+    }
+
+    /// The grid of complex columns.
+    pub fn full(height: usize, width: usize) -> Self {
+        Self { height, width, rows: height, order: Order::Opposites }
     }
 
     /// Blocks of eight pairs of columns; the last one reaches back over its neighbour rather than past the middle.
@@ -32,9 +48,22 @@ impl Grid {
         (block * LANES).min(self.width.div_ceil(2).saturating_sub(LANES))
     }
 
-    /// Blocks of eight rows; the last one may reach past the end.
+    /// Blocks of eight rows; the last one may reach past the end or, in opposite order, past the middle.
     pub fn row_blocks(&self) -> usize {
-        self.rows.div_ceil(LANES)
+        match self.order {
+            Order::Neighbours => self.rows.div_ceil(LANES),
+            Order::Opposites => self.rows.div_ceil(2).div_ceil(LANES / 2),
+        }
+    }
+
+    /// The row in a lane of a block, the last row for a lane past the end.
+    #[inline(always)]
+    pub fn row(&self, block: usize, lane: usize) -> usize {
+        match self.order {
+            Order::Neighbours => (block * LANES + lane).min(self.height - 1),
+            Order::Opposites if lane < LANES / 2 => block * (LANES / 2) + lane,
+            Order::Opposites => self.height - 1 - (block * (LANES / 2) + lane - LANES / 2),
+        }
     }
 
     /// Values of all tiles.

@@ -114,8 +114,8 @@ pub fn spread(grid: &Grid, points: &[f64], tiles: &mut [f64], half: usize) {
     let (tiles, _) = tiles.as_chunks_mut::<TILE>();
     for (block, tile) in tiles.iter_mut().enumerate() {
         let mut parts = [[[0.0; LANES]; LANES]; 2];
-        for i in 0..LANES.min(grid.height - block * LANES) {
-            let point = &points[block * LANES + i];
+        for i in 0..LANES {
+            let point = &points[grid.row(block, i)];
             parts[0][i].copy_from_slice(&point[..LANES]);
             parts[1][i].copy_from_slice(&point[LANES..]);
         }

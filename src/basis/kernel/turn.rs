@@ -40,7 +40,7 @@ impl Twiddles {
         let mut fine = [[0.0; POINT]; LANES];
         let (mut start, mut end) = ([0.0; POINT], [0.0; POINT]);
         for l in 0..LANES {
-            let row = (block * LANES + l).min(self.grid.height - 1) as u64;
+            let row = self.grid.row(block, l) as u64;
             let step = self.step.0 * row + self.step.1;
             let [c, s] = self.roots.at(self.row.0 * row + self.row.1);
             let turn = [self.scale * c, self.scale * s];
@@ -60,7 +60,7 @@ impl Twiddles {
     fn coarse(&self, block: usize, column: usize) -> [f64; POINT] {
         let mut coarse = [0.0; POINT];
         for l in 0..LANES {
-            let row = (block * LANES + l).min(self.grid.height - 1) as u64;
+            let row = self.grid.row(block, l) as u64;
             let [c, s] = self.roots.at((self.step.0 * row + self.step.1) * column as u64);
             (coarse[l], coarse[LANES + l]) = (c, s);
         }
