@@ -45,9 +45,13 @@ impl LaneTransform {
         Self { len, way }
     }
 
-    /// Values a work space needs: `len` points.
+    /// Values that each of the two slices of [`LaneTransform::run`] needs: `len` points, and what the general kernel works in.
     pub fn space(&self) -> usize {
-        self.len * POINT
+        let work = match &self.way {
+            Way::Stages(_) => 0,
+            Way::Each(fft) => 2 * fft.get_inplace_scratch_len(),
+        };
+        self.len * POINT + work
     }
 
     /// Transforms the points of `from`; the result lies in the first slice returned, the other one is free again.
@@ -166,17 +170,17 @@ impl StageRun<'_> {
 
 /// Lends each lane in turn to a kernel for contiguous complex signals; the result replaces `points`.
 fn one_by_one(fft: &dyn Fft<f64>, points: &mut [f64], space: &mut [f64]) {
-    let (points, _) = points.as_chunks_mut::<POINT>();
-    let (signals, _) = space.as_chunks_mut::<2>();
-    let signals: &mut [Complex<f64>] = bytemuck::cast_slice_mut(signals);
-    for (l, signal) in signals.chunks_exact_mut(points.len()).enumerate() {
+    let len = fft.len();
+    let (points, _) = points[..len * POINT].as_chunks_mut::<POINT>();
+    let (space, _) = space.as_chunks_mut::<2>();
+    let (signals, work) = bytemuck::cast_slice_mut::<_, Complex<f64>>(space).split_at_mut(LANES * len);
+    for (l, signal) in signals.chunks_exact_mut(len).enumerate() {
         for (value, point) in signal.iter_mut().zip(points.iter()) {
             *value = Complex::new(point[l], point[LANES + l]);
         }
     }
-    let mut work = vec![Complex::new(0.0, 0.0); fft.get_inplace_scratch_len()];
-    fft.process_with_scratch(signals, &mut work);
-    for (l, signal) in signals.chunks_exact(points.len()).enumerate() {
+    fft.process_with_scratch(signals, work);
+    for (l, signal) in signals.chunks_exact(len).enumerate() {
         for (value, point) in signal.iter().zip(points.iter_mut()) {
             (point[l], point[LANES + l]) = (value.re, value.im);
         }
