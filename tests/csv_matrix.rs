@@ -222,6 +222,24 @@ fn every_row_of_the_matrix() {
         ("an unbalanced quote", with_line(20, "0.18,\"0.1,0.2"), Error("20: a quote is opened", "close it")),
         ("a letter in a number", with_line(33, "0.31,x,0.2"), Error("33:2: not a number: \"x\"", "--missing x")),
         ("a letter in the fourth row", with_line(5, "0.03,x,0.2"), Error("5:2: not a number: \"x\"", "--missing x")),
+        ("a letter in the first row", with_line(2, "0.00,x,0.2"), Error("2:2: not a number: \"x\"", "--missing x")),
+        (
+            "a letter in the first stamp",
+            with_line(2, "x,0.1,0.2"),
+            Error("2:1: not a time stamp", "--time-column none"),
+        ),
+        (
+            "a letter in the first row, no header",
+            text("", &[vec!["0.00,x,0.2".into()], data(",", ".")[1..].to_vec()].concat()),
+            Error("1:2: not a number: \"x\"", "--missing x"),
+        ),
+        (
+            "the first row too short",
+            with_line(2, "0.00"),
+            Error("3: 3 fields where the line above has 1", "--delimiter"),
+        ),
+        ("the first row too long", with_line(2, "0.00,1,2,3"), Error("3: 3 fields where the line above has 4", "")),
+        ("the second row too short", with_line(3, "0.01,1"), Error("3: 2 fields where the rows above have 3", "")),
         ("a field too many", with_line(20, "0.18,1,2,3"), Error("20: 4 fields where the rows above have 3", "")),
         ("a field too few", with_line(20, "0.18,1"), Error("20: 2 fields where the rows above have 3", "")),
         ("a header of another width", plain("t,ax,ay,az\n"), Error("2:1: the header", "--header-lines")),
@@ -302,7 +320,7 @@ fn case_38_a_sparse_column_is_named() {
         .collect();
     let record = take(&text("t,ax,ay,temp\n", &lines), &ReadOptions::default()).expect("a table");
     assert_eq!(codes(&record), ["sparse_channel"]);
-    assert!(record.findings[0].text.contains("every 10th row"), "{}", record.findings[0]);
+    assert!(record.findings[0].text.contains("one row in 10 only"), "{}", record.findings[0]);
     assert_eq!((record.channels[2].values[20], record.channels[2].missing.len()), (20.5, ROWS - 5));
 }
 
@@ -424,6 +442,57 @@ fn the_time_or_position_column_is_chosen_with_care() {
 }
 
 #[test]
+fn odd_headers_and_columns_of_text() {
+    let names = |head: &str| {
+        let record = take(&plain(head), &ReadOptions::default()).unwrap_or_else(|error| panic!("{head}: {error}"));
+        let channels: Vec<String> = record.channels.iter().map(|c| format!("{} [{}]", c.name, c.unit)).collect();
+        (record.stamps.map(|stamps| stamps.name), channels.join(", "), record.findings.len())
+    };
+    let expected = |stamps: &str, channels: &str| (Some(stamps.to_owned()), channels.to_owned(), 0);
+    assert_eq!(names("\"t\n(s)\",\"ax\n(g)\",ay\n"), expected("t", "ax [g], ay []"));
+    assert_eq!(names("Time,1,2\n"), expected("Time", "1 [], 2 []"));
+    assert_eq!(names("Time,Acc X,Acc Y\nof sample,from mount,from floor\n"), expected("Time", "Acc X [], Acc Y []"));
+    assert_eq!(names("# t ax ay\n# t,ax,ay\n"), expected("t", "ax [], ay []"));
+    assert_eq!(names("t / s,a in g,b [m/s^2]\n"), expected("t", "a [g], b [m/s2]"));
+
+    let with_column = |head: &str, cell: &dyn Fn(usize) -> String| {
+        let lines: Vec<String> =
+            data(",", ".").iter().enumerate().map(|(n, line)| format!("{line},{}", cell(n))).collect();
+        take(&text(head, &lines), &ReadOptions::default())
+    };
+    let note = |n: usize| if n.is_multiple_of(5) { "door open".to_owned() } else { String::new() };
+    let record = with_column("t,ax,ay,remark\n", &note).expect("a table");
+    check_numbers("a column of remarks", &record, ROWS);
+    assert_eq!(codes(&record), [""; 0]);
+    let late = |n: usize| if n == 40 { "door open".to_owned() } else { String::new() };
+    let record = with_column("t,ax,ay,remark\n", &late).expect("a table");
+    check_numbers("a remark late in the file", &record, ROWS);
+    let record = with_column("t,ax,ay,load\n", &|n| format!("{n}%")).expect("a table");
+    assert_eq!(codes(&record), ["text_column"]);
+    let alone = take(b"t,load\n0.0,1%\n0.1,2%\n", &ReadOptions::default()).expect_err("no channel").to_string();
+    assert!(alone.contains("\"1%\" is no number"), "{alone}");
+    let record = with_column("t,ax,ay,\n", &|_| String::new()).expect("a table");
+    assert_eq!(codes(&record), [""; 0]);
+    let refused = with_column("t,ax,ay\n", &|n| if n == 30 { "x".to_owned() } else { String::new() });
+    assert!(refused.is_err_and(|error| error.to_string().starts_with("-:32:4: text after the last separator")));
+    let mut long: Vec<String> = (0..400).map(|n| format!("{n}.5,{n},{n},")).collect();
+    long[300].push('x');
+    let refused = take(&text("t,ax,ay\n", &long), &ReadOptions::default());
+    assert!(refused.is_err_and(|error| error.to_string().starts_with("-:302:4: text after the last separator")));
+}
+
+#[test]
+fn what_follows_the_first_rows_does_not_change_what_the_columns_are() {
+    let rows: Vec<String> =
+        (0..100).map(|n| format!("0.{n:03},{n}")).chain((0..400).map(|_| "x,".to_owned())).collect();
+    let record = take(&text("t,a\n", &rows), &ReadOptions::default()).expect("a table and a footer");
+    assert_eq!((codes(&record), record.channels[0].values.len()), (vec!["footer"], 100));
+    let rows: Vec<String> = rows.into_iter().chain(["0.1,2".to_owned()]).collect();
+    let refused = take(&text("t,a\n", &rows), &ReadOptions::default()).expect_err("data after text");
+    assert!(refused.to_string().starts_with("-:102:1: not a time stamp like those above: \"x\""), "{refused}");
+}
+
+#[test]
 fn faulty_spacing_is_handed_on_as_it_is() {
     // Cases 20 to 24 are judged by the audit: the reader keeps every stamp and its line.
     let repeated = take(&with_line(33, "0.30,1,2"), &ReadOptions::default()).expect("a table");
@@ -509,13 +578,15 @@ fn hostile_text_is_refused_or_read_without_harm() {
     assert!(take(&escape, &ReadOptions::default()).expect_err("text").to_string().contains("\\u{1b}[31mred"));
     let quotes = "\"".repeat(100_000);
     assert!(take(quotes.as_bytes(), &ReadOptions::default()).is_err());
-    let digits = format!("t,a\n0,{}\n1,2\n", "7".repeat(1_000_000));
+    let digits = format!("t,a\n0,{}\n1,2\n", "7".repeat(4_000));
     assert!(
         take(digits.as_bytes(), &ReadOptions::default())
             .expect_err("too large")
             .to_string()
             .contains("beyond the range")
     );
+    let endless = format!("t,a\n0,{}\n1,2\n", "7".repeat(1_000_000));
+    assert!(take(endless.as_bytes(), &ReadOptions::default()).is_err());
     let binary: Vec<u8> = (0..100_000_u32).map(|n| (n.wrapping_mul(2_654_435_761) >> 13) as u8).collect();
     assert!(take(&binary, &ReadOptions::default()).is_err());
 }

@@ -5,8 +5,8 @@ mod random;
 use endgrain::audit::audit;
 use endgrain::error::Kind;
 use endgrain::record::{
-    ColumnRole, Format, Layout, RateSource, RawChannel, RawRecord, Record, Source, Spacing, Stamps, StatedRate,
-    TableLayout, TextSource,
+    ColumnRole, Encoding, Format, Layout, RateSource, RawChannel, RawRecord, Record, RowLines, Source, Spacing, Stamps,
+    StatedRate, TableLayout, TextSource,
 };
 use endgrain::regularise::{Bound, Duplicates, Gaps, Regrid, RegulariseOptions, RowMap, regularise, regularise_each};
 use endgrain::unit::Unit;
@@ -31,6 +31,7 @@ fn log(tick: f64, ticks: Vec<i64>, channels: Vec<Vec<f64>>) -> RawRecord {
 
 /// The same without a time column.
 fn bare(channels: Vec<Vec<f64>>) -> RawRecord {
+    let rows = channels.iter().map(Vec::len).max().unwrap_or(0);
     let mut columns = vec![ColumnRole::Stamps];
     columns.extend((0..channels.len()).map(ColumnRole::Channel));
     let channel = |(k, values): (usize, Vec<f64>)| RawChannel {
@@ -50,14 +51,17 @@ fn bare(channels: Vec<Vec<f64>>) -> RawRecord {
         findings: Vec::new(),
         layout: Layout::Table(TableLayout {
             text: TextSource::Held(Vec::new().into()),
+            encoding: Encoding::Utf8,
             delimiter: b',',
             decimal: b'.',
+            thousands: None,
             head: "t,a0\n".to_owned(),
             header_line: Some(0),
             units_line: None,
             data_start: 5,
             data_line: 2,
             columns,
+            lines: RowLines::consecutive(2, rows as u64),
             newline: "\n",
         }),
     }
@@ -250,6 +254,7 @@ fn a_channel_at_its_own_rate_is_left_out_or_taken_alone() {
     let raw = log(0.001, ticks.clone(), vec![tones(0..400), sparse.clone()]);
     let (record, _) = plain(raw.clone());
     assert_eq!((record.channel_count(), codes(&record)), (1, vec!["sparse_channel"]));
+    assert_eq!(audit(&raw).findings.iter().map(|f| f.code).collect::<Vec<_>>(), ["sparse_channel"]);
     let (alone, rows) = plain(log(0.001, ticks, vec![sparse]));
     assert_eq!((alone.len(), alone.axis().step(), alone.axis().start()), (40, 0.1, 0.03));
     assert_eq!(rows, RowMap::Even { first: 3, every: 10, count: 40 });

@@ -3,13 +3,16 @@
 use std::sync::Arc;
 
 use endgrain::error::{Error, Kind};
+use endgrain::read::{Input, ReadOptions, read};
 use endgrain::record::{
-    Axis, ColumnRole, Format, Layout, RateSource, RawChannel, RawRecord, Record, Source, TableLayout, TextSource,
+    Axis, ColumnRole, Encoding, Format, Layout, RateSource, RawChannel, RawRecord, Record, RowLines, Source,
+    TableLayout, TextSource,
 };
 use endgrain::unit::Unit;
 use endgrain::write::{Cells, Content, Digits, Extra, Origin, Rows, writer};
 use ndarray::Array2;
 use proptest::prelude::*;
+use sha2::{Digest, Sha256};
 
 /// A table as a reader hands it on: column 0 holds the stamps, the others channels named c1, c2, ... in `units`.
 struct Table {
@@ -40,7 +43,10 @@ impl Table {
         let head: String = self.text.split_inclusive('\n').take(self.data).collect();
         let roles = (0..self.units.len()).map(ColumnRole::Channel);
         let layout = TableLayout {
-            text: TextSource::Held(Arc::from(self.text.as_bytes())),
+            text: TextSource::Held(Arc::new(self.text.as_bytes().to_vec())),
+            encoding: Encoding::Utf8,
+            thousands: None,
+            lines: RowLines::consecutive(self.data as u64 + 1, self.text.lines().skip(self.data).count() as u64),
             delimiter: self.delimiter,
             decimal: self.decimal,
             header_line: self.header,
@@ -180,20 +186,30 @@ fn extra_columns_stand_at_the_right() {
 
 #[test]
 fn a_source_that_changed_is_noticed() {
-    let table = Table { text: "t,a,b\n0,1,x\n", ..PLAIN };
+    let table = Table { text: "t,a,b\n0,1,x\n1,1,y\n", ..PLAIN };
     let record = record(&[("g", &[1.0, 2.0])]);
-    let origin = Origin::new(&table.raw(), &[Some(0)], Rows::From(0)).unwrap();
+    let mut raw = table.raw();
+    let Layout::Table(layout) = &mut raw.layout else { panic!("no table") };
+    layout.text = TextSource::Held(Arc::new(b"t,a,b\n0,1,x\n".to_vec()));
+    let origin = Origin::new(&raw, &[Some(0)], Rows::From(0)).unwrap();
     let error = write(&Content { origin: Some(&origin), ..Content::new(&record) }).unwrap_err();
     assert_eq!(error.kind(), Kind::Io);
+    // Rows that the table never had.
+    let origin = Origin::new(&table.raw(), &[Some(0)], Rows::From(1)).unwrap();
+    let error = write(&Content { origin: Some(&origin), ..Content::new(&record) }).unwrap_err();
+    assert_eq!((error.kind(), error.place().sample), (Kind::Usage, Some(1)));
     // Same number of rows, another fingerprint.
     let folder = tempfile::tempdir().unwrap();
     let path = folder.path().join("a.csv");
-    std::fs::write(&path, "\u{feff}t,a,b\n0,1,x\n1,1,y\n").unwrap();
-    for (sha256, fine) in [(String::new(), true), ("0".repeat(64), false)] {
+    let text = "\u{feff}t,a,b\n0,1,x\n1,1,y\n";
+    std::fs::write(&path, text).unwrap();
+    let fingerprint: String = Sha256::digest(text).iter().map(|byte| format!("{byte:02x}")).collect();
+    for (sha256, fine) in [(fingerprint, true), ("0".repeat(64), false)] {
         let mut raw = table.raw();
         raw.source.sha256 = sha256;
         let Layout::Table(layout) = &mut raw.layout else { panic!("no table") };
         layout.text = TextSource::File(path.clone());
+        layout.encoding = Encoding::Utf8Marked;
         let origin = Origin::new(&raw, &[Some(0)], Rows::From(0)).unwrap();
         let result = write(&Content { origin: Some(&origin), ..Content::new(&record) });
         match result {
@@ -201,6 +217,22 @@ fn a_source_that_changed_is_noticed() {
             Err(error) => assert!(!fine && error.to_string().contains("a.csv"), "{error}"),
         }
     }
+}
+
+#[test]
+fn what_was_read_from_the_wild_goes_back_line_by_line() {
+    // Blank lines, carriage returns, inches, a footer: none of them moves a row.
+    let rows: Vec<String> =
+        (0..12).map(|n| format!("0.{n:02};{n}.5;5\" pipe{}", if n % 5 == 0 { "\r\n" } else { "" })).collect();
+    let text = format!("rig 7\r\nt;ax [g];note\r\n{}\r\n", rows.join("\r\n"));
+    let raw = read(Input::Stream(Box::new(std::io::Cursor::new(text.clone()))), &ReadOptions::default()).unwrap();
+    assert_eq!((raw.channels.len(), raw.channels[0].values.len()), (1, 12));
+    let values: Vec<f64> = (0..12).map(|n| f64::from(n) / 4.0).collect();
+    let record = record(&[("g", &values)]);
+    let origin = Origin::new(&raw, &[Some(0)], Rows::From(0)).unwrap();
+    let written = write(&Content { origin: Some(&origin), ..Content::new(&record) }).unwrap();
+    let expected: Vec<String> = (0..12).map(|n| format!("0.{n:02};{};5\" pipe\r\n", values[n])).collect();
+    assert_eq!(written, format!("rig 7\r\nt;ax [g];note\r\n{}", expected.concat()));
 }
 
 #[test]
@@ -214,7 +246,7 @@ fn a_plain_table_has_exact_stamps() {
 
 #[test]
 fn long_tables_come_out_in_order_on_any_number_of_threads() {
-    let len = 60_000;
+    let len = 60_000_u32;
     let values: Vec<f64> = (0..len).map(|n| f64::from(n) / 7.0).collect();
     let mut source = "t,a,b\n".to_owned();
     let mut expected = source.clone();
@@ -228,10 +260,11 @@ fn long_tables_come_out_in_order_on_any_number_of_threads() {
     let mut raw = PLAIN.raw();
     let Layout::Table(layout) = &mut raw.layout else { panic!("no table") };
     layout.head = "t,a,b\n".to_owned();
-    layout.text = TextSource::Held(Arc::from(source.as_bytes()));
-    // The line of each row: two for every thousandth, so the row map counts lines here.
-    let rows: Vec<Option<u64>> = (0..u64::from(len as u32)).map(|n| Some(n + n.div_ceil(1000))).collect();
-    let origin = Origin::new(&raw, &[Some(0)], Rows::Each(&rows)).unwrap();
+    layout.text = TextSource::Held(Arc::new(source.into_bytes()));
+    layout.lines = RowLines::new();
+    // Two lines for every thousandth row.
+    (0..u64::from(len)).for_each(|n| layout.lines.push(2 + n + n.div_ceil(1000)));
+    let origin = Origin::new(&raw, &[Some(0)], Rows::From(0)).unwrap();
     for threads in [1, 3] {
         let pool = rayon::ThreadPoolBuilder::new().num_threads(threads).build().unwrap();
         let content = Content { origin: Some(&origin), ..Content::new(&record) };

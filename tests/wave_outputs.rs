@@ -3,7 +3,7 @@
 use std::io::Cursor;
 
 use endgrain::error::Kind;
-use endgrain::read::wav::{Options, read};
+use endgrain::read::{Input, ReadOptions, read};
 use endgrain::record::{Axis, Format, RateSource, Record};
 use endgrain::unit::Unit;
 use endgrain::write::{Content, Extra, WAVE_ENCODINGS, WaveEncoding, writer};
@@ -100,7 +100,7 @@ proptest! {
         for &(name, encoding) in WAVE_ENCODINGS {
             let bytes = write(&record, encoding);
             prop_assert_eq!(bytes.len() % 2, 0);
-            let back = read(&mut Cursor::new(&bytes), "a.wav", &Options::default()).unwrap();
+            let back = read(Input::Stream(Box::new(Cursor::new(bytes.clone()))), &ReadOptions::default()).unwrap();
             prop_assert!(back.findings.is_empty(), "{}: {:?}", name, back.findings);
             prop_assert_eq!(back.stated_rate.unwrap().rate_base, f64::from(rate));
             // Half a step of an integer, half a unit in the last place of a 32-bit float, nothing for 64 bits.

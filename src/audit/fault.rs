@@ -2,7 +2,7 @@
 
 use crate::error::{Error, Finding};
 use crate::place::Place;
-use crate::record::{Layout, RawRecord, Spacing, Stamps};
+use crate::record::{RawRecord, Spacing, Stamps};
 
 use super::stamps::StampReading;
 
@@ -22,15 +22,10 @@ impl Fault {
     }
 }
 
-/// The line on which a row of the data block stands, where the record came from text.
+/// Where a row stands: its line, or its sample number where the record did not come from text.
 pub fn row_place(raw: &RawRecord, row: usize) -> Place {
-    let line = match (&raw.layout, &raw.stamps) {
-        (Layout::Table(table), _) => Some(table.data_line + row as u64),
-        (_, Some(stamps)) => Some(stamps.first_line + row as u64),
-        _ => None,
-    };
-    let sample = if line.is_none() { Some(row as u64) } else { None };
-    Place { line, sample, ..Place::file(&raw.source.path) }
+    let place = raw.row_place(row);
+    if place.line.is_some() { place } else { Place { sample: Some(row as u64), ..place } }
 }
 
 /// A number of stamp units with the digits that the stamps have, without idle zeros.

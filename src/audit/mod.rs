@@ -107,8 +107,8 @@ pub fn audit(raw: &RawRecord) -> Audit {
         findings.extend(fault::stamp_remarks(reading, &place_of));
     }
     let mut channels = Vec::new();
-    for channel in &raw.channels {
-        let mut sheet = Sheet::new(raw, channel);
+    for (index, channel) in raw.channels.iter().enumerate() {
+        let mut sheet = Sheet::new(raw, index, channel);
         for check in CHECKS {
             (check.run)(&mut sheet);
         }
@@ -139,6 +139,8 @@ fn same_value(channel: &RawChannel, row: usize) -> bool {
 /// A channel under audit.
 struct Sheet<'a> {
     raw: &'a RawRecord,
+    /// Its place in the record.
+    index: usize,
     channel: &'a RawChannel,
     /// Samples at the channel's own rate, NaN where there is none.
     samples: std::borrow::Cow<'a, [f64]>,
@@ -149,7 +151,7 @@ struct Sheet<'a> {
 }
 
 impl<'a> Sheet<'a> {
-    fn new(raw: &'a RawRecord, channel: &'a RawChannel) -> Sheet<'a> {
+    fn new(raw: &'a RawRecord, index: usize, channel: &'a RawChannel) -> Sheet<'a> {
         let sparse = Sparse::of(channel);
         let samples = match sparse {
             Some(s) => channel.values.iter().skip(s.first).step_by(s.every).copied().collect::<Vec<_>>().into(),
@@ -170,7 +172,7 @@ impl<'a> Sheet<'a> {
             noise: None,
             end: None,
         };
-        Sheet { raw, channel, samples, sorted, audit, findings: Vec::new() }
+        Sheet { raw, index, channel, samples, sorted, audit, findings: Vec::new() }
     }
 
     /// Row of the file that holds a sample.
@@ -179,10 +181,9 @@ impl<'a> Sheet<'a> {
     }
 
     fn say(&mut self, code: &'static str, text: String, row: Option<usize>) {
-        let channel = Place::channel(&self.channel.name);
         let place = match row {
-            Some(row) => Place { sample: Some(row as u64), ..channel }.within(&fault::row_place(self.raw, row)),
-            None => channel.within(&Place::file(&self.raw.source.path)),
+            Some(row) => self.raw.place(self.index, row),
+            None => Place::channel(&self.channel.name).within(&Place::file(&self.raw.source.path)),
         };
         self.findings.push(Finding::new(code, text).at(place));
     }
@@ -198,11 +199,18 @@ impl<'a> Sheet<'a> {
 
 fn missing(sheet: &mut Sheet<'_>) {
     match (sheet.audit.sparse, sheet.audit.first_missing) {
-        (Some(sparse), _) => sheet.say(
-            "sparse_channel",
-            format!("a value on every {} rows: a channel at its own rate", sparse.every),
-            None,
-        ),
+        (Some(sparse), _) => {
+            // The reader may have said so already, of the same column.
+            let column = sheet.raw.place(sheet.index, 0).column;
+            let said = |f: &Finding| f.code == "sparse_channel" && f.place.column == column;
+            if !sheet.raw.findings.iter().any(said) {
+                sheet.say(
+                    "sparse_channel",
+                    format!("a value on every {} rows: a channel at its own rate", sparse.every),
+                    None,
+                );
+            }
+        }
         (None, Some(first)) => {
             let spelling = sheet.channel.missing_spelling.as_deref().unwrap_or_default();
             let text = format!("no value ({spelling:?}), the first of {}", sheet.audit.missing);

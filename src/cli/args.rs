@@ -5,7 +5,7 @@ use clap::{Arg, ArgAction, ArgMatches, Command};
 use endgrain::error::Result;
 use endgrain::settings::{Arity, Group, Settings, rows};
 
-use crate::cli::{audit, condition, exit};
+use crate::cli::{audit, compare, condition, exit};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -18,6 +18,7 @@ pub fn command() -> Command {
         .before_help(StyledStr::from(
             "Examples:
   endgrain audit log.csv
+  endgrain compare log.csv --lowpass 40Hz --plot ends.svg
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
   endgrain condition log.wav --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.wav
 ",
@@ -28,6 +29,7 @@ pub fn command() -> Command {
         .arg_required_else_help(true)
         .disable_help_subcommand(true)
         .subcommand(condition::command())
+        .subcommand(compare::command())
         .subcommand(audit::command())
 }
 

@@ -12,7 +12,8 @@ use endgrain::write::Overwrite;
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] = &[Group::Operators, Group::Stage, Group::Cut, Group::Repair, Group::Input, Group::Output];
+const GROUPS: &[Group] =
+    &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
 
 const EXAMPLES: &str = "\
 Examples:
@@ -96,5 +97,5 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     if !quiet {
         stream::tell(&report::summary(&report));
     }
-    Ok(ExitCode::SUCCESS)
+    Ok(if report.requirement_met { ExitCode::SUCCESS } else { ExitCode::from(exit::NOT_MET) })
 }

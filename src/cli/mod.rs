@@ -2,6 +2,7 @@
 
 mod args;
 mod audit;
+mod compare;
 mod condition;
 mod exit;
 mod stream;
@@ -16,6 +17,7 @@ pub fn run() -> ExitCode {
     let matches = args::command().get_matches();
     let outcome = match matches.subcommand() {
         Some(("condition", matches)) => condition::run(matches),
+        Some(("compare", matches)) => compare::run(matches),
         Some(("audit", matches)) => audit::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };

@@ -5,7 +5,7 @@ mod pass;
 
 use crate::baseline::{Baseline, BaselineKind, Scale};
 use crate::basis::Planner;
-use crate::ends::{Ends, Parity};
+use crate::ends::{Ends, Parity, Seat};
 use crate::error::Result;
 use crate::operator::Chain;
 use crate::record::Channel;
@@ -84,30 +84,74 @@ pub fn condition_with(
     scale: Scale,
     planner: &Planner,
 ) -> Result<Outcome> {
+    let (unit, factor) = scaling(channel, chain);
+    let (output, parseval) = run(channel.samples, chain, ends, &baseline, 0.0, factor, planner)?;
+    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+}
+
+/// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
+///
+/// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
+/// channel's own samples are cut out again. Integrals start at rest at the channel's own left end.
+///
+/// # Errors
+/// As `condition`.
+pub fn condition_continued(
+    channel: Channel<'_>,
+    chain: &Chain,
+    left: &[f64],
+    right: &[f64],
+    seat: Seat,
+    planner: &Planner,
+) -> Result<Outcome> {
+    let ends = Ends::EVEN.seated(seat);
+    let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
+    let scale = scale_of(chain, continued.len());
+    let baseline = Baseline::fit(default_baseline(ends, chain), &continued, ends, scale)?;
+    let (unit, factor) = scaling(channel, chain);
+    let rest = left.len() as f64;
+    let (mut output, parseval) = run(&continued, chain, ends, &baseline, rest, factor, planner)?;
+    output.truncate(left.len() + channel.samples.len());
+    output.drain(..left.len());
+    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+}
+
+/// Unit of the output, and the factor that brings numbers formed in steps into it.
+fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     let turns = chain.turns();
-    let (unit, unit_factor) = channel.unit.turned(turns, channel.axis.unit());
+    let (unit, factor) = channel.unit.turned(turns, channel.axis.unit());
+    (unit, channel.axis.step_base().powi(-turns) * factor)
+}
+
+/// All passes of a chain; the output and the Parseval check of the first.
+fn run(
+    samples: &[f64],
+    chain: &Chain,
+    ends: Ends,
+    baseline: &Baseline,
+    rest: f64,
+    factor: f64,
+    planner: &Planner,
+) -> Result<(Vec<f64>, f64)> {
     let mut parseval = 0.0;
     let mut output: Option<Vec<f64>> = None;
-    for (index, pass) in chain.passes().iter().enumerate() {
+    for pass in chain.passes().iter().filter(|pass| !pass.is_identity()) {
         let passed = match &output {
             None => {
-                let passed = apply(channel.samples, ends, &baseline, pass, planner)?;
+                let mut passed = apply(samples, ends, baseline, pass, rest, planner)?;
                 parseval = passed.parseval;
+                if factor != 1.0 {
+                    passed.output.iter_mut().for_each(|v| *v *= factor);
+                }
                 passed
             }
             Some(so_far) => {
                 let even = Ends::EVEN.seated(ends.seat());
-                let nothing = Baseline::fit(BaselineKind::None, so_far, even, scale)?;
-                apply(so_far, even, &nothing, pass, planner)?
+                let nothing = Baseline::fit(BaselineKind::None, so_far, even, Scale::assumed(so_far.len()))?;
+                apply(so_far, even, &nothing, pass, rest, planner)?
             }
         };
-        let factor = if index == 0 { channel.axis.step_base().powi(-turns) * unit_factor } else { 1.0 };
-        let mut samples = passed.output;
-        if factor != 1.0 {
-            samples.iter_mut().for_each(|v| *v *= factor);
-        }
-        output = Some(samples);
+        output = Some(passed.output);
     }
-    let output = output.unwrap_or_else(|| channel.samples.to_vec());
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    Ok((output.unwrap_or_else(|| samples.to_vec()), parseval))
 }

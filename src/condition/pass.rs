@@ -20,11 +20,18 @@ pub struct Passed {
 /// Applies `pass` to `samples` under `ends` after splitting `baseline` off.
 ///
 /// Derivatives are per step and integrals in steps: the caller multiplies by step^(-turns). Integrals start at rest: the
-/// first is zero at the left mirror, and so is the second.
+/// first is zero at `rest` (in steps from the left mirror), and so is the second.
 ///
 /// # Errors
 /// `Unsupported` for a record of no samples.
-pub fn apply(samples: &[f64], ends: Ends, baseline: &Baseline, pass: &Pass, planner: &Planner) -> Result<Passed> {
+pub fn apply(
+    samples: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    pass: &Pass,
+    rest: f64,
+    planner: &Planner,
+) -> Result<Passed> {
     let len = samples.len();
     let plan = planner.plan(ends, len)?;
     let first = ends.first_position();
@@ -50,13 +57,15 @@ pub fn apply(samples: &[f64], ends: Ends, baseline: &Baseline, pass: &Pass, plan
         work[0] = 0.0;
     }
     multiply(&mut work, ends, pass);
-    let start = if turns < 0 { start_at_rest(&work, ends, turns) } else { [0.0; 2] };
+    let mut polynomial = turned(pass.carry(&carried), turns);
+    if turns < 0 {
+        polynomial = from_rest(polynomial, &work, ends, turns, rest);
+    }
     if turns.rem_euclid(2) == 1 {
         plan.inverse_turned(&mut work, &mut scratch);
     } else {
         plan.inverse(&mut work, &mut scratch);
     }
-    let polynomial = turned(pass.carry(&carried), turns).plus_constant(-start[0]).plus_slope(-start[1]);
     if !polynomial.is_zero() {
         for (n, value) in work.iter_mut().enumerate() {
             *value += polynomial.at(position(n));
@@ -125,13 +134,15 @@ fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
     }
 }
 
-/// Constant and slope that the integrated series has at the left mirror, to be taken off so that it starts at rest.
-fn start_at_rest(coefficients: &[f64], ends: Ends, turns: i32) -> [f64; 2] {
+/// The integrated polynomial with the constant, and after a second integral the slope, that make it and the integrated
+/// series together zero at `rest`.
+fn from_rest(polynomial: Polynomial, coefficients: &[f64], ends: Ends, turns: i32, rest: f64) -> Polynomial {
     let len = coefficients.len();
     if turns == -1 {
-        return [series::turned_value_at(ends, len, coefficients, 0.0), 0.0];
+        let start = series::turned_value_at(ends, len, coefficients, rest) + polynomial.at(rest);
+        return polynomial.plus_constant(-start);
     }
-    // Slope of the second integral at x = 0 = value of the first: a sine has slope omega there, a cosine none.
+    // The slope of the second integral is the first: a sine becomes omega times a cosine, a cosine minus omega a sine.
     let slopes: Vec<f64> = coefficients
         .iter()
         .enumerate()
@@ -140,7 +151,9 @@ fn start_at_rest(coefficients: &[f64], ends: Ends, turns: i32) -> [f64; 2] {
             if is_cosine(ends, k) { -omega * c } else { omega * c }
         })
         .collect();
-    [series::value_at(ends, len, coefficients, 0.0), series::turned_value_at(ends, len, &slopes, 0.0)]
+    let slope = series::turned_value_at(ends, len, &slopes, rest) + polynomial.derivative().at(rest);
+    let start = series::value_at(ends, len, coefficients, rest) + polynomial.at(rest);
+    polynomial.plus_constant(slope * rest - start).plus_slope(-slope)
 }
 
 /// The polynomial after `turns` derivatives (positive) or integrals from x = 0 (negative).

@@ -1,12 +1,19 @@
 //! Numerical tools that know nothing of records: polynomials, sums, quantiles, autoregression.
 
+pub mod analogue;
+pub mod autoregression;
 pub mod autoregressive_gap;
-pub mod noise;
 pub mod compensated;
+pub mod covariance;
+pub mod fourier;
+pub mod lag;
+pub mod noise;
 pub mod polynomial;
 pub mod quantile;
+pub mod quantum;
 pub mod rational;
 pub mod running_median;
 pub mod spline;
+pub mod stretch;
 pub mod strip;
 pub mod sum;

@@ -1,14 +1,19 @@
 //! White noise sigma of a record, from its third differences.
 
+use crate::numeric::stretch;
+
 /// Noise sigma = median |third difference| / (0.6745 sqrt 20), in the record's unit; 0 for fewer than four samples.
 ///
 /// A third difference of white noise has variance 1 + 9 + 9 + 1 = 20, and a quadratic passes without trace; 0.6745 is the
-/// upper quartile of the normal distribution, which turns a median of magnitudes into a standard deviation.
+/// upper quartile of the normal distribution, which turns a median of magnitudes into a standard deviation. Of long
+/// records about 65,000 samples are looked at: the median then scatters by less than 1 %.
 pub fn sigma(samples: &[f64]) -> f64 {
     if samples.len() < 4 {
         return 0.0;
     }
-    let mut differences: Vec<f64> = samples.windows(4).map(|w| (w[3] - 3.0 * w[2] + 3.0 * w[1] - w[0]).abs()).collect();
+    let third = |w: &[f64]| (w[3] - 3.0 * w[2] + 3.0 * w[1] - w[0]).abs();
+    let stretches = stretch::evenly_spread(samples.len()).into_iter();
+    let mut differences: Vec<f64> = stretches.flat_map(|stretch| samples[stretch].windows(4).map(third)).collect();
     let middle = differences.len() / 2;
     let (_, &mut median, _) = differences.select_nth_unstable_by(middle, f64::total_cmp);
     median / (0.6745 * 20f64.sqrt())

@@ -56,7 +56,8 @@ pub struct TableLayout {
     pub thousands: Option<u8>,
     /// Text that precedes the data block (preamble, header, units row): complete lines with their ends.
     pub head: String,
-    /// Line of `head` (from 0) that holds the column names, where there is one.
+    /// Line of `head` (from 0) that holds the column names, where there is one; `None` too where quoted names hold line
+    /// ends.
     pub header_line: Option<usize>,
     /// Line of `head` (from 0) that holds the units, where they stand on a row of their own.
     pub units_line: Option<usize>,

@@ -1,23 +1,31 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod comparison;
 mod examination;
 mod json;
 mod plan;
+mod plot;
 mod text;
 
 use serde::Serialize;
 use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
+use crate::baseline::EndEstimates;
+use crate::compare::How;
+use crate::compare::Standing;
 use crate::error::Finding;
 use crate::operator::ChainDescription;
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
+use crate::verdict::{self, Adequacy, Edge, Structure};
 
+pub use comparison::{ChannelComparison, Comparison, Jump, Row};
 pub use examination::AuditReport;
 pub use json::to_json;
-pub use plan::Plan;
-pub use text::{audit_text, plan_text, summary};
+pub use plan::{Plan, PlannedChannel};
+pub use plot::{Curve, Picture, svg};
+pub use text::{audit_text, comparison_text, plan_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -41,6 +49,8 @@ pub struct Report {
     pub chain: ChainDescription,
     /// One entry a channel.
     pub channels: Vec<ChannelReport>,
+    /// False where `--require` was not met.
+    pub requirement_met: bool,
     /// What was written.
     pub outputs: Vec<OutputReport>,
     /// What results of this kind may and may not be used for.
@@ -152,12 +162,66 @@ pub struct ChannelReport {
     pub extension: ExtensionReport,
     /// How far the ends reach into the output.
     pub reach: ReachReport,
+    /// What the record's ends support, and at what cost; null where the chain has nothing to judge.
+    pub verdict: Option<VerdictReport>,
+    /// Every candidate at the edges: predicted error, bound, adequacy, trusted span.
+    pub candidates: Vec<Edge>,
+    /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.
+    pub edge: Option<EndEstimates>,
+    /// First and last trusted sample of the output; null where nothing was judged or nothing is trusted.
+    pub trusted: Option<TrustedReport>,
     /// RMS before and after.
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
+}
+
+/// The verdict on one channel.
+#[derive(Debug, Clone, Serialize)]
+pub struct VerdictReport {
+    /// The best of the symmetric candidates.
+    pub pick: &'static str,
+    /// How clearly it stands out.
+    pub level: verdict::Level,
+    /// Predicted error of the runner-up over that of the pick.
+    pub margin: Option<f64>,
+    /// All candidates within a quarter of the best.
+    pub ties: Vec<&'static str>,
+    /// True where the record does not tell the ties apart and all of them are within tolerance.
+    pub choice_immaterial: bool,
+    /// Of the extension that is used, against the tolerance.
+    pub adequacy: Option<Adequacy>,
+    /// Predicted edge error of the extension that is used, in the unit of the output.
+    pub predicted_error: Option<f64>,
+    /// The bound on it.
+    pub bound: Option<f64>,
+    /// The tolerance, in the unit of the output.
+    pub tolerance: f64,
+    /// Standard deviation of the output.
+    pub output_deviation: f64,
+    /// The edge zone at each end, in samples.
+    pub zone: usize,
+    /// How smoothly the ends join.
+    pub joins: Structure,
+    /// How an assertion stands against the record.
+    pub assertion: Option<Standing>,
+    /// In words.
+    pub sentence: String,
+}
+
+/// A trusted span.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+pub struct TrustedReport {
+    /// First trusted sample, from 0.
+    pub first: usize,
+    /// Last trusted sample.
+    pub last: usize,
+    /// Its stamp, in the axis unit.
+    pub from: f64,
+    /// The last one's stamp.
+    pub to: f64,
 }
 
 /// A figure before and after.
@@ -198,19 +262,9 @@ pub struct ExtensionReport {
     /// `half-sample` or `whole-sample`.
     pub seat: &'static str,
     /// The forward transform that follows.
-    pub transform: &'static str,
+    pub transform: String,
     /// Who chose it.
     pub how: How,
-}
-
-/// Who made a choice.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
-#[serde(rename_all = "snake_case")]
-pub enum How {
-    /// The user.
-    Asked,
-    /// A default: not a finding about the record.
-    Default,
 }
 
 /// How far the ends reach in.

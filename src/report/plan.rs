@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use crate::error::Finding;
 use crate::operator::{ChainDescription, CheckPoint};
-use crate::report::{ExtensionReport, How, InputReport};
+use crate::report::{ExtensionReport, InputReport};
 use crate::unit::Unit;
 
 /// What `condition` would do, without doing it.
@@ -18,10 +18,19 @@ pub struct Plan {
     pub chain: ChainDescription,
     /// Composite gain at and around each corner.
     pub gains: Vec<CheckPoint>,
+    /// Channels that would be conditioned.
+    pub channels: Vec<PlannedChannel>,
+}
+
+/// One channel of a plan.
+#[derive(Debug, Clone, Serialize)]
+pub struct PlannedChannel {
+    /// Name.
+    pub name: String,
+    /// Unit that comes out.
+    pub unit: Unit,
     /// Assumption past the ends.
     pub extension: ExtensionReport,
-    /// Spelling of the baseline, and who chose it.
-    pub baseline: (String, How),
-    /// Channels that would be conditioned, with the unit that comes out.
-    pub channels: Vec<(String, Unit)>,
+    /// Spelling of the baseline.
+    pub baseline: String,
 }

@@ -7,12 +7,14 @@ use std::collections::BTreeMap;
 
 use serde_json::{Map, Value};
 
+use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
 use crate::operator::{Request, Shape};
 use crate::read::ReadOptions;
 use crate::record::Format;
 use crate::regularise::RegulariseOptions;
+use crate::verdict::Adequacy;
 
 pub use table::{Arity, Group, OptionRow, find, rows};
 
@@ -29,6 +31,14 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// What is known about the ends.
+    pub assertion: Assertion,
+    /// Edge error that is tolerable.
+    pub tolerance: ToleranceRequest,
+    /// Edge error that must be met, or the run counts as insufficient.
+    pub require: Option<Adequacy>,
+    /// What happens to output outside the trusted span.
+    pub edges: Edges,
     /// Format of the output; that of the input when `None`.
     pub format: Option<Format>,
     /// Sample type of WAV output, by name in `write`'s table; float32 when `None`.
@@ -39,6 +49,20 @@ pub struct Settings {
     pub strict: bool,
     /// What was set, as written.
     texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+/// What happens to output outside the trusted span.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub enum Edges {
+    /// It is written like the rest.
+    #[default]
+    Keep,
+    /// A column tells which samples are trusted.
+    Mark,
+    /// Its cells stay empty.
+    Blank,
+    /// It is cut off.
+    Trim,
 }
 
 impl Settings {
@@ -109,6 +133,8 @@ mod tests {
             ("notch", "60Hz:2Hz"),
             ("extension", "odd"),
             ("baseline", "line"),
+            ("tolerance", "5%"),
+            ("edges", "mark"),
             ("seat", "whole-sample"),
             ("shape", "gaussian"),
             ("channel", "ax"),

@@ -9,13 +9,17 @@ use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::Settings;
+use crate::settings::{Edges, Settings};
 use crate::unit::Unit;
+use crate::verdict::Adequacy;
 
 /// Words of an option and what they stand for; the first is the default.
 type Words<T> = &'static [(&'static str, T)];
 
 const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
+const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline", Adequacy::Borderline)];
+const EDGES: Words<Edges> =
+    &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
 /// Sets the value of a known key.
@@ -46,7 +50,11 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
         "strict" => settings.strict = switch(key, text)?,
-        "extension" => settings.stage.extension = Some(context(key, text.parse())?),
+        "extension" => settings.stage.extension = context(key, text.parse())?,
+        "assert" => context(key, settings.assertion.add(text))?,
+        "tolerance" => settings.tolerance = context(key, text.parse())?,
+        "require" => settings.require = Some(one_of(key, text, REQUIRES)?),
+        "edges" => settings.edges = one_of(key, text, EDGES)?,
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
         "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
         "shape" => settings.shape = context(key, Shape::parse(text))?,
@@ -63,6 +71,9 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
     match key {
         "gaps" => Some(settings.regularise.gaps.to_string()),
         "duplicates" => Some(settings.regularise.duplicates.to_string()),
+        "extension" => Some(settings.stage.extension.to_string()),
+        "tolerance" => Some(settings.tolerance.to_string()),
+        "edges" => spelling(EDGES, settings.edges),
         "seat" => spelling(SEATS, settings.stage.seat),
         "shape" => Some(settings.shape.to_string()),
         _ => None,

@@ -13,6 +13,8 @@ pub enum Group {
     Stage,
     /// What is done to the record.
     Operators,
+    /// How the result is judged.
+    Judgement,
     /// How the result is written.
     Output,
 }
@@ -26,6 +28,7 @@ impl Group {
             Group::Repair => "Repair",
             Group::Stage => "Ends",
             Group::Operators => "Operators",
+            Group::Judgement => "Judgement",
             Group::Output => "Output",
         }
     }
@@ -63,7 +66,7 @@ const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group,
 
 use crate::operator::STEPS;
 use Arity::{Many, Once, Switch};
-use Group::{Cut, Input, Operators, Output, Repair, Stage};
+use Group::{Cut, Input, Judgement, Operators, Output, Repair, Stage};
 
 /// The options that are not operators; `rows` gives all.
 #[rustfmt::skip]
@@ -86,10 +89,14 @@ static OPTIONS: &[OptionRow] = &[
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
     row("regrid", "HOW", Once, Repair, "What to do with jittered or drifting stamps: cubic (default) interpolates onto an even grid, off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
-    row("extension", "NAME", Once, Stage, "What is assumed past the two ends: periodic, even, odd, even-odd, odd-even. Default: even, which is a default and not a finding"),
-    row("baseline", "NAME", Once, Stage, "Polynomial split off first: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
+    row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast; symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
+    row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
     row("seat", "NAME", Once, Stage, "Where the mirrors sit: half-sample (default) or whole-sample"),
+    row("assert", "[END:]WHAT", Many, Stage, "What is known about the ends: zero-slope, zero-value or closed; with left: or right: for one end. Followed, and checked for contradiction"),
     row("shape", "NAME", Once, Operators, "Roll-off: butterworth:ORDER (zero phase, squared magnitude, gain 0.5 at the corner), gaussian, cosine:WIDTH, brickwall. Default: butterworth:4"),
+    row("tolerance", "ERROR", Once, Judgement, "Edge error that is tolerable: a share of the output's standard deviation (10%, the default) or a value with its unit (0.02m/s)"),
+    row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. The output is written all the same"),
+    row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted'), blank (empty cells) or trim (cut off, with the new start stamp)"),
     row("format", "NAME", Once, Output, "Format of the output: csv or wav. Default: what the output's name says, else that of the input"),
     row("encoding", "NAME", Once, Output, "Sample type of WAV output: pcm16, pcm24, pcm32, float32 (default), float64"),
     row("decimals", "COUNT", Once, Output, "Fixed decimals in CSV output. Default: the shortest digits that give the same number again"),

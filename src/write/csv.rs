@@ -74,9 +74,11 @@ fn write_plain(content: &Content<'_>, sink: &mut (dyn Write + Send)) -> Result<(
     pump(sink, batch, |&start, out| {
         for n in start..len.min(start + BLOCK_ROWS) {
             number::push(out, rule.stamp(n), Digits::Shortest, b'.');
-            for channel in &channels {
+            for (index, channel) in channels.iter().enumerate() {
                 out.push(b',');
-                number::push(out, channel.samples[n], content.digits, b'.');
+                if !content.is_blank(index, n) {
+                    number::push(out, channel.samples[n], content.digits, b'.');
+                }
             }
             for extra in content.extra {
                 out.push(b',');

@@ -1,6 +1,6 @@
 //! Fields of a line of delimited text: found with their quotes and blanks, and quoted where they must be.
 
-use memchr::{memchr, memchr2};
+use memchr::{memchr, memchr_iter, memchr2};
 
 /// Where one field stands in a line.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -79,19 +79,21 @@ pub(super) fn push_field(out: &mut Vec<u8>, field: &str, delimiter: u8) {
 }
 
 /// The end of the row that starts at `from`: the index of its line end outside quotes, and the number of lines up to there;
-/// `None` where the text ends sooner.
-pub(super) fn row_end(text: &[u8], from: usize, line_end: u8) -> Option<(usize, u64)> {
-    let (mut at, mut quoted, mut lines) = (from, false, 1);
+/// `None` where the text ends sooner. Only a quote at the start of a field opens one, as in RFC 4180.
+pub(super) fn row_end(text: &[u8], from: usize, delimiter: u8, line_end: u8) -> Option<(usize, u64)> {
+    let (mut at, mut lines) = (from, 1);
     loop {
         let found = at + memchr2(line_end, b'"', &text[at..])?;
-        if text[found] == b'"' {
-            quoted = !quoted;
-        } else if quoted {
-            lines += 1;
-        } else {
+        if text[found] == line_end {
             return Some((found, lines));
         }
         at = found + 1;
+        let before = text[from..found].iter().rfind(|&&byte| byte == delimiter || !is_blank(byte));
+        if before.is_none_or(|&byte| byte == delimiter) || (delimiter == b' ' && is_blank(text[found - 1])) {
+            let close = closing_quote(text, at);
+            lines += memchr_iter(line_end, &text[at..close]).count() as u64;
+            at = (close + 1).min(text.len());
+        }
     }
 }
 
@@ -134,8 +136,13 @@ mod tests {
 
     #[test]
     fn a_quoted_line_end_ends_no_row() {
-        assert_eq!(row_end(b"a,\"b\nc\"\nd", 0, b'\n'), Some((7, 2)));
-        assert_eq!(row_end(b"abc", 0, b'\n'), None);
+        assert_eq!(row_end(b"a,\"b\nc\"\nd", 0, b',', b'\n'), Some((7, 2)));
+        assert_eq!(row_end(b"x\n \"a \"\"b\nc\" ,1\n", 2, b',', b'\n'), Some((15, 2)));
+        assert_eq!(row_end(b"abc", 0, b',', b'\n'), None);
+        assert_eq!(row_end(b"a,\"open\n", 0, b',', b'\n'), None);
+        // Inches: a quote inside a field is a character like any other.
+        assert_eq!(row_end(b"1,5\" pipe\n2", 0, b',', b'\n'), Some((9, 1)));
+        assert_eq!(row_end(b"1 \"a\n\" 2\n", 0, b' ', b'\n'), Some((8, 2)));
     }
 
     #[test]

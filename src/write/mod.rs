@@ -13,6 +13,7 @@ mod wave_header;
 mod whole;
 
 use std::io::Write;
+use std::ops::Range;
 use std::path::Path;
 
 use crate::error::{Error, Finding, Result};
@@ -50,6 +51,8 @@ pub struct Content<'a> {
     pub origin: Option<&'a Origin<'a>>,
     /// Columns appended at the right, such as `trusted`. For text only.
     pub extra: &'a [Extra<'a>],
+    /// Samples of each channel that are written; cells outside stay blank. `None` writes all. For text only.
+    pub shown: Option<&'a [Range<usize>]>,
     /// Digits of conditioned values. For text only.
     pub digits: Digits,
     /// How a sample is stored. For WAV only.
@@ -59,7 +62,21 @@ pub struct Content<'a> {
 impl<'a> Content<'a> {
     /// A record in plain form: shortest digits, or 32-bit floats.
     pub fn new(record: &'a Record) -> Content<'a> {
-        Content { record, origin: None, extra: &[], digits: Digits::Shortest, encoding: WaveEncoding::Float32 }
+        Content {
+            record,
+            origin: None,
+            extra: &[],
+            shown: None,
+            digits: Digits::Shortest,
+            encoding: WaveEncoding::Float32,
+        }
+    }
+}
+
+impl Content<'_> {
+    /// True for a cell that stays blank.
+    fn is_blank(&self, channel: usize, sample: usize) -> bool {
+        self.shown.is_some_and(|shown| shown.get(channel).is_some_and(|span| !span.contains(&sample)))
     }
 }
 

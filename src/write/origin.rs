@@ -39,7 +39,18 @@ impl Rows<'_> {
 impl Origin<'_> {
     /// The line of the file (from 1) that sample `n` came from; `None` for a sample that was inserted.
     pub(super) fn line(&self, n: usize) -> Option<u64> {
-        self.rows.row(n).and_then(|row| self.layout.data_line.checked_add(row))
+        self.rows.row(n).and_then(|row| self.layout.lines.line(row))
+    }
+
+    /// The first of `len` samples whose row the table does not have.
+    pub(super) fn without_line(&self, len: usize) -> Option<usize> {
+        let rows = self.layout.lines.rows();
+        let last = (0..len).rev().find(|&n| self.rows.row(n).is_some())?;
+        // Rows ascend: where the last one is there, all are.
+        if self.rows.row(last).is_none_or(|row| row < rows) {
+            return None;
+        }
+        (0..len).find(|&n| self.rows.row(n).is_some_and(|row| row >= rows))
     }
 
     /// The first sample from `n` on, and before `len`, that comes from line `limit` or a later one.

@@ -9,7 +9,6 @@ use super::csv::push_cell;
 use super::field::{Fields, row_end};
 use super::header::{self, Change};
 use super::number;
-
 use super::{Content, Origin};
 use crate::error::{Error, Result};
 use crate::place::Place;
@@ -29,6 +28,10 @@ pub(super) fn check(content: &Content<'_>, origin: &Origin<'_>) -> Result<()> {
         && rows.len() != content.record.len()
     {
         return Err(Error::usage("samples of the result and rows of the table differ in number"));
+    }
+    if let Some(sample) = origin.without_line(content.record.len()) {
+        let place = Place { sample: Some(sample as u64), ..Place::default() };
+        return Err(Error::usage("the result has more samples than the table has rows").at(place));
     }
     head(content, origin).map(|_| ())
 }
@@ -142,7 +145,7 @@ impl<'a> Plan<'a> {
     fn format(&self, job: &Job, out: &mut Vec<u8>) -> Result<()> {
         let text = &job.text[job.bytes.clone()];
         let (mut number, mut sample) = (job.line, job.samples.start);
-        let lines = Lines { text, at: 0, line_end: line_end(self.origin) };
+        let lines = Lines { text, at: 0, marks: Marks::of(self.origin) };
         for (line, count) in lines {
             while sample < job.samples.end && self.origin.line(sample).is_none() {
                 self.inserted(sample, out)?;
@@ -225,6 +228,9 @@ impl<'a> Plan<'a> {
     /// A conditioned value; in quotes where its decimal mark is the delimiter and the source has none.
     fn value(&self, channel: usize, sample: usize, quoted: bool, out: &mut Vec<u8>) {
         let layout = &self.origin.layout;
+        if self.content.is_blank(channel, sample) {
+            return self.blank(out);
+        }
         let quote = layout.delimiter == layout.decimal && !quoted;
         out.extend(quote.then_some(b'"'));
         number::push(out, self.channels[channel].samples[sample], self.content.digits, layout.decimal);
@@ -282,8 +288,22 @@ impl<'a> Plan<'a> {
     }
 }
 
-fn line_end(origin: &Origin<'_>) -> u8 {
-    if origin.layout.newline == "\r" { b'\r' } else { b'\n' }
+/// What parts fields and rows.
+#[derive(Debug, Clone, Copy)]
+struct Marks {
+    delimiter: u8,
+    line_end: u8,
+}
+
+impl Marks {
+    fn of(origin: &Origin<'_>) -> Marks {
+        let line_end = if origin.layout.newline == "\r" { b'\r' } else { b'\n' };
+        Marks { delimiter: origin.layout.delimiter, line_end }
+    }
+
+    fn row_end(self, text: &[u8], from: usize) -> Option<(usize, u64)> {
+        row_end(text, from, self.delimiter, self.line_end)
+    }
 }
 
 /// Rows of a text without their line ends, each with the number of lines that it takes: more than one where line ends stand
@@ -291,7 +311,7 @@ fn line_end(origin: &Origin<'_>) -> u8 {
 struct Lines<'a> {
     text: &'a [u8],
     at: usize,
-    line_end: u8,
+    marks: Marks,
 }
 
 impl<'a> Iterator for Lines<'a> {
@@ -301,7 +321,7 @@ impl<'a> Iterator for Lines<'a> {
         if self.at >= self.text.len() {
             return None;
         }
-        let (end, count) = row_end(self.text, self.at, self.line_end).unwrap_or((self.text.len(), 1));
+        let (end, count) = self.marks.row_end(self.text, self.at).unwrap_or((self.text.len(), 1));
         let line = &self.text[self.at..end];
         self.at = end + 1;
         Some((line.strip_suffix(b"\r").unwrap_or(line), count))
@@ -311,7 +331,7 @@ impl<'a> Iterator for Lines<'a> {
 /// The data block of the source, read again.
 struct Source {
     reader: Box<dyn Read + Send>,
-    line_end: u8,
+    marks: Marks,
     /// Start of a row whose end is not read yet.
     carried: Vec<u8>,
     ended: bool,
@@ -323,7 +343,7 @@ type Parted = (Arc<Vec<u8>>, Vec<(Range<usize>, u64)>);
 impl Source {
     fn open(origin: &Origin<'_>) -> Result<Source> {
         let reader = read::reopen(&origin.source, &origin.layout)?;
-        let mut source = Source { reader, line_end: line_end(origin), carried: Vec::new(), ended: false };
+        let mut source = Source { reader, marks: Marks::of(origin), carried: Vec::new(), ended: false };
         let mut head = Vec::new();
         source.pull(&mut head, origin.layout.head.len()).map_err(|error| error.at(place(origin)))?;
         if head == origin.layout.head.as_bytes() { Ok(source) } else { Err(changed().at(place(origin))) }
@@ -348,7 +368,7 @@ impl Source {
             }
             let rest = self.ended.then_some((text.len(), 1));
             while at < text.len() {
-                let Some((end, count)) = row_end(&text, at, self.line_end).or(rest) else { break };
+                let Some((end, count)) = self.marks.row_end(&text, at).or(rest) else { break };
                 lines += count;
                 at = (end + 1).min(text.len());
                 if at - start >= JOB_BYTES {

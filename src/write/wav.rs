@@ -25,10 +25,9 @@ fn check(content: &Content<'_>) -> Result<Vec<Finding>> {
     let record = content.record;
     rate_hz(record.axis())?;
     channel_count(content)?;
-    if !content.extra.is_empty() {
-        return Err(
-            Error::unsupported("a WAV file has no room for extra columns").remedy("write text with --format csv")
-        );
+    if !content.extra.is_empty() || content.shown.is_some() {
+        return Err(Error::unsupported("a WAV file has no room for extra columns or blank cells")
+            .remedy("write text with --format csv"));
     }
     let channels: Vec<Channel<'_>> = record.channels().collect();
     let faults: Vec<Option<Error>> =

@@ -179,10 +179,21 @@ impl StampReading {
             self.step = Some(candidates.median * clock.tick);
             return;
         }
-        match Track::best(clock, &candidates) {
-            Some(track) => self.settle_track(clock, &track),
-            None => self.spacing = Spacing::Irregular,
-        }
+        let tracks = Track::all(clock, &candidates);
+        let Some(best) = tracks.first() else {
+            self.spacing = Spacing::Irregular;
+            return;
+        };
+        // Coarse stamps with jitter can mimic even ones of a faster rate with many rows missing. Where another step
+        // needs less than half the missing rows and leaves no more than jitter, that is the likelier reading.
+        let plainer = |track: &&Track| {
+            track.strip.is_none()
+                && 2 * track.missing() < best.missing()
+                && matches!(residual::judge(clock, track).0, Spacing::NearUniform | Spacing::Jittered)
+        };
+        let doubtful = best.strip.is_some() && q > 0.3 * best.step;
+        let other = if doubtful { tracks[1..].iter().find(plainer) } else { None };
+        self.settle_track(clock, other.unwrap_or(best));
     }
 
     /// Every row there, even to print resolution.
@@ -234,7 +245,7 @@ impl StampReading {
         let steps = track.indices.windows(2).enumerate();
         self.gaps_from(clock, steps.filter(|(_, w)| w[1] - w[0] > 1).map(|(n, w)| (n + 1, (w[1] - w[0] - 1) as u64)));
         self.step = Some(track.step * clock.tick);
-        // Coarse stamps with jitter can mimic a faster rate with many rows missing (1 of 600 random columns did).
+        // What is left of that mimicry when no other step was found.
         let rows_and_missing = self.rows as f64 + self.missing as f64;
         if clock.resolution > 0.3 * track.step && self.missing as f64 > 0.1 * rows_and_missing {
             self.gaps.clear();

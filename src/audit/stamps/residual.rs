@@ -67,8 +67,10 @@ pub fn judge(clock: &Clock<'_>, track: &Track) -> (Spacing, Scatter, Option<usiz
     if calm {
         return (Spacing::Drifting, scatter, None);
     }
-    // Rounding alone has a robust deviation of 1.4826 q / 4, which adds to that of the instants.
-    let jittered = deviation <= (0.11 * h).hypot(0.37 * q) && largest <= 0.5 * h + q;
+    // Rounding alone has a robust deviation of 1.4826 q / 4, which adds to that of the instants; such rows are numbered
+    // safely as long as none strays by half a step, and a row numbered wrongly would show as slow deviation.
+    let jittered = (deviation <= 0.11 * h && largest <= 0.5 * h + q)
+        || (deviation <= (0.11 * h).hypot(0.37 * q) && largest <= 0.5 * h && drift <= 0.3 * h);
     (if jittered { Spacing::Jittered } else { Spacing::Irregular }, scatter, None)
 }
 

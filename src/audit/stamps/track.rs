@@ -26,22 +26,26 @@ const STILL: f64 = 1e-9;
 const ROUNDS: usize = 20;
 
 impl Track {
-    /// The track of the candidate that fits the print resolution with the fewest missing rows; if none fits, of the one
-    /// that lies closest to its grid.
-    pub fn best(clock: &Clock<'_>, candidates: &Candidates) -> Option<Track> {
-        let mut best: Option<Track> = None;
+    /// The tracks of all candidates that differ, best first: those that fit the print resolution by the number of missing
+    /// rows, then the others by how close they lie to their grid.
+    pub fn all(clock: &Clock<'_>, candidates: &Candidates) -> Vec<Track> {
+        let mut tracks: Vec<Track> = Vec::new();
         for &guess in &candidates.all {
             // Guesses differ enough to matter only where the stamps are coarse.
-            if best.as_ref().is_some_and(|t| clock.resolution < 0.1 * t.step && t.deviation < 0.1 * t.step) {
+            if tracks.first().is_some_and(|t| clock.resolution < 0.1 * t.step && t.deviation < 0.1 * t.step) {
                 break;
             }
-            let settled = best.as_ref().map(|track| track.step);
-            let Some(track) = Track::follow(clock, guess, settled) else { continue };
-            if best.as_ref().is_none_or(|other| track.beats(other)) {
-                best = Some(track);
-            }
+            let Some(track) = Track::follow(clock, guess, &tracks) else { continue };
+            let at = tracks.iter().position(|other| track.beats(other)).unwrap_or(tracks.len());
+            tracks.insert(at, track);
         }
-        best
+        tracks
+    }
+
+    /// Rows missing between those that are there.
+    pub fn missing(&self) -> u64 {
+        let last = self.indices.last().copied().unwrap_or(0);
+        (last + 1 - self.indices.len() as i64).max(0) as u64
     }
 
     fn beats(&self, other: &Track) -> bool {
@@ -53,8 +57,8 @@ impl Track {
     }
 
     /// Follows the stamps from a first guess of the step until indices and step agree. `None` when the step runs off,
-    /// or arrives at `settled`, which has been seen already.
-    fn follow(clock: &Clock<'_>, guess: f64, settled: Option<f64>) -> Option<Track> {
+    /// or arrives at that of a track in `known`.
+    fn follow(clock: &Clock<'_>, guess: f64, known: &[Track]) -> Option<Track> {
         let ticks: &[i64] = &clock.ticks;
         let mut step = guess;
         let mut indices = vec![0i64; ticks.len()];
@@ -66,7 +70,7 @@ impl Track {
             if !(step.is_finite() && step > 0.0) {
                 return None;
             }
-            if settled.is_some_and(|s| (s - step).abs() <= STILL * s) {
+            if known.iter().any(|track| (track.step - step).abs() <= STILL * step) {
                 return None;
             }
             if change.abs() <= STILL * step {

@@ -67,9 +67,15 @@ impl AwkwardCosine {
         }
         let (one, two) = work.split_at_mut(self.row.space());
         for block in 0..self.grid.row_blocks() {
-            arch.dispatch(Task(#[inline(always)] || self.turn(spectra, one, block)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.turn(spectra, one, block),
+            ));
             let (done, _) = self.row.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || self.rows.store(done, x, block, mirrors)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.rows.store(done, x, block, mirrors),
+            ));
         }
         x[flat(len, mirrors)] *= FRAC_1_SQRT_2;
     }
@@ -84,9 +90,15 @@ impl AwkwardCosine {
         c[flat(len, mirrors)] *= SQRT_2;
         let (one, two) = work.split_at_mut(self.row.space());
         for block in 0..self.grid.row_blocks() {
-            arch.dispatch(Task(#[inline(always)] || self.rows.load(c, one, block, mirrors)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.rows.load(c, one, block, mirrors),
+            ));
             let (done, _) = self.row.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || self.turn_back(done, spectra, block)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.turn_back(done, spectra, block),
+            ));
         }
         for (j2, spectrum) in spectra.chunks_exact(2 * half).enumerate() {
             let (re, im) = spectrum.split_at(half);

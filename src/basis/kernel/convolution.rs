@@ -66,15 +66,24 @@ impl Convolution {
         for (block, kernel) in spectrum.chunks_exact(self.row.space()).enumerate() {
             self.twiddles.turn(arch, block, tiles, one);
             let (done, free) = self.row.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || multiply(done, kernel)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || multiply(done, kernel),
+            ));
             let (done, _) = self.row.run(arch, done, free);
             self.twiddles.turn_back(arch, block, done, tiles, (block, grid.row_blocks()));
         }
         for block in 0..grid.pair_blocks() {
             let tiles = &tiles[block * grid.row_blocks() * TILE..][..grid.row_blocks() * TILE];
-            arch.dispatch(Task(#[inline(always)] || join(grid, tiles, one, (0, 1))));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || join(grid, tiles, one, (0, 1)),
+            ));
             let (done, _) = self.column.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || self.scatter(done, x, block)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.scatter(done, x, block),
+            ));
         }
     }
 
@@ -87,9 +96,15 @@ impl Convolution {
 
     fn columns(&self, arch: Arch, x: &[f64], tiles: &mut [f64], one: &mut [f64], two: &mut [f64]) {
         for (block, tiles) in tiles.chunks_exact_mut(self.grid.row_blocks() * TILE).enumerate() {
-            arch.dispatch(Task(#[inline(always)] || self.gather(x, one, block)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.gather(x, one, block),
+            ));
             let (done, _) = self.column.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || part(&self.grid, done, tiles)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || part(&self.grid, done, tiles),
+            ));
         }
     }
 

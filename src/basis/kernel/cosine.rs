@@ -54,14 +54,23 @@ impl LongCosine {
         let (one, rest) = work.split_at_mut(self.column.space().max(self.row.space()));
         let two = &mut rest[..one.len()];
         for (block, tiles) in tiles.chunks_exact_mut(grid.row_blocks() * TILE).enumerate() {
-            arch.dispatch(Task(#[inline(always)] || self.gather(x, one, block, mirrors)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.gather(x, one, block, mirrors),
+            ));
             let (done, _) = self.column.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || part(grid, done, tiles)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || part(grid, done, tiles),
+            ));
         }
         for block in 0..grid.row_blocks() {
             self.twiddles.turn(arch, block, tiles, one);
             let (done, _) = self.row.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || self.rows.store(done, x, block, mirrors)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.rows.store(done, x, block, mirrors),
+            ));
         }
         x[flat(x.len(), mirrors)] *= FRAC_1_SQRT_2;
     }
@@ -75,14 +84,23 @@ impl LongCosine {
         let two = &mut rest[..one.len()];
         c[flat(c.len(), mirrors)] *= SQRT_2;
         for (block, tiles) in tiles.chunks_exact_mut(grid.pair_blocks() * TILE).enumerate() {
-            arch.dispatch(Task(#[inline(always)] || self.rows.load(c, one, block, mirrors)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.rows.load(c, one, block, mirrors),
+            ));
             let (done, _) = self.row.run(arch, one, two);
             self.twiddles.turn_back(arch, block, done, tiles, (0, 1));
         }
         for block in 0..grid.pair_blocks() {
-            arch.dispatch(Task(#[inline(always)] || join(grid, tiles, one, (block, grid.pair_blocks()))));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || join(grid, tiles, one, (block, grid.pair_blocks())),
+            ));
             let (done, _) = self.column.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || self.scatter(done, c, block, mirrors)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.scatter(done, c, block, mirrors),
+            ));
         }
     }
 
@@ -201,7 +219,8 @@ mod tests {
     #[test]
     fn grids_of_every_shape_meet_the_definition_and_come_back() {
         // Even and odd sides, whole and partial blocks, every small transform, and 17, 19 and 31 by the general kernel.
-        let shapes = [(16, 16), (17, 16), (16, 17), (15, 22), (26, 33), (49, 31), (64, 19), (121, 125), (3, 169), (8, 24)];
+        let shapes =
+            [(16, 16), (17, 16), (16, 17), (15, 22), (26, 33), (49, 31), (64, 19), (121, 125), (3, 169), (8, 24)];
         for (height, width) in shapes {
             let len = height * width;
             let plan = LongCosine::new(height, width);

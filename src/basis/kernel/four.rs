@@ -56,15 +56,24 @@ impl LongFour {
         let two = &mut rest[..one.len()];
         for (block, tiles) in tiles.chunks_exact_mut(grid.row_blocks() * TILE).enumerate() {
             for half in 0..2 {
-                arch.dispatch(Task(#[inline(always)] || self.gather(x, one, block, half, left)));
+                arch.dispatch(Task(
+                    #[inline(always)]
+                    || self.gather(x, one, block, half, left),
+                ));
                 let (done, _) = self.column.run(arch, one, two);
-                arch.dispatch(Task(#[inline(always)] || spread(grid, done, tiles, half)));
+                arch.dispatch(Task(
+                    #[inline(always)]
+                    || spread(grid, done, tiles, half),
+                ));
             }
         }
         for block in 0..grid.row_blocks() {
             self.twiddles.turn(arch, block, tiles, one);
             let (done, _) = self.row.run(arch, one, two);
-            arch.dispatch(Task(#[inline(always)] || self.store(done, x, block, left)));
+            arch.dispatch(Task(
+                #[inline(always)]
+                || self.store(done, x, block, left),
+            ));
         }
     }
 

@@ -118,12 +118,24 @@ impl WithSimd for StageRun<'_> {
     #[inline(always)]
     fn with_simd<S: Simd>(self, simd: S) {
         match self.stage.radix {
-            2 => self.sweep(simd, #[inline(always)] |x| two(simd, x)),
+            2 => self.sweep(
+                simd,
+                #[inline(always)]
+                |x| two(simd, x),
+            ),
             3 => self.sweep_odd::<S, 3>(simd),
-            4 => self.sweep(simd, #[inline(always)] |x| four(simd, x)),
+            4 => self.sweep(
+                simd,
+                #[inline(always)]
+                |x| four(simd, x),
+            ),
             5 => self.sweep_odd::<S, 5>(simd),
             7 => self.sweep_odd::<S, 7>(simd),
-            8 => self.sweep(simd, #[inline(always)] |x| eight(simd, x)),
+            8 => self.sweep(
+                simd,
+                #[inline(always)]
+                |x| eight(simd, x),
+            ),
             11 => self.sweep_odd::<S, 11>(simd),
             _ => self.sweep_odd::<S, 13>(simd),
         }
@@ -134,7 +146,11 @@ impl StageRun<'_> {
     #[inline(always)]
     fn sweep_odd<S: Simd, const R: usize>(self, simd: S) {
         let circle = circle::<R>();
-        self.sweep(simd, #[inline(always)] |x| odd::<S, R>(simd, x, &circle));
+        self.sweep(
+            simd,
+            #[inline(always)]
+            |x| odd::<S, R>(simd, x, &circle),
+        );
     }
 
     #[inline(always)]
@@ -146,16 +162,28 @@ impl StageRun<'_> {
         let from = &S::as_simd_f64s(self.from).0[..R * groups * block];
         let to = &mut S::as_mut_simd_f64s(self.to).0[..R * groups * block];
         for (p, to) in to.chunks_exact_mut(R * block).enumerate() {
-            let legs: [&[S::f64s]; R] = from_fn(#[inline(always)] |j| &from[(j * groups + p) * block..][..block]);
+            let legs: [&[S::f64s]; R] = from_fn(
+                #[inline(always)]
+                |j| &from[(j * groups + p) * block..][..block],
+            );
             let mut outs = to.chunks_exact_mut(block);
-            let outs: [&mut [S::f64s]; R] = from_fn(#[inline(always)] |_| outs.next().unwrap_or_default());
-            let twiddles: [Point<S>; R] = from_fn(#[inline(always)] |i| {
-                if i == 0 { splat(simd, [1.0, 0.0]) } else { splat(simd, self.stage.twiddles[p * (R - 1) + i - 1]) }
-            });
+            let outs: [&mut [S::f64s]; R] = from_fn(
+                #[inline(always)]
+                |_| outs.next().unwrap_or_default(),
+            );
+            let twiddles: [Point<S>; R] = from_fn(
+                #[inline(always)]
+                |i| {
+                    if i == 0 { splat(simd, [1.0, 0.0]) } else { splat(simd, self.stage.twiddles[p * (R - 1) + i - 1]) }
+                },
+            );
             for at in 0..span {
                 for h in 0..v {
                     let at = at * 2 * v + h;
-                    let x = from_fn(#[inline(always)] |j| [legs[j][at], legs[j][at + v]]);
+                    let x = from_fn(
+                        #[inline(always)]
+                        |j| [legs[j][at], legs[j][at + v]],
+                    );
                     let y = small(x);
                     for i in 0..R {
                         let y = if i == 0 || p == 0 { y[i] } else { mul(simd, y[i], twiddles[i]) };

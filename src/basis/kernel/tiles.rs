@@ -27,12 +27,23 @@ pub fn run<const N: usize>(x: &[f64], start: usize) -> &[f64; N] {
 /// Lanes in opposite order.
 #[inline(always)]
 pub fn reversed(lanes: &[f64; LANES]) -> [f64; LANES] {
-    std::array::from_fn(#[inline(always)] |l| lanes[LANES - 1 - l])
+    std::array::from_fn(
+        #[inline(always)]
+        |l| lanes[LANES - 1 - l],
+    )
 }
 
 #[inline(always)]
 fn transposed(block: &Block) -> Block {
-    std::array::from_fn(#[inline(always)] |i| std::array::from_fn(#[inline(always)] |j| block[j][i]))
+    std::array::from_fn(
+        #[inline(always)]
+        |i| {
+            std::array::from_fn(
+                #[inline(always)]
+                |j| block[j][i],
+            )
+        },
+    )
 }
 
 /// Takes the two real columns of each pair apart and lays twice their spectra into the block's tiles, row by row.
@@ -102,9 +113,15 @@ fn lay(tile: &mut [[f64; LANES]], at: usize, parts: &[Block; 2]) {
 /// Inverse of [`lay`].
 #[inline(always)]
 fn lift(tile: &[[f64; LANES]], at: usize) -> [Block; 2] {
-    std::array::from_fn(#[inline(always)] |part| {
-        transposed(&std::array::from_fn(#[inline(always)] |l| tile[(at + l) * 2 + part]))
-    })
+    std::array::from_fn(
+        #[inline(always)]
+        |part| {
+            transposed(&std::array::from_fn(
+                #[inline(always)]
+                |l| tile[(at + l) * 2 + part],
+            ))
+        },
+    )
 }
 
 /// Lays complex columns into the first or second half of a block's tiles.

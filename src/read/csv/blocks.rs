@@ -124,13 +124,13 @@ impl<R: Read> Blocks<R> {
                 self.position += cut as u64;
                 return Ok((!block.is_empty()).then_some(block));
             }
-            if want > LONGEST_LINE {
+            if want >= LONGEST_LINE {
                 let what = format!("a line of more than {} MiB starts here", LONGEST_LINE >> 20);
                 let remedy = if quotes.is_some() { "is a quote never closed?" } else { "is this a text file?" };
                 return Err(Error::malformed(what).at(Place::byte(self.position, None)).remedy(remedy));
             }
             searched = seen;
-            want = want.saturating_mul(2);
+            want = want.saturating_mul(2).min(LONGEST_LINE);
         }
     }
 

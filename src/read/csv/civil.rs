@@ -144,10 +144,11 @@ fn clock<'a>(text: &'a [u8], civil: &mut Civil) -> Option<&'a [u8]> {
         }
         second = value;
         text = &text[1 + len..];
-        if matches!(text.first(), Some(b'.' | b',')) {
+        let thousandths = text.first() == Some(&b':') && text.len() == 4; // `10:00:00:250`
+        if thousandths || matches!(text.first(), Some(b'.' | b',')) {
             let (fraction, kept) = digits(&text[1..], 9);
             let all = text[1..].iter().take_while(|byte| byte.is_ascii_digit()).count();
-            if all == 0 {
+            if all == 0 || thousandths && all != 3 {
                 return None;
             }
             civil.fraction = fraction;

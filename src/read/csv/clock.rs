@@ -22,12 +22,13 @@ pub(super) fn stamps(
     lines: &RowLines,
 ) -> Result<(Stamps, Vec<Finding>)> {
     let mut findings = Vec::new();
-    let resolution = 10_f64.powi(-i32::from(column.decimals.coarsest()));
+    let mut resolution = 10_f64.powi(-i32::from(column.decimals.coarsest()));
     let (form, zoned) = (column.form, column.zoned);
     let ambiguous = form == Form::Date && settle_order(&mut column, name, &mut findings)?;
     let (mut ticks, tick, scale) = match column.floats.take() {
         Some(values) => {
             let (ticks, tick) = float_ticks(&values);
+            resolution = resolution.max(tick);
             (ticks, tick, None)
         }
         None => (column.ticks, 10_f64.powi(-i32::from(column.scale)), Some(column.scale)),
@@ -36,7 +37,11 @@ pub(super) fn stamps(
     let first = scale.map_or(start as f64 * tick, |scale| exact(start, scale));
     let (unit, epoch) = match (form, unit) {
         (Form::Number, Some(unit)) => (unit, None),
-        (Form::Number, None) => number_unit(first, scale, name, &mut findings),
+        (Form::Number, None) => {
+            let size = scale.map(|scale| 10_i64.pow(u32::from(scale)));
+            let whole = size.is_some_and(|size| ticks.iter().all(|tick| tick % size == 0));
+            number_unit(first, whole, name, &mut findings)
+        }
         _ => (Unit::parse("s"), Some(0)),
     };
     let civil = match (scale, epoch, form) {
@@ -61,7 +66,7 @@ pub(super) fn stamps(
 
 /// Unit of numbers without one, and the decimals of an epoch's unit: by digits where they look like time since 1970,
 /// seconds otherwise.
-fn number_unit(first: f64, scale: Option<u8>, name: &str, findings: &mut Vec<Finding>) -> (Unit, Option<u32>) {
+fn number_unit(first: f64, whole: bool, name: &str, findings: &mut Vec<Finding>) -> (Unit, Option<u32>) {
     for (label, decimals) in [("s", 0), ("ms", 3), ("us", 6), ("ns", 9)] {
         if EPOCH.contains(&(first / 10_f64.powi(decimals))) {
             let digits = format!("{first:.0}").len();
@@ -71,8 +76,8 @@ fn number_unit(first: f64, scale: Option<u8>, name: &str, findings: &mut Vec<Fin
             return (Unit::parse(label), Some(decimals as u32));
         }
     }
-    // Seconds are usual and mostly have decimals; whole numbers may as well be milliseconds.
-    if scale == Some(0) {
+    // Seconds are usual and mostly broken numbers; whole ones may as well be milliseconds.
+    if whole {
         let text = format!(
             "column \"{}\" states no unit and holds whole numbers: read as seconds (--time-unit)",
             escape(name)

@@ -1,11 +1,12 @@
 //! What each column is: stamps, a channel, a counter, or something to leave as it is.
 
 use super::dialect::Found;
-use super::field::{Dialect, Look};
+use super::field::{Dialect, Look, look};
 use super::header::Header;
-use super::name::Column;
+use super::missing::Missing;
+use super::name::{Column, name_and_unit};
 use super::ticks::Form;
-use super::{civil, field};
+use super::{civil, field, number, shown};
 use crate::error::{Error, Finding, Result};
 use crate::place::{Place, escape};
 use crate::read::ReadOptions;
@@ -108,20 +109,29 @@ enum Motion {
     Mixed,
 }
 
-/// Decides what each column is, from its name and its first rows.
+/// Decides what each column is, from its name and its first rows; `later` rows, which may be faulty, tell of columns that are
+/// empty at first.
 ///
 /// # Errors
 /// `Usage` for columns that do not exist or hold no numbers, and for a position column without a unit; `Unsupported` when
 /// no channel is left.
-pub(super) fn roles(header: &Header, rows: &Rows<'_>, found: &Found, options: &ReadOptions) -> Result<Roles> {
+pub(super) fn roles(
+    header: &Header,
+    rows: &Rows<'_>,
+    later: &Rows<'_>,
+    found: &Found,
+    options: &ReadOptions,
+) -> Result<Roles> {
     let columns = &header.columns;
-    let named = header.names_line.is_some();
-    let contents: Vec<Content> = (0..columns.len()).map(|field| content(field, rows, &found.looks)).collect();
+    let named = header.names.is_some();
+    let missing = Missing::new(&options.missing, found.dialect.decimal);
+    let contents: Vec<Content> =
+        (0..columns.len()).map(|field| content(field, rows, later, found.dialect, &missing)).collect();
     let tracks: Vec<Vec<f64>> = (0..columns.len()).map(|field| track(field, rows, found.dialect)).collect();
     let candidates: Vec<Candidate> = (columns.iter().enumerate())
         .map(|(index, c)| Candidate { name: c.name.clone(), header: c.header.clone(), number: index + 1 })
         .collect();
-    let at_header = Place { line: header.names_line.map(|line| line as u64 + 1), ..Place::default() };
+    let at_header = Place { line: header.names.as_ref().map(|lines| lines.start as u64 + 1), ..Place::default() };
     let mut findings = Vec::new();
     let stamps = match options.time_column.as_deref() {
         Some("none") => None,
@@ -162,11 +172,14 @@ pub(super) fn roles(header: &Header, rows: &Rows<'_>, found: &Found, options: &R
             Finding::new("empty_column", text).at(Place { column: Some(field as u64 + 1), ..Place::default() })
         }));
     }
+    if options.channels.is_none() {
+        findings.extend(measured_text(columns, &contents, rows));
+    }
     if channels.is_empty() {
-        return Err(Error::unsupported(
-            "no column holds a channel: there are numbers in none beside stamps and counters",
-        )
-        .remedy("name one with --channel, or say --time-column none"));
+        let text = findings.iter().find(|finding| finding.code == "text_column");
+        let reason = text.map_or("there are numbers in none beside stamps and counters", |finding| &finding.text);
+        return Err(Error::unsupported(format!("no column holds a channel: {reason}"))
+            .remedy("name one with --channel, or say --time-column none"));
     }
     let stamps = stamps.map(|field| match contents[field] {
         Content::Stamp(form) => (field, form),
@@ -175,19 +188,42 @@ pub(super) fn roles(header: &Header, rows: &Rows<'_>, found: &Found, options: &R
     Ok(Roles { stamps, stamps_unit, channels, findings })
 }
 
-fn content(field: usize, rows: &Rows<'_>, looks: &[Vec<Look>]) -> Content {
-    let seen = |wanted: &[Look]| looks.iter().filter_map(|row| row.get(field)).any(|look| wanted.contains(look));
-    if seen(&[Look::Text]) {
+/// What most of the cells hold that are not missing, in the first rows or else in `later` ones.
+fn content(field: usize, rows: &Rows<'_>, later: &Rows<'_>, dialect: Dialect, missing: &Missing) -> Content {
+    let looks: Vec<Look> =
+        rows.iter().filter_map(|row| row.get(field)).map(|cell| look(cell, dialect, missing)).collect();
+    let count = |wanted: &[Look]| looks.iter().filter(|look| wanted.contains(look)).count();
+    let (numbers, stamps, texts) = (count(&[Look::Number, Look::Grouped]), count(&[Look::Stamp]), count(&[Look::Text]));
+    if texts > numbers + stamps {
         Content::Text
-    } else if seen(&[Look::Stamp]) {
-        let stamps = rows.iter().filter_map(|row| civil::parse(&row.get(field)?.text));
-        let dates = stamps.clone().filter(|stamp| stamp.days.is_some()).count();
-        Content::Stamp(if 2 * dates >= stamps.count() { Form::Date } else { Form::Clock })
-    } else if seen(&[Look::Number, Look::Grouped]) {
+    } else if stamps > numbers {
+        let civil = rows.iter().filter_map(|row| civil::parse(&row.get(field)?.text));
+        let dates = civil.clone().filter(|stamp| stamp.days.is_some()).count();
+        Content::Stamp(if 2 * dates >= civil.count() { Form::Date } else { Form::Clock })
+    } else if numbers > 0 {
         Content::Number
-    } else {
+    } else if later.is_empty() {
         Content::Empty
+    } else {
+        content(field, later, &[], dialect, missing)
     }
+}
+
+/// Remarks on columns of text whose cells start like numbers: perhaps values with a unit behind them.
+fn measured_text(columns: &[Column], contents: &[Content], rows: &Rows<'_>) -> Vec<Finding> {
+    let numeric = |text: &[u8]| number::scan(text, b'.').is_some() || number::scan(text, b',').is_some();
+    let texts = (0..columns.len()).filter(|&field| contents[field] == Content::Text);
+    texts
+        .filter_map(|field| {
+            let cells: Vec<&[u8]> = rows.iter().filter_map(|row| Some(&*row.get(field)?.text)).collect();
+            let shows = cells.iter().filter(|cell| numeric(cell)).count();
+            let cell = shown(cells.iter().find(|cell| numeric(cell))?);
+            let name = escape(&columns[field].name);
+            let text = format!("column \"{name}\" is left as it is: {cell} is no number");
+            let place = Place { column: Some(field as u64 + 1), ..Place::default() };
+            (2 * shows > cells.len()).then(|| Finding::new("text_column", text).at(place))
+        })
+        .collect()
 }
 
 /// The values of a column as far as they are numbers or stamps.
@@ -228,7 +264,10 @@ fn plain(name: &str) -> String {
     name.to_lowercase().replace(['_', '-'], " ").split_whitespace().collect::<Vec<_>>().join(" ")
 }
 
-fn is_time_name(name: &str) -> bool {
+/// True for a usual name of a time column, its unit aside.
+pub(super) fn is_time_name(header: &str) -> bool {
+    let name = plain(&name_and_unit(header).0);
+    let name = name.as_str();
     TIME_NAMES.contains(&name) || name.starts_with("time ") || name.starts_with("timestamp") || name.ends_with(" time")
 }
 
@@ -280,7 +319,7 @@ fn find(
     let mut doubtful = None;
     for (field, column) in columns.iter().enumerate() {
         let motion = motion(&tracks[field]);
-        let usual = named && is_time_name(&plain(&column.name)) && (column.unit.is_unknown() || column.unit.is_time());
+        let usual = named && is_time_name(&column.name) && (column.unit.is_unknown() || column.unit.is_time());
         let fits = match contents[field] {
             Content::Stamp(_) => motion <= Motion::Rising || single || usual && motion != Motion::Mixed,
             Content::Number => usual && motion != Motion::Mixed || column.unit.is_time() && motion == Motion::Strict,
@@ -298,22 +337,23 @@ fn find(
     if let Some(field) = position(columns, contents, tracks, options)? {
         return Ok(Some(field));
     }
-    let first_rises =
-        contents.first() == Some(&Content::Number) && motion(&tracks[0]) == Motion::Strict && steady(&tracks[0]);
+    let first = motion(&tracks[0]);
+    let rises = contents[0] == Content::Number && first <= Motion::Rising && steady(&tracks[0]);
     let others = contents.iter().skip(1).any(|content| *content == Content::Number);
     let unsure =
         |text: String| Finding::new("time_column_unsure", format!("{text}; if it is the time, say --time-column"));
     if let Some(field) = doubtful {
         let name = escape(&columns[field].name);
         findings.push(unsure(format!("column \"{name}\" does not rise and is not taken for the time")));
-    } else if first_rises && others && !counts_rows(&columns[0], &tracks[0]) {
+    } else if rises && others && !counts_rows(&columns[0], &tracks[0]) {
         let name = escape(&columns[0].name);
-        if !named {
+        if !named && first == Motion::Strict {
             let text = "there is no header: the first column rises steadily and is taken for the time (--time-column)";
             findings.push(Finding::new("time_column_guessed", text));
             return Ok(Some(0));
         }
-        findings.push(unsure(format!("column \"{name}\" rises steadily but is not named as time")));
+        let but = if named { "but is not named as time" } else { "but not on every row" };
+        findings.push(unsure(format!("column \"{name}\" rises steadily {but}")));
     }
     Ok(None)
 }

@@ -25,6 +25,8 @@ pub(super) struct Found {
     pub(super) dialect: Dialect,
     /// Index of the block's first line.
     pub(super) first: usize,
+    /// Index behind the last line that was found to belong to it; more may follow.
+    pub(super) end: usize,
     /// Fields of its lines.
     pub(super) fields: usize,
     /// Looks of the fields in each of its first lines, blank lines left out.
@@ -147,10 +149,12 @@ fn run(
             } else if options.header_lines.is_some() && looks.is_none() {
                 return None;
             }
-            current = looks.as_ref().map(|l| Found { dialect, first: index, fields: l.len(), looks: Vec::new() });
+            current =
+                looks.as_ref().map(|l| Found { dialect, first: index, end: index, fields: l.len(), looks: Vec::new() });
         }
         if let (Some(run), Some(looks)) = (&mut current, looks) {
             run.looks.push(looks);
+            run.end = index + 1;
             if run.looks.len() == SAMPLE {
                 return current;
             }
@@ -172,6 +176,10 @@ fn choose(beginning: Beginning<'_>, mut runs: Vec<Found>) -> Result<Option<Found
     if runs.iter().any(|run| run.dialect.delimiter != b' ' && run.fields > 1) {
         runs.retain(|run| run.dialect.delimiter != b' ');
     }
+    // The reading that leaves the fewest fields as text.
+    let texts = |run: &Found| run.looks.iter().flatten().filter(|look| **look == Look::Text).count();
+    let fewest = runs.iter().map(texts).min().unwrap_or(0);
+    runs.retain(|run| texts(run) == fewest);
     let mut readings: Vec<(Vec<Option<u64>>, Found)> = Vec::new();
     for run in runs {
         let reading = reading(beginning, &run);
@@ -218,7 +226,11 @@ fn header_agrees(beginning: Beginning<'_>, run: &Found) -> bool {
 }
 
 fn described(line: &[u8], run: &Found) -> String {
-    let fields: Vec<String> = fields(line, run.dialect.delimiter).iter().map(|field| shown(&field.text)).collect();
+    let read = |field: &Field<'_>| match super::field::number(&field.text, run.dialect) {
+        Some(value) => format!("{value}"),
+        None => shown(&field.text),
+    };
+    let fields: Vec<String> = fields(line, run.dialect.delimiter).iter().map(read).collect();
     let delimiter = match run.dialect.delimiter {
         b'\t' => "tab".to_owned(),
         b' ' => "blanks".to_owned(),
@@ -241,6 +253,7 @@ pub(super) fn reach_up(beginning: Beginning<'_>, found: &mut Found, options: &Re
     let missing = Missing::new(&options.missing, found.dialect.decimal);
     let first = found.first;
     let Some(model) = found.looks.first().cloned() else { return Ok(()) };
+    let mut other_width = None;
     for index in (0..first).rev().filter(|&index| !beginning.is_blank(index)) {
         let fields = fields(beginning.line(index), found.dialect.delimiter);
         let looks: Vec<Look> = fields.iter().map(|field| look(field, found.dialect, &missing)).collect();
@@ -252,11 +265,42 @@ pub(super) fn reach_up(beginning: Beginning<'_>, found: &mut Found, options: &Re
         if alike(&looks, &model) && values > 0 {
             found.first = index;
         } else if beginning.above(first) == Some(index) && values == looks.len() && looks.len() != found.fields {
-            let what = format!("{} fields where the line above has {}", found.fields, looks.len());
-            return Err(Error::malformed(what).at(Place::line(first as u64 + 1)).remedy(
-                "say how to split it with --delimiter and --decimal, or where the data start with --header-lines",
-            ));
+            other_width = Some(looks.len());
         }
     }
-    Ok(())
+    match other_width.filter(|_| found.first == first) {
+        Some(width) => Err(Error::malformed(format!("{} fields where the line above has {width}", found.fields))
+            .at(Place::line(first as u64 + 1))
+            .remedy("say how to split it with --delimiter and --decimal, or where the data start with --header-lines")),
+        None => Ok(()),
+    }
+}
+
+/// Takes lines above the block in as data that must be rows, whatever is wrong with them: of the lines `below` the
+/// header, those with as many fields and a number or stamp among them; without a header, those
+/// of nothing but values, and the one right above when it starts with a value.
+pub(super) fn take_in(
+    beginning: Beginning<'_>,
+    found: &mut Found,
+    below: &[usize],
+    named: bool,
+    options: &ReadOptions,
+) {
+    let missing = Missing::new(&options.missing, found.dialect.decimal);
+    let valued = |look: &Look| matches!(look, Look::Number | Look::Grouped | Look::Stamp);
+    let next = beginning.above(found.first);
+    for &index in below {
+        let cells = fields(beginning.line(index), found.dialect.delimiter);
+        let looks: Vec<Look> = cells.iter().map(|cell| look(cell, found.dialect, &missing)).collect();
+        let values = looks.iter().any(valued);
+        let data = match named {
+            true => values,
+            false if next == Some(index) && looks.first().is_some_and(valued) => true,
+            false => values && !looks.contains(&Look::Text),
+        };
+        if data && cells.len() == found.fields {
+            found.first = index;
+            return;
+        }
+    }
 }

@@ -3,7 +3,7 @@
 use std::io::Read;
 
 use super::blocks::Blocks;
-use super::field::{Look, fields, look};
+use super::field::{Look, MOST, fields, look};
 use super::rows::{Cause, Fault, Plan};
 use super::shown;
 use crate::error::{Error, Finding, Result};
@@ -112,6 +112,7 @@ fn error(plan: &Plan, fault: &Fault, line: &[u8], rest: &Rest) -> Error {
     let more = if rest.same > 1 { format!(" ({} more like it below)", rest.same - 1) } else { String::new() };
     match &fault.cause {
         Cause::Fields(count) => {
+            let count = if *count > MOST { format!("more than {MOST}") } else { count.to_string() };
             let what = format!("{count} fields where the rows above have {}: {}", plan.tasks.len(), shown(line));
             Error::malformed(what).remedy("correct the line; if it ends the data, remove what follows")
         }

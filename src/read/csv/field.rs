@@ -124,9 +124,15 @@ pub(super) fn fields(line: &[u8], delimiter: u8) -> Vec<Field<'_>> {
     fields
 }
 
+/// Longest text that is looked at as a number, in bytes.
+const LONGEST_NUMBER: usize = 4096;
+
 /// What `field` looks like.
 pub(super) fn look(field: &Field<'_>, dialect: Dialect, missing: &Missing) -> Look {
     let text: &[u8] = &field.text;
+    if text.len() > LONGEST_NUMBER {
+        return Look::Text;
+    }
     match number(text, dialect) {
         Some(value) if missing.sentinel(value) => Look::Missing,
         Some(_) => Look::Number,

@@ -1,5 +1,7 @@
 //! What the lines above the header say: keys and values, and a sampling rate among them.
 
+use std::ops::Range;
+
 use super::dialect::Beginning;
 use super::field::{Dialect, Field, fields};
 use super::header::uncommented;
@@ -54,11 +56,11 @@ const STEP_KEYS: &[&str] = &[
 pub(super) fn pairs(
     beginning: Beginning<'_>,
     first: usize,
-    skipped: &[Option<usize>],
+    skipped: &[Option<Range<usize>>],
     dialect: Dialect,
 ) -> Vec<(String, String)> {
     (0..first)
-        .filter(|index| !skipped.contains(&Some(*index)))
+        .filter(|index| !skipped.iter().flatten().any(|lines| lines.contains(index)))
         .flat_map(|index| line_pairs(beginning.line(index), dialect))
         .take(PAIRS)
         .collect()

@@ -76,7 +76,13 @@ impl Missing {
     /// True when a number was declared to mean a missing value.
     #[inline]
     pub(super) fn sentinel(&self, value: f64) -> bool {
-        !self.sentinels.is_empty() && self.sentinels.contains(&value)
+        self.sentinels.contains(&value)
+    }
+
+    /// True when any number was.
+    #[inline]
+    pub(super) fn has_sentinels(&self) -> bool {
+        !self.sentinels.is_empty()
     }
 
     /// True when lines of NUL bytes were declared to be lost rows.

@@ -143,8 +143,8 @@ fn assemble(
         decimal: found.dialect.decimal,
         thousands: found.dialect.thousands,
         head,
-        header_line: header.names_line,
-        units_line: header.units_line,
+        header_line: header.names.filter(|lines| lines.len() == 1).map(|lines| lines.start),
+        units_line: header.units.filter(|lines| lines.len() == 1).map(|lines| lines.start),
         data_start: data_start as u64,
         data_line: first_line,
         columns,
@@ -165,8 +165,8 @@ fn sparse(channel: &RawChannel) -> Option<Finding> {
     let present: Vec<usize> = (0..rows).filter(|&row| !channel.values[row].is_nan()).collect();
     let stride = present[1] - present[0];
     let name = escape(&channel.name);
-    let text = if present.windows(2).all(|pair| pair[1] - pair[0] == stride) {
-        format!("channel \"{name}\" has a value on every {stride}th row only: it has a rate of its own")
+    let text = if stride > 1 && present.windows(2).all(|pair| pair[1] - pair[0] == stride) {
+        format!("channel \"{name}\" has a value on one row in {stride} only: it has a rate of its own")
     } else {
         format!("channel \"{name}\" has a value on {} of {rows} rows only", present.len())
     };
@@ -190,4 +190,63 @@ fn shown(text: &[u8]) -> String {
     let short: String = text.chars().take(LONGEST).collect();
     let dots = if short.len() < text.len() { "..." } else { "" };
     format!("\"{}{dots}\"", escape(&short))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Everything a reader gives, in a form that does not depend on how it is kept.
+    fn told(text: &[u8], options: &ReadOptions, block_bytes: usize) -> String {
+        let mut stream = text;
+        let mut intake = Intake { stream: &mut stream, name: "a.csv", path: None };
+        let record = match read_in_blocks(&mut intake, options, block_bytes) {
+            Ok(record) => record,
+            Err(error) => return error.to_string(),
+        };
+        let lines: Vec<Option<u64>> =
+            (0..record.channels[0].values.len()).map(|row| record.row_place(row).line).collect();
+        let bits: Vec<Vec<u64>> =
+            record.channels.iter().map(|c| c.values.iter().map(|value| value.to_bits()).collect()).collect();
+        let missing: Vec<_> = record.channels.iter().map(|c| (&c.missing, &c.missing_spelling)).collect();
+        format!("{lines:?} {bits:?} {missing:?} {:?} {:?}", record.stamps, record.findings)
+    }
+
+    #[test]
+    fn the_size_of_the_blocks_changes_nothing() {
+        let rows = |row: fn(usize) -> String| (0..60).map(row).collect::<String>();
+        let fixtures = [
+            format!("t,a,b\n{}", rows(|n| format!("{}.{},{n},-{n}.5e-3\n", n / 10, n % 10))),
+            format!("t;a\r\n{}", rows(|n| format!("{},{};{n}\r\n\r\n", n / 10, n % 10))),
+            format!("t a\r{}", rows(|n| format!("  {n}.25   {n}  \r"))),
+            format!("t,a,note\n{}", rows(|n| format!("{n}.5,{},\"a \"\"{n}\"\"\n, b\"\n", n * n))),
+            format!("t,a,note\n{}", rows(|n| format!("{n}.5,{n},{}\n", if n > 40 { "\"x, y\"" } else { "z" }))),
+            format!("time,a\n{}", rows(|n| format!("23:59:{n:02}.5,{n}\n"))) + "00:00:00.5,60\n",
+            format!("date,a\n{}", rows(|n| format!("{:02}/01/2026 10:00:00,{n}\n", 1 + n % 20))),
+            format!(
+                "t,a,b\n{}",
+                rows(|n| format!(
+                    "{n}.5,{},{}\n",
+                    if n % 7 == 3 { "NA" } else { "1" },
+                    if n % 9 > 0 { "" } else { "2" }
+                ))
+            ),
+            format!("t,a\n{}end of run\n\nsecond line", rows(|n| format!("{n}.5,{n}\n"))),
+            format!("t,a\n{}60.5", rows(|n| format!("{n}.5,{n}\n"))),
+            format!("t,a\n{}60.5,x\n61.5,3\n", rows(|n| format!("{n}.5,{n}\n"))),
+            format!("t,a\n{}60.5,\"1\n61.5,3\n", rows(|n| format!("{n}.5,{n}\n"))),
+            format!("t,a\n{}\0\0\0\0\0\0\0\0\0\0\0\n61.5,3\n", rows(|n| format!("{n}.5,{n}\n"))),
+            format!("t,a\n{}0.123456789012345678901,7\n", rows(|n| format!("0.{n:02},{n}\n"))),
+            format!("t,a\n{}", rows(|n| format!("{},{n}\n", 1_772_359_200_123_456_000_i64 + n as i64))),
+        ];
+        let declared = ReadOptions { missing: vec!["NUL".into(), "x".into()], ..ReadOptions::default() };
+        for text in &fixtures {
+            for options in [&ReadOptions::default(), &declared] {
+                let whole = told(text.as_bytes(), options, BLOCK);
+                for block_bytes in [1, 2, 3, 7, 16, 33, 64, 100, 257, 1000] {
+                    assert_eq!(told(text.as_bytes(), options, block_bytes), whole, "{block_bytes}: {text}");
+                }
+            }
+        }
+    }
 }

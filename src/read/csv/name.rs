@@ -67,6 +67,9 @@ pub(super) fn name_and_unit(header: &str) -> (String, Unit) {
 /// The unit in a cell of a units row, brackets removed.
 pub(super) fn unit_cell(text: &str) -> Unit {
     let text = text.trim();
+    if matches!(text.to_lowercase().as_str(), "unit" | "units" | "einheit") {
+        return Unit::unknown(); // the title of the row
+    }
     let inner = [('[', ']'), ('(', ')'), ('<', '>')]
         .iter()
         .find_map(|&(open, close)| text.strip_prefix(open).and_then(|inner| inner.strip_suffix(close)));

@@ -23,9 +23,97 @@ pub(super) struct Printed {
     pub(super) len: usize,
 }
 
+/// Bytes that hold an everyday number and what follows it.
+pub(super) const SPAN: usize = 32;
+
+/// An everyday number at the start of a span of text: a sign, up to 7 digits, perhaps the mark and up to 15 more, no exponent,
+/// so few digits that they are exact. `None` for anything else; `scan` then decides.
+#[inline(always)]
+pub(super) fn short(text: &[u8; SPAN], decimal: u8) -> Option<Printed> {
+    let negative = text[0] == b'-';
+    let start = usize::from(negative || text[0] == b'+');
+    let (mut mantissa, mut at) = (0_u64, start);
+    // Few digits stand before the mark: one by one is quicker there.
+    loop {
+        let digit = text[at].wrapping_sub(b'0');
+        if digit > 9 {
+            break;
+        }
+        mantissa = mantissa * 10 + u64::from(digit);
+        at += 1;
+        if at > start + 7 {
+            return None;
+        }
+    }
+    let whole = at - start;
+    let mut decimals = 0;
+    if text[at] == decimal {
+        at += 1;
+        let (more, count) = leading_digits(text, at);
+        mantissa = mantissa * TENS[count] + more;
+        (at, decimals) = (at + count, count);
+        if count == 8 {
+            let (more, count) = leading_digits(text, at);
+            if count == 8 {
+                return None;
+            }
+            // May wrap: too many digits are refused below.
+            mantissa = mantissa.wrapping_mul(TENS[count]).wrapping_add(more);
+            (at, decimals) = (at + count, 8 + count);
+        }
+    }
+    let digits = whole + decimals;
+    // Up to 18 digits are below 2^63, and at most 24 bytes are passed.
+    let sound = (1..=18).contains(&digits) && mantissa <= EXACT && !matches!(text[at], b'e' | b'E' | b'd' | b'D');
+    sound.then_some(Printed { negative, mantissa, digits, decimals, exponent: 0, len: at })
+}
+
+/// The value of an everyday number.
+#[inline(always)]
+pub(super) fn short_value(printed: &Printed) -> f64 {
+    // Clinger 1990: both operands are exact, so one division rounds correctly.
+    let size = printed.mantissa as f64 / POWERS[printed.decimals];
+    // The sign of a vibration is a coin toss, so a branch on it would be guessed wrong half of the time.
+    f64::from_bits(size.to_bits() | u64::from(printed.negative) << 63)
+}
+
+/// Integers up to this are exact as floats.
+const EXACT: u64 = 1 << 53;
+
+const TENS: [u64; 9] = [1, 10, 100, 1_000, 10_000, 100_000, 1_000_000, 10_000_000, 100_000_000];
+
+/// Value and count of the digits at `at` (at most 24), 8 at most.
+#[inline(always)]
+fn leading_digits(text: &[u8; SPAN], at: usize) -> (u64, usize) {
+    let Some(eight) = text.get(at..at + 8).and_then(|eight| <[u8; 8]>::try_from(eight).ok()) else { return (0, 8) };
+    let word = u64::from_le_bytes(eight);
+    let count = (no_digits(word).trailing_zeros() / 8) as usize;
+    if count == 0 {
+        return (0, 0);
+    }
+    // Leading zero digits take the place of what follows.
+    let digits = word.wrapping_sub(ZEROS) << (64 - 8 * count);
+    (combined(digits), count)
+}
+
+const ZEROS: u64 = 0x3030_3030_3030_3030;
+
+/// A word of text whose lowest non-zero byte marks the first byte that is no digit. Carries only reach later bytes.
+#[inline(always)]
+fn no_digits(word: u64) -> u64 {
+    (word.wrapping_add(0x4646_4646_4646_4646) | word.wrapping_sub(ZEROS)) & 0x8080_8080_8080_8080
+}
+
+/// Eight digits, the first in the lowest byte, by three multiplications on bytes, pairs and fours.
+#[inline(always)]
+fn combined(digits: u64) -> u64 {
+    let pairs = (digits.wrapping_mul(10).wrapping_add(digits >> 8)) & 0x00ff_00ff_00ff_00ff;
+    let fours = (pairs.wrapping_mul(100).wrapping_add(pairs >> 16)) & 0x0000_ffff_0000_ffff;
+    fours.wrapping_mul(10_000).wrapping_add(fours >> 32) & 0xffff_ffff
+}
+
 /// Scans the number at the start of `text`: digits around at most one decimal mark, then perhaps an exponent (`e`, or `d` as
 /// Fortran prints it). `.5`, `5.` and `+1` are numbers; a mark or an exponent without digits is none.
-#[inline]
 pub(super) fn scan(text: &[u8], decimal: u8) -> Option<Printed> {
     let mut at = 0;
     let mut negative = false;
@@ -44,10 +132,6 @@ pub(super) fn scan(text: &[u8], decimal: u8) -> Option<Printed> {
     if text.get(at) == Some(&decimal) {
         at += 1;
         let mark = at;
-        while let Some(eight) = text.get(at..at + 8).and_then(eight_digits) {
-            mantissa = mantissa.wrapping_mul(100_000_000).wrapping_add(eight);
-            at += 8;
-        }
         while let Some(digit) = digit(text, at) {
             mantissa = mantissa.wrapping_mul(10).wrapping_add(digit);
             at += 1;
@@ -86,7 +170,7 @@ pub(super) fn scan(text: &[u8], decimal: u8) -> Option<Printed> {
 pub(super) fn value(printed: &Printed, text: &[u8], decimal: u8) -> f64 {
     let power = printed.exponent - printed.decimals.min(1 << 20) as i32;
     // Clinger 1990: both operands are exact, so one division or multiplication rounds correctly.
-    if printed.digits <= 19 && printed.mantissa <= 1 << 53 && (-22..=22).contains(&power) {
+    if printed.digits <= 19 && printed.mantissa <= EXACT && (-22..=22).contains(&power) {
         let mantissa = printed.mantissa as f64;
         let size = if power < 0 { mantissa / POWERS[-power as usize] } else { mantissa * POWERS[power as usize] };
         return if printed.negative { -size } else { size };
@@ -120,21 +204,6 @@ fn digit(text: &[u8], at: usize) -> Option<u64> {
     text.get(at).map(|byte| u64::from(byte.wrapping_sub(b'0'))).filter(|&digit| digit <= 9)
 }
 
-/// Eight digits at once, by three multiplications on bytes, pairs and fours.
-#[inline]
-fn eight_digits(text: &[u8]) -> Option<u64> {
-    let word = u64::from_le_bytes(text.try_into().ok()?);
-    let zeros = 0x3030_3030_3030_3030;
-    let over = word.wrapping_add(0x4646_4646_4646_4646) | word.wrapping_sub(zeros);
-    if over & 0x8080_8080_8080_8080 != 0 {
-        return None;
-    }
-    let ones = word - zeros;
-    let pairs = (ones * 10 + (ones >> 8)) & 0x00ff_00ff_00ff_00ff;
-    let fours = (pairs * 100 + (pairs >> 16)) & 0x0000_ffff_0000_ffff;
-    Some((fours * 10_000 + (fours >> 32)) & 0xffff_ffff)
-}
-
 #[cfg(test)]
 mod tests {
     use proptest::prelude::*;
@@ -147,6 +216,17 @@ mod tests {
         assert_eq!(found.to_bits(), expected.to_bits(), "{text}: {found:e} for {expected:e}");
         let comma = text.replace('.', ",");
         assert_eq!(whole(comma.as_bytes(), b',').map(f64::to_bits), Some(expected.to_bits()), "{comma}");
+        if let Some(printed) = short(&span(&format!("{text},12345678")), b'.') {
+            assert_eq!(printed.len, text.len());
+            assert_eq!(short_value(&printed).to_bits(), expected.to_bits(), "{text}");
+        }
+    }
+
+    fn span(text: &str) -> [u8; SPAN] {
+        let mut span = [b'7'; SPAN];
+        let kept = text.len().min(SPAN);
+        span[..kept].copy_from_slice(&text.as_bytes()[..kept]);
+        span
     }
 
     #[test]
@@ -181,6 +261,25 @@ mod tests {
             "1448997445238699",
         ] {
             same_as_std(text);
+        }
+    }
+
+    #[test]
+    fn everyday_numbers_take_the_short_way() {
+        for text in ["0", "-0.1234567", "+12.5", ".5", "5.", "1234567.123456789", "0.123456789012345"] {
+            let printed = short(&span(&format!("{text}\n")), b'.');
+            assert_eq!(printed.map(|printed| printed.len), Some(text.len()), "{text}");
+        }
+        for text in ["", "-", ".", "x", "12345678", "1e5", "0.1234567890123456", "1.5d3", "1234567.12345678901"] {
+            assert!(short(&span(&format!("{text}\n")), b'.').is_none(), "{text}");
+        }
+        // Without a line end in sight nothing is read past the span.
+        for text in [
+            "-1234567.1234567890123456789012345",
+            "11111111111111111111111111111111",
+            "-.111111111111111111111111111111",
+        ] {
+            assert!(short(&span(text), b'.').is_none());
         }
     }
 

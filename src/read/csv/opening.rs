@@ -9,7 +9,7 @@ use super::dialect::{self, Beginning, Found};
 use super::field::{Field, MOST, fields};
 use super::header::{self, Header};
 use super::{WINDOW, metadata, shown};
-use crate::error::{Error, Result};
+use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::read::ReadOptions;
 
@@ -52,11 +52,11 @@ pub(super) fn open<R: Read>(blocks: &mut Blocks<R>, options: &ReadOptions) -> Re
             blocks.newline = newline;
             return Ok(opening);
         }
-        let searched = text.len() >= LONGEST_HEAD && lines.len() > 1000 || text.len() > LONGEST_LINE;
+        let searched = text.len() >= LONGEST_HEAD && lines.len() > 1000 || text.len() >= LONGEST_LINE;
         if complete || searched {
             return Err(no_data(beginning, options));
         }
-        window *= 4;
+        window = (4 * window).min(LONGEST_LINE);
     }
 }
 
@@ -74,20 +74,31 @@ fn lines(text: &[u8], newline: u8, complete: bool) -> Vec<Range<usize>> {
     lines
 }
 
-fn judge(beginning: Beginning<'_>, found: Found, newline: u8, options: &ReadOptions) -> Result<Opening> {
-    let rows: Vec<Vec<Field<'_>>> = (found.first..beginning.lines.len())
-        .filter(|&index| !beginning.is_blank(index))
-        .take(ROWS)
-        .map(|index| fields(beginning.line(index), found.dialect.delimiter))
-        .filter(|row| row.len() == found.fields)
-        .collect();
-    let empty_last = found.fields > 1
-        && found.dialect.delimiter != b' '
-        && rows.iter().all(|row| row.last().is_some_and(|cell| cell.text.is_empty() && !cell.quoted));
-    let header = header::find(beginning, &found, empty_last, options.header_lines.is_some())?;
-    let roles = column::roles(&header, &rows, &found, options)?;
+fn judge(beginning: Beginning<'_>, mut found: Found, newline: u8, options: &ReadOptions) -> Result<Opening> {
+    let mut header = header::find(beginning, &found, empty_last(beginning, &found), options.header_lines.is_some())?;
+    if options.header_lines.is_none() {
+        let below = header.names.as_ref().map_or(0, |names| names.end)..found.first;
+        let units = header.units.clone().unwrap_or_default();
+        let below: Vec<usize> = below.filter(|line| !units.contains(line) && !beginning.is_blank(*line)).collect();
+        dialect::take_in(beginning, &mut found, &below, header.names.is_some(), options);
+        if header.names.is_some() {
+            let between = below.into_iter().take_while(|&line| line < found.first);
+            header.findings.extend(between.filter_map(|line| left_out(beginning, line, &found)));
+        }
+    }
+    let rows_of = |lines: Range<usize>| -> Vec<Vec<Field<'_>>> {
+        lines
+            .filter(|&index| !beginning.is_blank(index))
+            .take(ROWS)
+            .map(|index| fields(beginning.line(index), found.dialect.delimiter))
+            .filter(|row| row.len() == found.fields)
+            .collect()
+    };
+    let rows = rows_of(found.first..found.end);
+    let later = rows_of(found.end..beginning.lines.len());
+    let roles = column::roles(&header, &rows, &later, &found, options)?;
     let data = beginning.lines[found.first].clone();
-    let skipped = [header.names_line, header.units_line];
+    let skipped = [header.names.clone(), header.units.clone()];
     Ok(Opening {
         metadata: metadata::pairs(beginning, found.first, &skipped, found.dialect),
         head: String::from_utf8_lossy(&beginning.text[..data.start]).into_owned(),
@@ -104,13 +115,32 @@ fn judge(beginning: Beginning<'_>, found: Found, newline: u8, options: &ReadOpti
     })
 }
 
+/// A remark on a line between header and data that is neither a ruler nor a row of words as wide as the data.
+fn left_out(beginning: Beginning<'_>, line: usize, found: &Found) -> Option<Finding> {
+    let text = beginning.line(line);
+    let ruler = text.iter().all(|byte| matches!(byte, b'-' | b'=' | b'_' | b'+' | b'|' | b'#' | b' ' | b'\t' | b'\r'));
+    let wide = fields(text, found.dialect.delimiter).len() == found.fields && !text.iter().any(u8::is_ascii_digit);
+    let said = format!("a line between the header and the data is left out: {}", shown(text));
+    (!ruler && !wide).then(|| Finding::new("line_left_out", said).at(Place::line(line as u64 + 1)))
+}
+
+/// True when the last field of the block's first rows is always empty.
+fn empty_last(beginning: Beginning<'_>, found: &Found) -> bool {
+    let mut rows = (found.first..found.end)
+        .filter(|&index| !beginning.is_blank(index))
+        .map(|index| fields(beginning.line(index), found.dialect.delimiter))
+        .filter(|row| row.len() == found.fields);
+    let empty = |row: Vec<Field<'_>>| row.last().is_some_and(|cell| cell.text.is_empty() && !cell.quoted);
+    found.fields > 1 && found.dialect.delimiter != b' ' && rows.all(empty)
+}
+
 fn no_data(beginning: Beginning<'_>, options: &ReadOptions) -> Error {
     let filled: Vec<usize> = (0..beginning.lines.len()).filter(|&index| !beginning.is_blank(index)).take(2).collect();
     let Some(&first) = filled.first() else {
-        return Error::malformed(if beginning.complete {
-            "the file holds nothing but blanks"
-        } else {
+        return Error::malformed(if beginning.lines.is_empty() {
             "the first line does not end within 64 MiB"
+        } else {
+            "the text holds nothing but blanks"
         });
     };
     let line = beginning.line(first);

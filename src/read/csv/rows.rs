@@ -97,94 +97,152 @@ impl Plan {
     }
 
     fn read_plain<const BLANKS: bool>(&self, block: &[u8], rows: &mut Rows) -> Option<Fault> {
-        let (mut at, mut line_number, mut run_start, mut row) = (0, 0_u64, 0_u64, 0_usize);
+        let (mut at, mut line, mut run_start, mut row) = (0, 0_u64, 0_u64, 0_usize);
         let mut fault = None;
         while at < block.len() {
-            let end = memchr::memchr(self.newline, &block[at..]).map_or(block.len(), |length| at + length);
-            let line = if BLANKS { block[at..end].trim_ascii_end() } else { trim_end(&block[at..end]) };
-            if line.is_empty() || line.iter().all(u8::is_ascii_whitespace) {
-                rows.lines.push_consecutive(run_start, line_number - run_start);
-                run_start = line_number + 1;
-            } else if let Err((field, cause)) = self.plain_row::<BLANKS>(line, row, rows) {
-                rows.lines.push_consecutive(run_start, line_number - run_start);
-                run_start = line_number + 1;
-                rows.truncate(row);
-                match self.excused(line, cause) {
-                    Ok(()) => rows.nul_lines.push(line_number),
-                    Err(Cause::Nul(count)) => {
-                        fault = Some(Fault { byte: at, field, cause: Cause::Nul(count) });
-                        break;
+            let blank = blank_line(&block[at..], self.newline);
+            let outcome = match blank {
+                Some(length) => Ok(at + length),
+                None => self.plain_row::<BLANKS>(block, at, row, rows),
+            };
+            match outcome {
+                Ok(end) if blank.is_none() => {
+                    if row == 0 {
+                        rows.reserve(block.len() / (end - at) + 1);
                     }
-                    Err(cause) => {
-                        let field = field.filter(|_| !matches!(cause, Cause::Fields(_)));
-                        let cause = if line.contains(&b'"') { Cause::Quote } else { cause };
-                        fault = Some(Fault { byte: at, field, cause });
-                        break;
-                    }
+                    row += 1;
+                    at = end;
                 }
-            } else {
-                row += 1;
+                outcome => {
+                    rows.lines.push_consecutive(run_start, line - run_start);
+                    run_start = line + 1;
+                    let end = memchr::memchr(self.newline, &block[at..]).map_or(block.len(), |length| at + length + 1);
+                    if let Err((field, cause)) = outcome {
+                        rows.truncate(row);
+                        let text = &block[at..end];
+                        if let Err(cause) = self.excused(text, cause) {
+                            let field = field.filter(|_| !matches!(cause, Cause::Fields(_)));
+                            let quote = text.contains(&b'"') && !matches!(cause, Cause::Nul(_));
+                            fault = Some(Fault { byte: at, field, cause: if quote { Cause::Quote } else { cause } });
+                            break;
+                        }
+                        rows.nul_lines.push(line);
+                    }
+                    at = end;
+                }
             }
-            line_number += 1;
-            at = end + 1;
+            line += 1;
         }
         if fault.is_none() {
-            rows.lines.push_consecutive(run_start, line_number - run_start);
+            rows.lines.push_consecutive(run_start, line - run_start);
         }
-        rows.line_count = line_number;
+        rows.line_count = line;
         fault
     }
 
-    /// Reads one row of plain fields.
+    /// Reads one row of plain fields from byte `at` and gives the byte behind its line end.
     #[inline]
-    fn plain_row<const BLANKS: bool>(&self, line: &[u8], row: usize, rows: &mut Rows) -> Outcome {
-        let delimiter = self.dialect.delimiter;
+    fn plain_row<const BLANKS: bool>(
+        &self,
+        block: &[u8],
+        mut at: usize,
+        row: usize,
+        rows: &mut Rows,
+    ) -> std::result::Result<usize, (Option<usize>, Cause)> {
+        let (delimiter, newline, decimal) = (self.dialect.delimiter, self.newline, self.dialect.decimal);
         let separates = |byte: u8| if BLANKS { byte == b' ' || byte == b'\t' } else { byte == delimiter };
-        let mut at = 0;
-        for (index, task) in self.tasks.iter().enumerate() {
-            let mut start = at;
-            while start < line.len() && (line[start] == b' ' || line[start] == b'\t' && (BLANKS || delimiter != b'\t'))
+        let last = self.tasks.len() - 1;
+        for (index, &task) in self.tasks.iter().enumerate() {
+            while let Some(b' ' | b'\t') = block.get(at)
+                && (BLANKS || block[at] != delimiter)
             {
-                start += 1;
+                at += 1;
             }
-            let rest = &line[start..];
-            let scanned = match *task {
-                Task::Value(channel) => {
-                    number::scan(rest, self.dialect.decimal).filter(|n| ends(rest, n.len, &separates)).map(|n| {
-                        let value = number::value(&n, rest, self.dialect.decimal);
-                        self.take_value(channel, value, &rest[..n.len], row, rows).map(|()| n.len)
-                    })
-                }
-                Task::Stamp if self.form == Some(Form::Number) => rows.ticks.as_mut().and_then(|ticks| {
-                    let length = ticks.push_number(rest)?;
-                    if ends(rest, length, &separates) {
-                        return Some(Ok(length));
-                    }
-                    ticks.truncate(row);
-                    None
-                }),
+            if let Some(length) = self.everyday(block, at, task, index == last, &separates, rows) {
+                at += length;
+                continue;
+            }
+            let rest = &block[at..];
+            let closes = |length: usize| match rest.get(length) {
+                Some(b'\r') => newline == b'\r' || rest.get(length + 1).is_none_or(|&next| next == newline),
+                Some(&byte) => separates(byte) || byte == newline,
+                None => true,
+            };
+            let printed = match task {
+                Task::Value(_) => number::scan(rest, decimal).filter(|n| closes(n.len)),
+                Task::Stamp if self.form == Some(Form::Number) => number::scan(rest, decimal).filter(|n| closes(n.len)),
                 _ => None,
             };
-            let length = match scanned {
-                Some(taken) => taken.map_err(|cause| (Some(index), cause))?,
+            let taken = match (&printed, task) {
+                (Some(n), Task::Value(channel)) => {
+                    let value = number::value(n, rest, decimal);
+                    self.take_value(channel, value, &rest[..n.len], row, rows).map_err(|cause| (Some(index), cause))?;
+                    Some(n.len)
+                }
+                (Some(n), Task::Stamp) => {
+                    if let Some(ticks) = &mut rows.ticks {
+                        ticks.push_printed(n, rest);
+                    }
+                    Some(n.len)
+                }
+                _ => None,
+            };
+            at += match taken {
+                Some(length) => length,
                 None => {
-                    let length = rest.iter().position(|&byte| separates(byte)).unwrap_or(rest.len());
-                    self.take_text(*task, rest[..length].trim_ascii(), row, rows)
-                        .map_err(|cause| (Some(index), cause))?;
+                    let length = rest.iter().position(|&byte| separates(byte) || byte == newline).unwrap_or(rest.len());
+                    let text = rest[..length].trim_ascii();
+                    self.take_text(task, text, row, rows).map_err(|cause| (Some(index), cause))?;
                     length
                 }
             };
-            at = start + length;
-            while at < line.len() && !separates(line[at]) {
-                at += 1; // blanks, as `ends` made sure
+            if BLANKS {
+                while let Some(b' ' | b'\t') = block.get(at) {
+                    at += 1;
+                }
             }
-            let last = index + 1 == self.tasks.len();
-            if last != (at >= line.len()) {
-                return Err((None, Cause::Fields(field::fields(line, delimiter).len())));
+            if block.get(at) == Some(&b'\r') && newline != b'\r' {
+                at += 1;
             }
-            at += 1;
+            let ends = block.get(at).is_none_or(|&byte| byte == newline);
+            if ends != (index == last) {
+                return Err((None, Cause::Fields(0))); // counted when it is reported
+            }
+            // Between blanks the next field starts here.
+            at += usize::from(!BLANKS || ends);
         }
-        Ok(())
+        Ok(at.min(block.len()))
+    }
+
+    /// Takes an everyday number with nothing but its separator or line end after it, which nearly all fields are, and gives the
+    /// bytes passed; the separator too, unless blanks separate.
+    #[inline(always)]
+    fn everyday(
+        &self,
+        block: &[u8],
+        at: usize,
+        task: Task,
+        last: bool,
+        separates: &impl Fn(u8) -> bool,
+        rows: &mut Rows,
+    ) -> Option<usize> {
+        let span: &[u8; number::SPAN] = block.get(at..at + number::SPAN)?.try_into().ok()?;
+        let printed = number::short(span, self.dialect.decimal)?;
+        let (next, after) = (span[printed.len], span[printed.len + 1]);
+        let closing = match last {
+            false if separates(next) => usize::from(self.dialect.delimiter != b' '),
+            true if next == self.newline => 1,
+            true if next == b'\r' && after == self.newline => 2,
+            _ => return None,
+        };
+        match task {
+            Task::Value(channel) if !self.missing.has_sentinels() => {
+                rows.values[channel].push(number::short_value(&printed))
+            }
+            Task::Stamp if self.form == Some(Form::Number) => rows.ticks.as_mut()?.push_printed(&printed, span),
+            _ => return None,
+        }
+        Some(printed.len + closing)
     }
 
     fn read_quoted(&self, block: &[u8], rows: &mut Rows) -> Option<Fault> {
@@ -300,9 +358,8 @@ impl Plan {
         match cause {
             _ if nuls > 0 && self.missing.nul_rows() && self.form.is_some() => Ok(()),
             _ if nuls > 0 => Err(Cause::Nul(nuls)),
-            Cause::Fields(count) => Err(Cause::Fields(count)),
             cause => match field::fields(line, self.dialect.delimiter).len() {
-                count if count == self.tasks.len() => Err(cause),
+                count if count == self.tasks.len() && !matches!(cause, Cause::Fields(_)) => Err(cause),
                 count => Err(Cause::Fields(count)),
             },
         }
@@ -342,6 +399,14 @@ impl Rows {
         self.line_count += next.line_count;
     }
 
+    /// Makes room for so many rows.
+    fn reserve(&mut self, rows: usize) {
+        self.values.iter_mut().for_each(|values| values.reserve(rows));
+        if let Some(ticks) = &mut self.ticks {
+            ticks.ticks.reserve(rows);
+        }
+    }
+
     fn miss(&mut self, channel: usize, row: usize, text: &[u8]) {
         self.values[channel].push(f64::NAN);
         let (rows, spelling) = &mut self.missing[channel];
@@ -366,24 +431,13 @@ impl Rows {
     }
 }
 
-/// True when the field that starts `rest` ends after `length` bytes, blanks aside.
+/// Bytes of the line end and before it where `text` starts with a line of blanks.
 #[inline]
-fn ends(rest: &[u8], length: usize, separates: &impl Fn(u8) -> bool) -> bool {
-    match rest.get(length) {
-        None => true,
-        Some(&byte) if separates(byte) => true,
-        Some(b' ' | b'\t') => {
-            rest[length..].iter().find(|byte| !matches!(byte, b' ' | b'\t')).is_none_or(|&byte| separates(byte))
-        }
-        Some(_) => false,
+fn blank_line(text: &[u8], newline: u8) -> Option<usize> {
+    let first = *text.first()?;
+    if first > b' ' {
+        return None;
     }
-}
-
-#[inline]
-fn trim_end(line: &[u8]) -> &[u8] {
-    let mut end = line.len();
-    while end > 0 && matches!(line[end - 1], b' ' | b'\r' | b'\n') {
-        end -= 1;
-    }
-    &line[..end]
+    let length = memchr::memchr(newline, text).unwrap_or(text.len());
+    text[..length].iter().all(u8::is_ascii_whitespace).then(|| (length + 1).min(text.len()))
 }

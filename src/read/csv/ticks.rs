@@ -62,18 +62,23 @@ impl Ticks {
     }
 
     /// Adds the stamp at the start of `text` and gives its length, for numbers only; the caller looks at what follows.
-    #[inline]
     pub(super) fn push_number(&mut self, text: &[u8]) -> Option<usize> {
         let printed = number::scan(text, self.decimal)?;
+        self.push_printed(&printed, text);
+        Some(printed.len)
+    }
+
+    /// Adds the number that was scanned at the start of `text`.
+    #[inline]
+    pub(super) fn push_printed(&mut self, printed: &Printed, text: &[u8]) {
         let decimals = printed.decimals as i64 - i64::from(printed.exponent);
         if printed.digits <= 18 && decimals == i64::from(self.scale) && self.floats.is_none() {
             self.decimals.note(printed.mantissa, decimals as i16);
             let mantissa = printed.mantissa as i64; // 18 digits fit
             self.ticks.push(if printed.negative { -mantissa } else { mantissa });
         } else {
-            self.push_odd(&printed, text, decimals);
+            self.push_odd(printed, text, decimals);
         }
-        Some(printed.len)
     }
 
     /// Adds the date or clock time that `text` is.

@@ -25,9 +25,9 @@ pub struct Options<'a> {
     pub rate_hz: Option<f64>,
 }
 
-/// True when the first bytes are those of a RIFF, RIFX or RF64 file, or the name says `.wav`.
+/// True when the first bytes are those of a RIFF, RIFX, RF64 or BW64 file, or the name says `.wav`.
 pub fn is_wave(first: &[u8], extension: &str) -> bool {
-    [b"RIFF", b"RIFX", b"RF64"].iter().any(|magic| first.starts_with(*magic)) || extension == "wav"
+    [b"RIFF", b"RIFX", b"RF64", b"BW64"].iter().any(|magic| first.starts_with(*magic)) || extension == "wav"
 }
 
 /// Reads a WAV file to its last byte, in one pass. Values are fractions of full scale (unit `FS`), channels are called

@@ -1,5 +1,7 @@
 //! The summary of a conditioned record.
 
+use std::collections::BTreeSet;
+
 use crate::place::escape;
 use crate::report::Report;
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
@@ -7,11 +9,12 @@ use crate::report::text::{extension_text, figure, indented, input_line, notes_te
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
 pub fn summary(report: &Report) -> String {
     let mut text = input_line(&report.input);
-    if let Some(first) = report.channels.first() {
-        text.push_str(&format!("{}\n", extension_text(&first.extension)));
-        text.push_str(&super::planned::operators_text(&report.chain, &report.input.axis));
+    text.push_str(&super::planned::operators_text(&report.chain, &report.input.axis));
+    let assumed: BTreeSet<String> = report.channels.iter().map(|c| extension_text(&c.extension)).collect();
+    for line in assumed {
+        text.push_str(&format!("{line}\n"));
     }
-    let mut rows = table(&["channel", "baseline", "RMS in", "RMS out", "peak in", "peak out", "unit"]);
+    let mut rows = table(&["channel", "ends", "baseline", "RMS in", "RMS out", "peak in", "peak out", "unit"]);
     for channel in &report.channels {
         let shown = |value: Option<f64>| value.map_or_else(|| "-".to_owned(), |v| figure(v, 4));
         let unit = if channel.unit == channel.unit_in {
@@ -21,6 +24,7 @@ pub fn summary(report: &Report) -> String {
         };
         rows.add_row(vec![
             escape(&channel.name),
+            channel.extension.kind.clone(),
             channel.baseline.kind.clone(),
             shown(channel.rms.before),
             shown(channel.rms.after),
@@ -30,9 +34,17 @@ pub fn summary(report: &Report) -> String {
         ]);
     }
     text.push_str(&indented(&rows));
+    for channel in &report.channels {
+        if let Some(verdict) = &channel.verdict {
+            text.push_str(&format!("{}: {}\n", escape(&channel.name), verdict.sentence));
+        }
+    }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {
         text.push_str(&notes_text(&channel.notes));
+    }
+    if !report.requirement_met {
+        text.push_str("the required adequacy at the edges was not met\n");
     }
     for output in &report.outputs {
         if output.path == "-" {

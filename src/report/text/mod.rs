@@ -1,6 +1,7 @@
 //! Results for people: short lines and tables, units everywhere, nothing that a file could use to command a terminal.
 
 mod audited;
+mod compared;
 mod conditioned;
 mod figure;
 mod planned;
@@ -8,10 +9,12 @@ mod planned;
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
 
+use crate::compare::How;
 use crate::error::Finding;
-use crate::report::{AxisReport, ExtensionReport, How, InputReport};
+use crate::report::{AxisReport, ExtensionReport, InputReport};
 
 pub use audited::audit_text;
+pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
 
@@ -66,6 +69,8 @@ fn axis_text(axis: &AxisReport, samples: usize) -> String {
 fn extension_text(extension: &ExtensionReport) -> String {
     let chosen = match extension.how {
         How::Asked => "as asked",
+        How::Asserted => "as asserted",
+        How::Verdict => "by the verdict",
         How::Default => "a default, not a finding about this record",
     };
     let seat = if extension.kind == "periodic" { String::new() } else { format!("{} seat, ", extension.seat) };

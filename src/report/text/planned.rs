@@ -2,40 +2,36 @@
 
 use crate::operator::{ChainDescription, Reach};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
-use crate::report::{AxisReport, How, Plan};
+use crate::report::{AxisReport, Plan};
 
 /// The plan of a dry run.
 pub fn plan_text(plan: &Plan) -> String {
     let mut text = input_line(&plan.input);
-    text.push_str(&format!("{}\n", extension_text(&plan.extension)));
-    let (baseline, how) = &plan.baseline;
-    let how = match how {
-        How::Asked => "as asked",
-        How::Default => "the one that goes with these ends and operators",
-    };
-    text.push_str(&format!("baseline {baseline}, {how}\n"));
     text.push_str(&operators_text(&plan.chain, &plan.input.axis));
     if !plan.gains.is_empty() {
-        let mut rows = table(&["corner", "octave", "frequency", "gain"]);
+        let mut rows = table(&["corner", "where", "frequency", "gain"]);
         for point in &plan.gains {
             rows.add_row(vec![
                 point.corner.clone(),
-                format!("{:+}", point.octave),
+                match point.octave {
+                    0 => "at it".to_owned(),
+                    octave => format!("{octave:+} octave"),
+                },
                 format!("{} {}", figure(point.frequency, 6), point.unit),
                 point.gain.map_or_else(|| "above Nyquist".to_owned(), |gain| figure(gain, 6)),
             ]);
         }
         text.push_str(&indented(&rows));
     }
-    let channels: Vec<String> = plan
-        .channels
-        .iter()
-        .map(|(name, unit)| {
-            let name = crate::place::escape(name);
-            if unit.is_unknown() { name } else { format!("{name} [{unit}]") }
-        })
-        .collect();
-    text.push_str(&format!("channels out: {}\n", channels.join(", ")));
+    for channel in &plan.channels {
+        let name = crate::place::escape(&channel.name);
+        let unit = if channel.unit.is_unknown() { String::new() } else { format!(" [{}]", channel.unit) };
+        text.push_str(&format!(
+            "{name}{unit}: {}, baseline {}\n",
+            extension_text(&channel.extension),
+            channel.baseline
+        ));
+    }
     text.push_str(&notes_text(&plan.notes));
     text.push_str("nothing was written\n");
     text
@@ -48,6 +44,7 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     for (index, pass) in chain.passes.iter().enumerate() {
         let mut parts: Vec<String> =
             pass.operators.iter().map(|operator| format!("{} {}", operator.option, operator.value)).collect();
+        parts.dedup(); // a band-pass stands for two gains
         if !pass.operators.is_empty() {
             parts.push(chain.shape.clone());
         }

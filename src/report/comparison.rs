@@ -1,0 +1,105 @@
+//! The result of a comparison of extensions as plain data.
+
+use serde::Serialize;
+use serde_json::{Map, Value};
+
+use crate::baseline::EndEstimates;
+use crate::error::Finding;
+use crate::operator::ChainDescription;
+use crate::report::{InputReport, Tool, TrustedReport, VerdictReport};
+use crate::unit::Unit;
+use crate::verdict::Adequacy;
+
+/// Every extension side by side.
+#[derive(Debug, Clone, Serialize)]
+pub struct Comparison {
+    /// Version of the layout.
+    pub schema: u32,
+    /// What made it.
+    pub tool: Tool,
+    /// `compare`.
+    pub command: &'static str,
+    /// Every setting as resolved.
+    pub settings: Map<String, Value>,
+    /// What was read.
+    pub input: InputReport,
+    /// Remarks.
+    pub notes: Vec<Finding>,
+    /// The resolved operators.
+    pub chain: ChainDescription,
+    /// One entry a channel.
+    pub channels: Vec<ChannelComparison>,
+    /// False where `--require` was not met by what `condition` would take.
+    pub requirement_met: bool,
+    /// What results of this kind may and may not be used for.
+    pub caution: &'static str,
+}
+
+/// One channel under every extension.
+#[derive(Debug, Clone, Serialize)]
+pub struct ChannelComparison {
+    /// Name.
+    pub name: String,
+    /// Unit of the output.
+    pub unit: Unit,
+    /// Unit of the record.
+    pub unit_in: Unit,
+    /// What `condition` would take.
+    pub takes: String,
+    /// The verdict; null where the chain has nothing to judge.
+    pub verdict: Option<VerdictReport>,
+    /// One row an extension: the candidates, the forecast, and the references.
+    pub candidates: Vec<Row>,
+    /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.
+    pub edge: Option<EndEstimates>,
+    /// Differences of the end values and slopes, with standard errors.
+    pub jump: Option<Jump>,
+    /// Trusted span of what `condition` would take.
+    pub trusted: Option<TrustedReport>,
+}
+
+/// How the right end differs from the left: what a periodic extension would join.
+#[derive(Debug, Clone, Copy, Serialize)]
+pub struct Jump {
+    /// Difference of the end values, in the unit of the record.
+    pub value: f64,
+    /// Its standard error.
+    pub value_error: f64,
+    /// Difference of the end slopes, per step.
+    pub slope: f64,
+    /// Its standard error.
+    pub slope_error: f64,
+}
+
+impl Jump {
+    /// From the end estimates.
+    pub fn of(ends: &EndEstimates) -> Jump {
+        Jump {
+            value: ends.right.value - ends.left.value,
+            value_error: ends.right.value_error.hypot(ends.left.value_error),
+            slope: ends.right.slope - ends.left.slope,
+            slope_error: ends.right.slope_error.hypot(ends.left.slope_error),
+        }
+    }
+}
+
+/// One extension.
+#[derive(Debug, Clone, Serialize)]
+pub struct Row {
+    /// Name.
+    pub name: &'static str,
+    /// True for a row that is shown for reference and never picked.
+    pub reference: bool,
+    /// Predicted RMS error over both edge zones, in the unit of the output; null where nothing was judged.
+    pub predicted_error: Option<f64>,
+    /// The same relative to the output's standard deviation.
+    pub relative_error: Option<f64>,
+    /// What the error stays below in about 95 of 100 cases.
+    pub bound: Option<f64>,
+    /// Against the tolerance.
+    pub adequacy: Option<Adequacy>,
+    /// Its trusted span.
+    pub trusted: Option<TrustedReport>,
+    /// Explanations by name: jumps, leakage, decay; null where the extension has no basis of its own.
+    pub metrics: Map<String, Value>,
+}

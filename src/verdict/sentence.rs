@@ -1,0 +1,85 @@
+//! The verdict in words.
+
+use crate::record::Axis;
+use crate::unit::Unit;
+
+use super::{Adequacy, Edge, Level, Pick, Trusted, Verdict};
+
+impl Verdict {
+    /// The pick among the symmetric extensions in one sentence.
+    pub fn pick_sentence(&self) -> String {
+        let pick = &self.pick;
+        match pick.level {
+            Level::SupportedByStructure => {
+                let join = self.structure.periodic.map_or(String::new(), |join| {
+                    format!(" (T = {:.1}; {} % of interior pairs do)", join.ratio, rounded(100.0 * join.share))
+                });
+                format!("{} supported by structure: the ends join as smoothly as the interior{join}", pick.name)
+            }
+            Level::Supported => format!("{} supported: next best is {:.1}x worse", pick.name, margin(pick)),
+            Level::Favoured => format!("{} favoured: next best is {:.1}x worse", pick.name, margin(pick)),
+            Level::NoClearWinner => {
+                let immaterial =
+                    if pick.choice_immaterial { ", and the choice is immaterial at this tolerance" } else { "" };
+                format!(
+                    "no clear winner among {}: the record does not tell them apart{immaterial}",
+                    pick.ties.join(", ")
+                )
+            }
+            Level::NotJudged => "not judged: the record is too short, too coarse or constant; even is used".to_owned(),
+        }
+    }
+
+    /// Edge error in `unit` and trusted span along `axis` of one extension in one sentence.
+    pub fn edge_sentence(&self, edge: &Edge, unit: &Unit, axis: &Axis) -> String {
+        let len = axis.len();
+        let unit = if unit.is_unknown() { String::new() } else { format!(" {unit}") };
+        let share = |value: f64| rounded(100.0 * value / self.output_deviation);
+        let adequacy = match edge.adequacy {
+            Adequacy::Within => "within tolerance",
+            Adequacy::Borderline => "borderline",
+            Adequacy::Outside => "outside tolerance",
+        };
+        let span = match edge.trusted {
+            Some(Trusted { first, last }) => {
+                let stamp = |n: usize| (axis.stamp(n) * 1e9).round() / 1e9;
+                format!("trusted span {first}..{last} of {len} ({}..{} {})", stamp(first), stamp(last), axis.unit())
+            }
+            None => "no trusted span".to_owned(),
+        };
+        format!(
+            "edge error about {}{unit}, {} % of output s.d. (bound {}{unit}, {} %, events outside the record excepted), \
+             {adequacy}; {span}",
+            rounded(edge.predicted_error),
+            share(edge.predicted_error),
+            rounded(edge.bound),
+            share(edge.bound),
+        )
+    }
+}
+
+fn margin(pick: &Pick) -> f64 {
+    pick.margin.unwrap_or(1.0)
+}
+
+/// Two significant digits.
+fn rounded(value: f64) -> String {
+    if value == 0.0 || !value.is_finite() {
+        return value.to_string();
+    }
+    let digits = (1 - value.abs().log10().floor() as i32).clamp(0, 12) as usize;
+    format!("{value:.digits$}")
+}
+
+#[cfg(test)]
+mod tests {
+    use super::rounded;
+
+    #[test]
+    fn two_digits_are_kept() {
+        let cases = [(6.44, "6.4"), (0.3, "0.30"), (37.7, "38"), (0.0123, "0.012"), (0.0, "0"), (1234.0, "1234")];
+        for (value, text) in cases {
+            assert_eq!(rounded(value), text);
+        }
+    }
+}
