@@ -25,6 +25,7 @@ mod angle;
 #[doc(hidden)]
 pub mod direct;
 mod fast;
+mod kernel;
 mod plan;
 mod planner;
 pub mod series;

@@ -30,14 +30,17 @@ fn every_short_length_and_some_primes() {
 }
 
 #[test]
-fn long_records_at_256_coefficients() {
-    for len in [4096, 65537] {
+fn long_records_at_some_coefficients() {
+    // A short one, then smooth, odd, with a factor above 13 on one and on both sides of the grid, with a large prime
+    // factor, prime.
+    let few = [8192, 10_125, 81 * 127, 19 * 23 * 25, 2 * 20_011].map(|len| (len, 32));
+    for (len, count) in [(4096, 256), (65_537, 256)].into_iter().chain(few) {
         let x = noise(len, 7);
         for ends in Ends::all() {
             let c = forward(ends, &x);
             let basis = Definition::new(ends, len);
-            for i in 0..256 {
-                let k = i * (len - 1) / 255;
+            for i in 0..count {
+                let k = i * (len - 1) / (count - 1);
                 let error = (c[k] - basis.coefficient(&x, k)).abs();
                 // The error is spread over all coefficients: one holds 1/sqrt(len) of the norm, 5 deviations.
                 let bound = 5.0 * tolerance(len) * norm(&x) / (len as f64).sqrt();

@@ -1,5 +1,5 @@
 //! DCT-IV and DST-IV, orthonormal: even lengths by a complex transform of half the length, odd ones by a real transform of
-//! the same length and a permutation.
+//! the same length and a permutation; long records by the kernel made for them.
 
 use std::fmt;
 use std::sync::Arc;
@@ -10,8 +10,11 @@ use rustfft::{Fft, FftPlanner};
 use super::complex;
 use super::real::RealFft;
 use crate::basis::angle;
+use crate::basis::kernel::{LongFour, long_four};
+use crate::ends::Parity;
 
 pub enum TypeFour {
+    Long(Box<LongFour>),
     Even {
         fft: Arc<dyn Fft<f64>>,
         /// (2/N)^(1/4) exp(-i pi (8n + 1)/8N) for n < N/2.
@@ -22,6 +25,9 @@ pub enum TypeFour {
 
 impl TypeFour {
     pub fn new(len: usize) -> Self {
+        if let Some(long) = long_four(len) {
+            return Self::Long(Box::new(long));
+        }
         if !len.is_multiple_of(2) {
             return Self::Odd(RealFft::new(len));
         }
@@ -36,6 +42,7 @@ impl TypeFour {
 
     pub fn scratch_len(&self) -> usize {
         match self {
+            Self::Long(long) => long.scratch_len(),
             Self::Even { fft, .. } => 2 * (fft.len() + fft.get_inplace_scratch_len()),
             Self::Odd(fft) => fft.len() + fft.scratch_len(),
         }
@@ -44,6 +51,7 @@ impl TypeFour {
     /// c_k = sqrt(2/N) sum_n x_n cos(pi (k + 1/2)(n + 1/2)/N); its own inverse.
     pub fn cosine(&self, x: &mut [f64], scratch: &mut [f64]) {
         match self {
+            Self::Long(long) => long.transform(x, scratch, Parity::Even),
             Self::Even { fft, twiddles } => even(fft.as_ref(), twiddles, x, scratch),
             Self::Odd(fft) => odd(fft, x, scratch),
         }
@@ -52,6 +60,9 @@ impl TypeFour {
     /// c_k = sqrt(2/N) sum_n x_n sin(pi (k + 1/2)(n + 1/2)/N); its own inverse. Read backwards in n the sine is
     /// (-1)^k times the cosine.
     pub fn sine(&self, x: &mut [f64], scratch: &mut [f64]) {
+        if let Self::Long(long) = self {
+            return long.transform(x, scratch, Parity::Odd);
+        }
         x.reverse();
         self.cosine(x, scratch);
         x.iter_mut().skip(1).step_by(2).for_each(|v| *v = -*v);
@@ -127,6 +138,7 @@ fn fold(j: usize, len: usize) -> (usize, f64) {
 impl fmt::Debug for TypeFour {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         match self {
+            Self::Long(long) => long.fmt(f),
             Self::Even { fft, .. } => write!(f, "TypeFour({})", 2 * fft.len()),
             Self::Odd(fft) => write!(f, "TypeFour({})", fft.len()),
         }

@@ -1,4 +1,5 @@
-//! DCT-II, DCT-III, DST-II and DST-III, orthonormal, by one real Fourier transform of the same length.
+//! DCT-II, DCT-III, DST-II and DST-III, orthonormal, by one real Fourier transform of the same length; long
+//! records by the kernels made for them.
 //!
 //! Makhoul 1980, IEEE Trans. Acoustics, Speech and Signal Processing 28, 27: the even samples forwards, then the odd ones
 //! backwards, have a spectrum V_k with exp(-i pi k/2N) V_k = C_k - i C_(N-k), the cosine sums C of the samples.
@@ -7,9 +8,24 @@ use rustfft::num_complex::Complex;
 
 use super::real::RealFft;
 use crate::basis::angle;
+use crate::basis::kernel::LongTwo;
+use crate::ends::Parity;
 
 #[derive(Debug)]
 pub struct TypeTwo {
+    len: usize,
+    way: Way,
+}
+
+#[derive(Debug)]
+enum Way {
+    Long(LongTwo),
+    General(General),
+}
+
+/// Any length.
+#[derive(Debug)]
+struct General {
     fft: RealFft,
     /// sqrt(2/N) exp(-i pi k/2N) for k = 0..=N/2.
     twiddles: Vec<Complex<f64>>,
@@ -17,42 +33,68 @@ pub struct TypeTwo {
 
 impl TypeTwo {
     pub fn new(len: usize) -> Self {
+        let way = LongTwo::new(len).map_or_else(|| Way::General(General::new(len)), Way::Long);
+        Self { len, way }
+    }
+
+    pub fn len(&self) -> usize {
+        self.len
+    }
+
+    pub fn scratch_len(&self) -> usize {
+        match &self.way {
+            Way::Long(long) => long.scratch_len(),
+            Way::General(general) => general.fft.len() + general.fft.scratch_len(),
+        }
+    }
+
+    /// c_k = A_k sum_n x_n cos(pi k (n + 1/2)/N).
+    pub fn cosine_two(&self, x: &mut [f64], scratch: &mut [f64]) {
+        match &self.way {
+            Way::Long(long) => long.forward(x, scratch, Parity::Even),
+            Way::General(general) => general.forward(x, scratch, 1.0),
+        }
+    }
+
+    /// x_n = sum_k c_k A_k cos(pi k (n + 1/2)/N).
+    pub fn cosine_three(&self, c: &mut [f64], scratch: &mut [f64]) {
+        match &self.way {
+            Way::Long(long) => long.inverse(c, scratch, Parity::Even),
+            Way::General(general) => general.inverse(c, scratch, 1.0),
+        }
+    }
+
+    /// c_k = A_k sum_n x_n sin(pi (k + 1)(n + 1/2)/N): with k + 1 = N - m the sine is (-1)^n cos(pi m (n + 1/2)/N).
+    pub fn sine_two(&self, x: &mut [f64], scratch: &mut [f64]) {
+        match &self.way {
+            Way::Long(long) => long.forward(x, scratch, Parity::Odd),
+            Way::General(general) => {
+                general.forward(x, scratch, -1.0);
+                x.reverse();
+            }
+        }
+    }
+
+    /// x_n = sum_k c_k A_k sin(pi (k + 1)(n + 1/2)/N).
+    pub fn sine_three(&self, c: &mut [f64], scratch: &mut [f64]) {
+        match &self.way {
+            Way::Long(long) => long.inverse(c, scratch, Parity::Odd),
+            Way::General(general) => {
+                c.reverse();
+                general.inverse(c, scratch, -1.0);
+            }
+        }
+    }
+}
+
+impl General {
+    fn new(len: usize) -> Self {
         let scale = (2.0 / len as f64).sqrt();
         let twiddle = |k: usize| {
             let (c, s) = angle::of_turns(k as u64, 4 * len as u64);
             Complex::new(scale * c, -scale * s)
         };
         Self { fft: RealFft::new(len), twiddles: (0..=len / 2).map(twiddle).collect() }
-    }
-
-    pub fn len(&self) -> usize {
-        self.fft.len()
-    }
-
-    pub fn scratch_len(&self) -> usize {
-        self.fft.len() + self.fft.scratch_len()
-    }
-
-    /// c_k = A_k sum_n x_n cos(pi k (n + 1/2)/N).
-    pub fn cosine_two(&self, x: &mut [f64], scratch: &mut [f64]) {
-        self.forward(x, scratch, 1.0);
-    }
-
-    /// x_n = sum_k c_k A_k cos(pi k (n + 1/2)/N).
-    pub fn cosine_three(&self, c: &mut [f64], scratch: &mut [f64]) {
-        self.inverse(c, scratch, 1.0);
-    }
-
-    /// c_k = A_k sum_n x_n sin(pi (k + 1)(n + 1/2)/N): with k + 1 = N - m the sine is (-1)^n cos(pi m (n + 1/2)/N).
-    pub fn sine_two(&self, x: &mut [f64], scratch: &mut [f64]) {
-        self.forward(x, scratch, -1.0);
-        x.reverse();
-    }
-
-    /// x_n = sum_k c_k A_k sin(pi (k + 1)(n + 1/2)/N).
-    pub fn sine_three(&self, c: &mut [f64], scratch: &mut [f64]) {
-        c.reverse();
-        self.inverse(c, scratch, -1.0);
     }
 
     /// Odd samples are multiplied by `sign`.
