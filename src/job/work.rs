@@ -200,6 +200,9 @@ pub fn verdict_report(
         .then(|| settings.assertion.standing(judgement, sum::standard_deviation(channel.samples)));
     let mut sentence = verdict.pick_sentence();
     if let Some(edge) = edge {
+        if let Some(pick) = verdict.edge(verdict.pick.name).filter(|pick| pick.name != edge.name) {
+            sentence = format!("{sentence} ({} would cost {})", pick.name, verdict.cost(pick, unit));
+        }
         sentence = format!("{sentence}; {}: {}", edge.name, verdict.edge_sentence(edge, unit, channel.axis));
     }
     if let Some(standing) = standing {

@@ -30,11 +30,17 @@ impl Verdict {
         }
     }
 
+    /// The predicted edge error of one extension in `unit` and relative.
+    pub fn cost(&self, edge: &Edge, unit: &Unit) -> String {
+        let unit = if unit.is_unknown() { String::new() } else { format!(" {unit}") };
+        let share = rounded(100.0 * edge.predicted_error / self.output_deviation);
+        format!("about {}{unit}, {share} % of output s.d.", rounded(edge.predicted_error))
+    }
+
     /// Edge error in `unit` and trusted span along `axis` of one extension in one sentence.
     pub fn edge_sentence(&self, edge: &Edge, unit: &Unit, axis: &Axis) -> String {
         let len = axis.len();
-        let unit = if unit.is_unknown() { String::new() } else { format!(" {unit}") };
-        let share = |value: f64| rounded(100.0 * value / self.output_deviation);
+        let label = if unit.is_unknown() { String::new() } else { format!(" {unit}") };
         let adequacy = match edge.adequacy {
             Adequacy::Within => "within tolerance",
             Adequacy::Borderline => "borderline",
@@ -48,12 +54,10 @@ impl Verdict {
             None => "no trusted span".to_owned(),
         };
         format!(
-            "edge error about {}{unit}, {} % of output s.d. (bound {}{unit}, {} %, events outside the record excepted), \
-             {adequacy}; {span}",
-            rounded(edge.predicted_error),
-            share(edge.predicted_error),
+            "edge error {} (bound {}{label}, {} %, events outside the record excepted), {adequacy}; {span}",
+            self.cost(edge, unit),
             rounded(edge.bound),
-            share(edge.bound),
+            rounded(100.0 * edge.bound / self.output_deviation),
         )
     }
 }
