@@ -26,7 +26,7 @@ pub fn trimmed(
     }
     let spans: Vec<Range<usize>> = channels.iter().map(span_of).collect();
     let first = spans.iter().map(|span| span.start).max().unwrap_or(0);
-    let end = spans.iter().map(|span| span.end).min().unwrap_or(0);
+    let end = spans.iter().map(|span| span.end).min().unwrap_or(0).min(record.len());
     if first >= end {
         return Err(Error::unsupported("no sample is trusted in every channel")
             .remedy("raise --tolerance, choose channels apart, or keep the edges"));

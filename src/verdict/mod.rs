@@ -116,7 +116,7 @@ impl Verdict {
         let continuations = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
         let foretold = (case.output)(Extension::Continued { left: &continuations[0], right: &continuations[1] });
         let output_deviation = sum::standard_deviation(&foretold);
-        if output_deviation.is_nan() || output_deviation <= 0.0 {
+        if !output_deviation.is_finite() || output_deviation <= 0.0 {
             return Verdict::not_judged(case, zone);
         }
         let differences = differences(case, evidence, forecast, &foretold);
