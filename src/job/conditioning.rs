@@ -13,6 +13,7 @@ use crate::job::work::{self, Worked};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Format;
+use crate::report::page;
 use crate::report::{self, CAUTION, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, WaveEncoding};
@@ -28,7 +29,7 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
     let planner = Planner::new();
     let channels = record.channels().map(|channel| {
-        let (chosen, _) = work::choose(channel, &chain, settings, &planner)?;
+        let (chosen, _) = work::choose(channel, &chain, settings, &planner, work::Page::Unwanted)?;
         let (extension, baseline) = work::stage_reports(&chosen, &chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
         Ok(PlannedChannel { name: channel.name.to_owned(), unit, extension, baseline })
@@ -59,7 +60,8 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     intake::refuse_notes(settings, &remarks)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
-    let Worked { record, channels } = work::run(intake.record, &chain, settings)?;
+    let wanted = if outputs.page.is_some() { work::Page::Wanted } else { work::Page::Unwanted };
+    let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, wanted)?;
 
     let (record, rows) = edges::trimmed(record, intake.rows, &channels, settings)?;
     let rows = SourceRows::of(&rows);
@@ -97,6 +99,9 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     for mut pending in [outputs.sidecar.take(), outputs.json.take()].into_iter().flatten() {
         pending.write_all(json.as_bytes()).map_err(Error::from)?;
         pending.finish()?;
+    }
+    if let Some(files) = outputs.page.take() {
+        files.write(&report, &page::condition_page(&report, &passages))?;
     }
     Ok(report)
 }

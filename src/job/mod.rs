@@ -6,10 +6,11 @@ mod edges;
 mod examination;
 mod intake;
 mod origin;
+mod picture;
 mod target;
 mod work;
 
 pub use comparison::compare;
 pub use conditioning::{condition, plan};
 pub use examination::audit;
-pub use target::Target;
+pub use target::{PageFiles, Target};

@@ -9,10 +9,12 @@ use crate::compare::{self, Chosen, Continuation, How, Judgement};
 use crate::condition::{self, ExtensionChoice, Outcome};
 use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::picture::{Scene, draw};
 use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Axis, Channel, Record};
+use crate::report::page::Passage;
 use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport};
 use crate::settings::Settings;
 use crate::unit::Unit;
@@ -25,29 +27,38 @@ const ALONE_FROM: usize = 1 << 20;
 pub struct Worked {
     pub record: Record,
     pub channels: Vec<ChannelReport>,
+    /// What a page draws, one entry a channel; empty where no page is wanted.
+    pub passages: Vec<Passage>,
+}
+
+/// Whether a page will show what was done: then every channel is judged, and its lines are kept.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Page {
+    Wanted,
+    Unwanted,
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one.
-pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
+pub fn run(record: Record, chain: &Chain, settings: &Settings, page: Page) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
-    let work = |(index, row): (usize, &mut [f64])| -> Result<ChannelReport> {
+    let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Option<Passage>)> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output) = one(channel, chain, settings, &planner)?;
+        let (report, output, passage) = one(channel, chain, settings, &planner, page)?;
         row.copy_from_slice(&output);
-        Ok(report)
+        Ok((report, passage))
     };
-    let reports: Result<Vec<ChannelReport>> = if len >= ALONE_FROM {
+    let worked: Result<Vec<(ChannelReport, Option<Passage>)>> = if len >= ALONE_FROM {
         flat.chunks_mut(len).enumerate().map(work).collect()
     } else {
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
-    let channels = reports?;
+    let (channels, passages): (Vec<_>, Vec<_>) = worked?.into_iter().unzip();
     let units = channels.iter().map(|report| report.unit.clone()).collect();
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
-    Ok(Worked { record, channels })
+    Ok(Worked { record, channels, passages: passages.into_iter().flatten().collect() })
 }
 
 fn one(
@@ -55,8 +66,9 @@ fn one(
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
-) -> Result<(ChannelReport, Vec<f64>)> {
-    let (chosen, judgement) = choose(channel, chain, settings, planner)?;
+    page: Page,
+) -> Result<(ChannelReport, Vec<f64>, Option<Passage>)> {
+    let (chosen, judgement) = choose(channel, chain, settings, planner, page)?;
     let outcome = match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
         Continuation::Given([left, right]) => {
@@ -70,7 +82,32 @@ fn one(
             .remedy("scale the channel with --calibrate"));
     }
     let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
-    Ok((report, outcome.output))
+    let passage = match page {
+        Page::Unwanted => None,
+        Page::Wanted => Some(passage(channel, chain, settings, judgement.as_ref(), &report, &outcome, planner)?),
+    };
+    Ok((report, outcome.output, passage))
+}
+
+/// What a page draws of a channel.
+fn passage(
+    channel: Channel<'_>,
+    chain: &Chain,
+    settings: &Settings,
+    judgement: Option<&Judgement>,
+    report: &ChannelReport,
+    outcome: &Outcome,
+    planner: &Planner,
+) -> Result<Passage> {
+    let scene = Scene {
+        takes: &report.extension.kind,
+        unit: &report.unit,
+        trusted: report.trusted,
+        sentence: report.verdict.as_ref().map_or("", |verdict| verdict.sentence.as_str()),
+    };
+    let picture = judgement.map(|judgement| draw(channel, chain, settings, judgement, &scene, planner)).transpose()?;
+    let same_unit = report.unit == report.unit_in;
+    Ok(Passage::of(channel, &outcome.output, channel.axis, same_unit, picture.flatten()))
 }
 
 /// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or
@@ -80,10 +117,11 @@ pub fn choose(
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
+    page: Page,
 ) -> Result<(Chosen, Option<Judgement>)> {
     let fixed = matches!(settings.stage.extension, ExtensionChoice::Fixed(_));
     let identity = chain.turns() == 0 && chain.passes().iter().all(|pass| pass.is_identity());
-    let wanted = !fixed || settings.require.is_some() || settings.edges != Default::default();
+    let wanted = page == Page::Wanted || !fixed || settings.require.is_some() || settings.edges != Default::default();
     let judgement = (wanted && !identity)
         .then(|| compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner))
         .transpose()?;
