@@ -6,6 +6,8 @@ mod edges;
 mod examination;
 mod intake;
 mod origin;
+mod preparation;
+mod running;
 mod target;
 mod work;
 

@@ -1,5 +1,6 @@
 //! The computation of a job: every channel judged, continued, conditioned and reported.
 
+use ndarray::Array2;
 use rayon::prelude::*;
 
 use crate::audit::level::Level;
@@ -9,11 +10,15 @@ use crate::compare::{self, Chosen, Continuation, How, Judgement};
 use crate::condition::{self, ExtensionChoice, Outcome};
 use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::preparation::prepare;
+use crate::metric::exposure::Exposure;
 use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Axis, Channel, Record};
-use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport};
+use crate::report::{
+    BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport, VerdictReport,
+};
 use crate::settings::Settings;
 use crate::unit::Unit;
 use crate::verdict::{Auto, Edge};
@@ -27,25 +32,38 @@ pub struct Worked {
     pub channels: Vec<ChannelReport>,
 }
 
-/// Conditions all channels; rows of the sample array are replaced one by one.
+/// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
 pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
-    let work = |(index, row): (usize, &mut [f64])| -> Result<ChannelReport> {
+    let resampling = chain.treatments().resampling;
+    let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Vec<f64>)> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
         let (report, output) = one(channel, chain, settings, &planner)?;
+        if resampling.is_some() {
+            return Ok((report, output));
+        }
         row.copy_from_slice(&output);
-        Ok(report)
+        Ok((report, Vec::new()))
     };
-    let reports: Result<Vec<ChannelReport>> = if len >= ALONE_FROM {
+    let worked: Result<Vec<(ChannelReport, Vec<f64>)>> = if len >= ALONE_FROM {
         flat.chunks_mut(len).enumerate().map(work).collect()
     } else {
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
-    let channels = reports?;
+    let (channels, outputs): (Vec<ChannelReport>, Vec<Vec<f64>>) = worked?.into_iter().unzip();
     let units = channels.iter().map(|report| report.unit.clone()).collect();
+    let (axis, samples) = match resampling {
+        None => (axis, samples),
+        Some(resampling) => {
+            let shape = (channels.len(), resampling.count);
+            let grid = Array2::from_shape_vec(shape, outputs.concat())
+                .map_err(|_| Error::unsupported("channels came out with different numbers of samples"))?;
+            (resampling.axis(&axis), grid)
+        }
+    };
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
     Ok(Worked { record, channels })
 }
@@ -56,6 +74,9 @@ fn one(
     settings: &Settings,
     planner: &Planner,
 ) -> Result<(ChannelReport, Vec<f64>)> {
+    let prepared = prepare(channel, chain, planner)?;
+    let (raw, chain) = (channel, &*prepared.chain);
+    let channel = Channel { samples: &prepared.samples, ..channel };
     let (chosen, judgement) = choose(channel, chain, settings, planner)?;
     let outcome = match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
@@ -69,8 +90,41 @@ fn one(
             .at(place)
             .remedy("scale the channel with --calibrate"));
     }
-    let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
+    let mut report = report(raw, chain, settings, &chosen, judgement.as_ref(), &outcome);
+    report.notes.extend(prepared.notes);
+    report.despike = prepared.despiked;
+    report.smoothing = prepared.smoothing.map(|smoothing| SmoothReport { outliers: outcome.outliers, ..smoothing });
+    let axis = chain.treatments().resampling.map_or_else(|| channel.axis.clone(), |grid| grid.axis(channel.axis));
+    if let Some(weighting) = chain.treatments().weighting {
+        let running_s = settings.running_rms.unwrap_or(DEFAULT_RUNNING_S);
+        let exposure = Exposure::of(&outcome.output, &outcome.unit, &axis, weighting.name, running_s);
+        report.notes.extend(exposure_notes(channel, &exposure, report.trusted.as_ref()));
+        report.exposure = Some(exposure);
+    }
     Ok((report, outcome.output))
+}
+
+/// Integration time of the running RMS that ISO 2631-1:1997, 6.3.1, recommends.
+const DEFAULT_RUNNING_S: f64 = 1.0;
+
+/// What the figures of an exposure rest on, where that is doubtful.
+fn exposure_notes(channel: Channel<'_>, exposure: &Exposure, trusted: Option<&TrustedReport>) -> Vec<Finding> {
+    let mut notes = Vec::new();
+    let mut say = |code, text: String| notes.push(Finding::new(code, text).at(Place::channel(channel.name)));
+    if channel.unit.meaning().is_none_or(|m| (m.length, m.time) != (1, -2)) {
+        let text = format!(
+            "weighted as if it were an acceleration, but its unit is \"{}\": give it by --unit or --calibrate",
+            channel.unit
+        );
+        say("weighting_unit", text);
+    }
+    if let (Some(at), Some(trusted)) = (exposure.mtvv_at, trusted)
+        && !(trusted.from..=trusted.to).contains(&at)
+    {
+        let text = "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
+        say("mtvv_untrusted", text.to_owned());
+    }
+    notes
 }
 
 /// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or
@@ -82,9 +136,8 @@ pub fn choose(
     planner: &Planner,
 ) -> Result<(Chosen, Option<Judgement>)> {
     let fixed = matches!(settings.stage.extension, ExtensionChoice::Fixed(_));
-    let identity = chain.turns() == 0 && chain.passes().iter().all(|pass| pass.is_identity());
     let wanted = !fixed || settings.require.is_some() || settings.edges != Default::default();
-    let judgement = (wanted && !identity)
+    let judgement = (wanted && !chain.is_identity())
         .then(|| compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner))
         .transpose()?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, judgement.as_ref())?;
@@ -153,7 +206,16 @@ fn report(
         verdict,
         candidates: judgement.and_then(|j| j.verdict.as_ref()).map(|v| v.edges.clone()).unwrap_or_default(),
         edge: judgement.map(|j| j.estimates),
-        trusted: edge.and_then(|edge| edge.trusted).map(|span| trusted_report(span.first, span.last, channel.axis)),
+        trusted: edge.and_then(|edge| edge.trusted).and_then(|span| match chain.treatments().resampling {
+            None => Some(trusted_report(span.first, span.last, channel.axis)),
+            Some(grid) => {
+                let (first, last) = grid.within(span.first, span.last, channel.samples.len())?;
+                Some(trusted_report(first, last, &grid.axis(channel.axis)))
+            }
+        }),
+        despike: None,
+        smoothing: None,
+        exposure: None,
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
         parseval: outcome.parseval,
