@@ -11,12 +11,13 @@ use crate::ends::Ends;
 use crate::error::Result;
 use crate::job::intake;
 use crate::job::picture::{Scene, draw};
+use crate::job::preparation::prepare;
 use crate::job::work;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Channel;
-use crate::report::{CAUTION, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool};
+use crate::report::{self, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::verdict::{CANDIDATES, ODD_ZERO};
 
@@ -51,7 +52,7 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
         chain: chain.describe(record.axis()),
         channels,
         requirement_met,
-        caution: CAUTION,
+        caution: report::caution(&chain),
     };
     Ok((report, pictures.into_iter().flatten().collect()))
 }
@@ -63,6 +64,9 @@ fn one(
     planner: &Planner,
     picture: bool,
 ) -> Result<(ChannelComparison, Option<Picture>)> {
+    let prepared = prepare(channel, chain, planner)?;
+    let channel = Channel { samples: &prepared.samples, ..channel };
+    let chain = &prepared.chain.on_own_grid();
     let judgement = compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner)?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
     let edge = work::edge_of(&chosen, Some(&judgement));

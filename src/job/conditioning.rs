@@ -4,17 +4,20 @@ use std::io::Write;
 use std::path::Path;
 
 use crate::basis::Planner;
-use crate::error::{Error, Result};
+use crate::error::{Error, Finding, Result};
 use crate::job::edges;
 use crate::job::intake;
 use crate::job::origin::{SourceRows, origin_of};
+use crate::job::preparation::prepare;
+use crate::job::running::{self, Running};
 use crate::job::target::Target;
 use crate::job::work::{self, Worked};
 use crate::operator::Chain;
 use crate::read::Input;
-use crate::record::Format;
+use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord};
+use crate::regularise::RowMap;
 use crate::report::page;
-use crate::report::{self, CAUTION, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
+use crate::report::{self, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, WaveEncoding};
 
@@ -29,10 +32,23 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
     let planner = Planner::new();
     let channels = record.channels().map(|channel| {
-        let (chosen, _) = work::choose(channel, &chain, settings, &planner, work::Page::Unwanted)?;
-        let (extension, baseline) = work::stage_reports(&chosen, &chain, settings);
+        let prepared = prepare(channel, &chain, &planner)?;
+        let channel = Channel { samples: &prepared.samples, ..channel };
+        let (chosen, judgement) = work::choose(channel, &prepared.chain, settings, &planner, work::Page::Unwanted)?;
+        let (extension, baseline) = work::stage_reports(&chosen, &prepared.chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
-        Ok(PlannedChannel { name: channel.name.to_owned(), unit, extension, baseline })
+        let edge = work::edge_of(&chosen, judgement.as_ref());
+        let verdict = work::verdict_report(channel, &unit, settings, judgement.as_ref(), edge);
+        Ok(PlannedChannel {
+            name: channel.name.to_owned(),
+            unit,
+            extension,
+            baseline,
+            despike: prepared.despiked,
+            smoothing: prepared.smoothing,
+            verdict: verdict.map(|verdict| verdict.sentence),
+            notes: prepared.notes,
+        })
     });
     Ok(Plan {
         channels: channels.collect::<Result<_>>()?,
@@ -60,14 +76,24 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     intake::refuse_notes(settings, &remarks)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
+    let chain_report = chain.describe(intake.record.axis());
+    refuse_columns(settings, format, intake.record.axis())?;
     let wanted = if outputs.page.is_some() { work::Page::Wanted } else { work::Page::Unwanted };
     let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, wanted)?;
 
-    let (record, rows) = edges::trimmed(record, intake.rows, &channels, settings)?;
+    let rows = match chain.treatments().resampling {
+        None => intake.rows,
+        Some(grid) => {
+            notes.extend(untouched(&intake.outline));
+            RowMap::Regridded { count: grid.count }
+        }
+    };
+    let (record, rows) = edges::trimmed(record, rows, &channels, settings)?;
     let rows = SourceRows::of(&rows);
     let origin = origin_of(&intake.outline, &record, format, rows.as_ref())?;
     let marks = edges::marks(&channels, record.len(), settings);
-    let extra: Vec<_> = marks.iter().map(edges::Mark::column).collect();
+    let running = running::columns(&record, settings);
+    let extra: Vec<_> = marks.iter().map(edges::Mark::column).chain(running.iter().map(Running::column)).collect();
     let shown = edges::shown(&channels, settings);
     let content = Content {
         record: &record,
@@ -89,11 +115,11 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
         settings: settings.to_map(),
         input: input_report,
         notes,
-        chain: chain.describe(record.axis()),
+        chain: chain_report,
         channels,
         requirement_met,
         outputs: vec![OutputReport { path: written.path, sha256: written.sha256 }],
-        caution: CAUTION,
+        caution: report::caution(&chain),
     };
     let json = report::to_json(&report)?;
     for mut pending in [outputs.sidecar.take(), outputs.json.take()].into_iter().flatten() {
@@ -104,6 +130,29 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
         files.write(&report, &page::condition_page(&report, &passages))?;
     }
     Ok(report)
+}
+
+/// A remark about columns of the source that have no place on another grid.
+fn untouched(outline: &RawRecord) -> Option<Finding> {
+    let Layout::Table(table) = &outline.layout else { return None };
+    let count = table.columns.iter().filter(|role| **role == ColumnRole::Untouched).count();
+    let text = format!("{count} columns that were not conditioned are left out: they have no place on the new grid");
+    (count > 0).then(|| Finding::new("columns_left_out", text))
+}
+
+/// Running RMS needs a time axis, and a form with room for columns.
+fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()> {
+    if settings.running_rms.is_none() {
+        return Ok(());
+    }
+    if format == Format::Wav {
+        return Err(Error::usage("--running-rms: a WAV file has no room for further columns").remedy("write CSV with --format csv"));
+    }
+    if !axis.is_time() {
+        return Err(Error::usage(format!("--running-rms: the record's axis is a length in {}", axis.unit()))
+            .remedy("leave it out"));
+    }
+    Ok(())
 }
 
 fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {

@@ -7,6 +7,8 @@ mod examination;
 mod intake;
 mod origin;
 mod picture;
+mod preparation;
+mod running;
 mod target;
 mod work;
 

@@ -7,7 +7,7 @@ use crate::condition::{condition, condition_continued, scale_of};
 use crate::error::Result;
 use crate::operator::Chain;
 use crate::record::Channel;
-use crate::report::{Curve, Picture, TrustedReport};
+use crate::report::{ChannelReport, Curve, Picture, TrustedReport};
 use crate::settings::Settings;
 use crate::unit::Unit;
 use crate::verdict::CANDIDATES;
@@ -22,6 +22,18 @@ pub struct Scene<'a> {
     pub trusted: Option<TrustedReport>,
     /// The verdict in words.
     pub sentence: &'a str,
+}
+
+impl<'a> Scene<'a> {
+    /// Of a conditioned channel.
+    pub fn of(report: &'a ChannelReport) -> Scene<'a> {
+        Scene {
+            takes: &report.extension.kind,
+            unit: &report.unit,
+            trusted: report.trusted,
+            sentence: report.verdict.as_ref().map_or("", |verdict| verdict.sentence.as_str()),
+        }
+    }
 }
 
 /// Samples drawn past each end, at most.

@@ -31,6 +31,8 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// Integration time of the running RMS, in s.
+    pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
     /// Edge error that is tolerable.

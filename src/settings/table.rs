@@ -94,6 +94,7 @@ static OPTIONS: &[OptionRow] = &[
     row("seat", "NAME", Once, Stage, "Where the mirrors sit: half-sample (default) or whole-sample"),
     row("assert", "[END:]WHAT", Many, Stage, "What is known about the ends: zero-slope, zero-value or closed; with left: or right: for one end. Followed, and checked for contradiction"),
     row("shape", "NAME", Once, Operators, "Roll-off: butterworth:ORDER (zero phase, squared magnitude, gain 0.5 at the corner), gaussian, cosine:WIDTH, brickwall. Default: butterworth:4"),
+    row("running-rms", "TIME", Once, Operators, "A further column a channel with its running RMS over this time, such as 1s or 0.125s; also the integration time of --weighting, 1s there by default"),
     row("tolerance", "ERROR", Once, Judgement, "Edge error that is tolerable: a share of the output's standard deviation (10%, the default) or a value with its unit (0.02m/s)"),
     row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. The output is written all the same"),
     row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted'), blank (empty cells) or trim (cut off, with the new start stamp)"),
@@ -105,8 +106,9 @@ static OPTIONS: &[OptionRow] = &[
 /// Every option that changes a result, in the order of help texts: operators follow from their own table.
 pub fn rows() -> Vec<OptionRow> {
     let operators = STEPS.iter().map(|step| {
-        // Filters may be repeated: their gains multiply. A second integral is asked for by its count.
-        let arity = if matches!(step.key, "integrate" | "differentiate") { Once } else { Many };
+        // Filters may be repeated: their gains multiply. Of the others a run takes one.
+        let repeated = ["response", "lowpass", "highpass", "bandpass", "bandstop", "notch"];
+        let arity = if repeated.contains(&step.key) { Many } else { Once };
         row(step.key, step.value, arity, Operators, step.help)
     });
     let (before, after) = OPTIONS.split_at(OPTIONS.iter().position(|row| row.group == Operators).unwrap_or(0));
