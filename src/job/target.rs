@@ -4,13 +4,15 @@ use std::io::Write;
 use std::path::{Path, PathBuf};
 
 use crate::error::Result;
-use crate::write::{Overwrite, Pending};
+use crate::write::{self, Durability, Overwrite, Pending};
 
 /// The outputs of a job, opened before any work so that a refusal costs nothing.
 pub struct Target<'a> {
     record: Place<'a>,
+    sidecar: Option<PathBuf>,
     json: Option<PathBuf>,
     overwrite: Overwrite,
+    durability: Durability,
 }
 
 enum Place<'a> {
@@ -23,17 +25,31 @@ pub(super) struct Opened<'a> {
     pub record: Pending<'a>,
     pub sidecar: Option<Pending<'a>>,
     pub json: Option<Pending<'a>>,
+    pub durability: Durability,
 }
 
 impl<'a> Target<'a> {
     /// The record at `path`, its sidecar at `path` with `.json` appended, and the JSON once more at `json`.
     pub fn file(path: &Path, json: Option<&Path>, overwrite: Overwrite) -> Target<'a> {
-        Target { record: Place::File(path.to_owned()), json: json.map(Path::to_owned), overwrite }
+        Target { sidecar: Some(sidecar_of(path)), json: json.map(Path::to_owned), ..Target::alone(path, overwrite) }
+    }
+
+    /// The record at `path` and nothing beside it: its report goes elsewhere.
+    pub fn alone(path: &Path, overwrite: Overwrite) -> Target<'a> {
+        let record = Place::File(path.to_owned());
+        Target { record, sidecar: None, json: None, overwrite, durability: Durability::default() }
     }
 
     /// The record into a stream: there is no place for a sidecar.
     pub fn stream(sink: Box<dyn Write + Send + 'a>, json: Option<&Path>, overwrite: Overwrite) -> Target<'a> {
-        Target { record: Place::Stream(sink), json: json.map(Path::to_owned), overwrite }
+        let (record, json) = (Place::Stream(sink), json.map(Path::to_owned));
+        Target { record, sidecar: None, json, overwrite, durability: Durability::default() }
+    }
+
+    /// The same outputs, finished when that is reached.
+    #[must_use]
+    pub fn durable(self, durability: Durability) -> Target<'a> {
+        Target { durability, ..self }
     }
 
     /// The record's file name, where it goes to a file.
@@ -44,19 +60,19 @@ impl<'a> Target<'a> {
         }
     }
 
-    /// Opens everything; the input is protected from being overwritten unasked.
+    /// Opens everything; the input is protected from being replaced.
     pub(super) fn open(self, input: Option<&Path>) -> Result<Opened<'a>> {
         let inputs: Vec<&Path> = input.into_iter().collect();
-        let sidecar = match &self.record {
-            Place::File(path) => Some(Pending::create(&sidecar_of(path), &inputs, self.overwrite)?),
-            Place::Stream(_) => None,
-        };
-        let json = self.json.map(|path| Pending::create(&path, &inputs, self.overwrite)).transpose()?;
+        let beside = [&self.sidecar, &self.json].into_iter().flatten().map(PathBuf::as_path);
+        write::refuse_twins(&self.path().into_iter().chain(beside).collect::<Vec<_>>())?;
+        let open = |path: PathBuf| Pending::create(&path, &inputs, self.overwrite);
+        let sidecar = self.sidecar.map(open).transpose()?;
+        let json = self.json.map(open).transpose()?;
         let record = match self.record {
-            Place::File(path) => Pending::create(&path, &inputs, self.overwrite)?,
+            Place::File(path) => open(path)?,
             Place::Stream(sink) => Pending::stream("-", sink),
         };
-        Ok(Opened { record, sidecar, json })
+        Ok(Opened { record, sidecar, json, durability: self.durability })
     }
 }
 

@@ -28,14 +28,13 @@ pub struct Worked {
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one.
-pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
+pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
-    let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
     let work = |(index, row): (usize, &mut [f64])| -> Result<ChannelReport> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output) = one(channel, chain, settings, &planner)?;
+        let (report, output) = one(channel, chain, settings, planner)?;
         row.copy_from_slice(&output);
         Ok(report)
     };
