@@ -13,6 +13,6 @@ mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, plan};
+pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
 pub use target::{PageFiles, Target};

@@ -44,15 +44,20 @@ pub enum Page {
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
-pub fn run(record: Record, chain: &Chain, settings: &Settings, page: Page) -> Result<Worked> {
+pub fn run(
+    record: Record,
+    chain: &Chain,
+    settings: &Settings,
+    planner: &Planner,
+    page: Page,
+) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
-    let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
     let resampling = chain.treatments().resampling;
     let work = |(index, row): (usize, &mut [f64])| -> Result<Finished> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let mut finished = one(channel, chain, settings, &planner, page)?;
+        let mut finished = one(channel, chain, settings, planner, page)?;
         if resampling.is_none() {
             row.copy_from_slice(&finished.output);
             finished.output = Vec::new();

@@ -64,6 +64,7 @@ const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group,
     OptionRow { key, value, arity, group, help }
 }
 
+use crate::error::{Error, Result};
 use crate::operator::STEPS;
 use Arity::{Many, Once, Switch};
 use Group::{Cut, Input, Judgement, Operators, Output, Repair, Stage};
@@ -87,7 +88,7 @@ static OPTIONS: &[OptionRow] = &[
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
     row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default) or fill"),
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
-    row("regrid", "HOW", Once, Repair, "What to do with jittered or drifting stamps: cubic (default) interpolates onto an even grid, off takes the samples as even"),
+    row("regrid", "HOW", Once, Repair, "What to do with uneven stamps: auto (default) interpolates jittered or drifting ones onto an even grid by a cubic spline, cubic also those that are nearly even, off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
     row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast; symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
     row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
@@ -118,4 +119,28 @@ pub fn rows() -> Vec<OptionRow> {
 /// The row of a key.
 pub fn find(key: &str) -> Option<OptionRow> {
     rows().into_iter().find(|row| row.key == key)
+}
+
+/// The row of a key that must be there.
+///
+/// # Errors
+/// `Usage` with the nearest known key.
+pub fn known(key: &str) -> Result<OptionRow> {
+    find(key).ok_or_else(|| {
+        let all = rows();
+        let error = Error::usage(format!("unknown setting {key:?}"));
+        match nearest(key, all.iter().map(|row| row.key)) {
+            Some(known) => error.remedy(format!("did you mean {known:?}?")),
+            None => error,
+        }
+    })
+}
+
+/// The name that a mistyped one was probably meant to be.
+pub fn nearest<'a>(name: &str, known: impl Iterator<Item = &'a str>) -> Option<&'a str> {
+    known
+        .map(|known| (strsim::jaro_winkler(known, name), known))
+        .max_by(|a, b| a.0.total_cmp(&b.0))
+        .filter(|(likeness, _)| *likeness > 0.8)
+        .map(|(_, known)| known)
 }
