@@ -62,12 +62,13 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let plot = plot.as_ref().map(open).transpose()?;
     let json_file = json.as_ref().filter(|path| !stream::is_stdout(path)).map(open).transpose()?;
     let (comparison, pictures) = job::compare(stream::input(file)?, &settings, plot.is_some())?;
-    for (output, text) in [(plot, report::svg(&pictures)), (json_file, report::to_json(&comparison))] {
-        if let Some(mut output) = output {
-            output.write_all(text?.as_bytes()).map_err(Error::from)?;
-            output.finish()?;
-        }
-    }
+    let save = |output: Option<Pending<'_>>, text: &dyn Fn() -> Result<String>| {
+        let Some(mut output) = output else { return Ok(()) };
+        output.write_all(text()?.as_bytes()).map_err(Error::from)?;
+        output.finish().map(|_| ())
+    };
+    save(plot, &|| report::svg(&pictures))?;
+    save(json_file, &|| report::to_json(&comparison))?;
     if json.as_deref().is_some_and(stream::is_stdout) {
         stream::print(&report::to_json(&comparison)?)?;
     } else if !matches.get_flag("quiet") {

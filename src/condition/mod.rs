@@ -89,9 +89,15 @@ pub fn condition_with(
     Ok(Outcome { output, unit, ends, baseline, scale, parseval })
 }
 
+/// What a continued record itself is conditioned under: even reflection, with the baseline that goes with it.
+pub fn beyond(seat: Seat, chain: &Chain) -> (Ends, BaselineKind) {
+    let ends = Ends::EVEN.seated(seat);
+    (ends, default_baseline(ends, chain))
+}
+
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
 ///
-/// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
+/// The continued record runs through the whole chain as `beyond` says, and the
 /// channel's own samples are cut out again. Integrals start at rest at the channel's own left end.
 ///
 /// # Errors
@@ -104,10 +110,10 @@ pub fn condition_continued(
     seat: Seat,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let ends = Ends::EVEN.seated(seat);
+    let (ends, kind) = beyond(seat, chain);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
-    let baseline = Baseline::fit(default_baseline(ends, chain), &continued, ends, scale)?;
+    let baseline = Baseline::fit(kind, &continued, ends, scale)?;
     let (unit, factor) = scaling(channel, chain);
     let rest = left.len() as f64;
     let (mut output, parseval) = run(&continued, chain, ends, &baseline, rest, factor, planner)?;

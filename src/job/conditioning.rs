@@ -7,7 +7,9 @@ use crate::basis::Planner;
 use crate::error::{Error, Result};
 use crate::job::edges;
 use crate::job::intake;
+use crate::job::judgement;
 use crate::job::origin::{SourceRows, origin_of};
+use crate::job::requirement;
 use crate::job::target::Target;
 use crate::job::work::{self, Worked};
 use crate::operator::Chain;
@@ -28,7 +30,7 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
     let planner = Planner::new();
     let channels = record.channels().map(|channel| {
-        let (chosen, _) = work::choose(channel, &chain, settings, &planner)?;
+        let (chosen, _) = judgement::choose(channel, &chain, settings, &planner)?;
         let (extension, baseline) = work::stage_reports(&chosen, &chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
         Ok(PlannedChannel { name: channel.name.to_owned(), unit, extension, baseline })
@@ -60,6 +62,9 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
     let Worked { record, channels } = work::run(intake.record, &chain, settings)?;
+    for channel in &channels {
+        intake::refuse_notes(settings, &channel.notes)?;
+    }
 
     let (record, rows) = edges::trimmed(record, intake.rows, &channels, settings)?;
     let rows = SourceRows::of(&rows);
@@ -77,9 +82,7 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     };
     let (written, remarks) = write::save(write::writer(format), &content, outputs.record)?;
     notes.extend(remarks);
-    let requirement_met = settings.require.is_none_or(|required| {
-        channels.iter().all(|c| c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required))
-    });
+    let unmet = requirement::unmet(settings, &channels);
     let report = Report {
         schema: SCHEMA,
         tool: Tool::THIS,
@@ -89,7 +92,8 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
         notes,
         chain: chain.describe(record.axis()),
         channels,
-        requirement_met,
+        requirement_met: unmet.is_empty(),
+        unmet,
         outputs: vec![OutputReport { path: written.path, sha256: written.sha256 }],
         caution: CAUTION,
     };

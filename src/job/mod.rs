@@ -5,7 +5,9 @@ mod conditioning;
 mod edges;
 mod examination;
 mod intake;
+mod judgement;
 mod origin;
+mod requirement;
 mod target;
 mod work;
 

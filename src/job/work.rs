@@ -5,18 +5,17 @@ use rayon::prelude::*;
 use crate::audit::level::Level;
 use crate::baseline::BaselineKind;
 use crate::basis::Planner;
-use crate::compare::{self, Chosen, Continuation, How, Judgement};
-use crate::condition::{self, ExtensionChoice, Outcome};
-use crate::ends::{Ends, Seat};
-use crate::error::{Error, Finding, Result};
-use crate::numeric::sum;
+use crate::compare::{Chosen, Continuation, How, Judgement};
+use crate::condition::{self, Outcome};
+use crate::ends::Seat;
+use crate::error::{Error, Result};
+use crate::job::judgement::{self, Judged};
 use crate::operator::Chain;
 use crate::place::Place;
-use crate::record::{Axis, Channel, Record};
-use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport};
+use crate::record::{Channel, Record};
+use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport};
 use crate::settings::Settings;
-use crate::unit::Unit;
-use crate::verdict::{Auto, Edge};
+use crate::verdict::Auto;
 
 /// A channel this long is worked on alone: several at once would hold several times its transform memory.
 const ALONE_FROM: usize = 1 << 20;
@@ -56,11 +55,15 @@ fn one(
     settings: &Settings,
     planner: &Planner,
 ) -> Result<(ChannelReport, Vec<f64>)> {
-    let (chosen, judgement) = choose(channel, chain, settings, planner)?;
-    let outcome = match &chosen.continuation {
-        Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
-        Continuation::Given([left, right]) => {
-            condition::condition_continued(channel, chain, left, right, settings.stage.seat, planner)?
+    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner)?;
+    let seat = settings.stage.seat;
+    let outcome = match (&chosen.continuation, foretold(&chosen, judgement.as_mut())) {
+        (_, Some(outcome)) => outcome,
+        (Continuation::Symmetric(ends, baseline), None) => {
+            condition::condition(channel, chain, *ends, *baseline, planner)?
+        }
+        (Continuation::Given([left, right]), None) => {
+            condition::condition_continued(channel, chain, left, right, seat, planner)?
         }
     };
     if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
@@ -69,26 +72,18 @@ fn one(
             .at(place)
             .remedy("scale the channel with --calibrate"));
     }
-    let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
+    let judged = Judged::of(channel, settings, chosen, judgement, &outcome.output);
+    let report = report(channel, chain, settings, &judged, &outcome);
     Ok((report, outcome.output))
 }
 
-/// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or
-/// treatment of the edges is taken as it is: nothing then asks for a verdict.
-pub fn choose(
-    channel: Channel<'_>,
-    chain: &Chain,
-    settings: &Settings,
-    planner: &Planner,
-) -> Result<(Chosen, Option<Judgement>)> {
-    let fixed = matches!(settings.stage.extension, ExtensionChoice::Fixed(_));
-    let identity = chain.turns() == 0 && chain.passes().iter().all(|pass| pass.is_identity());
-    let wanted = !fixed || settings.require.is_some() || settings.edges != Default::default();
-    let judgement = (wanted && !identity)
-        .then(|| compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner))
-        .transpose()?;
-    let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, judgement.as_ref())?;
-    Ok((chosen, judgement))
+/// The output under the forecast, where that is what was chosen: it is known from judging. Where another row of the verdict
+/// was chosen, it is dropped, since it is as large as the record.
+fn foretold(chosen: &Chosen, judgement: Option<&mut Judgement>) -> Option<Outcome> {
+    let judgement = judgement?;
+    let row = judgement.row(chosen)?;
+    let is_forecast = row.name == Auto::Forecast.name();
+    judgement.foretold.take().filter(|_| is_forecast)
 }
 
 /// The extension and the baseline as reports name them.
@@ -96,8 +91,8 @@ pub fn stage_reports(chosen: &Chosen, chain: &Chain, settings: &Settings) -> (Ex
     let (ends, baseline, transform) = match chosen.continuation {
         Continuation::Symmetric(ends, baseline) => (ends, baseline, ends.transform().to_owned()),
         Continuation::Given(_) => {
-            let even = Ends::EVEN.seated(settings.stage.seat);
-            (even, condition::default_baseline(even, chain), format!("{} of the continued record", even.transform()))
+            let (ends, baseline) = condition::beyond(settings.stage.seat, chain);
+            (ends, baseline, format!("{} of the continued record", ends.transform()))
         }
     };
     let seat = match ends.seat() {
@@ -111,33 +106,24 @@ fn report(
     channel: Channel<'_>,
     chain: &Chain,
     settings: &Settings,
-    chosen: &Chosen,
-    judgement: Option<&Judgement>,
+    judged: &Judged,
     outcome: &Outcome,
 ) -> ChannelReport {
     let (before, after) = (Level::of(channel.samples), Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
-    let (extension, _) = stage_reports(chosen, chain, settings);
+    let (extension, _) = stage_reports(&judged.chosen, chain, settings);
     let kind = outcome.baseline.kind();
     let fitted = matches!(kind, BaselineKind::Level(_) | BaselineKind::Line | BaselineKind::Slopes);
-    let edge = edge_of(chosen, judgement);
-    let verdict = verdict_report(channel, &outcome.unit, settings, judgement, edge);
-    let mut notes = Vec::new();
-    if let Some(standing) = verdict.as_ref().and_then(|v| v.assertion)
-        && standing == compare::Standing::Contradicted
-    {
-        let text = format!("the record speaks against --assert {}", settings.assertion);
-        notes.push(Finding::new("assertion_contradicted", text).at(Place::channel(channel.name)));
-    }
+    let judgement = judged.judgement.as_ref();
     ChannelReport {
         name: channel.name.to_owned(),
         unit: outcome.unit.clone(),
         unit_in: channel.unit.clone(),
-        notes,
+        notes: judged.notes(channel, settings),
         baseline: BaselineReport {
             kind: kind.to_string(),
-            how: if settings.stage.baseline.is_some() { How::Asked } else { chosen.how },
+            how: if settings.stage.baseline.is_some() { How::Asked } else { judged.chosen.how },
             coefficients: polynomial.coefficients().to_vec(),
             centre: polynomial.centre(),
             half_width: polynomial.half_width(),
@@ -150,83 +136,14 @@ fn report(
             axis: reaches.reach.samples().map(|samples| samples * channel.axis.step()),
             numeric_samples: reaches.numeric,
         },
-        verdict,
+        verdict: judged.verdict(channel, &outcome.unit),
+        not_judged: judged.unjudged,
+        assertions: judged.standings.clone(),
         candidates: judgement.and_then(|j| j.verdict.as_ref()).map(|v| v.edges.clone()).unwrap_or_default(),
         edge: judgement.map(|j| j.estimates),
-        trusted: edge.and_then(|edge| edge.trusted).map(|span| trusted_report(span.first, span.last, channel.axis)),
+        trusted: judged.trusted(channel.axis),
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
         parseval: outcome.parseval,
     }
-}
-
-/// The row of the verdict that belongs to the continuation in use, where there is one.
-pub fn edge_of<'a>(chosen: &Chosen, judgement: Option<&'a Judgement>) -> Option<&'a Edge> {
-    let verdict = judgement?.verdict.as_ref()?;
-    match &chosen.continuation {
-        Continuation::Given(_) if chosen.how != How::Asserted => verdict.edge(Auto::Forecast.name()),
-        Continuation::Given(_) => None,
-        Continuation::Symmetric(ends, baseline) => {
-            let plain = ends.seated(Seat::Half);
-            let row = crate::verdict::CANDIDATES
-                .iter()
-                .find(|c| c.ends == plain && (c.baseline == *baseline || same_level(c.baseline, *baseline)))?;
-            verdict.edge(row.name)
-        }
-    }
-}
-
-/// `level` without a side is the level at the odd end, which is what the mixed candidates have.
-fn same_level(candidate: BaselineKind, baseline: BaselineKind) -> bool {
-    matches!((candidate, baseline), (BaselineKind::Level(Some(_)), BaselineKind::Level(None)))
-}
-
-/// A trusted span with its stamps.
-pub fn trusted_report(first: usize, last: usize, axis: &Axis) -> TrustedReport {
-    TrustedReport { first, last, from: axis.stamp(first), to: axis.stamp(last) }
-}
-
-/// The verdict as a report: its sentence ends with the cost of the extension in use.
-pub fn verdict_report(
-    channel: Channel<'_>,
-    unit: &Unit,
-    settings: &Settings,
-    judgement: Option<&Judgement>,
-    edge: Option<&Edge>,
-) -> Option<VerdictReport> {
-    let judgement = judgement?;
-    let verdict = judgement.verdict.as_ref()?;
-    let standing = (!settings.assertion.is_empty())
-        .then(|| settings.assertion.standing(judgement, sum::standard_deviation(channel.samples)));
-    let mut sentence = verdict.pick_sentence();
-    if let Some(edge) = edge {
-        if let Some(pick) = verdict.edge(verdict.pick.name).filter(|pick| pick.name != edge.name) {
-            sentence = format!("{sentence} ({} would cost {})", pick.name, verdict.cost(pick, unit));
-        }
-        sentence = format!("{sentence}; {}: {}", edge.name, verdict.edge_sentence(edge, unit, channel.axis));
-    }
-    if let Some(standing) = standing {
-        let word = match standing {
-            compare::Standing::NotContradicted => "not contradicted",
-            compare::Standing::Contradicted => "contradicted",
-            compare::Standing::Untested => "untested",
-        };
-        sentence = format!("{sentence}; asserted {}: {word} by this record", settings.assertion);
-    }
-    Some(VerdictReport {
-        pick: verdict.pick.name,
-        level: verdict.pick.level,
-        margin: verdict.pick.margin,
-        ties: verdict.pick.ties.clone(),
-        choice_immaterial: verdict.pick.choice_immaterial,
-        adequacy: edge.map(|edge| edge.adequacy),
-        predicted_error: edge.map(|edge| edge.predicted_error),
-        bound: edge.map(|edge| edge.bound),
-        tolerance: verdict.tolerance,
-        output_deviation: verdict.output_deviation,
-        zone: verdict.zone,
-        joins: verdict.structure,
-        assertion: standing,
-        sentence,
-    })
 }

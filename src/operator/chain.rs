@@ -100,6 +100,11 @@ impl Chain {
         self.turns
     }
 
+    /// True when the chain changes nothing: no gain, no integral or derivative.
+    pub fn is_identity(&self) -> bool {
+        self.passes.iter().all(Pass::is_identity)
+    }
+
     /// The roll-off of its filters.
     pub fn shape(&self) -> &Shape {
         &self.shape

@@ -4,11 +4,12 @@ use serde::Serialize;
 use serde_json::{Map, Value};
 
 use crate::baseline::EndEstimates;
+use crate::compare::EndStanding;
 use crate::error::Finding;
 use crate::operator::ChainDescription;
 use crate::report::{InputReport, Tool, TrustedReport, VerdictReport};
 use crate::unit::Unit;
-use crate::verdict::Adequacy;
+use crate::verdict::{Adequacy, Edge, Unjudged};
 
 /// Every extension side by side.
 #[derive(Debug, Clone, Serialize)]
@@ -31,6 +32,8 @@ pub struct Comparison {
     pub channels: Vec<ChannelComparison>,
     /// False where `--require` was not met by what `condition` would take.
     pub requirement_met: bool,
+    /// The channels that would not meet it, and why.
+    pub unmet: Vec<Finding>,
     /// What results of this kind may and may not be used for.
     pub caution: &'static str,
 }
@@ -48,6 +51,14 @@ pub struct ChannelComparison {
     pub takes: String,
     /// The verdict; null where the chain has nothing to judge.
     pub verdict: Option<VerdictReport>,
+    /// Why nothing is known about the edges of what `condition` would take; null where they were judged.
+    pub not_judged: Option<Unjudged>,
+    /// How each assertion stands against the record, end by end.
+    pub assertions: Vec<EndStanding>,
+    /// Remarks on this channel.
+    pub notes: Vec<Finding>,
+    /// Edges of what `condition` would take: one of the candidates, or a continuation of its own.
+    pub used: Option<Edge>,
     /// One row an extension: the candidates, the forecast, and the references.
     pub candidates: Vec<Row>,
     /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.

@@ -18,7 +18,7 @@ pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
 
-use figure::figure;
+pub use figure::figure;
 
 /// A table without rules: first column to the left, the others to the right.
 fn table(header: &[&str]) -> Table {
@@ -75,6 +75,11 @@ fn extension_text(extension: &ExtensionReport) -> String {
     };
     let seat = if extension.kind == "periodic" { String::new() } else { format!("{} seat, ", extension.seat) };
     format!("{} ends ({seat}{}), {chosen}", extension.kind, extension.transform)
+}
+
+/// The channels that do not meet the requirement, and why.
+fn unmet_text(unmet: &[Finding]) -> String {
+    unmet.iter().map(|finding| format!("requirement not met: {}\n", crate::place::escape(&finding.to_string()))).collect()
 }
 
 fn notes_text(notes: &[Finding]) -> String {
