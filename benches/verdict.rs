@@ -82,9 +82,8 @@ fn judged(samples: &[f64], shape: Shape, output: &dyn Fn(Extension) -> Vec<f64>)
     let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
     let foretold = output(Extension::Continued { left: &[], right: &[] });
     let past = evidence.as_ref().zip(forecast.as_ref());
-    let past = past
-        .map(|(evidence, forecast)| Past { evidence, forecast, foretold: &foretold })
-        .ok_or(Unjudged::FewBlocks);
+    let past =
+        past.map(|(evidence, forecast)| Past { evidence, forecast, foretold: &foretold }).ok_or(Unjudged::FewBlocks);
     let formed = Formed::InOnePass;
     let case = Case { samples, past, structure, estimates, response: &response, output, formed, tolerance };
     Verdict::of(&case, FlatEnds::Ignored)

@@ -95,7 +95,8 @@ fn extensions_without_a_row_of_their_own_are_judged_by_their_output() {
         ("line", &["--extension", "odd", "--baseline", "line"], "odd-ends"),
     ];
     for (name, options, row) in cases {
-        let common = ["condition", "in.csv", "--lowpass", "3Hz", "--tolerance", "400%", "--require", "borderline", "-q"];
+        let common =
+            ["condition", "in.csv", "--lowpass", "3Hz", "--tolerance", "400%", "--require", "borderline", "-q"];
         let out = format!("{name}.csv");
         run.ok(&[&common[..], options, &["--edges", "mark", "-o", &out]].concat());
         let channel = &json(&run, &format!("{out}.json"))["channels"][0];
@@ -116,11 +117,20 @@ fn extensions_without_a_row_of_their_own_are_judged_by_their_output() {
 fn nothing_that_was_asked_for_gives_way_in_silence() {
     let run = one_channel(&slope());
     let cases: &[(&[&str], &[&str])] = &[
-        (&["--lowpass", "3Hz", "--extension", "forecast", "--assert", "closed"], &["--assert closed", "--extension forecast"]),
-        (&["--lowpass", "3Hz", "--extension", "symmetric", "--assert", "zero-slope"], &["--assert", "--extension symmetric"]),
+        (
+            &["--lowpass", "3Hz", "--extension", "forecast", "--assert", "closed"],
+            &["--assert closed", "--extension forecast"],
+        ),
+        (
+            &["--lowpass", "3Hz", "--extension", "symmetric", "--assert", "zero-slope"],
+            &["--assert", "--extension symmetric"],
+        ),
         (&["--lowpass", "3Hz", "--extension", "odd", "--assert", "closed"], &["--assert", "--extension odd"]),
         (&["--integrate", "1", "--extension", "forecast"], &["--extension forecast", "high-pass", "--highpass"]),
-        (&["--integrate", "1", "--lowpass", "3Hz", "--extension", "symmetric"], &["--extension symmetric", "high-pass"]),
+        (
+            &["--integrate", "1", "--lowpass", "3Hz", "--extension", "symmetric"],
+            &["--extension symmetric", "high-pass"],
+        ),
         (&["--differentiate", "1", "--extension", "forecast"], &["--extension forecast", "no corner"]),
         (&["--integrate", "1", "--assert", "left:zero-slope"], &["--assert left:zero-slope", "high-pass"]),
         (&["--lowpass", "3Hz", "--assert", "left:zero-slope", "--baseline", "mean"], &["--baseline mean", "--assert"]),
@@ -154,7 +164,18 @@ fn an_explicit_baseline_is_honoured_beside_an_assertion() {
     }
     assert_ne!(run.text("plain.csv"), run.text("level.csv"));
     // The asserted slope is zero: none is split off before a derivative.
-    run.ok(&["condition", "in.csv", "--differentiate", "1", "--lowpass", "3Hz", "--assert", "zero-slope", "-o", "d.csv"]);
+    run.ok(&[
+        "condition",
+        "in.csv",
+        "--differentiate",
+        "1",
+        "--lowpass",
+        "3Hz",
+        "--assert",
+        "zero-slope",
+        "-o",
+        "d.csv",
+    ]);
     assert_eq!(json(&run, "d.csv.json")["channels"][0]["baseline"]["kind"], "none");
 }
 
@@ -197,7 +218,8 @@ fn a_requirement_names_the_channels_that_fail_and_why() {
 #[test]
 fn a_record_that_is_not_judged_says_what_is_used() {
     let run = one_channel(&slope()[..12]);
-    let told = run.ok(&["condition", "in.csv", "--lowpass", "10Hz", "--extension", "odd", "--tolerance", "5%", "-o", "o.csv"]);
+    let told =
+        run.ok(&["condition", "in.csv", "--lowpass", "10Hz", "--extension", "odd", "--tolerance", "5%", "-o", "o.csv"]);
     assert!(told.contains("; odd is used") && !told.contains("even is used"), "{told}");
     let told = run.ok(&["condition", "in.csv", "--lowpass", "10Hz", "--extension", "forecast", "-o", "f.csv"]);
     assert!(told.contains("note: channel \"a\": --extension forecast has nothing to rest on"), "{told}");
@@ -232,7 +254,18 @@ fn assertions_stand_end_by_end() {
         .map(|n| (std::f64::consts::FRAC_PI_2 * (n as f64 + 0.5) / LEN as f64).cos() + 1e-4 * rest() + 1.0)
         .collect();
     let run = one_channel(&quarter);
-    run.ok(&["condition", "in.csv", "--lowpass", "3Hz", "--assert", "left:zero-slope", "--assert", "right:zero-value", "-o", "o.csv"]);
+    run.ok(&[
+        "condition",
+        "in.csv",
+        "--lowpass",
+        "3Hz",
+        "--assert",
+        "left:zero-slope",
+        "--assert",
+        "right:zero-value",
+        "-o",
+        "o.csv",
+    ]);
     let channel = &json(&run, "o.csv.json")["channels"][0];
     let standing = |k: usize| channel["assertions"][k]["standing"].as_str().unwrap_or_default().to_owned();
     assert_eq!((standing(0).as_str(), standing(1).as_str()), ("not_contradicted", "contradicted"));
@@ -317,7 +350,10 @@ fn the_demo_record_is_judged_on_both_seats() {
     let hoist = fixture("hoist.csv");
     let hoist = hoist.to_str().expect("UTF-8");
     for seat in ["half-sample", "whole-sample"] {
-        let output = endgrain(run.folder(), &["compare", hoist, "--lowpass", "12Hz", "--seat", seat, "--plot", "p.svg", "--force"]);
+        let output = endgrain(
+            run.folder(),
+            &["compare", hoist, "--lowpass", "12Hz", "--seat", seat, "--plot", "p.svg", "--force"],
+        );
         assert!(output.status.success(), "{}", String::from_utf8_lossy(&output.stderr));
         assert!(run.text("p.svg").contains("odd-ends"));
     }

@@ -76,8 +76,9 @@ pub fn refuse_contradictions(stage: &Stage, assertion: &Assertion, chain: &Chain
     match unjudged_chain(chain) {
         Some(reason @ (Unjudged::NoCorner | Unjudged::KeepsOffset)) if rests_on_verdict => {
             let option = if one_sided { format!("--assert {assertion}") } else { format!("--extension {extension}") };
-            Err(Error::usage(format!("{option} rests on a forecast, and there is none: {reason}"))
-                .remedy("add a filter with a corner (--highpass for an integral), assert both ends, or name another extension"))
+            Err(Error::usage(format!("{option} rests on a forecast, and there is none: {reason}")).remedy(
+                "add a filter with a corner (--highpass for an integral), assert both ends, or name another extension",
+            ))
         }
         _ => Ok(()),
     }

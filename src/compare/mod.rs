@@ -71,9 +71,8 @@ pub fn judge(
     let sides = [Side::Left, Side::Right];
     let ahead = past.as_ref().ok().map(|(_, forecast)| sides.map(|side| forecast.continuation(side)));
     // An output that cannot be formed is not judged: the run itself will tell why.
-    let foretold = ahead
-        .as_ref()
-        .and_then(|[left, right]| condition_continued(channel, chain, left, right, seat, planner).ok());
+    let foretold =
+        ahead.as_ref().and_then(|[left, right]| condition_continued(channel, chain, left, right, seat, planner).ok());
     let past = match (&past, &foretold) {
         (Ok((evidence, forecast)), Some(outcome)) => Ok(Past { evidence, forecast, foretold: &outcome.output }),
         (Ok(_), None) => Err(Unjudged::Unformed),

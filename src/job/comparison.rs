@@ -16,9 +16,11 @@ use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Channel;
-use crate::report::{CAUTION, ChannelComparison, Comparison, Curve, InputReport, Jump, Picture, Row, SCHEMA, Tool};
+use crate::report::{
+    CAUTION, ChannelComparison, Comparison, Curve, InputReport, Jump, Picture, Row, SCHEMA, Tool, Veto,
+};
 use crate::settings::Settings;
-use crate::verdict::{Auto, CANDIDATES, Candidate, ODD_ZERO};
+use crate::verdict::{Auto, CANDIDATES, Candidate, EVEN, ODD_ZERO, PERIODIC};
 
 /// Compares the extensions of every channel; pictures are made where they are wanted.
 ///
@@ -68,6 +70,8 @@ fn one(
     let judgement = compare::judge(channel, chain, seat, &settings.tolerance, planner)?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
     let candidates = rows(channel, chain, seat, &judgement, planner)?;
+    let excess = |row: usize| candidates[row].metrics.get("leakage_excess_db").and_then(Value::as_f64);
+    let veto = excess(PERIODIC).zip(excess(EVEN)).and_then(|(periodic, even)| Veto::of(periodic, even));
     let estimates = judgement.estimates;
     let output = match (&chosen.continuation, judgement.row(&chosen)) {
         // The verdict tells already.
@@ -92,6 +96,7 @@ fn one(
         candidates,
         edge: Some(estimates),
         jump: Some(Jump::of(&estimates)),
+        veto,
         trusted: judged.trusted(channel.axis),
     };
     let picture = picture.then(|| draw(channel, chain, seat, &judged, &comparison, planner)).transpose()?;
@@ -99,13 +104,7 @@ fn one(
 }
 
 /// One row an extension; the explanations are measured in the extension's own basis.
-fn rows(
-    channel: Channel<'_>,
-    chain: &Chain,
-    seat: Seat,
-    judgement: &Judgement,
-    planner: &Planner,
-) -> Result<Vec<Row>> {
+fn rows(channel: Channel<'_>, chain: &Chain, seat: Seat, judgement: &Judgement, planner: &Planner) -> Result<Vec<Row>> {
     let edges = judgement.verdict.as_ref().map(|v| v.edges.as_slice()).unwrap_or_default();
     let blank = || METRICS.iter().map(|metric| (metric.key.to_owned(), Value::Null)).collect::<Map<_, _>>();
     let row = |name: &'static str, reference: bool, metrics: Map<String, Value>| {

@@ -59,9 +59,8 @@ impl Judged {
         judgement: Option<Judgement>,
         output: &[f64],
     ) -> Judged {
-        let standings = |judgement: &Judgement| {
-            settings.assertion.standings(judgement, sum::standard_deviation(channel.samples))
-        };
+        let standings =
+            |judgement: &Judgement| settings.assertion.standings(judgement, sum::standard_deviation(channel.samples));
         let known = judgement.as_ref();
         Judged {
             edge: known.and_then(|judgement| judgement.cost(&chosen, output)),

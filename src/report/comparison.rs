@@ -65,8 +65,31 @@ pub struct ChannelComparison {
     pub edge: Option<EndEstimates>,
     /// Differences of the end values and slopes, with standard errors.
     pub jump: Option<Jump>,
+    /// Whether leakage speaks against repeating the record; null where it does not.
+    pub veto: Option<Veto>,
     /// Trusted span of what `condition` would take.
     pub trusted: Option<TrustedReport>,
+}
+
+/// Leakage against an extension: measured on many records, an excess 3 dB above that of even means that periodic is truly
+/// the worse of the two in 92 of 100 cases or more.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+pub struct Veto {
+    /// The extension that it speaks against.
+    pub extension: &'static str,
+    /// Its leakage excess above that of even, in decibels.
+    pub excess_over_even_db: f64,
+}
+
+impl Veto {
+    /// Smallest difference that tells anything.
+    const LEAST_DB: f64 = 3.0;
+
+    /// From the leakage excess of periodic and of even.
+    pub fn of(periodic_db: f64, even_db: f64) -> Option<Veto> {
+        let excess_over_even_db = periodic_db - even_db;
+        (excess_over_even_db >= Self::LEAST_DB).then_some(Veto { extension: "periodic", excess_over_even_db })
+    }
 }
 
 /// How the right end differs from the left: what a periodic extension would join.

@@ -19,7 +19,7 @@ use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
-pub use comparison::{ChannelComparison, Comparison, Jump, Row};
+pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};

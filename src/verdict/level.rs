@@ -73,7 +73,8 @@ impl Pick {
         } else {
             (best, Level::NoClearWinner)
         };
-        let choice_immaterial = level == Level::NoClearWinner && tied.iter().all(|k| edges[*k].adequacy == Adequacy::Within);
+        let choice_immaterial =
+            level == Level::NoClearWinner && tied.iter().all(|k| edges[*k].adequacy == Adequacy::Within);
         Pick { name: CANDIDATES[pick].name, level, ties, margin: Some(margin), choice_immaterial }
     }
 }

@@ -210,7 +210,14 @@ fn what_cannot_be_judged_is_not() {
 }
 
 fn edge(name: &'static str, predicted_error: f64, adequacy: Adequacy) -> Edge {
-    Edge { name: name.into(), predicted_error, relative_error: predicted_error, bound: predicted_error, adequacy, trusted: None }
+    Edge {
+        name: name.into(),
+        predicted_error,
+        relative_error: predicted_error,
+        bound: predicted_error,
+        adequacy,
+        trusted: None,
+    }
 }
 
 #[test]

@@ -58,7 +58,9 @@ impl fmt::Display for Unjudged {
             Unjudged::NoCorner => f.write_str("the operators have no corner"),
             Unjudged::KeepsOffset => f.write_str("an integral without a high-pass keeps zero frequency"),
             Unjudged::Constant => f.write_str("the record is constant"),
-            Unjudged::ConstantTurned => f.write_str("the record is constant, and the extension turns its sign at an end"),
+            Unjudged::ConstantTurned => {
+                f.write_str("the record is constant, and the extension turns its sign at an end")
+            }
             Unjudged::Short => write!(f, "the record is shorter than {SHORTEST_RECORD} samples"),
             Unjudged::Coarse => {
                 write!(f, "a corner wavelength is shorter than {SHORTEST_WAVELENGTH} samples")

@@ -85,6 +85,10 @@ fn channel_text(channel: &ChannelComparison, report: &Comparison) -> String {
             figure(ends.noise, 3)
         ));
     }
+    if let Some(veto) = &channel.veto {
+        let above = figure(veto.excess_over_even_db, 2);
+        text.push_str(&format!("  leakage speaks against {}: {above} dB above even\n", veto.extension));
+    }
     text.push_str(&format!("  {}\n", verdict.sentence));
     text.push_str(&format!("  condition would take {}", channel.takes));
     match &channel.trusted {

@@ -5,9 +5,7 @@ use std::collections::BTreeSet;
 use crate::compare::standings_text;
 use crate::place::escape;
 use crate::report::Report;
-use crate::report::text::{
-    extension_text, figure, indented, input_line, notes_text, table, unmet_text,
-};
+use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table, unmet_text};
 
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
 pub fn summary(report: &Report) -> String {

@@ -12,6 +12,7 @@ use comfy_table::{CellAlignment, Table};
 use crate::compare::How;
 use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
+use crate::unit::counted;
 
 pub use audited::audit_text;
 pub use compared::comparison_text;
@@ -59,7 +60,8 @@ fn axis_text(axis: &AxisReport, samples: usize) -> String {
     let last = axis.start + (samples.saturating_sub(1)) as f64 * axis.step;
     let unit = &axis.unit;
     format!(
-        "{samples} samples, {} {rate_unit} ({how}{interval}), {} {unit} to {} {unit}",
+        "{}, {} {rate_unit} ({how}{interval}), {} {unit} to {} {unit}",
+        counted(samples, "sample"),
         figure(axis.rate, 8),
         figure(axis.start, 10),
         figure(last, 10),
@@ -79,7 +81,10 @@ fn extension_text(extension: &ExtensionReport) -> String {
 
 /// The channels that do not meet the requirement, and why.
 fn unmet_text(unmet: &[Finding]) -> String {
-    unmet.iter().map(|finding| format!("requirement not met: {}\n", crate::place::escape(&finding.to_string()))).collect()
+    unmet
+        .iter()
+        .map(|finding| format!("requirement not met: {}\n", crate::place::escape(&finding.to_string())))
+        .collect()
 }
 
 fn notes_text(notes: &[Finding]) -> String {
