@@ -1,11 +1,12 @@
 //! `compare`: every extension side by side for the wanted operators.
 
 use std::io::Write;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::{Arg, ArgAction, ArgMatches, Command};
 use endgrain::error::{Error, Result};
+use endgrain::job::PageFiles;
 use endgrain::settings::Group;
 use endgrain::write::{Overwrite, Pending};
 use endgrain::{job, report};
@@ -19,6 +20,7 @@ Examples:
   endgrain compare log.csv --lowpass 40Hz
   endgrain compare log.csv --channel ax --bandpass 2Hz..40Hz --tolerance 5%
   endgrain compare profile.csv --lowpass 0.8mm --shape gaussian --plot ends.svg
+  endgrain compare log.csv --lowpass 40Hz --html ends.html
   endgrain compare log.csv --lowpass 40Hz --require within --json
 ";
 
@@ -45,6 +47,7 @@ pub fn command() -> Command {
             .help_heading("Report")
             .help("Replace files that are in the way"),
     )
+    .arg(args::page())
     .after_help(exit::HELP)
 }
 
@@ -61,7 +64,13 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let open = |path: &PathBuf| Pending::create(path, &[], overwrite);
     let plot = plot.as_ref().map(open).transpose()?;
     let json_file = json.as_ref().filter(|path| !stream::is_stdout(path)).map(open).transpose()?;
-    let (comparison, pictures) = job::compare(stream::input(file)?, &settings, plot.is_some())?;
+    let page =
+        matches.get_one::<String>("html").map(|path| PageFiles::create(Path::new(path), &[], overwrite)).transpose()?;
+    let wanted = plot.is_some() || page.is_some();
+    let (comparison, pictures) = job::compare(stream::input(file)?, &settings, wanted)?;
+    if let Some(page) = page {
+        page.write(&comparison, &report::page::comparison_page(&comparison, &pictures))?;
+    }
     let save = |output: Option<Pending<'_>>, text: &dyn Fn() -> Result<String>| {
         let Some(mut output) = output else { return Ok(()) };
         output.write_all(text()?.as_bytes()).map_err(Error::from)?;

@@ -11,16 +11,15 @@ use crate::ends::{Ends, Seat};
 use crate::error::Result;
 use crate::job::intake;
 use crate::job::judgement::{Judged, trusted_report};
+use crate::job::picture::{Scene, draw};
 use crate::job::requirement;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Channel;
-use crate::report::{
-    CAUTION, ChannelComparison, Comparison, Curve, InputReport, Jump, Picture, Row, SCHEMA, Tool, Veto,
-};
+use crate::report::{CAUTION, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool, Veto};
 use crate::settings::Settings;
-use crate::verdict::{Auto, CANDIDATES, Candidate, EVEN, ODD_ZERO, PERIODIC};
+use crate::verdict::{CANDIDATES, EVEN, ODD_ZERO, PERIODIC};
 
 /// Compares the extensions of every channel; pictures are made where they are wanted.
 ///
@@ -99,7 +98,8 @@ fn one(
         veto,
         trusted: judged.trusted(channel.axis),
     };
-    let picture = picture.then(|| draw(channel, chain, seat, &judged, &comparison, planner)).transpose()?;
+    let scene = Scene { takes: &comparison.takes, unit: &comparison.unit, trusted: comparison.trusted };
+    let picture = picture.then(|| draw(channel, chain, seat, &judged, &scene, planner)).transpose()?;
     Ok((comparison, picture))
 }
 
@@ -144,70 +144,4 @@ fn metrics_of(
     let estimates = EndEstimates::of(channel.samples, ends, scale);
     let subject = Subject::of(channel.samples, ends, &baseline, &estimates, planner)?;
     Ok(METRICS.iter().map(|metric| (metric.key.to_owned(), Value::from((metric.measure)(&subject)))).collect())
-}
-
-/// Samples drawn past each end, at most.
-const PAST: usize = 400;
-
-/// The continuations past both ends and the outputs over the edge zones; the record alone where nothing was judged.
-fn draw(
-    channel: Channel<'_>,
-    chain: &Chain,
-    seat: Seat,
-    judged: &Judged,
-    comparison: &ChannelComparison,
-    planner: &Planner,
-) -> Result<Picture> {
-    let samples = channel.samples;
-    let known = judged.judgement.as_ref();
-    let mut curves = Vec::new();
-    if let Some(judgement) = known
-        && let (Some([left, right]), Some(foretold)) = (&judgement.forecast, &judgement.foretold)
-    {
-        let past = left.len().min(PAST).min(samples.len());
-        let sides = [left[..past].to_vec(), right[..past].to_vec()];
-        curves.push(Curve { name: Auto::Forecast.name(), past: sides, output: foretold.output.clone() });
-        for candidate in &CANDIDATES {
-            curves.push(curve(channel, chain, candidate, seat, past, planner)?);
-        }
-    }
-    Ok(Picture {
-        name: channel.name.to_owned(),
-        unit_in: channel.unit.to_string(),
-        unit: comparison.unit.to_string(),
-        axis: channel.axis.clone(),
-        record: samples.to_vec(),
-        curves,
-        deviation: known.map(|judgement| judgement.deviation.clone()).unwrap_or_default(),
-        zone: known.and_then(|judgement| judgement.verdict.as_ref()).map_or(0, |verdict| verdict.zone),
-        takes: comparison.takes.clone(),
-        trusted: comparison.trusted,
-        not_judged: judged.unjudged,
-    })
-}
-
-/// A candidate past both ends, and its output.
-fn curve(
-    channel: Channel<'_>,
-    chain: &Chain,
-    candidate: &Candidate,
-    seat: Seat,
-    past: usize,
-    planner: &Planner,
-) -> Result<Curve> {
-    let (samples, ends) = (channel.samples, candidate.ends.seated(seat));
-    let len = samples.len();
-    let baseline = Baseline::fit(candidate.baseline, samples, ends, scale_of(chain, len))?;
-    let split = baseline.polynomial();
-    let at = |n: i64| split.at(n as f64 + ends.first_position());
-    let outside = |n: i64| {
-        let (source, sign) = ends.fold(len, n).unwrap_or((0, 0.0));
-        sign * (samples[source] - at(source as i64)) + at(n)
-    };
-    let sides = [
-        (0..past as i64).map(|k| outside(-1 - k)).collect(),
-        (0..past as i64).map(|k| outside(len as i64 + k)).collect(),
-    ];
-    let output = condition(channel, chain, ends, candidate.baseline, planner)?.output;
-    Ok(Curve { name: candidate.name, past: sides, output })
 }

@@ -7,7 +7,7 @@ use crate::basis::Planner;
 use crate::error::{Error, Result};
 use crate::job::edges;
 use crate::job::intake;
-use crate::job::judgement;
+use crate::job::judgement::{self, Page};
 use crate::job::origin::{SourceRows, origin_of};
 use crate::job::requirement;
 use crate::job::target::Target;
@@ -15,6 +15,7 @@ use crate::job::work::{self, Worked};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Format;
+use crate::report::page;
 use crate::report::{self, CAUTION, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, WaveEncoding};
@@ -30,7 +31,7 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
     let planner = Planner::new();
     let channels = record.channels().map(|channel| {
-        let (chosen, _) = judgement::choose(channel, &chain, settings, &planner)?;
+        let (chosen, _) = judgement::choose(channel, &chain, settings, &planner, Page::Unwanted)?;
         let (extension, baseline) = work::stage_reports(&chosen, &chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
         Ok(PlannedChannel { name: channel.name.to_owned(), unit, extension, baseline })
@@ -61,7 +62,8 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     intake::refuse_notes(settings, &remarks)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
-    let Worked { record, channels } = work::run(intake.record, &chain, settings)?;
+    let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
+    let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, wanted)?;
     for channel in &channels {
         intake::refuse_notes(settings, &channel.notes)?;
     }
@@ -101,6 +103,9 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     for mut pending in [outputs.sidecar.take(), outputs.json.take()].into_iter().flatten() {
         pending.write_all(json.as_bytes()).map_err(Error::from)?;
         pending.finish()?;
+    }
+    if let Some(files) = outputs.page.take() {
+        files.write(&report, &page::condition_page(&report, &passages))?;
     }
     Ok(report)
 }

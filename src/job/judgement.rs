@@ -27,6 +27,13 @@ pub struct Judged {
     pub standings: Vec<EndStanding>,
 }
 
+/// Whether a page will show what was done: then every channel is judged, and its lines are kept.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Page {
+    Wanted,
+    Unwanted,
+}
+
 /// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or
 /// treatment of the edges is taken as it is: nothing then asks for a verdict.
 ///
@@ -37,12 +44,13 @@ pub fn choose(
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
+    page: Page,
 ) -> Result<(Chosen, Option<Judgement>)> {
     compare::refuse_contradictions(&settings.stage, &settings.assertion, chain)?;
     let fixed = matches!(settings.stage.extension, ExtensionChoice::Fixed(_));
     let edges_matter =
         settings.require.is_some() || settings.is_given("tolerance") || settings.edges != Edges::default();
-    let asked = edges_matter || !settings.assertion.is_empty();
+    let asked = edges_matter || !settings.assertion.is_empty() || page == Page::Wanted;
     let judgement = (asked || !fixed && !chain.is_identity())
         .then(|| compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner))
         .transpose()?;
@@ -90,7 +98,7 @@ impl Judged {
         notes.dedup();
         let asked = settings.stage.extension;
         let rests_on_verdict = matches!(asked, ExtensionChoice::Forecast | ExtensionChoice::Symmetric);
-        if let (true, Some(reason)) = (rests_on_verdict, self.unjudged) {
+        if let (true, Some(reason)) = (rests_on_verdict, self.unjudged.filter(|reason| !reason.is_harmless())) {
             let text = format!("--extension {asked} has nothing to rest on: {reason}; {} is used", self.chosen.name);
             notes.push(Finding::new("extension_not_judged", text));
         }

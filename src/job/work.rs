@@ -9,10 +9,12 @@ use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
 use crate::ends::Seat;
 use crate::error::{Error, Result};
-use crate::job::judgement::{self, Judged};
+use crate::job::judgement::{self, Judged, Page};
+use crate::job::picture::{Scene, draw};
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Channel, Record};
+use crate::report::page::Passage;
 use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport};
 use crate::settings::Settings;
 use crate::verdict::Auto;
@@ -24,29 +26,31 @@ const ALONE_FROM: usize = 1 << 20;
 pub struct Worked {
     pub record: Record,
     pub channels: Vec<ChannelReport>,
+    /// What a page draws, one entry a channel; empty where no page is wanted.
+    pub passages: Vec<Passage>,
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one.
-pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
+pub fn run(record: Record, chain: &Chain, settings: &Settings, page: Page) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
-    let work = |(index, row): (usize, &mut [f64])| -> Result<ChannelReport> {
+    let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Option<Passage>)> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output) = one(channel, chain, settings, &planner)?;
+        let (report, output, passage) = one(channel, chain, settings, &planner, page)?;
         row.copy_from_slice(&output);
-        Ok(report)
+        Ok((report, passage))
     };
-    let reports: Result<Vec<ChannelReport>> = if len >= ALONE_FROM {
+    let worked: Result<Vec<(ChannelReport, Option<Passage>)>> = if len >= ALONE_FROM {
         flat.chunks_mut(len).enumerate().map(work).collect()
     } else {
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
-    let channels = reports?;
+    let (channels, passages): (Vec<_>, Vec<_>) = worked?.into_iter().unzip();
     let units = channels.iter().map(|report| report.unit.clone()).collect();
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
-    Ok(Worked { record, channels })
+    Ok(Worked { record, channels, passages: passages.into_iter().flatten().collect() })
 }
 
 fn one(
@@ -54,8 +58,9 @@ fn one(
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
-) -> Result<(ChannelReport, Vec<f64>)> {
-    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner)?;
+    page: Page,
+) -> Result<(ChannelReport, Vec<f64>, Option<Passage>)> {
+    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
     let seat = settings.stage.seat;
     let outcome = match (&chosen.continuation, foretold(&chosen, judgement.as_mut())) {
         (_, Some(outcome)) => outcome,
@@ -74,7 +79,17 @@ fn one(
     }
     let judged = Judged::of(channel, settings, chosen, judgement, &outcome.output);
     let report = report(channel, chain, settings, &judged, &outcome);
-    Ok((report, outcome.output))
+    let passage = match page {
+        Page::Unwanted => None,
+        Page::Wanted => {
+            let scene = Scene { takes: &report.extension.kind, unit: &report.unit, trusted: report.trusted };
+            let picture = draw(channel, chain, seat, &judged, &scene, planner)?;
+            let same_unit = report.unit == report.unit_in;
+            let picture = Some(picture).filter(|picture| !picture.curves.is_empty());
+            Some(Passage::of(channel, &outcome.output, channel.axis, same_unit, picture))
+        }
+    };
+    Ok((report, outcome.output, passage))
 }
 
 /// The output under the forecast, where that is what was chosen: it is known from judging. Where another row of the verdict

@@ -3,6 +3,7 @@
 mod comparison;
 mod examination;
 mod json;
+pub mod page;
 mod plan;
 mod plot;
 mod text;

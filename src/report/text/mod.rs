@@ -20,6 +20,7 @@ pub use conditioned::summary;
 pub use planned::plan_text;
 
 pub use figure::figure;
+pub(super) use planned::operators_text;
 
 /// A table without rules: first column to the left, the others to the right.
 fn table(header: &[&str]) -> Table {
