@@ -8,8 +8,10 @@ use crate::basis::Planner;
 use crate::error::{Error, Finding, Result};
 use crate::job::edges;
 use crate::job::intake;
+use crate::job::judgement::{self, Judged, Page};
 use crate::job::origin::{SourceRows, origin_of};
 use crate::job::preparation;
+use crate::job::requirement;
 use crate::job::running::{self, Running};
 use crate::job::target::{Opened, Target};
 use crate::job::work::{self, Worked};
@@ -36,11 +38,12 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let channels = record.channels().map(|channel| {
         let prepared = preparation::prepare(channel, &chain, &planner)?;
         let channel = Channel { samples: &prepared.samples, ..channel };
-        let (chosen, judgement) = work::choose(channel, &prepared.chain, settings, &planner, work::Page::Unwanted)?;
-        let (extension, baseline) = work::stage_reports(&chosen, &prepared.chain, settings);
+        let chain = &*prepared.chain;
+        let (chosen, judgement) = judgement::choose(channel, chain, settings, &planner, Page::Unwanted)?;
+        let (extension, baseline) = work::stage_reports(&chosen, chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
-        let edge = work::edge_of(&chosen, judgement.as_ref());
-        let verdict = work::verdict_report(channel, &unit, settings, judgement.as_ref(), edge);
+        let judged = Judged::of(channel, chain, settings, chosen, judgement, &planner)?;
+        let verdict = judged.verdict(channel, &unit);
         Ok(PlannedChannel {
             name: channel.name.to_owned(),
             unit,
@@ -150,8 +153,11 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
     let chain_report = chain.describe(intake.record.axis());
     refuse_columns(settings, format, intake.record.axis())?;
-    let wanted = if outputs.page.is_some() { work::Page::Wanted } else { work::Page::Unwanted };
+    let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
     let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
+    for channel in &channels {
+        intake::refuse_notes(settings, &channel.notes)?;
+    }
 
     let rows = match chain.treatments().resampling {
         None => intake.rows,
@@ -175,10 +181,10 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         digits: settings.decimals.map_or(Digits::Shortest, Digits::Fixed),
         encoding,
     };
-    notes.extend(write::fill(write::writer(format), &content, &mut outputs.record)?);
-    let requirement_met = settings.require.is_none_or(|required| {
-        channels.iter().all(|c| c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required))
-    });
+    let remarks = write::fill(write::writer(format), &content, &mut outputs.record)?;
+    intake::refuse_notes(settings, &remarks)?;
+    notes.extend(remarks);
+    let unmet = requirement::unmet(settings, &channels);
     let written = OutputReport { path: outputs.record.label().to_owned(), sha256: outputs.record.fingerprint() };
     let report = Report {
         schema: SCHEMA,
@@ -189,7 +195,8 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         notes,
         chain: chain_report,
         channels,
-        requirement_met,
+        requirement_met: unmet.is_empty(),
+        unmet,
         outputs: vec![written],
         caution: report::caution(&chain),
     };

@@ -5,10 +5,12 @@ mod conditioning;
 mod edges;
 mod examination;
 mod intake;
+mod judgement;
 mod origin;
 mod picture;
 mod preparation;
 mod running;
+mod requirement;
 mod target;
 mod work;
 

@@ -11,6 +11,7 @@ use crate::numeric::spline::cubic_spline;
 use crate::numeric::sum::{mean, standard_deviation};
 use crate::place::Place;
 use crate::record::{Axis, Record};
+use crate::unit::counted;
 
 use super::RowMap;
 use super::band::edge_frequency;
@@ -98,7 +99,8 @@ pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> 
         channel.values = filled.values;
         if filled.count > 0 {
             let share = filled.count as f64 / channel.values.len() as f64;
-            let mut text = format!("{} samples filled in {} gaps ({})", filled.count, filled.gaps, how);
+            let mut text =
+                format!("{} filled in {} ({how})", counted(filled.count, "sample"), counted(filled.gaps, "gap"));
             if share > 0.05 {
                 text += &format!(": {} % of the record is interpolated", figure((share * 1000.0).round() / 10.0));
             }

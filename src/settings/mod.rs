@@ -85,6 +85,11 @@ impl Settings {
         parse::set(self, row.key, text)
     }
 
+    /// True for a key that was set, if only to its default.
+    pub fn is_given(&self, key: &str) -> bool {
+        self.texts.contains_key(key)
+    }
+
     /// Every setting as resolved, for results: what was not given stands as its default, `null` where it is decided by
     /// the record.
     pub fn to_map(&self) -> Map<String, Value> {

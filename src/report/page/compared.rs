@@ -34,7 +34,8 @@ pub fn comparison_page(report: &Comparison, pictures: &[Picture]) -> Page {
         });
     }
     for (index, channel) in report.channels.iter().enumerate() {
-        let picture = pictures.iter().take(DRAWN).find(|picture| picture.name == channel.name);
+        let picture =
+            pictures.iter().take(DRAWN).find(|picture| picture.name == channel.name && !picture.curves.is_empty());
         sections.push(section(channel, picture, axis, count, index));
     }
     let notes: Vec<_> = report.notes.iter().collect();

@@ -98,7 +98,7 @@ fn candidates(edges: &[Edge], unit: &str) -> Table {
     let head = head.into_iter().chain(["adequacy", "trusted samples"].map(str::to_owned)).collect();
     let rows = edges.iter().map(|edge| {
         vec![
-            Cell::text(edge.name),
+            Cell::text(edge.name.clone()),
             Cell::Number(Some(edge.predicted_error), 3),
             Cell::Number(Some(100.0 * edge.relative_error), 3),
             Cell::Number(Some(edge.bound), 3),

@@ -3,6 +3,7 @@
 use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 use crate::report::{AxisReport, DespikeReport, Plan, SmoothReport, StrengthSource};
+use crate::unit::counted;
 
 /// The plan of a dry run.
 pub fn plan_text(plan: &Plan) -> String {
@@ -132,8 +133,8 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     }
     match chain.reaches.reach {
         Reach::Samples(samples) => text.push_str(&format!(
-            "reach {} samples ({} {}): so far from each end the result depends on what is assumed past it\n",
-            figure(samples, 4),
+            "reach {} ({} {}): so far from each end the result depends on what is assumed past it\n",
+            counted(figure(samples, 4), "sample"),
             figure(samples * axis.step, 4),
             axis.unit
         )),
