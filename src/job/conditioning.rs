@@ -8,7 +8,7 @@ use crate::error::{Error, Finding, Result};
 use crate::job::edges;
 use crate::job::intake;
 use crate::job::origin::{SourceRows, origin_of};
-use crate::job::preparation::prepare;
+use crate::job::preparation::{self, prepare};
 use crate::job::running::{self, Running};
 use crate::job::target::Target;
 use crate::job::work::{self, Worked};
@@ -29,9 +29,10 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let record = &intake.record;
     let axis = record.axis();
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
+    preparation::check(&chain, settings)?;
     let planner = Planner::new();
-    let channels = record.channels().map(|channel| {
-        let prepared = prepare(channel, &chain, &planner)?;
+    let channels = record.channels().enumerate().map(|(index, channel)| {
+        let prepared = prepare(channel, record.missing(index), &chain, settings, &planner)?;
         let channel = Channel { samples: &prepared.samples, ..channel };
         let (chosen, judgement) = work::choose(channel, &prepared.chain, settings, &planner)?;
         let (extension, baseline) = work::stage_reports(&chosen, &prepared.chain, settings);
@@ -73,6 +74,7 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     let (chain, remarks) =
         Chain::resolve(&settings.requests, &settings.shape, intake.record.axis(), intake.record.len())?;
     intake::refuse_notes(settings, &remarks)?;
+    preparation::check(&chain, settings)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
     let chain_report = chain.describe(intake.record.axis());

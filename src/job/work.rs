@@ -34,6 +34,7 @@ pub struct Worked {
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
 pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
+    let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let planner = Planner::new();
@@ -41,7 +42,7 @@ pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked>
     let resampling = chain.treatments().resampling;
     let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Vec<f64>)> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output) = one(channel, chain, settings, &planner)?;
+        let (report, output) = one(channel, &missing[index], chain, settings, &planner)?;
         if resampling.is_some() {
             return Ok((report, output));
         }
@@ -70,11 +71,12 @@ pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked>
 
 fn one(
     channel: Channel<'_>,
+    missing: &[usize],
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
 ) -> Result<(ChannelReport, Vec<f64>)> {
-    let prepared = prepare(channel, chain, planner)?;
+    let prepared = prepare(channel, missing, chain, settings, planner)?;
     let (raw, chain) = (channel, &*prepared.chain);
     let channel = Channel { samples: &prepared.samples, ..channel };
     let (chosen, judgement) = choose(channel, chain, settings, planner)?;
@@ -92,6 +94,15 @@ fn one(
     }
     let mut report = report(raw, chain, settings, &chosen, judgement.as_ref(), &outcome);
     report.notes.extend(prepared.notes);
+    if !chain.is_real() && matches!(chosen.continuation, Continuation::Symmetric(Ends::Mirror { .. }, _)) {
+        let reach = report.reach.samples.map_or_else(|| "the whole record".to_owned(), |r| format!("{} samples", r.ceil()));
+        let text = format!(
+            "{} ends run backwards in time, which no response that shifts phases undoes: within {reach} of an end the result \
+             is not to be trusted; --extension forecast continues forwards",
+            chosen.name
+        );
+        report.notes.push(Finding::new("phase_at_mirror", text).at(Place::channel(channel.name)));
+    }
     report.despike = prepared.despiked;
     report.smoothing = prepared.smoothing.map(|smoothing| SmoothReport { outliers: outcome.outliers, ..smoothing });
     let axis = chain.treatments().resampling.map_or_else(|| channel.axis.clone(), |grid| grid.axis(channel.axis));
