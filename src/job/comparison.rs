@@ -12,7 +12,7 @@ use crate::error::Result;
 use crate::job::intake;
 use crate::job::judgement::{Judged, trusted_report};
 use crate::job::picture::{Scene, draw};
-use crate::job::preparation::prepare;
+use crate::job::preparation::{self, prepare};
 use crate::job::requirement;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
@@ -31,11 +31,13 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
     let record = &intake.record;
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
     intake::refuse_notes(settings, &remarks)?;
+    preparation::check(&chain, settings)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();
     let compared: Vec<(ChannelComparison, Option<Picture>)> = channels
         .par_iter()
-        .map(|channel| one(*channel, &chain, settings, &planner, pictures))
+        .enumerate()
+        .map(|(index, channel)| one(*channel, record.missing(index), &chain, settings, &planner, pictures))
         .collect::<Result<_>>()?;
     let (channels, pictures): (Vec<_>, Vec<_>) = compared.into_iter().unzip();
     for channel in &channels {
@@ -60,13 +62,14 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
 
 fn one(
     channel: Channel<'_>,
+    missing: &[usize],
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
     picture: bool,
 ) -> Result<(ChannelComparison, Option<Picture>)> {
     compare::refuse_contradictions(&settings.stage, &settings.assertion, chain)?;
-    let prepared = prepare(channel, chain, planner)?;
+    let prepared = prepare(channel, missing, chain, settings, planner)?;
     let channel = Channel { samples: &prepared.samples, ..channel };
     let chain = &prepared.chain.on_own_grid();
     let seat = settings.stage.seat;

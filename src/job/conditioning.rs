@@ -34,9 +34,10 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let record = &intake.record;
     let axis = record.axis();
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
+    preparation::check(&chain, settings)?;
     let planner = Planner::new();
-    let channels = record.channels().map(|channel| {
-        let prepared = preparation::prepare(channel, &chain, &planner)?;
+    let channels = record.channels().enumerate().map(|(index, channel)| {
+        let prepared = preparation::prepare(channel, record.missing(index), &chain, settings, &planner)?;
         let channel = Channel { samples: &prepared.samples, ..channel };
         let chain = &*prepared.chain;
         let (chosen, judgement) = judgement::choose(channel, chain, settings, &planner, Page::Unwanted)?;
@@ -149,6 +150,7 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     let (chain, remarks) =
         Chain::resolve(&settings.requests, &settings.shape, intake.record.axis(), intake.record.len())?;
     intake::refuse_notes(settings, &remarks)?;
+    preparation::check(&chain, settings)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
     let chain_report = chain.describe(intake.record.axis());

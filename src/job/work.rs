@@ -8,7 +8,7 @@ use crate::baseline::BaselineKind;
 use crate::basis::Planner;
 use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
-use crate::ends::Seat;
+use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
 use crate::job::picture::{Scene, draw};
@@ -43,13 +43,14 @@ pub fn run(
     planner: &Planner,
     page: Page,
 ) -> Result<Worked> {
+    let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
     let resampling = chain.treatments().resampling;
     let work = |(index, row): (usize, &mut [f64])| -> Result<Finished> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let mut finished = one(channel, chain, settings, planner, page)?;
+        let mut finished = one(channel, &missing[index], chain, settings, planner, page)?;
         if resampling.is_none() {
             row.copy_from_slice(&finished.output);
             finished.output = Vec::new();
@@ -91,12 +92,13 @@ struct Finished {
 
 fn one(
     channel: Channel<'_>,
+    missing: &[usize],
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
     page: Page,
 ) -> Result<Finished> {
-    let prepared = prepare(channel, chain, planner)?;
+    let prepared = prepare(channel, missing, chain, settings, planner)?;
     let (raw, chain) = (channel, &*prepared.chain);
     let channel = Channel { samples: &prepared.samples, ..channel };
     let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
@@ -123,6 +125,15 @@ fn one(
     };
     let mut report = report(channel, raw, chain, settings, &judged, &outcome);
     report.notes.extend(prepared.notes);
+    if !chain.is_real() && matches!(judged.chosen.continuation, Continuation::Symmetric(Ends::Mirror { .. }, _)) {
+        let reach = report.reach.samples.map_or_else(|| "the whole record".to_owned(), |r| format!("{} samples", r.ceil()));
+        let text = format!(
+            "{} ends run backwards in time, which no response that shifts phases undoes: within {reach} of an end the result \
+             is not to be trusted; --extension forecast continues forwards",
+            judged.chosen.name
+        );
+        report.notes.push(Finding::new("phase_at_mirror", text).at(Place::channel(channel.name)));
+    }
     report.despike = prepared.despiked;
     report.smoothing = prepared.smoothing.map(|smoothing| SmoothReport { outliers: outcome.outliers, ..smoothing });
     let axis = chain.treatments().resampling.map_or_else(|| channel.axis.clone(), |grid| grid.axis(channel.axis));

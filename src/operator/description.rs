@@ -6,7 +6,7 @@ use crate::record::Axis;
 
 use super::chain::{Chain, Pass, PassEnds, reaches};
 use super::reach::Reaches;
-use super::resampling::Resampling;
+use super::resampling::ResamplingDescription;
 use super::step::Part;
 
 /// A chain as plain data.
@@ -21,7 +21,7 @@ pub struct ChainDescription {
     /// Smoothing: `auto` where every channel finds its own strength, else the strength; null without smoothing.
     pub smooth: Option<String>,
     /// The new grid; null where the rate stays.
-    pub resampling: Option<Resampling>,
+    pub resampling: Option<ResamplingDescription>,
     /// The passes in their order.
     pub passes: Vec<PassDescription>,
     /// Reaches of all passes together, in samples.
@@ -106,7 +106,7 @@ impl Chain {
             turns: self.turns,
             despike: self.treatments.despike,
             smooth: self.treatments.smoothing.map(|smoothing| smoothing.to_string()),
-            resampling: self.treatments.resampling,
+            resampling: self.treatments.resampling.map(|resampling| resampling.describe(axis)),
             passes: self.passes.iter().map(|pass| describe_pass(pass, axis)).collect(),
             reaches: self.reaches,
             reach: self.reaches.reach.samples().map(|samples| samples * axis.step()),

@@ -36,7 +36,7 @@ pub use kernel::impulse_response;
 pub use range::{CentreWidth, Orders, Range};
 pub use reach::{Reach, Reaches, Scale};
 pub use request::Request;
-pub use resampling::{Resampling, Start};
+pub use resampling::{Resampling, ResamplingDescription, Start};
 pub use shape::{SHAPES, Shape, ShapeRow};
 pub use smoothing::{cut_off, strength_of};
 pub use step::Step;

@@ -4,7 +4,7 @@ use std::sync::Arc;
 
 use serde::Serialize;
 
-use crate::error::{Error, Finding, Result};
+use crate::error::{Error, Result};
 use crate::numeric::rational::Rational;
 use crate::record::{Axis, StatedRate};
 
@@ -136,25 +136,27 @@ fn effect(frame: &Frame<'_>, ratio: Rational, start: Start) -> Result<Effect> {
             gain: Arc::new(LowPass(edge)),
         });
     }
-    let shift = resampling.shift_steps() * frame.axis.step();
-    let (unit, label) = (frame.axis.unit(), frame.axis.frequency_label());
-    let mut text = format!(
-        "resampled from {} to {} {label}: {} samples become {fits}; the first stands at {} {unit}",
-        figure(frame.axis.rate_base()),
-        figure(frame.axis.rate_base() / ratio.value()),
-        frame.len,
-        figure(frame.axis.start() + shift),
-    );
-    match start {
-        Start::Centre => text += &format!(", {} {unit} after the first of the record: half the difference of the steps", figure(shift)),
-        Start::Kept => text += ", as in the record",
-    }
-    Ok(Effect {
-        parts,
-        treatments: Treatments { resampling: Some(resampling), ..Treatments::default() },
-        findings: vec![Finding::new("resampled", text)],
-        ..Effect::default()
-    })
+    let treatments = Treatments { resampling: Some(resampling), ..Treatments::default() };
+    Ok(Effect { parts, treatments, ..Effect::default() })
+}
+
+/// A new grid as reports tell it.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct ResamplingDescription {
+    /// New step over old step, exactly.
+    pub ratio: Rational,
+    /// Rate of the record, in Hz or samples a metre.
+    pub rate_in: f64,
+    /// Rate of the output.
+    pub rate: f64,
+    /// Samples of the output.
+    pub samples: usize,
+    /// Where its first sample stands.
+    pub start: Start,
+    /// How far that is after the first sample of the record, in the unit of the axis.
+    pub shift: f64,
+    /// Its stamp, in the unit of the axis.
+    pub first_stamp: f64,
 }
 
 impl Resampling {
@@ -169,6 +171,20 @@ impl Resampling {
     /// Where sample `m` of the new grid stands, in samples of the old one.
     pub fn place(&self, m: usize) -> f64 {
         self.shift_steps() + m as f64 * self.ratio.value()
+    }
+
+    /// As reports tell it.
+    pub(super) fn describe(&self, axis: &Axis) -> ResamplingDescription {
+        let new = self.axis(axis);
+        ResamplingDescription {
+            ratio: self.ratio,
+            rate_in: axis.rate_base(),
+            rate: new.rate_base(),
+            samples: self.count,
+            start: self.start,
+            shift: self.shift_steps() * axis.step(),
+            first_stamp: new.start(),
+        }
     }
 
     /// The axis of the new grid.

@@ -53,7 +53,7 @@ impl Setting for Correct {
             ))
             .remedy("give a table of the record's own band"));
         }
-        let mut findings = self.remarks(nyquist_hz);
+        let findings = self.remarks(nyquist_hz);
         // Edges are judged by the fastest structure that four samples show.
         let top = high.min(0.25 * rate_hz);
         let points = [(low, "lowest of the table"), (top, "highest of the table")];
@@ -62,11 +62,6 @@ impl Setting for Correct {
             .filter(|&(hz, _)| hz < nyquist_hz && (hz < top || hz == top))
             .map(|(hz, text)| CornerPoint { text: text.to_owned(), cycles: hz / rate_hz })
             .collect();
-        findings.push(Finding::new(
-            "response_edges",
-            "sensor correction looks back in time: a mirrored record runs backwards, and within the reach of an end only \
-             --extension forecast or a closed record is corrected rightly; --edges mark marks what is trusted",
-        ));
         let part = Part {
             kind: "response",
             key: "response",
@@ -82,7 +77,7 @@ impl Setting for Correct {
 impl Correct {
     fn remarks(&self, nyquist_hz: f64) -> Vec<Finding> {
         let (table, path) = (&self.table, &self.path);
-        let [low, high] = table.span_hz();
+        let [_, high] = table.span_hz();
         let mut findings = Vec::new();
         let mut tell = |code, text: String| findings.push(Finding::new(code, text).at(Place::file(path)));
         if !table.has_phase() {
@@ -117,8 +112,6 @@ impl Correct {
             );
             tell("response_held", text);
         }
-        let text = format!("below {} Hz the first point's gain is held, and its phase goes to zero with the frequency", figure(low));
-        tell("response_low", text);
         findings
     }
 }

@@ -86,7 +86,7 @@ static OPTIONS: &[OptionRow] = &[
     row("allow-truncated", "", Switch, Input, "Accept a file whose end is missing, with a note"),
     row("from", "STAMP", Once, Cut, "First stamp to use, with its unit: 2.5s, 30mm"),
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
-    row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default) or fill"),
+    row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default), fill (interpolated as far as the content allows), or smooth (left to --smooth, which bridges them)"),
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
     row("regrid", "HOW", Once, Repair, "What to do with uneven stamps: auto (default) interpolates jittered or drifting ones onto an even grid by a cubic spline, cubic also those that are nearly even, off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),

@@ -1,6 +1,6 @@
 //! A plan for people: what a run would do, and the gain at and around each corner.
 
-use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach};
+use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach, Start};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 use crate::report::{AxisReport, DespikeReport, Plan, SmoothReport, StrengthSource};
 use crate::unit::counted;
@@ -79,6 +79,10 @@ pub fn treated_text(
     text
 }
 
+fn rate_label(axis: &AxisReport) -> &'static str {
+    if axis.kind == "time" { "Hz" } else { "samples/m" }
+}
+
 /// The operators in the order in which they run, and their reach.
 pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     let mut text = String::new();
@@ -110,10 +114,9 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
         if let Some(smooth) = chain.smooth.as_ref().filter(|smooth| smooths || (last && smooth.starts_with("auto"))) {
             parts.push(format!("smooth {smooth}"));
         }
-        if let Some(resampling) = chain.resampling.filter(|_| pass.resamples) {
-            let label = if axis.kind == "time" { "Hz" } else { "samples/m" };
-            let against = if resampling.ratio.value() > 1.0 { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
-            parts.push(format!("resample to {} {label}{against}", figure(axis.rate / resampling.ratio.value(), 8)));
+        if let Some(grid) = chain.resampling.as_ref().filter(|_| pass.resamples) {
+            let against = if grid.rate < grid.rate_in { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
+            parts.push(format!("resample to {} {}{against}", figure(grid.rate, 8), rate_label(axis)));
         }
         if parts.is_empty() {
             parts.push("no operator: a plain conversion".to_owned());
@@ -125,6 +128,24 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
             PassEnds::Chosen => "",
         };
         text.push_str(&format!("{pass_text}{}{ends}\n", parts.join(", ")));
+    }
+    if let Some(grid) = &chain.resampling {
+        let unit = &axis.unit;
+        let kept = match grid.start {
+            Start::Kept => "as in the record".to_owned(),
+            Start::Centre => format!(
+                "{} {unit} {} the first of the record: half the difference of the steps",
+                figure(grid.shift.abs(), 6),
+                if grid.shift < 0.0 { "before" } else { "after" }
+            ),
+        };
+        text.push_str(&format!(
+            "{} samples at {} {} from {} {unit} on, {kept}\n",
+            grid.samples,
+            figure(grid.rate, 8),
+            rate_label(axis),
+            figure(grid.first_stamp, 10)
+        ));
     }
     let plain = |pass: &PassDescription| pass.operators.is_empty();
     let identity = chain.turns == 0 && chain.passes.iter().all(plain);
