@@ -5,6 +5,8 @@ mod choice;
 mod cost;
 mod tolerance;
 
+use realfft::num_complex::Complex;
+
 use crate::baseline::{EndEstimates, Side};
 use crate::basis::Planner;
 use crate::condition::{Outcome, condition, condition_continued, scale_of, scaling};
@@ -50,6 +52,8 @@ pub fn judge(
     tolerance: &ToleranceRequest,
     planner: &Planner,
 ) -> Result<Judgement> {
+    let own = chain.on_own_grid();
+    let chain = &own;
     let samples = channel.samples;
     let len = samples.len();
     let output_unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
@@ -60,7 +64,16 @@ pub fn judge(
     };
     let (_, factor) = scaling(channel, chain);
     let gain = |f: f64| factor * turned(chain.gain(f), f, chain.turns());
-    let response = Response::of(Shape { gain: &gain, turns: chain.turns(), shortest_wavelength }, len);
+    let shape = Shape { gain: &gain, turns: chain.turns(), shortest_wavelength };
+    let response = if chain.is_real() {
+        Response::of(shape, len)
+    } else {
+        let phase = |f: f64| {
+            let response = chain.response(f);
+            if response.norm() > 0.0 { response / response.norm() } else { Complex::new(1.0, 0.0) }
+        };
+        Response::with_phase(shape, &phase, len)
+    };
     let estimates = verdict::estimates(samples, &response, noise);
     let block = Evidence::block_length(shortest_wavelength);
     let evidence = Evidence::gather(samples, block);
@@ -87,7 +100,7 @@ pub fn judge(
         };
         outcome.map_or_else(|_| vec![f64::NAN; len], |outcome| outcome.output)
     };
-    let blocks_tell = chain.passes().len() == 1 && seat == Seat::Half;
+    let blocks_tell = chain.passes().len() == 1 && chain.is_real() && seat == Seat::Half;
     let case = Case {
         samples,
         past,

@@ -5,19 +5,20 @@ use serde_json::{Map, Value};
 
 use crate::baseline::{Baseline, BaselineKind, EndEstimates};
 use crate::basis::Planner;
-use crate::compare::{self, Continuation, Judgement};
-use crate::condition::{condition, condition_continued, scale_of};
+use crate::compare::{self, Judgement};
+use crate::condition::scale_of;
 use crate::ends::{Ends, Seat};
 use crate::error::Result;
 use crate::job::intake;
 use crate::job::judgement::{Judged, trusted_report};
 use crate::job::picture::{Scene, draw};
+use crate::job::preparation::prepare;
 use crate::job::requirement;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Channel;
-use crate::report::{CAUTION, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool, Veto};
+use crate::report::{self, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool, Veto};
 use crate::settings::Settings;
 use crate::verdict::{CANDIDATES, EVEN, ODD_ZERO, PERIODIC};
 
@@ -52,7 +53,7 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
         channels,
         requirement_met: unmet.is_empty(),
         unmet,
-        caution: CAUTION,
+        caution: report::caution(&chain),
     };
     Ok((report, pictures.into_iter().flatten().collect()))
 }
@@ -65,6 +66,9 @@ fn one(
     picture: bool,
 ) -> Result<(ChannelComparison, Option<Picture>)> {
     compare::refuse_contradictions(&settings.stage, &settings.assertion, chain)?;
+    let prepared = prepare(channel, chain, planner)?;
+    let channel = Channel { samples: &prepared.samples, ..channel };
+    let chain = &prepared.chain.on_own_grid();
     let seat = settings.stage.seat;
     let judgement = compare::judge(channel, chain, seat, &settings.tolerance, planner)?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
@@ -72,15 +76,7 @@ fn one(
     let excess = |row: usize| candidates[row].metrics.get("leakage_excess_db").and_then(Value::as_f64);
     let veto = excess(PERIODIC).zip(excess(EVEN)).and_then(|(periodic, even)| Veto::of(periodic, even));
     let estimates = judgement.estimates;
-    let output = match (&chosen.continuation, judgement.row(&chosen)) {
-        // The verdict tells already.
-        (_, Some(_)) => Vec::new(),
-        (Continuation::Symmetric(ends, baseline), None) => condition(channel, chain, *ends, *baseline, planner)?.output,
-        (Continuation::Given([left, right]), None) => {
-            condition_continued(channel, chain, left, right, seat, planner)?.output
-        }
-    };
-    let judged = Judged::of(channel, settings, chosen, Some(judgement), &output);
+    let judged = Judged::of(channel, chain, settings, chosen, Some(judgement), planner)?;
     let unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
     let comparison = ChannelComparison {
         name: channel.name.to_owned(),

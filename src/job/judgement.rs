@@ -1,8 +1,8 @@
 //! What a run takes past the ends of a channel, what it was judged by, and what is reported of that.
 
 use crate::basis::Planner;
-use crate::compare::{self, Chosen, EndStanding, Judgement, Standing};
-use crate::condition::ExtensionChoice;
+use crate::compare::{self, Chosen, Continuation, EndStanding, Judgement, Standing};
+use crate::condition::{ExtensionChoice, condition, condition_continued};
 use crate::error::{Finding, Result};
 use crate::numeric::sum;
 use crate::operator::Chain;
@@ -59,8 +59,33 @@ pub fn choose(
 }
 
 impl Judged {
-    /// From the output that the choice led to.
+    /// Of a channel on its own grid; the choice is conditioned only where the verdict has no row for it.
+    ///
+    /// # Errors
+    /// Those of `condition`.
     pub fn of(
+        channel: Channel<'_>,
+        chain: &Chain,
+        settings: &Settings,
+        chosen: Chosen,
+        judgement: Option<Judgement>,
+        planner: &Planner,
+    ) -> Result<Judged> {
+        let known = judgement.as_ref().is_none_or(|judgement| judgement.row(&chosen).is_some());
+        let output = match &chosen.continuation {
+            _ if known => Vec::new(),
+            Continuation::Symmetric(ends, baseline) => {
+                condition(channel, &chain.on_own_grid(), *ends, *baseline, planner)?.output
+            }
+            Continuation::Given([left, right]) => {
+                condition_continued(channel, &chain.on_own_grid(), left, right, settings.stage.seat, planner)?.output
+            }
+        };
+        Ok(Judged::by_output(channel, settings, chosen, judgement, &output))
+    }
+
+    /// From the output that the choice led to.
+    pub fn by_output(
         channel: Channel<'_>,
         settings: &Settings,
         chosen: Chosen,

@@ -8,11 +8,13 @@ mod intake;
 mod judgement;
 mod origin;
 mod picture;
+mod preparation;
+mod running;
 mod requirement;
 mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, plan};
+pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
 pub use target::{PageFiles, Target};

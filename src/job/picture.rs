@@ -9,7 +9,7 @@ use crate::error::Result;
 use crate::job::judgement::Judged;
 use crate::operator::Chain;
 use crate::record::Channel;
-use crate::report::{Curve, Picture, TrustedReport};
+use crate::report::{ChannelReport, Curve, Picture, TrustedReport};
 use crate::unit::Unit;
 use crate::verdict::{Auto, CANDIDATES, Candidate};
 
@@ -21,6 +21,17 @@ pub struct Scene<'a> {
     pub unit: &'a Unit,
     /// What is trusted.
     pub trusted: Option<TrustedReport>,
+}
+
+impl<'a> Scene<'a> {
+    /// Of a conditioned channel.
+    pub fn of(report: &'a ChannelReport) -> Scene<'a> {
+        Scene {
+            takes: &report.extension.kind,
+            unit: &report.unit,
+            trusted: report.trusted,
+        }
+    }
 }
 
 /// Samples drawn past each end, at most.

@@ -1,5 +1,6 @@
 //! The computation of a job: every channel judged, continued, conditioned and reported.
 
+use ndarray::Array2;
 use rayon::prelude::*;
 
 use crate::audit::level::Level;
@@ -8,16 +9,20 @@ use crate::basis::Planner;
 use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
 use crate::ends::Seat;
-use crate::error::{Error, Result};
-use crate::job::judgement::{self, Judged, Page};
+use crate::error::{Error, Finding, Result};
+use crate::job::judgement::{self, Judged, Page, trusted_report};
 use crate::job::picture::{Scene, draw};
+use crate::job::preparation::prepare;
+use crate::metric::exposure::Exposure;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Channel, Record};
 use crate::report::page::Passage;
-use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport};
+use crate::report::{
+    BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport,
+};
 use crate::settings::Settings;
-use crate::verdict::Auto;
+use crate::verdict::{Auto, Trusted};
 
 /// A channel this long is worked on alone: several at once would hold several times its transform memory.
 const ALONE_FROM: usize = 1 << 20;
@@ -30,27 +35,58 @@ pub struct Worked {
     pub passages: Vec<Passage>,
 }
 
-/// Conditions all channels; rows of the sample array are replaced one by one.
-pub fn run(record: Record, chain: &Chain, settings: &Settings, page: Page) -> Result<Worked> {
+/// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
+pub fn run(
+    record: Record,
+    chain: &Chain,
+    settings: &Settings,
+    planner: &Planner,
+    page: Page,
+) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
-    let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
-    let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Option<Passage>)> {
+    let resampling = chain.treatments().resampling;
+    let work = |(index, row): (usize, &mut [f64])| -> Result<Finished> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output, passage) = one(channel, chain, settings, &planner, page)?;
-        row.copy_from_slice(&output);
-        Ok((report, passage))
+        let mut finished = one(channel, chain, settings, planner, page)?;
+        if resampling.is_none() {
+            row.copy_from_slice(&finished.output);
+            finished.output = Vec::new();
+        }
+        Ok(finished)
     };
-    let worked: Result<Vec<(ChannelReport, Option<Passage>)>> = if len >= ALONE_FROM {
+    let worked: Result<Vec<Finished>> = if len >= ALONE_FROM {
         flat.chunks_mut(len).enumerate().map(work).collect()
     } else {
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
-    let (channels, passages): (Vec<_>, Vec<_>) = worked?.into_iter().unzip();
+    let mut channels = Vec::with_capacity(names.len());
+    let (mut outputs, mut passages) = (Vec::new(), Vec::new());
+    for finished in worked? {
+        channels.push(finished.report);
+        outputs.push(finished.output);
+        passages.extend(finished.passage);
+    }
     let units = channels.iter().map(|report| report.unit.clone()).collect();
+    let (axis, samples) = match resampling {
+        None => (axis, samples),
+        Some(resampling) => {
+            let shape = (channels.len(), resampling.count);
+            let grid = Array2::from_shape_vec(shape, outputs.concat())
+                .map_err(|_| Error::unsupported("channels came out with different numbers of samples"))?;
+            (resampling.axis(&axis), grid)
+        }
+    };
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
-    Ok(Worked { record, channels, passages: passages.into_iter().flatten().collect() })
+    Ok(Worked { record, channels, passages })
+}
+
+/// A channel that is done.
+struct Finished {
+    report: ChannelReport,
+    output: Vec<f64>,
+    passage: Option<Passage>,
 }
 
 fn one(
@@ -59,10 +95,14 @@ fn one(
     settings: &Settings,
     planner: &Planner,
     page: Page,
-) -> Result<(ChannelReport, Vec<f64>, Option<Passage>)> {
+) -> Result<Finished> {
+    let prepared = prepare(channel, chain, planner)?;
+    let (raw, chain) = (channel, &*prepared.chain);
+    let channel = Channel { samples: &prepared.samples, ..channel };
     let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
     let seat = settings.stage.seat;
-    let outcome = match (&chosen.continuation, foretold(&chosen, judgement.as_mut())) {
+    let known = foretold(&chosen, judgement.as_mut()).filter(|_| chain.treatments().resampling.is_none());
+    let outcome = match (&chosen.continuation, known) {
         (_, Some(outcome)) => outcome,
         (Continuation::Symmetric(ends, baseline), None) => {
             condition::condition(channel, chain, *ends, *baseline, planner)?
@@ -77,19 +117,53 @@ fn one(
             .at(place)
             .remedy("scale the channel with --calibrate"));
     }
-    let judged = Judged::of(channel, settings, chosen, judgement, &outcome.output);
-    let report = report(channel, chain, settings, &judged, &outcome);
+    let judged = match chain.treatments().resampling {
+        None => Judged::by_output(channel, settings, chosen, judgement, &outcome.output),
+        Some(_) => Judged::of(channel, chain, settings, chosen, judgement, planner)?,
+    };
+    let mut report = report(channel, raw, chain, settings, &judged, &outcome);
+    report.notes.extend(prepared.notes);
+    report.despike = prepared.despiked;
+    report.smoothing = prepared.smoothing.map(|smoothing| SmoothReport { outliers: outcome.outliers, ..smoothing });
+    let axis = chain.treatments().resampling.map_or_else(|| channel.axis.clone(), |grid| grid.axis(channel.axis));
+    if let Some(weighting) = chain.treatments().weighting {
+        let running_s = settings.running_rms.unwrap_or(DEFAULT_RUNNING_S);
+        let exposure = Exposure::of(&outcome.output, &outcome.unit, &axis, weighting.name, running_s);
+        report.notes.extend(exposure_notes(channel, &exposure, report.trusted.as_ref()));
+        report.exposure = Some(exposure);
+    }
     let passage = match page {
         Page::Unwanted => None,
         Page::Wanted => {
-            let scene = Scene { takes: &report.extension.kind, unit: &report.unit, trusted: report.trusted };
-            let picture = draw(channel, chain, seat, &judged, &scene, planner)?;
-            let same_unit = report.unit == report.unit_in;
+            let picture = draw(channel, &chain.on_own_grid(), seat, &judged, &Scene::of(&report), planner)?;
             let picture = Some(picture).filter(|picture| !picture.curves.is_empty());
-            Some(Passage::of(channel, &outcome.output, channel.axis, same_unit, picture))
+            Some(Passage::of(raw, &outcome.output, &axis, report.unit == report.unit_in, picture))
         }
     };
-    Ok((report, outcome.output, passage))
+    Ok(Finished { report, output: outcome.output, passage })
+}
+
+/// Integration time of the running RMS that ISO 2631-1:1997, 6.3.1, recommends.
+const DEFAULT_RUNNING_S: f64 = 1.0;
+
+/// What the figures of an exposure rest on, where that is doubtful.
+fn exposure_notes(channel: Channel<'_>, exposure: &Exposure, trusted: Option<&TrustedReport>) -> Vec<Finding> {
+    let mut notes = Vec::new();
+    let mut say = |code, text: String| notes.push(Finding::new(code, text).at(Place::channel(channel.name)));
+    if channel.unit.meaning().is_none_or(|m| (m.length, m.time) != (1, -2)) {
+        let text = format!(
+            "weighted as if it were an acceleration, but its unit is \"{}\": give it by --unit or --calibrate",
+            channel.unit
+        );
+        say("weighting_unit", text);
+    }
+    if let (Some(at), Some(trusted)) = (exposure.mtvv_at, trusted)
+        && !(trusted.from..=trusted.to).contains(&at)
+    {
+        let text = "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
+        say("mtvv_untrusted", text.to_owned());
+    }
+    notes
 }
 
 /// The output under the forecast, where that is what was chosen: it is known from judging. Where another row of the verdict
@@ -119,12 +193,13 @@ pub fn stage_reports(chosen: &Chosen, chain: &Chain, settings: &Settings) -> (Ex
 
 fn report(
     channel: Channel<'_>,
+    raw: Channel<'_>,
     chain: &Chain,
     settings: &Settings,
     judged: &Judged,
     outcome: &Outcome,
 ) -> ChannelReport {
-    let (before, after) = (Level::of(channel.samples), Level::of(&outcome.output));
+    let (before, after) = (Level::of(raw.samples), Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
     let (extension, _) = stage_reports(&judged.chosen, chain, settings);
@@ -156,7 +231,16 @@ fn report(
         assertions: judged.standings.clone(),
         candidates: judgement.and_then(|j| j.verdict.as_ref()).map(|v| v.edges.clone()).unwrap_or_default(),
         edge: judgement.map(|j| j.estimates),
-        trusted: judged.trusted(channel.axis),
+        trusted: judged.trusted(channel.axis).and_then(|span| match chain.treatments().resampling {
+            None => Some(span),
+            Some(grid) => {
+                let (first, last) = grid.within(span.first, span.last, channel.samples.len())?;
+                Some(trusted_report(Trusted { first, last }, &grid.axis(channel.axis)))
+            }
+        }),
+        despike: None,
+        smoothing: None,
+        exposure: None,
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
         parseval: outcome.parseval,

@@ -3,6 +3,7 @@
 mod audited;
 mod compared;
 mod conditioned;
+mod exposed;
 mod figure;
 mod planned;
 
