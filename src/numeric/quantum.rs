@@ -43,7 +43,7 @@ mod tests {
         let logged: Vec<f64> = ramp.iter().map(|v| (v * 4.0).round() / 4.0).collect();
         assert_eq!(rounding(&logged), 0.25);
         // Values that never come twice, but with noise, count as rounded to their smallest gap.
-        let rough: Vec<f64> = (0..1000).map(|n| f64::from(n * 7919 % 1009)).collect();
+        let rough: Vec<f64> = (0..1000).map(|n| f64::from(n * n).sin()).collect();
         assert_eq!(rounding(&rough), step(&rough));
         assert_eq!(rounding(&[4.0; 9]), 0.0);
     }

@@ -216,7 +216,18 @@ fn panel<'a, 'b, 'p>(
         x = (x.0.min(px), x.1.max(px));
         y = (y.0.min(py), y.1.max(py));
     }
-    let margin = (0.05 * (y.1 - y.0)).max(1e-9 * y.0.abs().max(y.1.abs())).max(f64::MIN_POSITIVE);
+    let largest = y.0.abs().max(y.1.abs());
+    let margin = match y.1 - y.0 {
+        // A constant stands in the middle of a range whose labels tell something.
+        0.0 => {
+            if largest > 0.0 {
+                0.1 * largest
+            } else {
+                1.0
+            }
+        }
+        height => (0.05 * height).max(1e-9 * largest),
+    };
     let mut chart = ChartBuilder::on(area)
         .caption(caption, ("sans-serif", 15))
         .margin(8)

@@ -26,8 +26,9 @@ impl Scale {
         if low > high {
             return Scale { spacing, low: 0.0, high: 1.0 };
         }
-        // A line without height still needs an axis: a millionth of its value, or 1 around nothing.
-        let least = if spacing == Spacing::Logarithmic { 0.5 } else { 1e-6 * low.abs().max(high.abs()) };
+        // A line without height still needs an axis: a thousand-millionth of its value, or 1 around nothing. Seconds
+        // counted from 1970 differ by no more within a short record.
+        let least = if spacing == Spacing::Logarithmic { 0.5 } else { 1e-9 * low.abs().max(high.abs()) };
         let range = if high - low > least {
             high - low
         } else if least > 0.0 {
