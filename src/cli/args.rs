@@ -5,7 +5,7 @@ use clap::{Arg, ArgAction, ArgMatches, Command};
 use endgrain::error::Result;
 use endgrain::settings::{Arity, Group, Settings, rows};
 
-use crate::cli::{audit, compare, condition, exit};
+use crate::cli::{audit, compare, condition, exit, spectrum};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -20,6 +20,7 @@ pub fn command() -> Command {
   endgrain audit log.csv
   endgrain compare log.csv --lowpass 40Hz --plot ends.svg
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
+  endgrain spectrum log.csv --segment 0.5Hz --plot spectrum.svg
   endgrain condition log.wav --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.wav
 ",
         ))
@@ -30,6 +31,7 @@ pub fn command() -> Command {
         .disable_help_subcommand(true)
         .subcommand(condition::command())
         .subcommand(compare::command())
+        .subcommand(spectrum::command())
         .subcommand(audit::command())
 }
 

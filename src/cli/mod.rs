@@ -5,6 +5,7 @@ mod audit;
 mod compare;
 mod condition;
 mod exit;
+mod spectrum;
 mod stream;
 
 use std::process::ExitCode;
@@ -18,6 +19,7 @@ pub fn run() -> ExitCode {
     let outcome = match matches.subcommand() {
         Some(("condition", matches)) => condition::run(matches),
         Some(("compare", matches)) => compare::run(matches),
+        Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };

@@ -6,10 +6,12 @@ mod edges;
 mod examination;
 mod intake;
 mod origin;
+mod spectrum;
 mod target;
 mod work;
 
 pub use comparison::compare;
 pub use conditioning::{condition, plan};
 pub use examination::audit;
+pub use spectrum::spectrum;
 pub use target::Target;

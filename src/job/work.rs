@@ -56,6 +56,18 @@ fn one(
     settings: &Settings,
     planner: &Planner,
 ) -> Result<(ChannelReport, Vec<f64>)> {
+    let (chosen, judgement, outcome) = outcome(channel, chain, settings, planner)?;
+    let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
+    Ok((report, outcome.output))
+}
+
+/// One channel conditioned, with the continuation it took and the judgement that rests on.
+pub fn outcome(
+    channel: Channel<'_>,
+    chain: &Chain,
+    settings: &Settings,
+    planner: &Planner,
+) -> Result<(Chosen, Option<Judgement>, Outcome)> {
     let (chosen, judgement) = choose(channel, chain, settings, planner)?;
     let outcome = match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
@@ -69,8 +81,7 @@ fn one(
             .at(place)
             .remedy("scale the channel with --calibrate"));
     }
-    let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
-    Ok((report, outcome.output))
+    Ok((chosen, judgement, outcome))
 }
 
 /// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or

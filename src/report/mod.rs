@@ -5,6 +5,8 @@ mod examination;
 mod json;
 mod plan;
 mod plot;
+mod spectral;
+mod spectral_plot;
 mod text;
 
 use serde::Serialize;
@@ -25,7 +27,13 @@ pub use examination::AuditReport;
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
-pub use text::{audit_text, comparison_text, plan_text, summary};
+pub use spectral::{
+    BandReport, ChannelSpectrum, CoefficientReport, CoefficientSeries, CoefficientsReport, DensityReport,
+    DensitySeries, LineReport, OctaveReport, Ratio, RoadReport, SPECTRUM_CAUTION, SegmentsReport, SpectrumReport,
+    SumCheck, Trace, WindowReport,
+};
+pub use spectral_plot::spectrum_svg;
+pub use text::{audit_text, comparison_text, plan_text, spectrum_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;

@@ -1,6 +1,7 @@
 //! Everything that changes a result, under one name each: command line, recipes and JSON share these keys.
 
 mod parse;
+mod spectral;
 mod table;
 
 use std::collections::BTreeMap;
@@ -16,6 +17,7 @@ use crate::record::Format;
 use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
+pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
@@ -33,6 +35,8 @@ pub struct Settings {
     pub shape: Shape,
     /// What is known about the ends.
     pub assertion: Assertion,
+    /// How a spectrum is formed and what is read from it.
+    pub spectrum: SpectrumOptions,
     /// Edge error that is tolerable.
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.

@@ -5,6 +5,7 @@ mod compared;
 mod conditioned;
 mod figure;
 mod planned;
+mod spectral;
 
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
@@ -17,6 +18,7 @@ pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
+pub use spectral::spectrum_text;
 
 use figure::figure;
 
