@@ -214,7 +214,8 @@ fn robust(
 ) -> Result<(Passed, usize)> {
     let at = |n: usize| baseline.polynomial().at(n as f64 + ends.first_position());
     let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
-    let Robust { values, weights, .. } = Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
+    let Robust { values, weights, .. } =
+        Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
     let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
     Ok((Passed { output, parseval: 0.0 }, weights.iter().filter(|w| **w == 0.0).count()))
 }

@@ -219,7 +219,8 @@ fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()
         return Ok(());
     }
     if format == Format::Wav {
-        return Err(Error::usage("--running-rms: a WAV file has no room for further columns").remedy("write CSV with --format csv"));
+        return Err(Error::usage("--running-rms: a WAV file has no room for further columns")
+            .remedy("write CSV with --format csv"));
     }
     if !axis.is_time() {
         return Err(Error::usage(format!("--running-rms: the record's axis is a length in {}", axis.unit()))

@@ -9,12 +9,14 @@ mod judgement;
 mod origin;
 mod picture;
 mod preparation;
-mod running;
 mod requirement;
+mod running;
+mod spectrum;
 mod target;
 mod work;
 
 pub use comparison::compare;
 pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
+pub use spectrum::spectrum;
 pub use target::{PageFiles, Target};

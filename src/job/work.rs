@@ -18,9 +18,7 @@ use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Channel, Record};
 use crate::report::page::Passage;
-use crate::report::{
-    BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport,
-};
+use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport};
 use crate::settings::Settings;
 use crate::verdict::{Auto, Trusted};
 
@@ -36,13 +34,7 @@ pub struct Worked {
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
-pub fn run(
-    record: Record,
-    chain: &Chain,
-    settings: &Settings,
-    planner: &Planner,
-    page: Page,
-) -> Result<Worked> {
+pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Worked> {
     let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
@@ -101,24 +93,8 @@ fn one(
     let prepared = prepare(channel, missing, chain, settings, planner)?;
     let (raw, chain) = (channel, &*prepared.chain);
     let channel = Channel { samples: &prepared.samples, ..channel };
-    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
     let seat = settings.stage.seat;
-    let known = foretold(&chosen, judgement.as_mut()).filter(|_| chain.treatments().resampling.is_none());
-    let outcome = match (&chosen.continuation, known) {
-        (_, Some(outcome)) => outcome,
-        (Continuation::Symmetric(ends, baseline), None) => {
-            condition::condition(channel, chain, *ends, *baseline, planner)?
-        }
-        (Continuation::Given([left, right]), None) => {
-            condition::condition_continued(channel, chain, left, right, seat, planner)?
-        }
-    };
-    if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
-        let place = Place { sample: Some(n as u64), ..Place::channel(channel.name) };
-        return Err(Error::unsupported("the result is too large for a double")
-            .at(place)
-            .remedy("scale the channel with --calibrate"));
-    }
+    let (chosen, judgement, outcome) = outcome(channel, chain, settings, planner, page)?;
     let judged = match chain.treatments().resampling {
         None => Judged::by_output(channel, settings, chosen, judgement, &outcome.output),
         Some(_) => Judged::of(channel, chain, settings, chosen, judgement, planner)?,
@@ -126,7 +102,8 @@ fn one(
     let mut report = report(channel, raw, chain, settings, &judged, &outcome);
     report.notes.extend(prepared.notes);
     if !chain.is_real() && matches!(judged.chosen.continuation, Continuation::Symmetric(Ends::Mirror { .. }, _)) {
-        let reach = report.reach.samples.map_or_else(|| "the whole record".to_owned(), |r| format!("{} samples", r.ceil()));
+        let reach =
+            report.reach.samples.map_or_else(|| "the whole record".to_owned(), |r| format!("{} samples", r.ceil()));
         let text = format!(
             "{} ends run backwards in time, which no response that shifts phases undoes: within {reach} of an end the result \
              is not to be trusted; --extension forecast continues forwards",
@@ -154,6 +131,37 @@ fn one(
     Ok(Finished { report, output: outcome.output, passage })
 }
 
+/// A prepared channel conditioned, with the continuation it took and the judgement that rests on.
+///
+/// # Errors
+/// Those of choosing and conditioning; `Unsupported` for a result too large for a double.
+pub fn outcome(
+    channel: Channel<'_>,
+    chain: &Chain,
+    settings: &Settings,
+    planner: &Planner,
+    page: Page,
+) -> Result<(Chosen, Option<Judgement>, Outcome)> {
+    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
+    let known = foretold(&chosen, judgement.as_mut()).filter(|_| chain.treatments().resampling.is_none());
+    let outcome = match (&chosen.continuation, known) {
+        (_, Some(outcome)) => outcome,
+        (Continuation::Symmetric(ends, baseline), None) => {
+            condition::condition(channel, chain, *ends, *baseline, planner)?
+        }
+        (Continuation::Given([left, right]), None) => {
+            condition::condition_continued(channel, chain, left, right, settings.stage.seat, planner)?
+        }
+    };
+    if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
+        let place = Place { sample: Some(n as u64), ..Place::channel(channel.name) };
+        return Err(Error::unsupported("the result is too large for a double")
+            .at(place)
+            .remedy("scale the channel with --calibrate"));
+    }
+    Ok((chosen, judgement, outcome))
+}
+
 /// Integration time of the running RMS that ISO 2631-1:1997, 6.3.1, recommends.
 const DEFAULT_RUNNING_S: f64 = 1.0;
 
@@ -171,7 +179,8 @@ fn exposure_notes(channel: Channel<'_>, exposure: &Exposure, trusted: Option<&Tr
     if let (Some(at), Some(trusted)) = (exposure.mtvv_at, trusted)
         && !(trusted.from..=trusted.to).contains(&at)
     {
-        let text = "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
+        let text =
+            "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
         say("mtvv_untrusted", text.to_owned());
     }
     notes

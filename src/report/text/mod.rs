@@ -6,6 +6,7 @@ mod conditioned;
 mod exposed;
 mod figure;
 mod planned;
+mod spectral;
 
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
@@ -19,6 +20,7 @@ pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
+pub use spectral::spectrum_text;
 
 pub use figure::figure;
 pub(super) use planned::operators_text;
