@@ -110,7 +110,7 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         outputs.push(filled(json, report::to_json(&found)?.as_bytes())?);
     }
     if let Some(sidecar) = sidecar {
-        outputs.push(filled(sidecar, report::to_json(&found.without_series())?.as_bytes())?);
+        outputs.push(filled(sidecar, report::to_json(&found.clone().without_series())?.as_bytes())?);
     }
     finish_together(outputs, Durability::Handed)?;
     if json_to_stdout {
