@@ -7,6 +7,7 @@ mod examination;
 mod intake;
 mod judgement;
 mod origin;
+mod passage;
 mod picture;
 mod preparation;
 mod requirement;

@@ -11,6 +11,7 @@ use crate::condition::{self, Outcome};
 use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
+use crate::job::passage::passage;
 use crate::job::picture::{Scene, draw};
 use crate::job::preparation::prepare;
 use crate::metric::exposure::Exposure;
@@ -125,7 +126,7 @@ fn one(
         Page::Wanted => {
             let picture = draw(channel, &chain.on_own_grid(), seat, &judged, &Scene::of(&report), planner)?;
             let picture = Some(picture).filter(|picture| !picture.curves.is_empty());
-            Some(Passage::of(raw, &outcome.output, &axis, report.unit == report.unit_in, picture))
+            Some(passage(raw, &outcome.output, &axis, chain, &report, picture, planner))
         }
     };
     Ok(Finished { report, output: outcome.output, passage })
