@@ -150,7 +150,7 @@ mod tests {
     fn ticks_are_round() {
         assert_eq!(texts(Spacing::Linear, 0.0, 12.0), ["0", "5", "10"]);
         assert_eq!(texts(Spacing::Linear, -0.1, 0.1), ["\u{2212}0.10", "\u{2212}0.05", "0.00", "0.05", "0.10"]);
-        assert_eq!(texts(Spacing::Logarithmic, 0.5, 60.0), ["1", "2", "5", "10", "20", "50"]);
+        assert_eq!(texts(Spacing::Logarithmic, 0.5, 60.0), ["0.5", "1", "2", "5", "10", "20", "50"]);
     }
 
     #[test]
