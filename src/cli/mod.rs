@@ -2,9 +2,13 @@
 
 mod args;
 mod audit;
+mod batch;
 mod compare;
 mod condition;
 mod exit;
+mod machine;
+mod progress;
+mod spectrum;
 mod stream;
 
 use std::process::ExitCode;
@@ -18,7 +22,9 @@ pub fn run() -> ExitCode {
     let outcome = match matches.subcommand() {
         Some(("condition", matches)) => condition::run(matches),
         Some(("compare", matches)) => compare::run(matches),
+        Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
+        Some(("batch", matches)) => batch::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };
     match outcome {

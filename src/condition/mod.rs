@@ -118,9 +118,15 @@ pub fn condition_with(
     Ok(Outcome { output, unit, ends, baseline, scale, parseval, outliers })
 }
 
+/// What a continued record itself is conditioned under: even reflection, with the baseline that goes with it.
+pub fn beyond(seat: Seat, chain: &Chain) -> (Ends, BaselineKind) {
+    let ends = Ends::EVEN.seated(seat);
+    (ends, default_baseline(ends, chain))
+}
+
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
 ///
-/// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
+/// The continued record runs through the whole chain as `beyond` says, and the
 /// channel's own samples are cut out again. Integrals start at rest at the channel's own left end.
 ///
 /// # Errors
@@ -133,10 +139,10 @@ pub fn condition_continued(
     seat: Seat,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let ends = Ends::EVEN.seated(seat);
+    let (ends, kind) = beyond(seat, chain);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
-    let baseline = fitted(default_baseline(ends, chain), &continued, chain, ends, scale, planner)?;
+    let baseline = fitted(kind, &continued, chain, ends, scale, planner)?;
     let (unit, factor) = scaling(channel, chain);
     let lead = left.len();
     let (Passed { mut output, parseval }, outliers) =
@@ -208,7 +214,8 @@ fn robust(
 ) -> Result<(Passed, usize)> {
     let at = |n: usize| baseline.polynomial().at(n as f64 + ends.first_position());
     let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
-    let Robust { values, weights, .. } = Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
+    let Robust { values, weights, .. } =
+        Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
     let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
     Ok((Passed { output, parseval: 0.0 }, weights.iter().filter(|w| **w == 0.0).count()))
 }

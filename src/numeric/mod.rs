@@ -7,6 +7,7 @@ pub mod compensated;
 pub mod covariance;
 pub mod fourier;
 pub mod lag;
+pub mod leading_number;
 pub mod monotone;
 pub mod noise;
 pub mod polynomial;

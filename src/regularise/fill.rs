@@ -11,10 +11,11 @@ use crate::numeric::spline::cubic_spline;
 use crate::numeric::sum::{mean, standard_deviation};
 use crate::place::Place;
 use crate::record::{Axis, Record};
+use crate::unit::counted;
 
-use super::{Gaps, RowMap};
 use super::band::edge_frequency;
 use super::table::Table;
+use super::{Gaps, RowMap};
 
 /// Largest gap, in cycles of the band edge, that a cubic crosses (error 3e-4 of the RMS without noise).
 const CUBIC_CYCLES: f64 = 0.1;
@@ -101,7 +102,8 @@ pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> 
         channel.values = filled.values;
         if filled.count > 0 {
             let share = filled.count as f64 / channel.values.len() as f64;
-            let mut text = format!("{} samples filled in {} gaps ({})", filled.count, filled.gaps, how);
+            let mut text =
+                format!("{} filled in {} ({how})", counted(filled.count, "sample"), counted(filled.gaps, "gap"));
             if share > 0.05 {
                 text += &format!(": {} % of the record is interpolated", figure((share * 1000.0).round() / 10.0));
             }

@@ -3,8 +3,11 @@
 mod comparison;
 mod examination;
 mod json;
+pub mod page;
 mod plan;
 mod plot;
+mod spectral;
+mod spectral_plot;
 mod text;
 mod treatment;
 
@@ -13,22 +16,27 @@ use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
 use crate::baseline::EndEstimates;
-use crate::compare::How;
-use crate::compare::Standing;
+use crate::compare::{EndStanding, How, Standing};
 use crate::error::Finding;
 use crate::metric::exposure::Exposure;
 use crate::operator::{Chain, ChainDescription};
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
-use crate::verdict::{self, Adequacy, Edge, Structure};
+use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
-pub use comparison::{ChannelComparison, Comparison, Jump, Row};
+pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
+pub use spectral::{
+    BandReport, ChannelSpectrum, CoefficientReport, CoefficientSeries, CoefficientsReport, DensityReport,
+    DensitySeries, LineReport, OctaveReport, Ratio, RoadReport, SPECTRUM_CAUTION, SegmentsReport, SpectrumReport,
+    SumCheck, Trace, WindowReport,
+};
+pub use spectral_plot::spectrum_svg;
+pub use text::{audit_text, comparison_text, figure, plan_text, spectrum_text, summary};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
-pub use text::{audit_text, comparison_text, plan_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -54,6 +62,8 @@ pub struct Report {
     pub channels: Vec<ChannelReport>,
     /// False where `--require` was not met.
     pub requirement_met: bool,
+    /// The channels that did not meet it, and why.
+    pub unmet: Vec<Finding>,
     /// What was written.
     pub outputs: Vec<OutputReport>,
     /// What results of this kind may and may not be used for.
@@ -177,6 +187,10 @@ pub struct ChannelReport {
     pub reach: ReachReport,
     /// What the record's ends support, and at what cost; null where the chain has nothing to judge.
     pub verdict: Option<VerdictReport>,
+    /// Why nothing is known about the edges; null where they were judged, and where nothing asked for it.
+    pub not_judged: Option<Unjudged>,
+    /// How each assertion stands against the record, end by end.
+    pub assertions: Vec<EndStanding>,
     /// Every candidate at the edges: predicted error, bound, adequacy, trusted span.
     pub candidates: Vec<Edge>,
     /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.
@@ -224,7 +238,7 @@ pub struct VerdictReport {
     pub zone: usize,
     /// How smoothly the ends join.
     pub joins: Structure,
-    /// How an assertion stands against the record.
+    /// How the assertions stand against the record: the worst of the ends.
     pub assertion: Option<Standing>,
     /// In words.
     pub sentence: String,

@@ -3,6 +3,7 @@
 use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach, Start};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 use crate::report::{AxisReport, DespikeReport, Plan, SmoothReport, StrengthSource};
+use crate::unit::counted;
 
 /// The plan of a dry run.
 pub fn plan_text(plan: &Plan) -> String {
@@ -114,7 +115,8 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
             parts.push(format!("smooth {smooth}"));
         }
         if let Some(grid) = chain.resampling.as_ref().filter(|_| pass.resamples) {
-            let against = if grid.rate < grid.rate_in { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
+            let against =
+                if grid.rate < grid.rate_in { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
             parts.push(format!("resample to {} {}{against}", figure(grid.rate, 8), rate_label(axis)));
         }
         if parts.is_empty() {
@@ -153,8 +155,8 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     }
     match chain.reaches.reach {
         Reach::Samples(samples) => text.push_str(&format!(
-            "reach {} samples ({} {}): so far from each end the result depends on what is assumed past it\n",
-            figure(samples, 4),
+            "reach {} ({} {}): so far from each end the result depends on what is assumed past it\n",
+            counted(figure(samples, 4), "sample"),
             figure(samples * axis.step, 4),
             axis.unit
         )),
