@@ -36,6 +36,7 @@ pub mod baseline;
 pub mod basis;
 pub mod operator;
 pub mod forecast;
+pub mod integral;
 pub mod condition;
 pub mod metric;
 pub mod verdict;

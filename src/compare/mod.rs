@@ -48,7 +48,7 @@ pub fn judge(
     let samples = channel.samples;
     let len = samples.len();
     let output_unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
-    let tolerance = tolerance.resolve(&output_unit)?;
+    let tolerance = tolerance.resolve("--tolerance", &output_unit)?;
     let noise = noise::sigma(samples);
     let (_, factor) = scaling(channel, chain);
     let gain = |f: f64| factor * turned(chain.gain(f), f, chain.turns());

@@ -2,6 +2,7 @@
 
 mod choice;
 mod pass;
+mod run;
 
 use crate::baseline::{Baseline, BaselineKind, Scale};
 use crate::basis::Planner;
@@ -13,6 +14,9 @@ use crate::unit::Unit;
 
 pub use choice::{ExtensionChoice, Stage};
 pub use pass::{Passed, apply};
+pub use run::Integral;
+
+use run::Scene;
 
 /// What conditioning made of one channel: the only input of metrics and reports.
 #[derive(Debug, Clone)]
@@ -29,6 +33,8 @@ pub struct Outcome {
     pub scale: Scale,
     /// Relative energy difference between remainder and coefficients in the first pass: rounding only.
     pub parseval: f64,
+    /// What the end conditions made of an integral; `None` without one.
+    pub integral: Option<Integral>,
 }
 
 /// The fit widths for a record of `len` samples under a chain.
@@ -84,15 +90,24 @@ pub fn condition_with(
     scale: Scale,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let (unit, factor) = scaling(channel, chain);
-    let (output, parseval) = run(channel.samples, chain, ends, &baseline, 0.0, factor, planner)?;
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    let scene = Scene::of(channel, chain, ends, planner)?;
+    let span = [0.0, ends.length(channel.samples.len())];
+    let ran = run::passes(&scene, channel.samples, ends, &baseline, span)?;
+    Ok(Outcome {
+        output: ran.output,
+        unit: scene.unit,
+        ends,
+        baseline,
+        scale,
+        parseval: ran.parseval,
+        integral: ran.integral,
+    })
 }
 
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
 ///
 /// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
-/// channel's own samples are cut out again. Integrals start at rest at the channel's own left end.
+/// channel's own samples are cut out again. End conditions of an integral hold at the channel's own ends.
 ///
 /// # Errors
 /// As `condition`.
@@ -108,12 +123,44 @@ pub fn condition_continued(
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
     let baseline = Baseline::fit(default_baseline(ends, chain), &continued, ends, scale)?;
-    let (unit, factor) = scaling(channel, chain);
-    let rest = left.len() as f64;
-    let (mut output, parseval) = run(&continued, chain, ends, &baseline, rest, factor, planner)?;
-    output.truncate(left.len() + channel.samples.len());
-    output.drain(..left.len());
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    let scene = Scene::of(channel, chain, ends, planner)?;
+    let (start, len) = (left.len(), channel.samples.len());
+    let ran = run::passes(&scene, &continued, ends, &baseline, own_span(start, len, ends))?;
+    let output = own(ran.output, start, len);
+    Ok(Outcome { output, unit: scene.unit, ends, baseline, scale, parseval: ran.parseval, integral: ran.integral })
+}
+
+/// The record that the integral of `outcome` is the integral of, in the record's unit: filtered, less the offset and drift
+/// that the end conditions found, high-passed under even reflection. `past` is the continuation that was used, if any.
+///
+/// # Errors
+/// As `condition`.
+pub fn corrected(
+    channel: Channel<'_>,
+    chain: &Chain,
+    outcome: &Outcome,
+    past: Option<[&[f64]; 2]>,
+    planner: &Planner,
+) -> Result<Vec<f64>> {
+    let constants = outcome.integral.as_ref().map(|integral| integral.constants).unwrap_or_default();
+    let [left, right] = past.unwrap_or([&[], &[]]);
+    let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
+    let (start, len) = (left.len(), channel.samples.len());
+    let span = own_span(start, len, outcome.ends);
+    let all = run::corrected(chain, &continued, outcome.ends, &outcome.baseline, span, constants, planner)?;
+    Ok(own(all, start, len))
+}
+
+/// The stretch of `len` samples from sample `start` on between mirrors of its own, in steps from the left mirror.
+fn own_span(start: usize, len: usize, ends: Ends) -> [f64; 2] {
+    [start as f64, start as f64 + ends.length(len)]
+}
+
+/// `len` samples from sample `start` on.
+fn own(mut all: Vec<f64>, start: usize, len: usize) -> Vec<f64> {
+    all.truncate(start + len);
+    all.drain(..start);
+    all
 }
 
 /// Unit of the output, and the factor that brings numbers formed in steps into it.
@@ -123,35 +170,3 @@ pub fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     (unit, channel.axis.step_base().powi(-turns) * factor)
 }
 
-/// All passes of a chain; the output and the Parseval check of the first.
-fn run(
-    samples: &[f64],
-    chain: &Chain,
-    ends: Ends,
-    baseline: &Baseline,
-    rest: f64,
-    factor: f64,
-    planner: &Planner,
-) -> Result<(Vec<f64>, f64)> {
-    let mut parseval = 0.0;
-    let mut output: Option<Vec<f64>> = None;
-    for pass in chain.passes().iter().filter(|pass| !pass.is_identity()) {
-        let passed = match &output {
-            None => {
-                let mut passed = apply(samples, ends, baseline, pass, rest, planner)?;
-                parseval = passed.parseval;
-                if factor != 1.0 {
-                    passed.output.iter_mut().for_each(|v| *v *= factor);
-                }
-                passed
-            }
-            Some(so_far) => {
-                let even = Ends::EVEN.seated(ends.seat());
-                let nothing = Baseline::fit(BaselineKind::None, so_far, even, Scale::assumed(so_far.len()))?;
-                apply(so_far, even, &nothing, pass, rest, planner)?
-            }
-        };
-        output = Some(passed.output);
-    }
-    Ok((output.unwrap_or_else(|| samples.to_vec()), parseval))
-}

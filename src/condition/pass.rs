@@ -4,6 +4,7 @@ use crate::baseline::Baseline;
 use crate::basis::{Planner, series};
 use crate::ends::{Ends, Parity};
 use crate::error::Result;
+use crate::integral::Arrival;
 use crate::numeric::polynomial::Polynomial;
 use crate::numeric::sum;
 use crate::operator::Pass;
@@ -15,12 +16,14 @@ pub struct Passed {
     pub output: Vec<f64>,
     /// Relative difference between the energy of the remainder and that of its coefficients: rounding only.
     pub parseval: f64,
+    /// Where integrals arrive at the end of the span, in steps; zero without integrals.
+    pub arrival: Arrival,
 }
 
 /// Applies `pass` to `samples` under `ends` after splitting `baseline` off.
 ///
 /// Derivatives are per step and integrals in steps: the caller multiplies by step^(-turns). Integrals start at rest: the
-/// first is zero at `rest` (in steps from the left mirror), and so is the second.
+/// first is zero at the start of `span` (in steps from the left mirror), and so is the second.
 ///
 /// # Errors
 /// `Unsupported` for a record of no samples.
@@ -29,7 +32,7 @@ pub fn apply(
     ends: Ends,
     baseline: &Baseline,
     pass: &Pass,
-    rest: f64,
+    span: [f64; 2],
     planner: &Planner,
 ) -> Result<Passed> {
     let len = samples.len();
@@ -58,8 +61,9 @@ pub fn apply(
     }
     multiply(&mut work, ends, pass);
     let mut polynomial = turned(pass.carry(&carried), turns);
+    let mut arrival = Arrival::default();
     if turns < 0 {
-        polynomial = from_rest(polynomial, &work, ends, turns, rest);
+        (polynomial, arrival) = from_rest(polynomial, &work, ends, turns, span);
     }
     if turns.rem_euclid(2) == 1 {
         plan.inverse_turned(&mut work, &mut scratch);
@@ -71,7 +75,7 @@ pub fn apply(
             *value += polynomial.at(position(n));
         }
     }
-    Ok(Passed { output: work, parseval })
+    Ok(Passed { output: work, parseval, arrival })
 }
 
 /// Sum of w x^2 with the weight 1/2 on even whole-sample mirrors.
@@ -135,12 +139,20 @@ fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
 }
 
 /// The integrated polynomial with the constant, and after a second integral the slope, that make it and the integrated
-/// series together zero at `rest`.
-fn from_rest(polynomial: Polynomial, coefficients: &[f64], ends: Ends, turns: i32, rest: f64) -> Polynomial {
+/// series together zero at the start of the span; and where both integrals then arrive at its end.
+fn from_rest(
+    polynomial: Polynomial,
+    coefficients: &[f64],
+    ends: Ends,
+    turns: i32,
+    [start, end]: [f64; 2],
+) -> (Polynomial, Arrival) {
     let len = coefficients.len();
     if turns == -1 {
-        let start = series::turned_value_at(ends, len, coefficients, rest) + polynomial.at(rest);
-        return polynomial.plus_constant(-start);
+        let first = |p: &Polynomial, x: f64| series::turned_value_at(ends, len, coefficients, x) + p.at(x);
+        let polynomial = polynomial.clone().plus_constant(-first(&polynomial, start));
+        let arrival = Arrival { first: first(&polynomial, end), second: 0.0 };
+        return (polynomial, arrival);
     }
     // The slope of the second integral is the first: a sine becomes omega times a cosine, a cosine minus omega a sine.
     let slopes: Vec<f64> = coefficients
@@ -151,9 +163,13 @@ fn from_rest(polynomial: Polynomial, coefficients: &[f64], ends: Ends, turns: i3
             if is_cosine(ends, k) { -omega * c } else { omega * c }
         })
         .collect();
-    let slope = series::turned_value_at(ends, len, &slopes, rest) + polynomial.derivative().at(rest);
-    let start = series::value_at(ends, len, coefficients, rest) + polynomial.at(rest);
-    polynomial.plus_constant(slope * rest - start).plus_slope(-slope)
+    let first = |p: &Polynomial, x: f64| series::turned_value_at(ends, len, &slopes, x) + p.derivative().at(x);
+    let second = |p: &Polynomial, x: f64| series::value_at(ends, len, coefficients, x) + p.at(x);
+    let slope = first(&polynomial, start);
+    let at_start = second(&polynomial, start);
+    let polynomial = polynomial.plus_constant(slope * start - at_start).plus_slope(-slope);
+    let arrival = Arrival { first: first(&polynomial, end), second: second(&polynomial, end) };
+    (polynomial, arrival)
 }
 
 /// The polynomial after `turns` derivatives (positive) or integrals from x = 0 (negative).

@@ -9,6 +9,7 @@ use crate::compare::{self, Judgement};
 use crate::condition::{condition, condition_continued, scale_of};
 use crate::ends::Ends;
 use crate::error::Result;
+use crate::job::chain;
 use crate::job::intake;
 use crate::job::work;
 use crate::metric::{METRICS, Subject};
@@ -26,7 +27,7 @@ use crate::verdict::{CANDIDATES, ODD_ZERO};
 pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Comparison, Vec<Picture>)> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+    let (chain, remarks) = chain::of(record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();

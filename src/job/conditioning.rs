@@ -5,12 +5,12 @@ use std::path::Path;
 
 use crate::basis::Planner;
 use crate::error::{Error, Result};
+use crate::job::chain;
 use crate::job::edges;
 use crate::job::intake;
 use crate::job::origin::{SourceRows, origin_of};
 use crate::job::target::Target;
 use crate::job::work::{self, Worked};
-use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Format;
 use crate::report::{self, CAUTION, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
@@ -25,7 +25,7 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
     let axis = record.axis();
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
+    let (chain, remarks) = chain::of(record, settings)?;
     let planner = Planner::new();
     let channels = record.channels().map(|channel| {
         let (chosen, _) = work::choose(channel, &chain, settings, &planner)?;
@@ -54,18 +54,20 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
 
     let intake = intake::take(input, settings)?;
     let format = format_of(settings, named.as_deref(), intake.outline.source.format);
-    let (chain, remarks) =
-        Chain::resolve(&settings.requests, &settings.shape, intake.record.axis(), intake.record.len())?;
+    let (chain, remarks) = chain::of(&intake.record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
-    let Worked { record, channels } = work::run(intake.record, &chain, settings)?;
+    let Worked { record, channels, columns } = work::run(intake.record, &chain, settings)?;
 
-    let (record, rows) = edges::trimmed(record, intake.rows, &channels, settings)?;
+    let kept = edges::kept(&channels, record.len(), settings)?;
+    let beside = edges::beside(&columns, &kept);
+    let (record, rows) = edges::trimmed(record, intake.rows, &kept)?;
     let rows = SourceRows::of(&rows);
     let origin = origin_of(&intake.outline, &record, format, rows.as_ref())?;
     let marks = edges::marks(&channels, record.len(), settings);
-    let extra: Vec<_> = marks.iter().map(edges::Mark::column).collect();
+    let extra: Vec<_> =
+        beside.iter().map(edges::Beside::column).chain(marks.iter().map(edges::Mark::column)).collect();
     let shown = edges::shown(&channels, settings);
     let content = Content {
         record: &record,

@@ -1,10 +1,12 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod chain;
 mod comparison;
 mod conditioning;
 mod edges;
 mod examination;
 mod intake;
+mod integral;
 mod origin;
 mod target;
 mod work;

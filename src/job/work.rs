@@ -9,6 +9,7 @@ use crate::compare::{self, Chosen, Continuation, How, Judgement};
 use crate::condition::{self, ExtensionChoice, Outcome};
 use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::integral::{self, Column};
 use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
@@ -25,6 +26,8 @@ const ALONE_FROM: usize = 1 << 20;
 pub struct Worked {
     pub record: Record,
     pub channels: Vec<ChannelReport>,
+    /// What stands beside the channels.
+    pub columns: Vec<Column>,
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one.
@@ -33,21 +36,21 @@ pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked>
     let len = axis.len();
     let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
-    let work = |(index, row): (usize, &mut [f64])| -> Result<ChannelReport> {
+    let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Vec<Column>)> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output) = one(channel, chain, settings, &planner)?;
+        let (report, output, columns) = one(channel, chain, settings, &planner)?;
         row.copy_from_slice(&output);
-        Ok(report)
+        Ok((report, columns))
     };
-    let reports: Result<Vec<ChannelReport>> = if len >= ALONE_FROM {
+    let worked: Result<Vec<_>> = if len >= ALONE_FROM {
         flat.chunks_mut(len).enumerate().map(work).collect()
     } else {
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
-    let channels = reports?;
+    let (channels, columns): (Vec<ChannelReport>, Vec<Vec<Column>>) = worked?.into_iter().unzip();
     let units = channels.iter().map(|report| report.unit.clone()).collect();
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
-    Ok(Worked { record, channels })
+    Ok(Worked { record, channels, columns: columns.into_iter().flatten().collect() })
 }
 
 fn one(
@@ -55,7 +58,7 @@ fn one(
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
-) -> Result<(ChannelReport, Vec<f64>)> {
+) -> Result<(ChannelReport, Vec<f64>, Vec<Column>)> {
     let (chosen, judgement) = choose(channel, chain, settings, planner)?;
     let outcome = match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
@@ -69,8 +72,18 @@ fn one(
             .at(place)
             .remedy("scale the channel with --calibrate"));
     }
-    let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
-    Ok((report, outcome.output))
+    let mut report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
+    let past = match &chosen.continuation {
+        Continuation::Given([left, right]) => Some([left.as_slice(), right.as_slice()]),
+        Continuation::Symmetric(..) => None,
+    };
+    let mut columns = Vec::new();
+    if let Some(formed) = integral::form(channel, chain, settings, &outcome, past, planner)? {
+        report.notes.extend(formed.notes);
+        report.integral = Some(formed.report);
+        columns = formed.columns;
+    }
+    Ok((report, outcome.output, columns))
 }
 
 /// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or
@@ -156,6 +169,7 @@ fn report(
         trusted: edge.and_then(|edge| edge.trusted).map(|span| trusted_report(span.first, span.last, channel.axis)),
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
+        integral: None,
         parseval: outcome.parseval,
     }
 }

@@ -6,6 +6,7 @@ use crate::error::{Error, Finding, Result};
 use crate::numeric::polynomial::Polynomial;
 use crate::record::Axis;
 
+use super::conditions::{Conditions, Offset};
 use super::corner::figure;
 use super::gain::Series;
 use super::reach::{Reach, Reaches, Scale};
@@ -22,6 +23,8 @@ pub struct Chain {
     pub(super) passes: Vec<Pass>,
     pub(super) turns: i32,
     pub(super) reaches: Reaches,
+    pub(super) conditions: Conditions,
+    pub(super) offset: Option<Offset>,
 }
 
 /// One transform, multiplication and inverse transform.
@@ -83,11 +86,30 @@ impl Chain {
             let reaches = Reaches::of(|f| product(&parts, f), turns, scale(&parts));
             let (high, band): (Vec<Part>, Vec<Part>) = parts.into_iter().partition(|part| part.stage == Stage::High);
             let passes = vec![pass(band, turns, PassEnds::Chosen), pass(high, 0, PassEnds::EvenWithoutBaseline)];
-            return Chain { shape, passes, turns, reaches };
+            return Chain { shape, passes, turns, reaches, conditions: Conditions::StartRest, offset: None };
         }
         let pass = pass(parts, turns, PassEnds::Chosen);
         let reaches = pass.reaches;
-        Chain { shape, passes: vec![pass], turns, reaches }
+        Chain { shape, passes: vec![pass], turns, reaches, conditions: Conditions::StartRest, offset: None }
+    }
+
+    /// The same chain with other end conditions of its integral, and the sensor's offset where they take one. As resolved,
+    /// integrals start at rest.
+    #[must_use]
+    pub fn with_conditions(mut self, conditions: Conditions, offset: Option<Offset>) -> Chain {
+        self.conditions = conditions;
+        self.offset = offset;
+        self
+    }
+
+    /// The end conditions of its integral; of no account without one.
+    pub fn conditions(&self) -> &Conditions {
+        &self.conditions
+    }
+
+    /// The sensor's offset, where one is given.
+    pub fn offset(&self) -> Option<&Offset> {
+        self.offset.as_ref()
     }
 
     /// The passes in the order of the run: one or two.
@@ -139,6 +161,17 @@ impl Pass {
     /// Gain at `f` cycles per sample (0..=0.5), without the power of frequency of integrals and derivatives.
     pub fn gain(&self, f: f64) -> f64 {
         product(&self.parts, f)
+    }
+
+    /// The same gains with other turns.
+    #[must_use]
+    pub fn with_turns(&self, turns: i32) -> Pass {
+        Pass { turns, ..self.clone() }
+    }
+
+    /// The lowest corner in cycles per sample; `None` without a corner.
+    pub fn lowest_corner(&self) -> Option<f64> {
+        self.parts.iter().flat_map(|part| &part.corners).map(|corner| corner.cycles).min_by(f64::total_cmp)
     }
 
     /// Taylor series of the gain at zero frequency.

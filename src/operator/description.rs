@@ -15,6 +15,10 @@ pub struct ChainDescription {
     pub shape: String,
     /// Derivatives (positive) or integrals (negative).
     pub turns: i32,
+    /// End conditions of the integral, as written; null without one.
+    pub conditions: Option<String>,
+    /// The sensor's offset taken off before the integral, as written; null where none is given.
+    pub offset: Option<String>,
     /// The passes in their order.
     pub passes: Vec<PassDescription>,
     /// Reaches of all passes together, in samples.
@@ -93,6 +97,8 @@ impl Chain {
         ChainDescription {
             shape: self.shape.to_string(),
             turns: self.turns,
+            conditions: (self.turns < 0).then(|| self.conditions.to_string()),
+            offset: self.offset.as_ref().filter(|_| self.turns < 0).map(ToString::to_string),
             passes: self.passes.iter().map(|pass| describe_pass(pass, axis)).collect(),
             reaches: self.reaches,
             reach: self.reaches.reach.samples().map(|samples| samples * axis.step()),

@@ -6,12 +6,14 @@
 
 mod band;
 mod chain;
+mod conditions;
 mod corner;
 mod description;
 mod edge;
 mod gain;
 mod kernel;
 mod notch;
+mod quantity;
 mod range;
 mod reach;
 mod request;
@@ -21,10 +23,12 @@ mod table;
 mod turn;
 
 pub use chain::{Chain, Pass, PassEnds};
+pub use conditions::{CONDITIONS, Conditions, ConditionsRow, Drift, Needs, Offset};
 pub use corner::{Corner, Measure};
 pub use description::{ChainDescription, CheckPoint, CornerDescription, OperatorDescription, PassDescription};
 pub use gain::Series;
 pub use kernel::impulse_response;
+pub use quantity::Quantity;
 pub use range::{CentreWidth, Range};
 pub use reach::{Reach, Reaches, Scale};
 pub use request::Request;

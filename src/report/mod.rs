@@ -2,6 +2,7 @@
 
 mod comparison;
 mod examination;
+mod integral;
 mod json;
 mod plan;
 mod plot;
@@ -22,10 +23,11 @@ use crate::verdict::{self, Adequacy, Edge, Structure};
 
 pub use comparison::{ChannelComparison, Comparison, Jump, Row};
 pub use examination::AuditReport;
+pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
-pub use text::{audit_text, comparison_text, plan_text, summary};
+pub use text::{audit_text, comparison_text, figure as number, plan_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -174,6 +176,8 @@ pub struct ChannelReport {
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
+    /// Constants and uncertainty of an integral; null without one.
+    pub integral: Option<IntegralReport>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }

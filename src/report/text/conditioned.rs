@@ -4,6 +4,7 @@ use std::collections::BTreeSet;
 
 use crate::place::escape;
 use crate::report::Report;
+use crate::report::text::integrated::integral_text;
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
@@ -37,6 +38,11 @@ pub fn summary(report: &Report) -> String {
     for channel in &report.channels {
         if let Some(verdict) = &channel.verdict {
             text.push_str(&format!("{}: {}\n", escape(&channel.name), verdict.sentence));
+        }
+    }
+    for channel in &report.channels {
+        if let Some(integral) = &channel.integral {
+            text.push_str(&integral_text(&channel.name, integral, &channel.unit, &report.input.axis));
         }
     }
     text.push_str(&notes_text(&report.notes));

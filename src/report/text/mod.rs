@@ -4,6 +4,7 @@ mod audited;
 mod compared;
 mod conditioned;
 mod figure;
+mod integrated;
 mod planned;
 
 use comfy_table::presets::NOTHING;
@@ -18,7 +19,7 @@ pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
 
-use figure::figure;
+pub use figure::figure;
 
 /// A table without rules: first column to the left, the others to the right.
 fn table(header: &[&str]) -> Table {

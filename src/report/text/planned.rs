@@ -51,7 +51,11 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
         match pass.turns {
             0 => {}
             turns if turns > 0 => parts.push(format!("differentiate {turns}")),
-            turns => parts.push(format!("integrate {}, starting at rest", -turns)),
+            turns => {
+                let conditions = chain.conditions.as_deref().unwrap_or_default();
+                parts.push(format!("integrate {}, end conditions {conditions}", -turns));
+                parts.extend(chain.offset.as_ref().map(|offset| format!("offset {offset} taken off")));
+            }
         }
         if parts.is_empty() {
             parts.push("no operator: a plain conversion".to_owned());
