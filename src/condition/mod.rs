@@ -48,12 +48,12 @@ pub fn scale_of(chain: &Chain, len: usize) -> Scale {
     }
 }
 
-/// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `slopes` for
+/// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `tangents` for
 /// integrals and derivatives with even ends (their kink is what an even extension adds), otherwise none.
 pub fn default_baseline(ends: Ends, chain: &Chain) -> BaselineKind {
     match ends {
         Ends::Mirror { left, right, .. } if left != right => BaselineKind::Level(None),
-        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Slopes,
+        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Tangents,
         _ => BaselineKind::None,
     }
 }

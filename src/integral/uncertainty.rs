@@ -149,7 +149,7 @@ fn integrated(trial: &Trial<'_>, k: usize, tried: f64) -> Result<Vec<f64>> {
 pub fn high_pass_area(gain: impl Fn(f64) -> f64, turns: i32) -> f64 {
     let power = 2 * turns.abs();
     // Trapezoid over ln u; u^(1 - power) falls by ten orders of magnitude or is added in closed form.
-    let (low, high, count) = (1e-4_f64, 1e4_f64, 4000);
+    let (low, high, count) = (1e-4_f64, 1e4_f64, 8000);
     let step = (high / low).ln() / f64::from(count);
     let term = |u: f64| gain(u).powi(2) * u.powi(1 - power);
     let inner: f64 = (1..count).map(|n| term(low * (f64::from(n) * step).exp())).sum();

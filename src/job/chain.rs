@@ -19,6 +19,10 @@ const MOVING: f64 = 0.3;
 /// for end conditions that the motion at the record's ends speaks against, unless they are insisted on.
 pub fn of(record: &Record, settings: &Settings) -> Result<(Chain, Vec<Finding>)> {
     let (chain, findings) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+    if chain.turns() != 0 && settings.requests.iter().any(|request| request.step().key == "split") {
+        return Err(Error::usage("--split parts the record itself, not its derivative or integral")
+            .remedy("leave out --split, or run it on the result"));
+    }
     if chain.turns() >= 0 {
         let stray = [("conditions", settings.conditions.is_some()), ("offset", settings.offset.is_some())];
         let stray = stray.into_iter().chain([("beside", !settings.beside.is_empty())]).find(|(_, given)| *given);

@@ -8,6 +8,7 @@ use crate::error::{Error, Result};
 use crate::job::chain;
 use crate::job::edges;
 use crate::job::intake;
+use crate::job::split;
 use crate::job::origin::{SourceRows, origin_of};
 use crate::job::target::Target;
 use crate::job::work::{self, Worked};
@@ -55,6 +56,9 @@ pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Resul
     let intake = intake::take(input, settings)?;
     let format = format_of(settings, named.as_deref(), intake.outline.source.format);
     let (chain, remarks) = chain::of(&intake.record, settings)?;
+    if format == Format::Wav && (split::corner(settings).is_some() || !settings.beside.is_empty()) {
+        return Err(Error::usage("--split and --beside write columns, and a WAV file has none").remedy("use --format csv"));
+    }
     intake::refuse_notes(settings, &remarks)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());

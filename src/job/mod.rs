@@ -3,11 +3,13 @@
 mod chain;
 mod comparison;
 mod conditioning;
+mod derivative;
 mod edges;
 mod examination;
 mod intake;
 mod integral;
 mod origin;
+mod split;
 mod target;
 mod work;
 

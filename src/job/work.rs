@@ -7,9 +7,10 @@ use crate::baseline::BaselineKind;
 use crate::basis::Planner;
 use crate::compare::{self, Chosen, Continuation, How, Judgement};
 use crate::condition::{self, ExtensionChoice, Outcome};
-use crate::ends::{Ends, Seat};
+use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Finding, Result};
 use crate::job::integral::{self, Column};
+use crate::job::{derivative, split};
 use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
@@ -35,10 +36,12 @@ pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked>
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let planner = Planner::new();
+    let primary = split::primary(settings, &axis, len)?;
+    let run = Run { chain, primary: primary.as_ref(), settings, planner: &planner };
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
     let work = |(index, row): (usize, &mut [f64])| -> Result<(ChannelReport, Vec<Column>)> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output, columns) = one(channel, chain, settings, &planner)?;
+        let (report, output, columns) = one(channel, &run)?;
         row.copy_from_slice(&output);
         Ok((report, columns))
     };
@@ -53,19 +56,25 @@ pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked>
     Ok(Worked { record, channels, columns: columns.into_iter().flatten().collect() })
 }
 
-fn one(
-    channel: Channel<'_>,
-    chain: &Chain,
-    settings: &Settings,
-    planner: &Planner,
-) -> Result<(ChannelReport, Vec<f64>, Vec<Column>)> {
+/// What all channels of a run share.
+struct Run<'a> {
+    chain: &'a Chain,
+    /// The chain without its split, where there is one.
+    primary: Option<&'a Chain>,
+    settings: &'a Settings,
+    planner: &'a Planner,
+}
+
+fn one(channel: Channel<'_>, run: &Run<'_>) -> Result<(ChannelReport, Vec<f64>, Vec<Column>)> {
+    let Run { chain, primary, settings, planner } = *run;
     let (chosen, judgement) = choose(channel, chain, settings, planner)?;
-    let outcome = match &chosen.continuation {
-        Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
+    let formed = |chain: &Chain| match &chosen.continuation {
+        Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner),
         Continuation::Given([left, right]) => {
-            condition::condition_continued(channel, chain, left, right, settings.stage.seat, planner)?
+            condition::condition_continued(channel, chain, left, right, settings.stage.seat, planner)
         }
     };
+    let outcome = formed(chain)?;
     if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
         let place = Place { sample: Some(n as u64), ..Place::channel(channel.name) };
         return Err(Error::unsupported("the result is too large for a double")
@@ -82,6 +91,13 @@ fn one(
         report.notes.extend(formed.notes);
         report.integral = Some(formed.report);
         columns = formed.columns;
+    }
+    report.notes.extend(derivative::remark(channel, chain, &outcome));
+    if let (Some(primary), Some(corner)) = (primary, split::corner(settings)) {
+        let mut parts = split::of(channel, corner, formed(primary)?.output, outcome.output, settings);
+        report.split = Some(parts.report);
+        columns.append(&mut parts.columns);
+        return Ok((report, parts.primary, columns));
     }
     Ok((report, outcome.output, columns))
 }
@@ -113,11 +129,37 @@ pub fn stage_reports(chosen: &Chosen, chain: &Chain, settings: &Settings) -> (Ex
             (even, condition::default_baseline(even, chain), format!("{} of the continued record", even.transform()))
         }
     };
+    let end_treatment = match chosen.continuation {
+        Continuation::Symmetric(..) => end_treatment(ends, baseline),
+        Continuation::Given(_) => "extrapolation by linear prediction".to_owned(),
+    };
     let seat = match ends.seat() {
         Seat::Half => "half-sample",
         Seat::Whole => "whole-sample",
     };
-    (ExtensionReport { kind: chosen.name.clone(), seat, transform, how: chosen.how }, baseline.to_string())
+    (ExtensionReport { kind: chosen.name.clone(), seat, transform, end_treatment, how: chosen.how }, baseline.to_string())
+}
+
+/// The methods that ISO 16610-28:2016 names for the ends of a profile (terms from memory), as far as they are these.
+fn end_treatment(ends: Ends, baseline: BaselineKind) -> String {
+    let method = |parity: Parity| match parity {
+        Parity::Even => "line symmetrical reflection",
+        Parity::Odd => "point symmetrical reflection",
+    };
+    let method = match ends {
+        Ends::Periodic => "closed profile".to_owned(),
+        Ends::Mirror { left, right, .. } if left == right => method(left).to_owned(),
+        Ends::Mirror { left, right, .. } => format!("{} at the left, {} at the right", method(left), method(right)),
+    };
+    let about = match baseline {
+        BaselineKind::None => "",
+        BaselineKind::Mean => " about the mean",
+        BaselineKind::Level(_) => " about the level at the odd end",
+        BaselineKind::Line => " about the line through the end values",
+        BaselineKind::Slopes | BaselineKind::Tangents => " about the parabola with the end slopes",
+        BaselineKind::Trend(_) => " about the least-squares polynomial",
+    };
+    format!("{method}{about}")
 }
 
 fn report(
@@ -169,6 +211,7 @@ fn report(
         trusted: edge.and_then(|edge| edge.trusted).map(|span| trusted_report(span.first, span.last, channel.axis)),
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
+        split: None,
         integral: None,
         parseval: outcome.parseval,
     }

@@ -40,6 +40,27 @@ pub fn polynomial(
     Polynomial::new(centre, half_width, vec![a - c / 2.0, b - 1.5 * d, 1.5 * c, 2.5 * d])
 }
 
+/// Standard error, for noise 1 a point, of the slope at `x` of the polynomial that `polynomial` would fit through points at
+/// `places`.
+pub fn slope_gain(places: impl Iterator<Item = f64> + Clone, low: f64, high: f64, degree: u8, x: f64) -> f64 {
+    let terms = usize::from(degree.min(3)).min(places.clone().take(4).count().saturating_sub(1)) + 1;
+    let centre = (low + high) / 2.0;
+    let half_width = if high > low { (high - low) / 2.0 } else { 0.5 };
+    let mut gram = [[0.0; 4]; 4];
+    for place in places {
+        let p = legendre((place - centre) / half_width);
+        for i in 0..terms {
+            for j in 0..=i {
+                gram[i][j] += p[i] * p[j];
+            }
+        }
+    }
+    let u = (x - centre) / half_width;
+    let mut slopes = [0.0, 1.0, 3.0 * u, 7.5 * u * u - 1.5].map(|slope| slope / half_width);
+    slopes.iter_mut().skip(terms).for_each(|slope| *slope = 0.0);
+    dot(&slopes, &solve(gram, slopes, terms)).max(0.0).sqrt()
+}
+
 fn legendre(u: f64) -> [f64; 4] {
     [1.0, u, 0.5 * (3.0 * u * u - 1.0), 0.5 * u * (5.0 * u * u - 3.0)]
 }

@@ -140,7 +140,7 @@ mod tests {
             (
                 "allpass",
                 "1",
-                "no operator \"allpass\"; choose one of lowpass, highpass, bandpass, bandstop, notch, integrate, differentiate",
+                "no operator \"allpass\"; choose one of lowpass, highpass, bandpass, bandstop, notch, split, integrate, differentiate",
             ),
         ] {
             assert_eq!(Request::parse(key, value).unwrap_err().to_string(), message);

@@ -90,7 +90,7 @@ static OPTIONS: &[OptionRow] = &[
     row("regrid", "HOW", Once, Repair, "What to do with jittered or drifting stamps: cubic (default) interpolates onto an even grid, off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
     row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast; symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
-    row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
+    row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension: none, mean, level[:left|:right], line, slopes, tangents (slopes of cubic fits), trend[:DEGREE]. Default: none; level with mixed ends; tangents for integrals and derivatives with even"),
     row("seat", "NAME", Once, Stage, "Where the mirrors sit: half-sample (default) or whole-sample"),
     row("assert", "[END:]WHAT", Many, Stage, "What is known about the ends: zero-slope, zero-value or closed; with left: or right: for one end. Followed, and checked for contradiction"),
     row("conditions", "NAME", Once, Operators, "End conditions of an integral: start-rest, rest, rest-to=D, start-rest-to=D (at rest at the start or both ends, displaced by D), pinned[=D] (displacement known at both ends), steady[:offset] (motion about a fixed place), zero-mean (whole cycles, periodic), still=A..B[,C..D] (at rest in these stretches). Needed with --integrate: there is no default"),
@@ -111,7 +111,7 @@ static OPTIONS: &[OptionRow] = &[
 pub fn rows() -> Vec<OptionRow> {
     let operators = STEPS.iter().map(|step| {
         // Filters may be repeated: their gains multiply. A second integral is asked for by its count.
-        let arity = if matches!(step.key, "integrate" | "differentiate") { Once } else { Many };
+        let arity = if matches!(step.key, "integrate" | "differentiate" | "split") { Once } else { Many };
         row(step.key, step.value, arity, Operators, step.help)
     });
     let (before, after) = OPTIONS.split_at(OPTIONS.iter().position(|row| row.group == Operators).unwrap_or(0));

@@ -3,7 +3,7 @@
 use std::collections::BTreeSet;
 
 use crate::place::escape;
-use crate::report::Report;
+use crate::report::{ChannelReport, Report, SplitReport};
 use crate::report::text::integrated::integral_text;
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 
@@ -41,6 +41,11 @@ pub fn summary(report: &Report) -> String {
         }
     }
     for channel in &report.channels {
+        if let Some(split) = &channel.split {
+            text.push_str(&split_text(channel, split));
+        }
+    }
+    for channel in &report.channels {
         if let Some(integral) = &channel.integral {
             text.push_str(&integral_text(&channel.name, integral, &channel.unit, &report.input.axis));
         }
@@ -60,4 +65,20 @@ pub fn summary(report: &Report) -> String {
         }
     }
     text
+}
+
+/// `z: split at 8mm, waviness RMS 12.3 um, roughness RMS 1.2 um; end treatment: ...`.
+fn split_text(channel: &ChannelReport, split: &SplitReport) -> String {
+    let rms = |level: &Option<crate::audit::level::Level>| {
+        let value = level.as_ref().map_or_else(|| "-".to_owned(), |l| figure(l.rms, 4));
+        format!("{value} {}", channel.unit).trim_end().to_owned()
+    };
+    format!(
+        "{}: split at {}, waviness RMS {}, roughness RMS {}; end treatment: {}\n",
+        escape(&channel.name),
+        split.corner,
+        rms(&split.waviness),
+        rms(&split.roughness),
+        channel.extension.end_treatment
+    )
 }

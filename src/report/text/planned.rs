@@ -1,6 +1,6 @@
 //! A plan for people: what a run would do, and the gain at and around each corner.
 
-use crate::operator::{ChainDescription, Reach};
+use crate::operator::{ChainDescription, OperatorDescription, Reach};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 use crate::report::{AxisReport, Plan};
 
@@ -37,15 +37,21 @@ pub fn plan_text(plan: &Plan) -> String {
     text
 }
 
+/// An operator with its argument; a split is always Gaussian.
+fn named(operator: &OperatorDescription) -> String {
+    let shape = if operator.option == "split" { " (gaussian, ISO 16610-21)" } else { "" };
+    format!("{} {}{shape}", operator.option, operator.value)
+}
+
 /// The operators in the order in which they run, and their reach.
 pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     let mut text = String::new();
     let several = chain.passes.len() > 1;
     for (index, pass) in chain.passes.iter().enumerate() {
         let mut parts: Vec<String> =
-            pass.operators.iter().map(|operator| format!("{} {}", operator.option, operator.value)).collect();
+            pass.operators.iter().map(named).collect();
         parts.dedup(); // a band-pass stands for two gains
-        if !pass.operators.is_empty() {
+        if pass.operators.iter().any(|operator| operator.option != "split") {
             parts.push(chain.shape.clone());
         }
         match pass.turns {
