@@ -15,6 +15,9 @@ pub struct Tangent {
 /// Samples of the narrowest fit: two more than a cubic passes through.
 const NARROWEST: usize = 6;
 
+/// Samples of the widest fit: it is exact enough by then, and long records stay quick.
+const WIDEST: usize = 1 << 14;
+
 impl Tangent {
     /// At the left and the right mirror of `ends`, for white noise `noise` a sample.
     ///
@@ -52,7 +55,7 @@ fn one(at: impl Fn(usize) -> f64, len: usize, first: f64, noise: f64) -> Tangent
         }
         best = Tangent { slope, error };
         let wider = width + width / 2;
-        if wider > len / 2 {
+        if wider > (len / 2).min(WIDEST) {
             return best;
         }
         width = wider;
