@@ -1,8 +1,10 @@
 //! The main job: a channel, its assumed continuation and a chain of operators make a conditioned channel.
 
 mod choice;
+mod despike;
 mod pass;
 mod run;
+mod smoother;
 
 use crate::baseline::{Baseline, BaselineKind, Scale};
 use crate::basis::Planner;
@@ -13,8 +15,10 @@ use crate::record::Channel;
 use crate::unit::Unit;
 
 pub use choice::{ExtensionChoice, Stage};
-pub use pass::{Passed, apply};
+pub use despike::{Despiked, despike};
+pub use pass::{Passed, Span, apply};
 pub use run::Integral;
+pub use smoother::{Robust, Smoother, Validated, bridged, freedom};
 
 use run::Scene;
 
@@ -33,6 +37,8 @@ pub struct Outcome {
     pub scale: Scale,
     /// Relative energy difference between remainder and coefficients in the first pass: rounding only.
     pub parseval: f64,
+    /// Samples that robust smoothing gave no weight, continuation included; `None` without it.
+    pub outliers: Option<usize>,
     /// What the end conditions made of an integral; `None` without one.
     pub integral: Option<Integral>,
 }
@@ -49,11 +55,13 @@ pub fn scale_of(chain: &Chain, len: usize) -> Scale {
 }
 
 /// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `tangents` for
-/// integrals and derivatives with even ends (their kink is what an even extension adds), otherwise none.
+/// integrals and derivatives with even ends and `slopes` for resampling (their kink is what an even extension adds),
+/// otherwise none.
 pub fn default_baseline(ends: Ends, chain: &Chain) -> BaselineKind {
     match ends {
         Ends::Mirror { left, right, .. } if left != right => BaselineKind::Level(None),
         Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Tangents,
+        Ends::Mirror { left: Parity::Even, .. } if chain.treatments().resampling.is_some() => BaselineKind::Slopes,
         _ => BaselineKind::None,
     }
 }
@@ -74,8 +82,30 @@ pub fn condition(
     planner: &Planner,
 ) -> Result<Outcome> {
     let scale = scale_of(chain, channel.samples.len());
-    let baseline = Baseline::fit(baseline, channel.samples, ends, scale)?;
+    let baseline = fitted(baseline, channel.samples, chain, ends, scale, planner)?;
     condition_with(channel, chain, ends, baseline, scale, planner)
+}
+
+/// The baseline of a run. The end slopes that resampling needs are those of the band that is kept: a strong tone above it
+/// would tilt them, so they are measured after its low-pass.
+fn fitted(
+    kind: BaselineKind,
+    samples: &[f64],
+    chain: &Chain,
+    ends: Ends,
+    scale: Scale,
+    planner: &Planner,
+) -> Result<Baseline> {
+    let resamples = chain.treatments().resampling.is_some();
+    if !(resamples && kind == BaselineKind::Slopes && chain.turns() == 0 && chain.is_real()) {
+        return Baseline::fit(kind, samples, ends, scale);
+    }
+    let nothing = Baseline::fit(BaselineKind::None, samples, ends, scale)?;
+    let own = chain.on_own_grid();
+    let scene = Scene { chain: &own, unit: Unit::unknown(), factor: 1.0, resolved: None, scale, planner };
+    let kept = run::passes(&scene, samples, ends, &nothing, Span::whole(samples))?;
+    let found = Baseline::fit(kind, &kept.output, ends, scale)?;
+    Ok(Baseline::exact(kind, found.polynomial().clone()))
 }
 
 /// As `condition`, with a baseline that is already known.
@@ -90,24 +120,21 @@ pub fn condition_with(
     scale: Scale,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let scene = Scene::of(channel, chain, ends, planner)?;
-    let span = [0.0, ends.length(channel.samples.len())];
-    let ran = run::passes(&scene, channel.samples, ends, &baseline, span)?;
-    Ok(Outcome {
-        output: ran.output,
-        unit: scene.unit,
-        ends,
-        baseline,
-        scale,
-        parseval: ran.parseval,
-        integral: ran.integral,
-    })
+    let scene = Scene::of(channel, chain, ends, scale, planner)?;
+    let ran = run::passes(&scene, channel.samples, ends, &baseline, Span::whole(channel.samples))?;
+    Ok(ran.outcome(scene.unit, ends, baseline, scale))
+}
+
+/// What a continued record itself is conditioned under: even reflection, with the baseline that goes with it.
+pub fn beyond(seat: Seat, chain: &Chain) -> (Ends, BaselineKind) {
+    let ends = Ends::EVEN.seated(seat);
+    (ends, default_baseline(ends, chain))
 }
 
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
 ///
-/// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
-/// channel's own samples are cut out again. End conditions of an integral hold at the channel's own ends.
+/// The continued record runs through the whole chain as `beyond` says, and the channel's own samples are cut out again. End
+/// conditions of an integral hold at the channel's own ends.
 ///
 /// # Errors
 /// As `condition`.
@@ -119,19 +146,22 @@ pub fn condition_continued(
     seat: Seat,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let ends = Ends::EVEN.seated(seat);
+    let (ends, kind) = beyond(seat, chain);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
-    let baseline = Baseline::fit(default_baseline(ends, chain), &continued, ends, scale)?;
-    let scene = Scene::of(channel, chain, ends, planner)?;
-    let (start, len) = (left.len(), channel.samples.len());
-    let ran = run::passes(&scene, &continued, ends, &baseline, own_span(start, len, ends))?;
-    let output = own(ran.output, start, len);
-    Ok(Outcome { output, unit: scene.unit, ends, baseline, scale, parseval: ran.parseval, integral: ran.integral })
+    let baseline = fitted(kind, &continued, chain, ends, scale, planner)?;
+    let scene = Scene::of(channel, chain, ends, scale, planner)?;
+    let span = Span { lead: left.len(), len: channel.samples.len() };
+    let mut ran = run::passes(&scene, &continued, ends, &baseline, span)?;
+    if chain.treatments().resampling.is_none() {
+        ran.output = own(ran.output, span);
+    }
+    Ok(ran.outcome(scene.unit, ends, baseline, scale))
 }
 
 /// The record that the integral of `outcome` is the integral of, in the record's unit: filtered, less the offset and drift
 /// that the end conditions found, high-passed under even reflection. `past` is the continuation that was used, if any.
+/// For chains that keep the record's own rate.
 ///
 /// # Errors
 /// As `condition`.
@@ -145,21 +175,16 @@ pub fn corrected(
     let constants = outcome.integral.as_ref().map(|integral| integral.constants).unwrap_or_default();
     let [left, right] = past.unwrap_or([&[], &[]]);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
-    let (start, len) = (left.len(), channel.samples.len());
-    let span = own_span(start, len, outcome.ends);
-    let all = run::corrected(chain, &continued, outcome.ends, &outcome.baseline, span, constants, planner)?;
-    Ok(own(all, start, len))
+    let span = Span { lead: left.len(), len: channel.samples.len() };
+    let scene = Scene::of(channel, chain, outcome.ends, outcome.scale, planner)?;
+    let all = run::corrected(&scene, &continued, outcome.ends, &outcome.baseline, span, constants)?;
+    Ok(own(all, span))
 }
 
-/// The stretch of `len` samples from sample `start` on between mirrors of its own, in steps from the left mirror.
-fn own_span(start: usize, len: usize, ends: Ends) -> [f64; 2] {
-    [start as f64, start as f64 + ends.length(len)]
-}
-
-/// `len` samples from sample `start` on.
-fn own(mut all: Vec<f64>, start: usize, len: usize) -> Vec<f64> {
-    all.truncate(start + len);
-    all.drain(..start);
+/// The channel's own samples.
+fn own(mut all: Vec<f64>, span: Span) -> Vec<f64> {
+    all.truncate(span.lead + span.len);
+    all.drain(..span.lead);
     all
 }
 
@@ -169,4 +194,3 @@ pub fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     let (unit, factor) = channel.unit.turned(turns, channel.axis.unit());
     (unit, channel.axis.step_base().powi(-turns) * factor)
 }
-

@@ -5,12 +5,13 @@ use crate::basis::Planner;
 use crate::ends::Ends;
 use crate::error::{Error, Result};
 use crate::integral::{self, Arrival, AtRest, Constants, Resolved, Solver};
-use crate::operator::{Chain, Pass};
+use crate::operator::{Chain, Pass, PassEnds};
 use crate::record::Channel;
 use crate::unit::Unit;
 
-use super::pass::{Passed, apply};
-use super::scaling;
+use super::pass::{Passed, Span, apply};
+use super::smoother::{Robust, Smoother};
+use super::{Outcome, scaling};
 
 /// What the end conditions made of an integral.
 #[derive(Debug, Clone)]
@@ -32,6 +33,7 @@ pub(super) struct Scene<'a> {
     /// From numbers in steps to the unit of the output.
     pub factor: f64,
     pub resolved: Option<Resolved>,
+    pub scale: Scale,
     pub planner: &'a Planner,
 }
 
@@ -40,81 +42,112 @@ pub(super) struct Ran {
     pub output: Vec<f64>,
     /// Of the first pass.
     pub parseval: f64,
+    /// Samples that robust smoothing gave no weight.
+    pub outliers: Option<usize>,
     pub integral: Option<Integral>,
 }
 
-impl<'a> Scene<'a> {
-    pub fn of(channel: Channel<'_>, chain: &'a Chain, ends: Ends, planner: &'a Planner) -> Result<Scene<'a>> {
-        let (unit, factor) = scaling(channel, chain);
-        let resolved = if chain.turns() < 0 { Some(integral::resolve(channel, chain, &unit, factor)?) } else { None };
-        if resolved.as_ref().is_some_and(|r| r.solver == Solver::ZeroMean) && ends != Ends::Periodic {
-            return Err(Error::usage(format!("--conditions zero-mean counts whole cycles, but the ends are {}", ends.name()))
-                .remedy("use --extension periodic, or --conditions steady"));
-        }
-        Ok(Scene { chain, unit, factor, resolved, planner })
+impl Ran {
+    pub fn outcome(self, unit: Unit, ends: Ends, baseline: Baseline, scale: Scale) -> Outcome {
+        let Ran { output, parseval, outliers, integral } = self;
+        Outcome { output, unit, ends, baseline, scale, parseval, outliers, integral }
     }
 }
 
-/// Runs them over `samples`, which may be a continued record: `span` is the channel's own stretch between its mirrors, in
-/// steps from the left mirror of `ends`.
+impl<'a> Scene<'a> {
+    pub fn of(
+        channel: Channel<'_>,
+        chain: &'a Chain,
+        ends: Ends,
+        scale: Scale,
+        planner: &'a Planner,
+    ) -> Result<Scene<'a>> {
+        let (unit, factor) = scaling(channel, chain);
+        let resolved = if chain.turns() < 0 { Some(integral::resolve(channel, chain, &unit, factor)?) } else { None };
+        if resolved.as_ref().is_some_and(|r| r.solver == Solver::ZeroMean) && ends != Ends::Periodic {
+            let what = format!("--conditions zero-mean counts whole cycles, but the ends are {}", ends.name());
+            return Err(Error::usage(what).remedy("use --extension periodic, or --conditions steady"));
+        }
+        Ok(Scene { chain, unit, factor, resolved, scale, planner })
+    }
+}
+
+/// Runs them over `samples`, of which `span` is the channel proper.
 pub(super) fn passes(
     scene: &Scene<'_>,
     samples: &[f64],
     ends: Ends,
     baseline: &Baseline,
-    span: [f64; 2],
+    span: Span,
 ) -> Result<Ran> {
-    let mut ran = Ran { output: Vec::new(), parseval: 0.0, integral: None };
-    let mut begun = false;
+    let mut so_far: Option<Ran> = None;
     for pass in scene.chain.passes().iter().filter(|pass| !pass.is_identity()) {
-        if begun {
-            ran.output = second_pass(&ran.output, ends, pass, scene.planner)?;
-            continue;
+        let input = so_far.as_ref().map_or(samples, |ran| ran.output.as_slice());
+        let (ends, baseline) = stage(scene, pass, input, ends, baseline, so_far.is_none())?;
+        let (mut outliers, mut integral) = (None, None);
+        let mut passed = match pass.robust() {
+            Some(strength) => {
+                let (passed, count) = robust(input, ends, &baseline, strength, scene.planner)?;
+                outliers = Some(count);
+                passed
+            }
+            None => apply(input, ends, &baseline, pass, span, scene.planner)?,
+        };
+        if let Some(resolved) = scene.resolved.as_ref().filter(|_| pass.turns() < 0) {
+            let velocity =
+                || Ok(apply(input, ends, &baseline, &pass.with_turns(-1), span, scene.planner)?.output);
+            integral = Some(settled(resolved, &mut passed, pass.turns(), span.mirrors(ends), velocity)?);
         }
-        let mut passed = apply(samples, ends, baseline, pass, span, scene.planner)?;
-        if let Some(resolved) = &scene.resolved {
-            let integral = settled(scene, resolved, samples, ends, baseline, span, pass, &mut passed)?;
-            ran.integral = Some(integral);
-        }
-        if scene.factor != 1.0 {
+        if pass.turns() != 0 && scene.factor != 1.0 {
             passed.output.iter_mut().for_each(|v| *v *= scene.factor);
         }
-        (ran.output, ran.parseval, begun) = (passed.output, passed.parseval, true);
+        so_far = Some(match so_far {
+            None => Ran { output: passed.output, parseval: passed.parseval, outliers, integral },
+            Some(first) => Ran {
+                output: passed.output,
+                parseval: first.parseval,
+                outliers: outliers.or(first.outliers),
+                integral: integral.or(first.integral),
+            },
+        });
     }
-    if !begun {
-        ran.output = samples.to_vec();
-    }
-    Ok(ran)
+    let unchanged = || Ran { output: samples.to_vec(), parseval: 0.0, outliers: None, integral: None };
+    Ok(so_far.unwrap_or_else(unchanged))
 }
 
-/// The high-pass after an integral: even reflection, no baseline.
-fn second_pass(samples: &[f64], ends: Ends, pass: &Pass, planner: &Planner) -> Result<Vec<f64>> {
-    let even = Ends::EVEN.seated(ends.seat());
-    let nothing = Baseline::fit(BaselineKind::None, samples, even, Scale::assumed(samples.len()))?;
-    let span = [0.0, even.length(samples.len())];
-    Ok(apply(samples, even, &nothing, pass, span, planner)?.output)
+/// Ends and baseline of one pass: those of the run, fitted anew to what earlier passes left, or even without a baseline.
+fn stage(
+    scene: &Scene<'_>,
+    pass: &Pass,
+    input: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    first: bool,
+) -> Result<(Ends, Baseline)> {
+    Ok(match pass.ends() {
+        PassEnds::Chosen if first => (ends, baseline.clone()),
+        PassEnds::Chosen => (ends, Baseline::fit(baseline.kind(), input, ends, scene.scale)?),
+        PassEnds::EvenWithoutBaseline => {
+            let even = Ends::EVEN.seated(ends.seat());
+            (even, Baseline::fit(BaselineKind::None, input, even, Scale::assumed(input.len()))?)
+        }
+    })
 }
 
 /// Solves the constants of an integral that starts at rest and adds what they make.
-#[expect(clippy::too_many_arguments, reason = "one pass and what it was made from")]
 fn settled(
-    scene: &Scene<'_>,
     resolved: &Resolved,
-    samples: &[f64],
-    ends: Ends,
-    baseline: &Baseline,
-    span: [f64; 2],
-    pass: &Pass,
     passed: &mut Passed,
+    turns: i32,
+    [start, end]: [f64; 2],
+    velocity: impl FnOnce() -> Result<Vec<f64>>,
 ) -> Result<Integral> {
-    let (turns, length) = (pass.turns(), span[1] - span[0]);
-    let position = ends.first_position() - span[0];
-    let rest = AtRest { turns, samples: &passed.output, position, spacing: 1.0, length, arrival: passed.arrival };
-    let velocity = || Ok(apply(samples, ends, baseline, &pass.with_turns(-1), span, scene.planner)?.output);
+    let (position, spacing, length) = (passed.first - start, passed.spacing, end - start);
+    let rest = AtRest { turns, samples: &passed.output, position, spacing, length, arrival: passed.arrival };
     let constants = resolved.solver.solve(&rest, resolved.offset, velocity)?;
     if constants != Constants::default() {
         for (n, value) in passed.output.iter_mut().enumerate() {
-            *value += constants.at(turns, position + n as f64, length);
+            *value += constants.at(turns, position + n as f64 * spacing, length);
         }
     }
     let arrival = constants.arrival(passed.arrival, length);
@@ -123,27 +156,45 @@ fn settled(
 
 /// What an integral is the integral of: every pass without its turns, less offset and drift, in the record's unit.
 pub(super) fn corrected(
-    chain: &Chain,
+    scene: &Scene<'_>,
     samples: &[f64],
     ends: Ends,
     baseline: &Baseline,
-    span: [f64; 2],
+    span: Span,
     constants: Constants,
-    planner: &Planner,
 ) -> Result<Vec<f64>> {
     let mut output = samples.to_vec();
-    for pass in chain.passes() {
-        if pass.turns() == 0 {
-            output = second_pass(&output, ends, pass, planner)?;
-            continue;
-        }
+    for (index, pass) in scene.chain.passes().iter().enumerate() {
+        let (ends, baseline) = stage(scene, pass, &output, ends, baseline, index == 0)?;
         let plain = pass.with_turns(0);
-        if !plain.is_identity() {
-            output = apply(samples, ends, baseline, &plain, span, planner)?.output;
+        if let Some(strength) = pass.robust() {
+            output = robust(&output, ends, &baseline, strength, scene.planner)?.0.output;
+        } else if !plain.is_identity() {
+            output = apply(&output, ends, &baseline, &plain, span, scene.planner)?.output;
         }
-        for (n, value) in output.iter_mut().enumerate() {
-            *value += constants.of_record(ends.first_position() - span[0] + n as f64, span[1] - span[0]);
+        if pass.turns() < 0 {
+            let [start, end] = span.mirrors(ends);
+            for (n, value) in output.iter_mut().enumerate() {
+                *value += constants.of_record(ends.first_position() - start + n as f64, end - start);
+            }
         }
     }
     Ok(output)
+}
+
+/// Robust smoothing of what a baseline leaves.
+fn robust(
+    samples: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    strength: f64,
+    planner: &Planner,
+) -> Result<(Passed, usize)> {
+    let first = ends.first_position();
+    let at = |n: usize| baseline.polynomial().at(n as f64 + first);
+    let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
+    let Robust { values, weights, .. } = Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
+    let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
+    let passed = Passed { output, parseval: 0.0, first, spacing: 1.0, arrival: Arrival::default() };
+    Ok((passed, weights.iter().filter(|w| **w == 0.0).count()))
 }

@@ -23,6 +23,10 @@ pub fn of(record: &Record, settings: &Settings) -> Result<(Chain, Vec<Finding>)>
         return Err(Error::usage("--split parts the record itself, not its derivative or integral")
             .remedy("leave out --split, or run it on the result"));
     }
+    if chain.treatments().resampling.is_some() && !settings.beside.is_empty() {
+        return Err(Error::usage("--beside stands on the record's own rows, and the rate changes")
+            .remedy("leave --beside out, or change the rate afterwards"));
+    }
     if chain.turns() >= 0 {
         let stray = [("conditions", settings.conditions.is_some()), ("offset", settings.offset.is_some())];
         let stray = stray.into_iter().chain([("beside", !settings.beside.is_empty())]).find(|(_, given)| *given);
@@ -33,7 +37,7 @@ pub fn of(record: &Record, settings: &Settings) -> Result<(Chain, Vec<Finding>)>
         };
     }
     let Some(conditions) = &settings.conditions else { return Err(missing(&chain, record)) };
-    let filtered = chain.passes().len() > 1;
+    let filtered = chain.high_pass().is_some();
     for channel in record.channels() {
         let state = EndState::of(channel.samples);
         if let Some(objection) = state.and_then(|state| objection(conditions, state, filtered)).filter(|o| o.grave)

@@ -6,7 +6,7 @@ use crate::numeric::{floor, sum};
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::Channel;
-use crate::report::number;
+use crate::report::figure;
 
 /// Noise above this share of the result's RMS is told.
 const MUCH: f64 = 0.1;
@@ -32,9 +32,9 @@ pub fn remark(channel: Channel<'_>, chain: &Chain, outcome: &Outcome) -> Option<
     (share > MUCH).then(|| {
         let text = format!(
             "noise makes up about {} {}, {} % of the derivative's standard deviation; a --lowpass lowers that",
-            number(noise, 3),
+            figure(noise, 3),
             outcome.unit,
-            number(100.0 * share.min(1.0), 3)
+            figure(100.0 * share.min(1.0), 3)
         );
         Finding::new("derivative_of_noise", text).at(Place::channel(channel.name))
     })

@@ -10,7 +10,7 @@ use crate::numeric::{floor, least_squares, quantum, sum};
 use crate::operator::{Chain, Request};
 use crate::place::Place;
 use crate::record::Channel;
-use crate::report::{Amount, CornerReport, IntegralReport, SigmaReport, number};
+use crate::report::{Amount, CornerReport, IntegralReport, SigmaReport, figure};
 use crate::settings::{Beside, Settings};
 use crate::verdict::Tolerance;
 
@@ -135,15 +135,12 @@ pub fn form(
 
 /// The band of noise 1, with the high-pass that follows the integral or without it.
 fn band(chain: &Chain, integral: &Integral, high: bool) -> Result<Band> {
-    let Some(pass) = chain.passes().iter().find(|pass| pass.turns() < 0) else {
-        unreachable!("an integral comes from a pass with turns")
-    };
-    let second = chain.passes().iter().find(|pass| pass.turns() == 0).filter(|_| high);
-    let gain = |f: f64| pass.gain(f);
+    let second = chain.high_pass().filter(|_| high);
+    let gain = |f: f64| chain.integral().map_or(1.0, |pass| pass.gain(f));
     let high_gain = |f: f64| second.map_or(1.0, |second| second.gain(f));
     Band::of(&Trial {
         solver: &integral.resolved.solver,
-        turns: pass.turns(),
+        turns: chain.turns(),
         gain: &gain,
         high: second.and_then(|s| s.lowest_corner()).map(|corner| HighPass { gain: &high_gain, corner }),
         length: integral.length,
@@ -160,7 +157,7 @@ fn net_displacement(
     sigma: &impl Fn(bool) -> Result<Vec<f64>>,
 ) -> Result<Option<(f64, f64)>> {
     let fitted = matches!(integral.resolved.solver, Solver::Steady { .. } | Solver::ZeroMean);
-    if chain.passes().len() < 2 || fitted {
+    if chain.high_pass().is_none() || fitted {
         return Ok(None);
     }
     let (constants, arrival) = (&integral.constants, &integral.arrival);
@@ -229,12 +226,12 @@ impl Warnings<'_> {
     }
 
     fn filtered(&self) -> bool {
-        self.chain.passes().len() > 1
+        self.chain.high_pass().is_some()
     }
 
     fn shown(&self, value: f64) -> String {
         let unit = self.channel.unit.turned(self.chain.turns(), self.channel.axis.unit()).0;
-        format!("{} {unit}", number(value, 3)).trim_end().to_owned()
+        format!("{} {unit}", figure(value, 3)).trim_end().to_owned()
     }
 
     fn noise(&self) -> Option<(&'static str, String)> {
@@ -243,9 +240,9 @@ impl Warnings<'_> {
             let text = format!(
                 "the record's noise leaves the integral uncertain by {} (standard deviation) at {} {}: {} % of its peak",
                 self.shown(sigma.largest),
-                number(sigma.at, 6),
+                figure(sigma.at, 6),
                 self.channel.axis.unit(),
-                number(100.0 * sigma.relative, 3)
+                figure(100.0 * sigma.relative, 3)
             );
             ("integral_uncertain", text)
         })
@@ -267,7 +264,7 @@ impl Warnings<'_> {
             "the least-squares constants are expected to be wrong by about {} at the ends: {} cycles of the strongest \
              component in the record; --highpass takes most of that out",
             self.shown(error),
-            number(self.cycles_in_record, 3)
+            figure(self.cycles_in_record, 3)
         );
         Some(("end_constants_uncertain", text))
     }
@@ -280,7 +277,7 @@ impl Warnings<'_> {
         (moved > MUCH * self.report.peak).then(|| {
             let text = format!(
                 "the solved drift of {} {} moves the end by {}: without it the result would be another",
-                number(self.report.drift.value, 3),
+                figure(self.report.drift.value, 3),
                 self.report.drift.unit,
                 self.shown(moved)
             );
@@ -292,7 +289,7 @@ impl Warnings<'_> {
         (self.report.slow_share > MUCH && !self.filtered()).then(|| {
             let text = format!(
                 "{} % of the result's mean square is slower than one cycle in the record: the end conditions decide it",
-                number(100.0 * self.report.slow_share, 3)
+                figure(100.0 * self.report.slow_share, 3)
             );
             ("slower_than_record", text)
         })

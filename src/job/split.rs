@@ -1,7 +1,7 @@
 //! Waviness and roughness of a profile: both parts of a split, which add up to it digit by digit.
 
 use crate::audit::level::Level;
-use crate::error::Result;
+use crate::error::{Error, Result};
 use crate::job::integral::Column;
 use crate::operator::{Chain, Request};
 use crate::record::{Axis, Channel};
@@ -19,6 +19,11 @@ pub struct Parts {
 /// Digits of the parts, counted from the largest value: the last of them is some thirty roundings of a double.
 const DIGITS: f64 = 14.0;
 
+/// True where a split is asked for.
+pub fn is_wanted(settings: &Settings) -> bool {
+    split(settings).is_some()
+}
+
 /// The corner of the split as written, where one is asked for.
 pub fn corner(settings: &Settings) -> Option<&str> {
     split(settings).map(Request::value)
@@ -27,10 +32,14 @@ pub fn corner(settings: &Settings) -> Option<&str> {
 /// The chain without the split, where one is asked for: what is split.
 ///
 /// # Errors
-/// As `Chain::resolve`.
-pub fn primary(settings: &Settings, axis: &Axis, len: usize) -> Result<Option<Chain>> {
+/// `Usage` for a split beside operators that are no filters; as `Chain::resolve`.
+pub fn primary(chain: &Chain, settings: &Settings, axis: &Axis, len: usize) -> Result<Option<Chain>> {
     if split(settings).is_none() {
         return Ok(None);
+    }
+    if chain.treatments().resampling.is_some() || chain.treatments().smoothing.is_some() || !chain.is_real() {
+        return Err(Error::usage("--split goes with filters alone, not with smoothing, resampling or a sensor's response")
+            .remedy("run it on their result"));
     }
     let others: Vec<Request> =
         settings.requests.iter().filter(|request| request.step().key != "split").cloned().collect();
