@@ -34,6 +34,7 @@ pub mod regularise;
 pub mod ends;
 pub mod baseline;
 pub mod basis;
+pub mod spectrum;
 pub mod operator;
 pub mod forecast;
 pub mod integral;

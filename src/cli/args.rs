@@ -10,7 +10,7 @@ use endgrain::place::Place;
 use endgrain::settings::{Arity, Group, Layer, Settings, find, rows};
 use endgrain::write::Overwrite;
 
-use crate::cli::{audit, batch, compare, condition, exit};
+use crate::cli::{audit, batch, compare, condition, exit, spectrum};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -25,6 +25,7 @@ pub fn command() -> Command {
   endgrain audit log.csv
   endgrain compare log.csv --lowpass 40Hz --plot ends.svg
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
+  endgrain spectrum log.csv --segment 0.5Hz --plot spectrum.svg
   endgrain condition log.wav --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.wav
   endgrain batch --recipe clean.toml --into cleaned logs/*.csv
 ",
@@ -36,6 +37,7 @@ pub fn command() -> Command {
         .disable_help_subcommand(true)
         .subcommand(condition::command())
         .subcommand(compare::command())
+        .subcommand(spectrum::command())
         .subcommand(audit::command())
         .subcommand(batch::command())
 }

@@ -8,6 +8,7 @@ mod condition;
 mod exit;
 mod machine;
 mod progress;
+mod spectrum;
 mod stream;
 
 use std::process::ExitCode;
@@ -21,6 +22,7 @@ pub fn run() -> ExitCode {
     let outcome = match matches.subcommand() {
         Some(("condition", matches)) => condition::run(matches),
         Some(("compare", matches)) => compare::run(matches),
+        Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
         Some(("batch", matches)) => batch::run(matches),
         _ => unreachable!("the parser requires a known command"),

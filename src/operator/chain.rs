@@ -107,7 +107,8 @@ impl Chain {
             let reaches = self::reaches(&parts, turns);
             passes.push(Pass { parts, turns, ends, reaches, robust, resampling: None });
         };
-        let mut take = |wanted: &dyn Fn(&Part) -> bool| parts.extract_if(.., |part| wanted(part)).collect::<Vec<Part>>();
+        let mut take =
+            |wanted: &dyn Fn(&Part) -> bool| parts.extract_if(.., |part| wanted(part)).collect::<Vec<Part>>();
         let shifts = take(&|part| turns != 0 && !part.gain.is_real());
         let high = take(&|part| turns < 0 && part.stage == Stage::High);
         let smooth = take(&|part| robust.is_some() && part.stage == Stage::Smooth);
@@ -174,8 +175,13 @@ impl Chain {
 
     fn rebuilt(&self, treatments: Treatments) -> Chain {
         let smooths = treatments.smoothing.is_some();
-        let mut parts: Vec<Part> =
-            self.passes.iter().flat_map(|pass| &pass.parts).filter(|part| part.stage != Stage::Smooth).cloned().collect();
+        let mut parts: Vec<Part> = self
+            .passes
+            .iter()
+            .flat_map(|pass| &pass.parts)
+            .filter(|part| part.stage != Stage::Smooth)
+            .cloned()
+            .collect();
         if !smooths {
             parts.retain(|part| part.stage != Stage::Resample);
         }

@@ -122,7 +122,9 @@ mod tests {
         let b = Polynomial::from_powers(20.0, &[3.0, -2.0, 0.5, 0.25, -0.02, 0.001]);
         let carried = Series::of_quotient(&mean, &[1.0]).carry(&b, 1.0);
         // A quotient with the denominator 1 + 2p undoes a product with it.
-        let product: Vec<f64> = (0..7).map(|k| mean.get(k).unwrap_or(&0.0) + 2.0 * k.checked_sub(1).and_then(|j| mean.get(j)).unwrap_or(&0.0)).collect();
+        let product: Vec<f64> = (0..7)
+            .map(|k| mean.get(k).unwrap_or(&0.0) + 2.0 * k.checked_sub(1).and_then(|j| mean.get(j)).unwrap_or(&0.0))
+            .collect();
         let again = Series::of_quotient(&product, &[1.0, 2.0]).carry(&b, 1.0);
         for n in 1..=20 {
             let n = f64::from(n);

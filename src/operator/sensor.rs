@@ -81,7 +81,8 @@ impl Correct {
         let mut findings = Vec::new();
         let mut tell = |code, text: String| findings.push(Finding::new(code, text).at(Place::file(path)));
         if !table.has_phase() {
-            let text = "the table has no phase: magnitudes are corrected and delays are not, which changes the wave form";
+            let text =
+                "the table has no phase: magnitudes are corrected and delays are not, which changes the wave form";
             tell("response_without_phase", text.to_owned());
         }
         if let Some(Coarse { from_hz, to_hz, decibels, degrees }) = table.coarsest() {

@@ -56,13 +56,7 @@ pub static WEIGHTINGS: &[Weighting] = &[
     weighting("Wc", "seat back, fore and aft", [0.4, 100.0], Some((8.0, 8.0, 0.63)), None),
     weighting("Wd", "horizontal whole-body vibration", [0.4, 100.0], Some((2.0, 2.0, 0.63)), None),
     weighting("We", "rotational whole-body vibration", [0.4, 100.0], Some((1.0, 1.0, 0.63)), None),
-    weighting(
-        "Wf",
-        "motion sickness",
-        [0.08, 0.63],
-        Some((f64::INFINITY, 0.25, 0.86)),
-        Some((0.0625, 0.8, 0.1, 0.8)),
-    ),
+    weighting("Wf", "motion sickness", [0.08, 0.63], Some((f64::INFINITY, 0.25, 0.86)), Some((0.0625, 0.8, 0.1, 0.8))),
     weighting(
         "Wh",
         "hand-arm vibration",
@@ -71,7 +65,13 @@ pub static WEIGHTINGS: &[Weighting] = &[
         Some((15.915_494_309_189_533, 15.915_494_309_189_533, 0.64)),
         None,
     ),
-    weighting("Wj", "vertical vibration of the head of a lying person", [0.4, 100.0], None, Some((3.75, 0.91, 5.32, 0.91))),
+    weighting(
+        "Wj",
+        "vertical vibration of the head of a lying person",
+        [0.4, 100.0],
+        None,
+        Some((3.75, 0.91, 5.32, 0.91)),
+    ),
     weighting(
         "Wk",
         "vertical whole-body vibration",
@@ -106,8 +106,13 @@ impl Setting for Weigh {
     fn resolve(&self, frame: &Frame<'_>) -> Result<Effect> {
         let (row, axis) = (self.0, frame.axis);
         if !axis.is_time() {
-            return Err(Error::usage(format!("{} {}: the record's axis is a length in {}", frame.option, row.name, axis.unit()))
-                .remedy("weight records in time"));
+            return Err(Error::usage(format!(
+                "{} {}: the record's axis is a length in {}",
+                frame.option,
+                row.name,
+                axis.unit()
+            ))
+            .remedy("weight records in time"));
         }
         let (rate_hz, nyquist_hz) = (axis.rate_base(), 0.5 * axis.rate_base());
         let [low, high] = [row.band[0], row.roll_off_hz()];
@@ -180,10 +185,8 @@ impl Weighting {
         }
         if let Some((zero, zero_q, pole, pole_q)) = self.step {
             let size = (zero / pole).powi(2);
-            sections.push(Section {
-                numerator: second(zero, zero_q).map(|c| c * size),
-                denominator: second(pole, pole_q),
-            });
+            sections
+                .push(Section { numerator: second(zero, zero_q).map(|c| c * size), denominator: second(pole, pole_q) });
         }
         sections
     }

@@ -7,6 +7,8 @@ mod json;
 pub mod page;
 mod plan;
 mod plot;
+mod spectral;
+mod spectral_plot;
 mod text;
 mod treatment;
 
@@ -29,7 +31,13 @@ pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
-pub use text::{audit_text, comparison_text, figure, plan_text, summary};
+pub use spectral::{
+    BandReport, ChannelSpectrum, CoefficientReport, CoefficientSeries, CoefficientsReport, DensityReport,
+    DensitySeries, LineReport, OctaveReport, Ratio, RoadReport, SPECTRUM_CAUTION, SegmentsReport, SpectrumReport,
+    SumCheck, Trace, WindowReport,
+};
+pub use spectral_plot::spectrum_svg;
+pub use text::{audit_text, comparison_text, figure, plan_text, spectrum_text, summary};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.

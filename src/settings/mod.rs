@@ -2,6 +2,7 @@
 
 mod layer;
 mod parse;
+mod spectral;
 mod table;
 
 use std::collections::BTreeMap;
@@ -18,6 +19,7 @@ use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
 pub use layer::Layer;
+pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
@@ -47,6 +49,8 @@ pub struct Settings {
     pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
+    /// How a spectrum is formed and what is read from it.
+    pub spectrum: SpectrumOptions,
     /// Edge error that is tolerable.
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.

@@ -5,12 +5,12 @@ use std::str::FromStr;
 use crate::ends::Seat;
 use crate::error::{Error, Result};
 use crate::numeric::leading_number;
-use crate::operator::{Corner, Measure, Request, STEPS, Shape};
+use crate::operator::{Corner, Measure, Range, Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::{Beside, Edges, Settings};
+use crate::settings::{Beside, Edges, Settings, spectral};
 use crate::unit::Unit;
 use crate::verdict::Adequacy;
 
@@ -72,6 +72,17 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "beside" => settings.beside.push(one_of(key, text, BESIDES)?),
         "shape" => settings.shape = context(key, Shape::parse(text))?,
         "running-rms" => settings.running_rms = Some(running(text)?),
+        "method" => settings.spectrum.method = context(key, text.parse())?,
+        "segment" => settings.spectrum.segment = Some(context(key, text.parse())?),
+        "window" => settings.spectrum.window = context(key, crate::spectrum::window(text))?,
+        "overlap" => settings.spectrum.overlap = Some(context(key, spectral::share(text))?),
+        "detrend" => settings.spectrum.detrend = context(key, text.parse())?,
+        "confidence" => settings.spectrum.confidence = context(key, spectral::share(text))?,
+        "band" => settings.spectrum.bands.push(context(key, Range::parse(text))?),
+        "octaves" => settings.spectrum.octaves = context(key, spectral::fraction(text))?,
+        "lines" => settings.spectrum.lines = named(key, text, "a number of lines")?,
+        "road" => settings.spectrum.road = switch(key, text)?,
+        "against" => settings.spectrum.against = Some(context(key, text.parse())?),
         "format" => settings.format = Some(one_of(key, text, FORMATS)?),
         "encoding" => settings.encoding = Some(text.to_owned()),
         "decimals" => settings.decimals = Some(decimals(text)?),
@@ -97,6 +108,12 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
         "duplicates" => Some(settings.regularise.duplicates.to_string()),
         "regrid" => Some(REGRID_BY_ITSELF.to_owned()),
         "extension" => Some(settings.stage.extension.to_string()),
+        "method" => Some(settings.spectrum.method.to_string()),
+        "window" => Some(settings.spectrum.window.name.to_owned()),
+        "detrend" => Some(settings.spectrum.detrend.to_string()),
+        "confidence" => Some(format!("{}%", 100.0 * settings.spectrum.confidence)),
+        "octaves" => Some("none".to_owned()),
+        "lines" => Some(settings.spectrum.lines.to_string()),
         "tolerance" => Some(settings.tolerance.to_string()),
         "target-sigma" => Some(settings.target_sigma.as_ref().map_or_else(|| "5%".to_owned(), ToString::to_string)),
         "edges" => spelling(EDGES, settings.edges),
@@ -149,7 +166,8 @@ fn decimals(text: &str) -> Result<u8> {
 
 fn running(text: &str) -> Result<f64> {
     let fault = || {
-        Error::usage(format!("--running-rms: no time: \"{}\"", escape(text))).remedy("write it with its unit as 1s or 125ms")
+        Error::usage(format!("--running-rms: no time: \"{}\"", escape(text)))
+            .remedy("write it with its unit as 1s or 125ms")
     };
     match context("running-rms", Corner::parse(text)) {
         Ok(time) if time.measure() == Measure::Period => Ok(time.base()),

@@ -13,6 +13,8 @@ pub enum Group {
     Stage,
     /// What is done to the record.
     Operators,
+    /// How a spectrum is formed and what is read from it.
+    Spectrum,
     /// How the result is judged.
     Judgement,
     /// How the result is written.
@@ -28,6 +30,7 @@ impl Group {
             Group::Repair => "Repair",
             Group::Stage => "Ends",
             Group::Operators => "Operators",
+            Group::Spectrum => "Spectrum",
             Group::Judgement => "Judgement",
             Group::Output => "Output",
         }
@@ -67,7 +70,7 @@ const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group,
 use crate::error::{Error, Result};
 use crate::operator::STEPS;
 use Arity::{Many, Once, Switch};
-use Group::{Cut, Input, Judgement, Operators, Output, Repair, Stage};
+use Group::{Cut, Input, Judgement, Operators, Output, Repair, Spectrum, Stage};
 
 /// The options that are not operators; `rows` gives all.
 #[rustfmt::skip]
@@ -101,6 +104,17 @@ static OPTIONS: &[OptionRow] = &[
     row("beside", "COLUMN", Many, Operators, "A further column for each integrated channel: sigma (standard deviation from the record's noise) or corrected (the record less offset and drift, filtered, whose integral the result is)"),
     row("shape", "NAME", Once, Operators, "Roll-off: butterworth:ORDER (zero phase, squared magnitude, gain 0.5 at the corner), gaussian, cosine:WIDTH, brickwall. Default: butterworth:4"),
     row("running-rms", "TIME", Once, Operators, "A further column a channel with its running RMS over this time, such as 1s or 0.125s; also the integration time of --weighting, 1s there by default"),
+    row("method", "NAME", Once, Spectrum, "welch (default): density from averaged segments; sine: density from sine tapers over the whole record, their number chosen line by line; sine:COUNT: so many of them; basis: coefficients in the basis of the ends"),
+    row("segment", "LENGTH", Once, Spectrum, "Length of a segment: samples (512), a duration (2s), or the spacing of its lines (0.5Hz). Default: about an eighth of the record, lines on round frequencies where the rate allows"),
+    row("window", "NAME", Once, Spectrum, "Window of the segments: hann (default), rectangular, hamming, blackman, blackman-harris, nuttall, flat-top, flat-top-hft70, flat-top-hft95, flat-top-hft90d, flat-top-5"),
+    row("overlap", "SHARE", Once, Spectrum, "Overlap of the segments: 50% or 0.5. Default: what suits the window, 50% for hann"),
+    row("detrend", "WHAT", Once, Spectrum, "Taken off before a density is formed: none, mean (default), line, quadratic or cubic by least squares through the whole record; segment-mean or segment-line through every segment"),
+    row("confidence", "SHARE", Once, Spectrum, "Confidence of the limits. Default: 95%"),
+    row("band", "RANGE", Many, Spectrum, "RMS in a band, lines at its edges counted by their share: 2Hz..40Hz; may be repeated"),
+    row("octaves", "WIDTH", Once, Spectrum, "Band levels by IEC 61260-1, base ten: third, octave or none (default). Bands of fewer than 5 lines are refused"),
+    row("lines", "COUNT", Once, Spectrum, "Spectral lines to list at most, with interpolated frequency and amplitude. Default: 5"),
+    row("road", "", Switch, Spectrum, "Class of a road profile by its displacement density, ISO 8608"),
+    row("against", "EXTENSION[+BASELINE]", Once, Spectrum, "A second extension laid over the first: odd+line. With --method basis, or with operators"),
     row("tolerance", "ERROR", Once, Judgement, "Edge error that is tolerable: a share of the output's standard deviation (10%, the default) or a value with its unit (0.02m/s)"),
     row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. What no assumption can spoil (no operator, a constant) counts as met. The output is written all the same"),
     row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted', which is no channel when it is read back), blank (empty cells) or trim (cut off, with the new start stamp)"),

@@ -7,6 +7,7 @@ mod exposed;
 mod figure;
 mod integrated;
 mod planned;
+mod spectral;
 
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
@@ -20,6 +21,7 @@ pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
+pub use spectral::spectrum_text;
 
 pub use figure::figure;
 pub(super) use planned::operators_text;

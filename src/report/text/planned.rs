@@ -127,7 +127,8 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
             parts.push(format!("smooth {smooth}"));
         }
         if let Some(grid) = chain.resampling.as_ref().filter(|_| pass.resamples) {
-            let against = if grid.rate < grid.rate_in { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
+            let against =
+                if grid.rate < grid.rate_in { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
             parts.push(format!("resample to {} {}{against}", figure(grid.rate, 8), rate_label(axis)));
         }
         if parts.is_empty() {
