@@ -1,10 +1,13 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod chain;
 mod comparison;
 mod conditioning;
+mod derivative;
 mod edges;
 mod examination;
 mod intake;
+mod integral;
 mod judgement;
 mod origin;
 mod passage;
@@ -13,6 +16,7 @@ mod preparation;
 mod requirement;
 mod running;
 mod spectrum;
+mod split;
 mod target;
 mod work;
 
