@@ -181,9 +181,9 @@ fn a_full_disk_costs_the_records_that_do_not_fit() {
 #[test]
 fn a_request_to_end_finishes_the_records_in_work() {
     let scene = Scene::new();
-    let logs = scene.logs(400);
+    let logs = scene.logs(900);
     let names: Vec<&str> = logs.iter().map(String::as_str).collect();
-    let arguments = [&["batch", "--lowpass", "5Hz", "--jobs", "1", "--into", "out"], &names[..]].concat();
+    let arguments = batch("out", &[&["--jobs", "1"], &names[..]].concat());
     let child = scene.start(&arguments);
     wait_for("results", || scene.path("out/0031.csv").exists());
     assert!(Command::new("kill").args(["-TERM", &child.id().to_string()]).status().expect("kill runs").success());
@@ -195,7 +195,7 @@ fn a_request_to_end_finishes_the_records_in_work() {
     let told = scene.ends(0, &arguments).told;
     assert!(told.contains("kept from before"), "{told}");
     scene.ends(0, &["merge", "out"]);
-    assert_eq!(scene.merged("out").len(), 400);
+    assert_eq!(scene.merged("out").len(), 900);
 }
 
 fn wait_for(what: &str, ready: impl Fn() -> bool) {
