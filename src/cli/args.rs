@@ -69,6 +69,15 @@ pub fn subcommand(name: &'static str, about: &'static str, examples: &'static st
     )
 }
 
+/// `--html`, for the commands that make a page.
+pub fn page() -> Arg {
+    Arg::new("html")
+        .long("html")
+        .value_name("FILE")
+        .help_heading("Report")
+        .help("Also write a report page: one file that opens anywhere, offline. Its figures stand beside it as FILE.json and FILE.csv")
+}
+
 /// `--quiet`, for every command.
 pub fn quiet() -> Arg {
     Arg::new("quiet").long("quiet").short('q').action(ArgAction::SetTrue).help_heading("Report").help("No summary")

@@ -1,6 +1,6 @@
 //! `condition`: the main job on one record.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::{Arg, ArgAction, ArgMatches, Command};
@@ -23,6 +23,7 @@ Examples:
   endgrain condition profile.csv --lowpass 0.8mm --shape gaussian -o waviness.csv
   endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
   logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
+  endgrain condition log.csv --lowpass 40Hz -o clean.csv --html report.html
   endgrain condition log.csv --lowpass 40Hz --dry-run
   endgrain condition log.csv --recipe clean.csv.json -o again.csv
 ";
@@ -62,6 +63,7 @@ pub fn command() -> Command {
             .help_heading(Group::Output.heading())
             .help("Print the resolved plan and the gain at and around each corner; write nothing"),
     )
+    .arg(args::page())
     .after_help(exit::HELP)
 }
 
@@ -94,6 +96,10 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         Target::stream(Box::new(std::io::stdout()), json_file, overwrite)
     } else {
         Target::file(&output, json_file, overwrite)
+    };
+    let target = match matches.get_one::<String>("html") {
+        Some(page) => target.with_page(Path::new(page)),
+        None => target,
     };
     let report = job::condition(stream::input(file)?, target.durable(durability), &settings)?;
     if json.as_deref().is_some_and(stream::is_stdout) {

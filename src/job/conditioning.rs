@@ -5,17 +5,23 @@ use std::path::Path;
 
 use crate::audit::Audit;
 use crate::basis::Planner;
-use crate::error::{Error, Result};
+use crate::error::{Error, Finding, Result};
 use crate::job::edges;
 use crate::job::intake;
+use crate::job::judgement::{self, Judged, Page};
 use crate::job::origin::{SourceRows, origin_of};
+use crate::job::preparation;
+use crate::job::requirement;
+use crate::job::running::{self, Running};
 use crate::job::target::{Opened, Target};
 use crate::job::work::{self, Worked};
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::read::Input;
-use crate::record::{Format, Source};
-use crate::report::{self, CAUTION, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
+use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord, Source};
+use crate::regularise::RowMap;
+use crate::report::page::{self, Passage};
+use crate::report::{self, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, Pending, WaveEncoding};
 
@@ -28,12 +34,27 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let record = &intake.record;
     let axis = record.axis();
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
+    preparation::check(&chain, settings)?;
     let planner = Planner::new();
-    let channels = record.channels().map(|channel| {
-        let (chosen, _) = work::choose(channel, &chain, settings, &planner)?;
-        let (extension, baseline) = work::stage_reports(&chosen, &chain, settings);
+    let channels = record.channels().enumerate().map(|(index, channel)| {
+        let prepared = preparation::prepare(channel, record.missing(index), &chain, settings, &planner)?;
+        let channel = Channel { samples: &prepared.samples, ..channel };
+        let chain = &*prepared.chain;
+        let (chosen, judgement) = judgement::choose(channel, chain, settings, &planner, Page::Unwanted)?;
+        let (extension, baseline) = work::stage_reports(&chosen, chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
-        Ok(PlannedChannel { name: channel.name.to_owned(), unit, extension, baseline })
+        let judged = Judged::of(channel, chain, settings, chosen, judgement, &planner)?;
+        let verdict = judged.verdict(channel, &unit);
+        Ok(PlannedChannel {
+            name: channel.name.to_owned(),
+            unit,
+            extension,
+            baseline,
+            despike: prepared.despiked,
+            smoothing: prepared.smoothing,
+            verdict: verdict.map(|verdict| verdict.sentence),
+            notes: prepared.notes,
+        })
     });
     Ok(Plan {
         channels: channels.collect::<Result<_>>()?,
@@ -80,21 +101,25 @@ pub struct Prepared<'a> {
     pub report: Report,
     /// What is in the record, where that was asked for.
     pub audit: Option<Audit>,
+    passages: Vec<Passage>,
     outputs: Opened<'a>,
 }
 
 impl<'a> Prepared<'a> {
-    /// Makes the record, its sidecar and its JSON appear, all or none.
+    /// Makes the record, its sidecar, its JSON and its page appear, all or none.
     ///
     /// # Errors
     /// `Io` where one of them cannot be written.
     pub fn finish(self) -> Result<Report> {
-        let Opened { record, sidecar, json, durability } = self.outputs;
+        let Opened { record, sidecar, json, page, durability } = self.outputs;
         let text = report::to_json(&self.report)?;
         let mut outputs = vec![record];
         for mut pending in [sidecar, json].into_iter().flatten() {
             pending.write_all(text.as_bytes()).map_err(|error| Error::from(error).at(Place::file(pending.label())))?;
             outputs.push(pending);
+        }
+        if let Some(files) = page {
+            outputs.extend(files.fill(&self.report, &page::condition_page(&self.report, &self.passages))?);
         }
         write::finish_together(outputs, durability)?;
         Ok(self.report)
@@ -125,15 +150,30 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     let (chain, remarks) =
         Chain::resolve(&settings.requests, &settings.shape, intake.record.axis(), intake.record.len())?;
     intake::refuse_notes(settings, &remarks)?;
+    preparation::check(&chain, settings)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
-    let Worked { record, channels } = work::run(intake.record, &chain, settings, &bench.planner)?;
+    let chain_report = chain.describe(intake.record.axis());
+    refuse_columns(settings, format, intake.record.axis())?;
+    let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
+    let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
+    for channel in &channels {
+        intake::refuse_notes(settings, &channel.notes)?;
+    }
 
-    let (record, rows) = edges::trimmed(record, intake.rows, &channels, settings)?;
+    let rows = match chain.treatments().resampling {
+        None => intake.rows,
+        Some(grid) => {
+            notes.extend(untouched(&intake.outline));
+            RowMap::Regridded { count: grid.count }
+        }
+    };
+    let (record, rows) = edges::trimmed(record, rows, &channels, settings)?;
     let rows = SourceRows::of(&rows);
     let origin = origin_of(&intake.outline, &record, format, rows.as_ref())?;
     let marks = edges::marks(&channels, record.len(), settings);
-    let extra: Vec<_> = marks.iter().map(edges::Mark::column).collect();
+    let running = running::columns(&record, settings);
+    let extra: Vec<_> = marks.iter().map(edges::Mark::column).chain(running.iter().map(Running::column)).collect();
     let shown = edges::shown(&channels, settings);
     let content = Content {
         record: &record,
@@ -143,10 +183,10 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         digits: settings.decimals.map_or(Digits::Shortest, Digits::Fixed),
         encoding,
     };
-    notes.extend(write::fill(write::writer(format), &content, &mut outputs.record)?);
-    let requirement_met = settings.require.is_none_or(|required| {
-        channels.iter().all(|c| c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required))
-    });
+    let remarks = write::fill(write::writer(format), &content, &mut outputs.record)?;
+    intake::refuse_notes(settings, &remarks)?;
+    notes.extend(remarks);
+    let unmet = requirement::unmet(settings, &channels);
     let written = OutputReport { path: outputs.record.label().to_owned(), sha256: outputs.record.fingerprint() };
     let report = Report {
         schema: SCHEMA,
@@ -155,13 +195,37 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         settings: settings.to_map_for(format),
         input: input_report,
         notes,
-        chain: chain.describe(record.axis()),
+        chain: chain_report,
         channels,
-        requirement_met,
+        requirement_met: unmet.is_empty(),
+        unmet,
         outputs: vec![written],
-        caution: CAUTION,
+        caution: report::caution(&chain),
     };
-    Ok(Prepared { report, audit, outputs })
+    Ok(Prepared { report, audit, passages, outputs })
+}
+
+/// A remark about columns of the source that have no place on another grid.
+fn untouched(outline: &RawRecord) -> Option<Finding> {
+    let Layout::Table(table) = &outline.layout else { return None };
+    let count = table.columns.iter().filter(|role| **role == ColumnRole::Untouched).count();
+    let text = format!("{count} columns that were not conditioned are left out: they have no place on the new grid");
+    (count > 0).then(|| Finding::new("columns_left_out", text))
+}
+
+/// Running RMS needs a time axis, and a form with room for columns.
+fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()> {
+    if settings.running_rms.is_none() {
+        return Ok(());
+    }
+    if format == Format::Wav {
+        return Err(Error::usage("--running-rms: a WAV file has no room for further columns").remedy("write CSV with --format csv"));
+    }
+    if !axis.is_time() {
+        return Err(Error::usage(format!("--running-rms: the record's axis is a length in {}", axis.unit()))
+            .remedy("leave it out"));
+    }
+    Ok(())
 }
 
 fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {

@@ -5,11 +5,16 @@ mod conditioning;
 mod edges;
 mod examination;
 mod intake;
+mod judgement;
 mod origin;
+mod picture;
+mod preparation;
+mod running;
+mod requirement;
 mod target;
 mod work;
 
 pub use comparison::compare;
 pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
-pub use target::Target;
+pub use target::{PageFiles, Target};

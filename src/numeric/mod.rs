@@ -8,6 +8,7 @@ pub mod covariance;
 pub mod fourier;
 pub mod lag;
 pub mod leading_number;
+pub mod monotone;
 pub mod noise;
 pub mod polynomial;
 pub mod quantile;

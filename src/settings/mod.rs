@@ -33,6 +33,8 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// Integration time of the running RMS, in s.
+    pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
     /// Edge error that is tolerable.
@@ -81,6 +83,11 @@ impl Settings {
         }
         texts.push(text.to_owned());
         parse::set(self, row.key, text)
+    }
+
+    /// True for a key that was set, if only to its default.
+    pub fn is_given(&self, key: &str) -> bool {
+        self.texts.contains_key(key)
     }
 
     /// Every setting as resolved, for results: what was not given stands as its default, `null` where it is decided by

@@ -5,7 +5,7 @@ use std::str::FromStr;
 use crate::ends::Seat;
 use crate::error::{Error, Result};
 use crate::numeric::leading_number;
-use crate::operator::{Request, STEPS, Shape};
+use crate::operator::{Corner, Measure, Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
@@ -65,6 +65,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
         "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
         "shape" => settings.shape = context(key, Shape::parse(text))?,
+        "running-rms" => settings.running_rms = Some(running(text)?),
         "format" => settings.format = Some(one_of(key, text, FORMATS)?),
         "encoding" => settings.encoding = Some(text.to_owned()),
         "decimals" => settings.decimals = Some(decimals(text)?),
@@ -137,6 +138,16 @@ fn decimals(text: &str) -> Result<u8> {
         );
     }
     Ok(count)
+}
+
+fn running(text: &str) -> Result<f64> {
+    let fault = || {
+        Error::usage(format!("--running-rms: no time: \"{}\"", escape(text))).remedy("write it with its unit as 1s or 125ms")
+    };
+    match context("running-rms", Corner::parse(text)) {
+        Ok(time) if time.measure() == Measure::Period => Ok(time.base()),
+        _ => Err(fault()),
+    }
 }
 
 fn axis_unit(key: &str, text: &str) -> Result<Unit> {
