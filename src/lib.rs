@@ -37,6 +37,7 @@ pub mod basis;
 pub mod spectrum;
 pub mod operator;
 pub mod forecast;
+pub mod integral;
 pub mod condition;
 pub mod metric;
 pub mod verdict;

@@ -304,7 +304,7 @@ fn the_cut_keeps_the_stamps() {
 fn a_changed_unit_changes_the_header() {
     let run = Run::new();
     run.file("in.csv", &ramp());
-    run.ok(&["condition", "in.csv", "--channel", "ax", "--integrate", "1", "-o", "v.csv"]);
+    run.ok(&["condition", "in.csv", "--channel", "ax", "--integrate", "1", "--conditions", "steady", "-o", "v.csv"]);
     assert_eq!(run.text("v.csv").lines().next(), Some("time (s),ax (m/s),ay (m/s^2),remark"));
 }
 

@@ -9,6 +9,7 @@ use crate::compare::{self, Judgement};
 use crate::condition::scale_of;
 use crate::ends::{Ends, Seat};
 use crate::error::Result;
+use crate::job::chain;
 use crate::job::intake;
 use crate::job::judgement::{Judged, trusted_report};
 use crate::job::picture::{Scene, draw};
@@ -29,7 +30,7 @@ use crate::verdict::{CANDIDATES, EVEN, ODD_ZERO, PERIODIC};
 pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Comparison, Vec<Picture>)> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+    let (chain, remarks) = chain::of(record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
     preparation::check(&chain, settings)?;
     let planner = Planner::new();

@@ -1,17 +1,22 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod chain;
 mod comparison;
 mod conditioning;
+mod derivative;
 mod edges;
 mod examination;
 mod intake;
+mod integral;
 mod judgement;
 mod origin;
+mod passage;
 mod picture;
 mod preparation;
 mod requirement;
 mod running;
 mod spectrum;
+mod split;
 mod target;
 mod work;
 

@@ -7,6 +7,7 @@ use crate::error::{Error, Finding, Result};
 use crate::numeric::polynomial::Polynomial;
 use crate::record::Axis;
 
+use super::conditions::{Conditions, Offset};
 use super::corner::figure;
 use super::gain::Series;
 use super::reach::{Reach, Reaches, Scale};
@@ -27,6 +28,8 @@ pub struct Chain {
     pub(super) passes: Vec<Pass>,
     pub(super) turns: i32,
     pub(super) reaches: Reaches,
+    pub(super) conditions: Conditions,
+    pub(super) offset: Option<Offset>,
     pub(super) treatments: Treatments,
 }
 
@@ -131,7 +134,26 @@ impl Chain {
             [only] => only.reaches,
             _ => reaches(&all, turns),
         };
-        Chain { shape, passes, turns, reaches, treatments }
+        Chain { shape, passes, turns, reaches, treatments, conditions: Conditions::StartRest, offset: None }
+    }
+
+    /// The same chain with other end conditions of its integral, and the sensor's offset where they take one. As resolved,
+    /// integrals start at rest.
+    #[must_use]
+    pub fn with_conditions(mut self, conditions: Conditions, offset: Option<Offset>) -> Chain {
+        self.conditions = conditions;
+        self.offset = offset;
+        self
+    }
+
+    /// The end conditions of its integral; of no account without one.
+    pub fn conditions(&self) -> &Conditions {
+        &self.conditions
+    }
+
+    /// The sensor's offset, where one is given.
+    pub fn offset(&self) -> Option<&Offset> {
+        self.offset.as_ref()
     }
 
     /// The same chain with the strength of its smoothing found: unchanged without smoothing.
@@ -175,6 +197,7 @@ impl Chain {
             parts.push(smoothing::part(strength));
         }
         Chain::of(parts, self.turns, self.shape.clone(), treatments)
+            .with_conditions(self.conditions.clone(), self.offset.clone())
     }
 
     /// What is done to the samples themselves.
@@ -204,6 +227,16 @@ impl Chain {
     /// The passes in the order of the run, at least one.
     pub fn passes(&self) -> &[Pass] {
         &self.passes
+    }
+
+    /// The pass that forms the integral, if there is one.
+    pub fn integral(&self) -> Option<&Pass> {
+        self.passes.iter().find(|pass| pass.turns < 0)
+    }
+
+    /// The high-pass after an integral, if there is one.
+    pub fn high_pass(&self) -> Option<&Pass> {
+        self.passes.iter().find(|pass| pass.ends == PassEnds::EvenWithoutBaseline)
     }
 
     /// Derivatives (positive) or integrals (negative) of the whole chain.
@@ -251,6 +284,17 @@ impl Pass {
     /// where the pass shifts phases.
     pub fn gain(&self, f: f64) -> f64 {
         product(&self.parts, f)
+    }
+
+    /// The same gains with other turns.
+    #[must_use]
+    pub fn with_turns(&self, turns: i32) -> Pass {
+        Pass { turns, ..self.clone() }
+    }
+
+    /// The lowest corner in cycles per sample; `None` without a corner.
+    pub fn lowest_corner(&self) -> Option<f64> {
+        self.parts.iter().flat_map(|part| &part.corners).map(|corner| corner.cycles).min_by(f64::total_cmp)
     }
 
     /// Complex response at `f` cycles per sample, without the power of frequency of integrals and derivatives.

@@ -16,6 +16,10 @@ pub struct ChainDescription {
     pub shape: String,
     /// Derivatives (positive) or integrals (negative).
     pub turns: i32,
+    /// End conditions of the integral, as written; null without one.
+    pub conditions: Option<String>,
+    /// The sensor's offset taken off before the integral, as written; null where none is given.
+    pub offset: Option<String>,
     /// Spikes are replaced first.
     pub despike: bool,
     /// Smoothing: `auto` where every channel finds its own strength, else the strength; null without smoothing.
@@ -106,6 +110,8 @@ impl Chain {
         ChainDescription {
             shape: self.shape.to_string(),
             turns: self.turns,
+            conditions: (self.turns < 0).then(|| self.conditions.to_string()),
+            offset: self.offset.as_ref().filter(|_| self.turns < 0).map(ToString::to_string),
             despike: self.treatments.despike,
             smooth: self.treatments.smoothing.map(|smoothing| smoothing.to_string()),
             resampling: self.treatments.resampling.map(|resampling| resampling.describe(axis)),

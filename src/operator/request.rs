@@ -141,7 +141,7 @@ mod tests {
             (
                 "allpass",
                 "1",
-                "no operator \"allpass\"; choose one of despike, response, weighting, lowpass, highpass, bandpass, bandstop, notch, integrate, differentiate, smooth, resample, decimate",
+                "no operator \"allpass\"; choose one of despike, response, weighting, lowpass, highpass, bandpass, bandstop, notch, split, integrate, differentiate, smooth, resample, decimate",
             ),
         ] {
             assert_eq!(Request::parse(key, value).unwrap_err().to_string(), message);

@@ -2,6 +2,7 @@
 
 mod comparison;
 mod examination;
+mod integral;
 mod json;
 pub mod page;
 mod plan;
@@ -26,6 +27,7 @@ use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
 pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
+pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
@@ -207,6 +209,10 @@ pub struct ChannelReport {
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
+    /// Both parts of a split; null without one.
+    pub split: Option<SplitReport>,
+    /// Constants and uncertainty of an integral; null without one.
+    pub integral: Option<IntegralReport>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }
@@ -296,8 +302,23 @@ pub struct ExtensionReport {
     pub seat: &'static str,
     /// The forward transform that follows.
     pub transform: String,
+    /// The same in the terms of profile filtering (ISO 16610-28).
+    pub end_treatment: String,
     /// Who chose it.
     pub how: How,
+}
+
+/// Both parts of a split, which stand in columns beside the record and add up to it.
+#[derive(Debug, Clone, Serialize)]
+pub struct SplitReport {
+    /// The corner as written.
+    pub corner: String,
+    /// What is longer than the corner.
+    pub waviness: Option<Level>,
+    /// What is left.
+    pub roughness: Option<Level>,
+    /// Decimals that both parts are rounded to, so that they add up to the record digit by digit.
+    pub decimals: i32,
 }
 
 /// How far the ends reach in.

@@ -12,7 +12,7 @@ use serde_json::{Map, Value};
 use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
-use crate::operator::{Request, Shape};
+use crate::operator::{Conditions, Offset, Request, Shape};
 use crate::read::ReadOptions;
 use crate::record::Format;
 use crate::regularise::RegulariseOptions;
@@ -35,6 +35,16 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// End conditions of an integral; there is no default.
+    pub conditions: Option<Conditions>,
+    /// The sensor's offset, where the end conditions do not solve it.
+    pub offset: Option<Offset>,
+    /// Take end conditions that the record speaks against.
+    pub insist: bool,
+    /// Uncertainty of an integral that is aimed at: the report names the high-pass that gives it.
+    pub target_sigma: Option<ToleranceRequest>,
+    /// Columns that stand beside the result.
+    pub beside: Vec<Beside>,
     /// Integration time of the running RMS, in s.
     pub running_rms: Option<f64>,
     /// What is known about the ends.
@@ -45,7 +55,7 @@ pub struct Settings {
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
     pub require: Option<Adequacy>,
-    /// What happens to output outside the trusted span.
+/// What happens to output outside the trusted span.
     pub edges: Edges,
     /// Format of the output; that of the input when `None`.
     pub format: Option<Format>,
@@ -57,6 +67,15 @@ pub struct Settings {
     pub strict: bool,
     /// What was set, as written.
     texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+/// A column that stands beside each channel of the result.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Beside {
+    /// Standard deviation of an integral from the noise of the record.
+    Sigma,
+    /// The record as corrected: filtered, less offset and drift, high-passed; the result is its integral.
+    Corrected,
 }
 
 /// What happens to output outside the trusted span.

@@ -10,7 +10,7 @@ use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::{Edges, Settings, spectral};
+use crate::settings::{Beside, Edges, Settings, spectral};
 use crate::unit::Unit;
 use crate::verdict::Adequacy;
 
@@ -21,6 +21,7 @@ const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat:
 const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline", Adequacy::Borderline)];
 const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
+const BESIDES: Words<Beside> = &[("sigma", Beside::Sigma), ("corrected", Beside::Corrected)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
 /// The word for regridding where the stamps ask for it.
@@ -64,6 +65,11 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "edges" => settings.edges = one_of(key, text, EDGES)?,
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
         "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
+        "conditions" => settings.conditions = Some(context(key, text.parse())?),
+        "offset" => settings.offset = Some(context(key, text.parse())?),
+        "insist" => settings.insist = switch(key, text)?,
+        "target-sigma" => settings.target_sigma = Some(context(key, text.parse())?),
+        "beside" => settings.beside.push(one_of(key, text, BESIDES)?),
         "shape" => settings.shape = context(key, Shape::parse(text))?,
         "running-rms" => settings.running_rms = Some(running(text)?),
         "method" => settings.spectrum.method = context(key, text.parse())?,
@@ -109,6 +115,7 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
         "octaves" => Some("none".to_owned()),
         "lines" => Some(settings.spectrum.lines.to_string()),
         "tolerance" => Some(settings.tolerance.to_string()),
+        "target-sigma" => Some(settings.target_sigma.as_ref().map_or_else(|| "5%".to_owned(), ToString::to_string)),
         "edges" => spelling(EDGES, settings.edges),
         "seat" => spelling(SEATS, settings.stage.seat),
         "shape" => Some(settings.shape.to_string()),

@@ -5,7 +5,7 @@ use crate::place::escape;
 use crate::report::page::content::Content;
 use crate::report::page::shared::{self, DRAWN};
 use crate::report::page::{
-    Block, Cell, Figure, FigureSet, Line, Page, Passage, Quantity, Section, Table, thinned_along,
+    Block, Cell, Figure, FigureSet, Line, Page, Passage, Quantity, Section, Spectra, Table, thinned_along,
 };
 use crate::report::{ChannelReport, Report};
 use crate::verdict::{Adequacy, Edge};
@@ -82,10 +82,12 @@ fn section(channel: &ChannelReport, passage: Option<&Passage>, report: &Report, 
             }
             blocks.push(Block::Heading("Before and after".to_owned()));
             blocks.push(Block::Figures(passed(channel, passage, report, count)));
+            if let Some(found) = &passage.spectra {
+                blocks.push(Block::Heading("Spectrum, with the gain as applied".to_owned()));
+                blocks.push(Block::Figures(spectra(channel, found, count)));
+            }
         }
-        None => blocks.push(Block::Text(format!(
-            "Figures are drawn for the first {DRAWN} channels; choose others with --channel."
-        ))),
+        None => blocks.push(Block::Text(shared::too_many())),
     }
     blocks.push(Block::Table(levels(channel)));
     Section { heading: channel.name.clone(), blocks }
@@ -150,6 +152,33 @@ fn passed(channel: &ChannelReport, passage: &Passage, report: &Report, count: us
             figure("after", after, vec![line("after", 4, &passage.after)]),
         ],
     };
+    FigureSet { choice: None, figures }
+}
+
+/// Densities before and after, and the gain.
+fn spectra(channel: &ChannelReport, found: &Spectra, count: usize) -> FigureSet {
+    let line = |name: &str, style: usize, points: &[[f64; 2]]| {
+        let (places, values): (Vec<f64>, Vec<f64>) = points.iter().map(|p| (p[0], p[1])).unzip();
+        Line { name: name.to_owned(), style, option: None, points: thinned_along(&places, &values, count) }
+    };
+    let figure = |what: &str, y: Quantity, lines: Vec<Line>| Figure {
+        title: format!("{}: {what}", channel.name),
+        description: format!("Line chart of channel {}: {what}, by frequency.", channel.name),
+        x: Quantity::logarithmic("frequency", found.frequency_unit),
+        y,
+        lines,
+        bands: Vec::new(),
+        spans: Vec::new(),
+    };
+    let density = |unit: &str| Quantity::logarithmic("density", unit);
+    let [before, after] = &found.units;
+    let (one, two) = (line("before", 8, &found.before), line("after", 4, &found.after));
+    let mut figures = if before == after {
+        vec![figure("density before and after", density(before), vec![one, two])]
+    } else {
+        vec![figure("density before", density(before), vec![one]), figure("density after", density(after), vec![two])]
+    };
+    figures.push(figure("gain as applied", Quantity::linear("gain", ""), vec![line("gain", 6, &found.gain)]));
     FigureSet { choice: None, figures }
 }
 

@@ -23,6 +23,21 @@ pub struct Content<'a> {
     pub trusted: Option<TrustedReport>,
 }
 
+/// Densities before and after, and the gain between them.
+#[derive(Debug, Clone)]
+pub struct Spectra {
+    /// `Hz` or `1/m`.
+    pub frequency_unit: &'static str,
+    /// Units of the densities before and after.
+    pub units: [String; 2],
+    /// Of the record.
+    pub before: Vec<[f64; 2]>,
+    /// Of the output.
+    pub after: Vec<[f64; 2]>,
+    /// Gain of the operators as applied.
+    pub gain: Vec<[f64; 2]>,
+}
+
 /// Points kept of a line over the whole record: a page thins further where it shows several channels.
 const KEPT: usize = 1000;
 
@@ -39,11 +54,20 @@ pub struct Passage {
     pub after: Vec<[f64; 2]>,
     /// What was taken away; where input and output are of one unit and stand on one axis.
     pub removed: Option<Vec<[f64; 2]>>,
+    /// What the operators did at every frequency; `None` for records too short for a density.
+    pub spectra: Option<Spectra>,
 }
 
 impl Passage {
     /// From a channel and its output on `axis`.
-    pub fn of(channel: Channel<'_>, output: &[f64], axis: &Axis, same_unit: bool, picture: Option<Picture>) -> Passage {
+    pub fn of(
+        channel: Channel<'_>,
+        output: &[f64],
+        axis: &Axis,
+        same_unit: bool,
+        picture: Option<Picture>,
+        spectra: Option<Spectra>,
+    ) -> Passage {
         let thin = |values: &[f64], axis: &Axis| thinned(values, axis.start(), axis.step(), KEPT);
         let alike = same_unit && axis == channel.axis && output.len() == channel.samples.len();
         let removed = alike.then(|| {
@@ -57,6 +81,7 @@ impl Passage {
             before: thin(channel.samples, channel.axis),
             after: thin(output, axis),
             removed,
+            spectra,
         }
     }
 }

@@ -5,6 +5,7 @@ mod compared;
 mod conditioned;
 mod exposed;
 mod figure;
+mod integrated;
 mod planned;
 mod spectral;
 
