@@ -372,7 +372,8 @@ fn start_constant(samples: &[f64], ends: Ends, len: usize) -> f64 {
 
 #[test]
 fn weighting_smoothing_and_resampling_are_linear() {
-    let bench = Bench::new(400, &[("weighting", "Wk"), ("lowpass", "20Hz"), ("smooth", "50"), ("decimate", "3")], "gaussian");
+    let bench =
+        Bench::new(400, &[("weighting", "Wk"), ("lowpass", "20Hz"), ("smooth", "50"), ("decimate", "3")], "gaussian");
     let (a, b) = (wavy(400), (0..400).map(|n| (n as f64 * 0.037).cos() - 0.002 * n as f64).collect::<Vec<_>>());
     let both: Vec<f64> = a.iter().zip(&b).map(|(a, b)| 2.0 * a - 3.0 * b).collect();
     for ends in Ends::all() {
