@@ -251,11 +251,8 @@ mod tests {
         for (turns, drift, degree) in [(-2, true, 3), (-2, false, 2), (-1, true, 2), (-1, false, 1)] {
             let (_, output, _) = solved(&Solver::Steady { drift }, turns, 0.0);
             for power in 0..=degree {
-                let moment: f64 = output
-                    .iter()
-                    .enumerate()
-                    .map(|(n, v)| v * ((n as f64 + 0.5) / 200.0 - 1.0).powi(power))
-                    .sum();
+                let moment: f64 =
+                    output.iter().enumerate().map(|(n, v)| v * ((n as f64 + 0.5) / 200.0 - 1.0).powi(power)).sum();
                 // 400 values up to 100, cancelling.
                 assert!(moment.abs() < 1e-9, "{turns} {drift} {power}: {moment}");
             }

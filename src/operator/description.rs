@@ -64,6 +64,8 @@ pub struct OperatorDescription {
     pub option: &'static str,
     /// The option's argument as written.
     pub value: String,
+    /// SHA-256 of the table that it came from; null without one.
+    pub sha256: Option<String>,
     /// Its corners, lowest frequency first; of a notch the centre.
     pub corners: Vec<CornerDescription>,
     /// Reaches of this gain alone, in samples.
@@ -156,6 +158,7 @@ fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
         kind: part.kind,
         option: part.key,
         value: part.value.clone(),
+        sha256: part.gain.fingerprint().map(str::to_owned),
         corners: part
             .corners
             .iter()
