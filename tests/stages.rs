@@ -465,8 +465,20 @@ fn several_operators_run_in_one_order_with_one_reach_and_one_verdict() {
         run.ok(&[&forwards[..], &["--extension", extension]].concat());
         assert_eq!(run.column(1).len(), 500, "{extension}");
     }
-    let robust =
-        ["--lowpass", "20Hz", "--smooth", "auto:robust", "--decimate", "4", "--integrate", "1", "--highpass", "1Hz", "--conditions", "steady"];
+    let robust = [
+        "--lowpass",
+        "20Hz",
+        "--smooth",
+        "auto:robust",
+        "--decimate",
+        "4",
+        "--integrate",
+        "1",
+        "--highpass",
+        "1Hz",
+        "--conditions",
+        "steady",
+    ];
     run.ok(&robust);
     assert_eq!(run.column(1).len(), 500);
     assert!(Path::new(&run.path("out.csv.json")).exists());

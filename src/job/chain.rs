@@ -105,7 +105,10 @@ fn missing(chain: &Chain, record: &Record) -> Error {
     } else if ratio > MOVING {
         ("moving", "steady, or pinned=D or still=A..B where they are known")
     } else {
-        ("neither clearly at rest nor moving", "steady, rest, start-rest, pinned=D or still=A..B, as you know the motion to be")
+        (
+            "neither clearly at rest nor moving",
+            "steady, rest, start-rest, pinned=D or still=A..B, as you know the motion to be",
+        )
     };
     Error::usage(what)
         .at(Place::channel(channel.name))

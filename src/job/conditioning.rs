@@ -156,7 +156,8 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     let chain_report = chain.describe(intake.record.axis());
     refuse_columns(settings, format, intake.record.axis())?;
     let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
-    let Worked { record, channels, columns, passages } = work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
+    let Worked { record, channels, columns, passages } =
+        work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
     for channel in &channels {
         intake::refuse_notes(settings, &channel.notes)?;
     }

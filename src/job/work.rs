@@ -173,7 +173,9 @@ fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Fin
 fn formed(channel: Channel<'_>, chain: &Chain, chosen: &Chosen, seat: Seat, planner: &Planner) -> Result<Outcome> {
     match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner),
-        Continuation::Given([left, right]) => condition::condition_continued(channel, chain, left, right, seat, planner),
+        Continuation::Given([left, right]) => {
+            condition::condition_continued(channel, chain, left, right, seat, planner)
+        }
     }
 }
 
@@ -258,7 +260,10 @@ pub fn stage_reports(chosen: &Chosen, chain: &Chain, settings: &Settings) -> (Ex
         Seat::Half => "half-sample",
         Seat::Whole => "whole-sample",
     };
-    (ExtensionReport { kind: chosen.name.clone(), seat, transform, end_treatment, how: chosen.how }, baseline.to_string())
+    (
+        ExtensionReport { kind: chosen.name.clone(), seat, transform, end_treatment, how: chosen.how },
+        baseline.to_string(),
+    )
 }
 
 /// The methods that ISO 16610-28:2016 names for the ends of a profile (terms from memory), as far as they are these.

@@ -55,7 +55,7 @@ pub struct Settings {
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
     pub require: Option<Adequacy>,
-/// What happens to output outside the trusted span.
+    /// What happens to output outside the trusted span.
     pub edges: Edges,
     /// Format of the output; that of the input when `None`.
     pub format: Option<Format>,

@@ -5,8 +5,8 @@ use std::collections::BTreeSet;
 use crate::compare::standings_text;
 use crate::place::escape;
 use crate::report::text::integrated::integral_text;
-use crate::report::{ChannelReport, Report, SplitReport};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table, unmet_text};
+use crate::report::{ChannelReport, Report, SplitReport};
 
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
 pub fn summary(report: &Report) -> String {
