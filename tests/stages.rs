@@ -212,7 +212,8 @@ fn a_sensor_s_own_response_is_taken_out() {
     let y = run.column(1);
     let inner = y[400..1600].iter().zip(&wave(false)[400..1600]).map(|(a, b)| (a - b).abs()).fold(0.0, f64::max);
     assert!(inner < 5e-3, "{inner}");
-    // The default continues forwards, and its trusted span can be marked.
+    // Where the record does not close, the default continues forwards, and its trusted span can be marked.
+    run.record(rate, "m/s2", &wave(true)[..1937]);
     let (told, json) = run.ok(&["--response", "sensor.csv", "--edges", "mark"]);
     assert_eq!(json["channels"][0]["extension"]["kind"], "forecast", "{told}");
     let marked = run.column(2);
@@ -244,7 +245,7 @@ fn doubtful_tables_are_told_and_wrong_ones_refused() {
         let told = String::from_utf8_lossy(&output.stderr).into_owned();
         assert!(!output.status.success() && told.contains(part), "{text}: {told}");
     }
-    assert!(run.fails(2, &["--response", "missing.csv"]).contains("missing.csv"));
+    assert!(run.fails(74, &["--response", "missing.csv"]).contains("missing.csv"));
     run.file("sensor.csv", "\u{0}\u{1}garbage\n\n,,,\n");
     assert!(!run.start(&["condition", "in.csv", "-o", "o.csv", "--response", "sensor.csv"]).status.success());
 }

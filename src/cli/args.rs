@@ -10,7 +10,7 @@ use endgrain::place::Place;
 use endgrain::settings::{Arity, Group, Layer, Settings, find, rows};
 use endgrain::write::Overwrite;
 
-use crate::cli::{audit, batch, compare, condition, exit, spectrum};
+use crate::cli::{audit, batch, compare, condition, exit, generate, merge, spectrum};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -40,11 +40,18 @@ pub fn command() -> Command {
         .subcommand(spectrum::command())
         .subcommand(audit::command())
         .subcommand(batch::command())
+        .subcommand(merge::command())
+        .subcommand(generate::command())
+}
+
+/// A subcommand with its examples and nothing else.
+pub fn bare(name: &'static str, about: &'static str, examples: &'static str) -> Command {
+    Command::new(name).about(about).before_help(examples).help_template(TEMPLATE)
 }
 
 /// A subcommand with its examples, the options of the given groups, and what every command has.
 pub fn subcommand(name: &'static str, about: &'static str, examples: &'static str, groups: &[Group]) -> Command {
-    let mut command = Command::new(name).about(about).before_help(examples).help_template(TEMPLATE);
+    let mut command = bare(name, about, examples);
     for row in rows().into_iter().filter(|row| groups.contains(&row.group)) {
         let arg = Arg::new(row.key).long(row.key).help(row.help).help_heading(row.group.heading());
         command = command.arg(match row.arity {

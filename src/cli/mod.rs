@@ -6,7 +6,9 @@ mod batch;
 mod compare;
 mod condition;
 mod exit;
+mod generate;
 mod machine;
+mod merge;
 mod progress;
 mod spectrum;
 mod stream;
@@ -25,6 +27,8 @@ pub fn run() -> ExitCode {
         Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
         Some(("batch", matches)) => batch::run(matches),
+        Some(("merge", matches)) => merge::run(matches),
+        Some(("generate", matches)) => generate::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };
     match outcome {

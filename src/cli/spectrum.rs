@@ -6,7 +6,7 @@ use std::process::ExitCode;
 
 use clap::{Arg, ArgMatches, Command};
 use endgrain::error::{Error, Result};
-use endgrain::job;
+use endgrain::job::{self, PageFiles};
 use endgrain::place::Place;
 use endgrain::report::{self, OutputReport};
 use endgrain::settings::Group;
@@ -24,6 +24,7 @@ Examples:
   endgrain spectrum before.csv after.csv --segment 2s --plot both.svg
   endgrain spectrum log.csv --lowpass 40Hz --plot before_and_after.svg
   endgrain spectrum log.csv --method basis --extension even --against odd+line
+  endgrain spectrum log.csv --segment 0.5Hz --html spectrum.html
   endgrain spectrum road.csv --segment 100m --road
 ";
 
@@ -54,6 +55,7 @@ pub fn command() -> Command {
     )
     .arg(args::json())
     .arg(args::force("Report"))
+    .arg(args::page())
     .after_help(exit::HELP)
 }
 
@@ -83,7 +85,8 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let output_path = output.as_deref().filter(|_| !to_stdout);
     let json_path = json.as_deref().filter(|_| !json_to_stdout);
     let sidecar_path = output_path.map(sidecar_of);
-    let named = [output_path, sidecar_path.as_deref(), plot.as_deref(), json_path];
+    let page = matches.get_one::<String>("html").map(Path::new);
+    let named = [output_path, sidecar_path.as_deref(), plot.as_deref(), json_path, page];
     refuse_twins(&named.into_iter().flatten().collect::<Vec<_>>())?;
     let sidecar = sidecar_path.as_deref().map(open).transpose()?;
     let series = match output_path {
@@ -93,12 +96,16 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     };
     let plot = plot.as_deref().map(open).transpose()?;
     let json_file = json_path.map(open).transpose()?;
+    let page = page.map(|path| PageFiles::create(path, &inputs, overwrite)).transpose()?;
 
     let second = second.map(|second| stream::input(second)).transpose()?;
     let mut found = job::spectrum(stream::input(file)?, second, &settings)?;
     let mut outputs = Vec::new();
     if let Some(plot) = plot {
         outputs.push(filled(plot, report::spectrum_svg(&found)?.as_bytes())?);
+    }
+    if let Some(page) = page {
+        outputs.extend(page.fill(&found.clone().without_series(), &report::page::spectrum_page(&found))?);
     }
     if let Some(series) = series {
         outputs.push(filled(series, &write::spectrum_csv(&found))?);

@@ -10,6 +10,7 @@ mod intake;
 mod integral;
 mod judgement;
 mod origin;
+mod passage;
 mod picture;
 mod preparation;
 mod requirement;

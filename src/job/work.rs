@@ -12,6 +12,7 @@ use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Finding, Result};
 use crate::job::integral::{self, Column};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
+use crate::job::passage::passage;
 use crate::job::picture::{Scene, draw};
 use crate::job::preparation::prepare;
 use crate::job::{derivative, split};
@@ -19,7 +20,7 @@ use crate::metric::exposure::Exposure;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Channel, Record};
-use crate::report::page::Passage;
+use crate::report::page::{Passage, Stack};
 use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport};
 use crate::settings::Settings;
 use crate::verdict::{Auto, Trusted};
@@ -127,11 +128,14 @@ fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Fin
     let mut report = report(channel, raw, chain, settings, &judged, &outcome);
     report.notes.extend(prepared.notes);
     report.notes.extend(derivative::remark(channel, chain, &outcome));
-    let mut columns = Vec::new();
+    let (mut columns, mut stack) = (Vec::new(), None);
     if let Some(formed) = integral {
         report.notes.extend(formed.notes);
         report.integral = Some(formed.report);
         columns = formed.columns;
+        // On another grid the result has no deviation of its own, sample by sample.
+        let drawn = page == Page::Wanted && chain.treatments().resampling.is_none();
+        stack = drawn.then(|| Stack::of(channel.axis, &formed.corrected, &outcome.output, &formed.deviations));
     }
     if let (Some(whole), Some(corner)) = (whole, split::corner(settings)) {
         let parts = split::of(channel, corner, whole, std::mem::take(&mut outcome.output), settings);
@@ -163,7 +167,8 @@ fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Fin
         Page::Wanted => {
             let picture = draw(channel, &chain.on_own_grid(), seat, &judged, &Scene::of(&report), planner)?;
             let picture = Some(picture).filter(|picture| !picture.curves.is_empty());
-            Some(Passage::of(raw, &outcome.output, &axis, report.unit == report.unit_in, picture))
+            let passage = passage(raw, &outcome.output, &axis, chain, &report, picture, planner);
+            Some(Passage { integral: stack, ..passage })
         }
     };
     Ok(Finished { report, output: outcome.output, columns, passage })

@@ -97,7 +97,7 @@ impl Chain {
             let corners = |part: &Part| part.corners.iter().map(|c| c.cycles.to_bits()).collect::<Vec<_>>();
             (a.stage, row(a), corners(a), &a.value).cmp(&(b.stage, row(b), corners(b), &b.value))
         });
-        let reaches = reaches(&parts, turns);
+        let all = parts.clone();
         let robust = match treatments.smoothing {
             Some(Smoothing { strength: Strength::Given(strength), robust: true }) => Some(strength),
             _ => None,
@@ -130,6 +130,10 @@ impl Chain {
         if let Some(last) = passes.last_mut() {
             last.resampling = treatments.resampling;
         }
+        let reaches = match passes.as_slice() {
+            [only] => only.reaches,
+            _ => reaches(&all, turns),
+        };
         Chain { shape, passes, turns, reaches, treatments, conditions: Conditions::StartRest, offset: None }
     }
 
@@ -174,6 +178,10 @@ impl Chain {
     }
 
     fn rebuilt(&self, treatments: Treatments) -> Chain {
+        // Reaches are costly: nothing is measured twice.
+        if treatments == self.treatments {
+            return self.clone();
+        }
         let smooths = treatments.smoothing.is_some();
         let mut parts: Vec<Part> = self
             .passes

@@ -34,7 +34,7 @@ impl Request {
         };
         let setting = (step.read)(value).map_err(|e| {
             let remedy = e.advice().map_or_else(|| format!("write it as in --{key} {}", step.example), str::to_owned);
-            Error::usage(format!("{}: {}", step.option(), e.what())).remedy(remedy)
+            Error::new(e.kind(), format!("{}: {}", step.option(), e.what())).at(e.place().clone()).remedy(remedy)
         })?;
         Ok(Request { step, value: value.trim().to_owned(), setting: Arc::from(setting) })
     }

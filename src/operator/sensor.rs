@@ -97,12 +97,9 @@ impl Correct {
             tell("response_coarse", text);
         }
         if let Some([from, to]) = table.limited_hz() {
-            let text = format!(
-                "the correction is limited to {} dB between {} and {} Hz",
-                figure(20.0 * BOOST.log10()),
-                figure(from),
-                figure(to)
-            );
+            let (from, to) = (figure(from), figure(to));
+            let span = if from == to { format!("at {to} Hz") } else { format!("between {from} and {to} Hz") };
+            let text = format!("the correction is limited to {} dB {span}", figure(20.0 * BOOST.log10()));
             tell("response_limited", text);
         }
         if high < nyquist_hz {

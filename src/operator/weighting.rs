@@ -149,7 +149,7 @@ impl Setting for Weigh {
             value: row.name.to_owned(),
             stage: Stage::Response,
             corners: corners.collect(),
-            gain: Arc::new(Weighed { row, rate_hz }),
+            gain: Arc::new(Weighed::new(row, rate_hz)),
         };
         let treatments = Treatments { weighting: Some(row), ..Treatments::default() };
         Ok(Effect { parts: vec![part], treatments, findings, ..Effect::default() })
@@ -159,8 +159,7 @@ impl Setting for Weigh {
 impl Weighting {
     /// The complex response at a frequency in Hz.
     pub fn response(&self, hz: f64) -> Complex<f64> {
-        let s = Complex::new(0.0, TAU * hz);
-        self.sections().iter().fold(Complex::new(self.factor, 0.0), |product, section| product * section.at(s))
+        response(&self.sections(), self.factor, hz)
     }
 
     /// Where it begins to fall for good.
@@ -192,6 +191,11 @@ impl Weighting {
     }
 }
 
+fn response(sections: &[Section], factor: f64, hz: f64) -> Complex<f64> {
+    let s = Complex::new(0.0, TAU * hz);
+    sections.iter().fold(Complex::new(factor, 0.0), |product, section| product * section.at(s))
+}
+
 /// A quotient of polynomials in s (rad/s), lowest power first.
 #[derive(Debug, Clone, Copy)]
 struct Section {
@@ -216,7 +220,14 @@ impl Section {
 #[derive(Debug)]
 struct Weighed {
     row: &'static Weighting,
+    sections: Vec<Section>,
     rate_hz: f64,
+}
+
+impl Weighed {
+    fn new(row: &'static Weighting, rate_hz: f64) -> Weighed {
+        Weighed { row, sections: row.sections(), rate_hz }
+    }
 }
 
 impl Gain for Weighed {
@@ -224,14 +235,14 @@ impl Gain for Weighed {
         self.response(f).norm()
     }
     fn response(&self, f: f64) -> Complex<f64> {
-        self.row.response(f * self.rate_hz)
+        response(&self.sections, self.row.factor, f * self.rate_hz)
     }
     fn is_real(&self) -> bool {
         false
     }
     fn series(&self) -> Series {
         let start = Series { s0: self.row.factor, ..Series::ZERO };
-        self.row.sections().iter().fold(start, |series, section| series.times(section.series(self.rate_hz)))
+        self.sections.iter().fold(start, |series, section| series.times(section.series(self.rate_hz)))
     }
     fn extent_samples(&self) -> f64 {
         // exp(-w t/sqrt 2), the decay of the lower band limit, falls to a thousandth in 1.55 cycles.

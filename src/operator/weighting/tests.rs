@@ -206,7 +206,7 @@ fn the_series_at_zero_is_the_response_there() {
     // H(i w) from its own Taylor polynomial, far below the lowest corner, where the sixth power is below rounding.
     for row in WEIGHTINGS {
         let rate_hz = 50.0 * row.band[1];
-        let gain = Weighed { row, rate_hz };
+        let gain = Weighed::new(row, rate_hz);
         let series = gain.series();
         let f = 1e-3 * row.band[0] / rate_hz;
         let p = Complex::new(0.0, TAU * f);
