@@ -6,10 +6,13 @@ mod edges;
 mod examination;
 mod intake;
 mod origin;
+mod picture;
+mod preparation;
+mod running;
 mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, plan};
+pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
-pub use target::Target;
+pub use target::{PageFiles, Target};

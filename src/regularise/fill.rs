@@ -66,6 +66,21 @@ pub fn expand(
     complete(table, axis, findings)
 }
 
+/// Fills the values that are not finite, as `--gaps fill` does, and tells how. In an error stands the first sample of the
+/// gap that cannot be filled.
+///
+/// # Errors
+/// `Unsupported` for a gap at an end, too long for the content, or with too few samples around it.
+pub fn fill_gaps(values: Vec<f64>) -> std::result::Result<(Vec<f64>, &'static str), (usize, Error)> {
+    match fill(values) {
+        Ok(filled) => {
+            let how = filled.how();
+            Ok((filled.values, how))
+        }
+        Err(Unfillable { sample, what }) => Err((sample, Error::unsupported(what))),
+    }
+}
+
 /// Fills all missing values of all channels.
 pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> {
     for index in 0..table.raw.channels.len() {

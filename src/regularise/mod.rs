@@ -17,6 +17,7 @@ use crate::record::{RawRecord, Record, Spacing};
 
 pub use choice::{Duplicates, Gaps, Regrid};
 pub use cut::Bound;
+pub use fill::fill_gaps;
 pub use rows::RowMap;
 
 use table::Table;

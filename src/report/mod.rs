@@ -3,9 +3,11 @@
 mod comparison;
 mod examination;
 mod json;
+pub mod page;
 mod plan;
 mod plot;
 mod text;
+mod treatment;
 
 use serde::Serialize;
 use serde_json::{Map, Value};
@@ -15,7 +17,8 @@ use crate::baseline::EndEstimates;
 use crate::compare::How;
 use crate::compare::Standing;
 use crate::error::Finding;
-use crate::operator::ChainDescription;
+use crate::metric::exposure::Exposure;
+use crate::operator::{Chain, ChainDescription};
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure};
@@ -25,6 +28,7 @@ pub use examination::AuditReport;
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
+pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 pub use text::{audit_text, comparison_text, plan_text, summary};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
@@ -75,6 +79,16 @@ impl Tool {
 pub const CAUTION: &str = "Filtered, integrated or restored records are estimates under the stated assumption about the \
 ends. Decisions on machine protection, structural safety or human exposure follow the applicable standards and local \
 codes under qualified practice; this program does not certify.";
+
+/// The caution that goes with a weighted record.
+pub const WEIGHTED_CAUTION: &str = "Weighted accelerations and the figures formed from them are estimates from one record \
+under the stated assumption about the ends: not the readings of a measuring instrument in the sense of ISO 8041-1. Decisions \
+on human exposure follow local codes and qualified practice; this program does not certify.";
+
+/// The caution that belongs to what a chain does.
+pub fn caution(chain: &Chain) -> &'static str {
+    if chain.treatments().weighting.is_some() { WEIGHTED_CAUTION } else { CAUTION }
+}
 
 /// What was read.
 #[derive(Debug, Clone, Serialize)]
@@ -170,6 +184,12 @@ pub struct ChannelReport {
     pub edge: Option<EndEstimates>,
     /// First and last trusted sample of the output; null where nothing was judged or nothing is trusted.
     pub trusted: Option<TrustedReport>,
+    /// Spikes that were replaced; null where that was not asked for.
+    pub despike: Option<DespikeReport>,
+    /// Smoothing; null without it.
+    pub smoothing: Option<SmoothReport>,
+    /// Exposure figures; null without a weighting.
+    pub exposure: Option<Exposure>,
     /// RMS before and after.
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
