@@ -10,7 +10,7 @@ use endgrain::place::Place;
 use endgrain::settings::{Arity, Group, Layer, Settings, find, rows};
 use endgrain::write::Overwrite;
 
-use crate::cli::{audit, batch, compare, condition, exit};
+use crate::cli::{audit, batch, compare, compress, condition, exit, restore};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -26,6 +26,8 @@ pub fn command() -> Command {
   endgrain compare log.csv --lowpass 40Hz --plot ends.svg
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
   endgrain condition log.wav --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.wav
+  endgrain compress log.csv --max-error 0.001g -o log.grain
+  endgrain restore log.grain -o log2.csv
   endgrain batch --recipe clean.toml --into cleaned logs/*.csv
 ",
         ))
@@ -37,6 +39,8 @@ pub fn command() -> Command {
         .subcommand(condition::command())
         .subcommand(compare::command())
         .subcommand(audit::command())
+        .subcommand(compress::command())
+        .subcommand(restore::command())
         .subcommand(batch::command())
 }
 

@@ -4,10 +4,12 @@ mod args;
 mod audit;
 mod batch;
 mod compare;
+mod compress;
 mod condition;
 mod exit;
 mod machine;
 mod progress;
+mod restore;
 mod stream;
 
 use std::process::ExitCode;
@@ -22,6 +24,8 @@ pub fn run() -> ExitCode {
         Some(("condition", matches)) => condition::run(matches),
         Some(("compare", matches)) => compare::run(matches),
         Some(("audit", matches)) => audit::run(matches),
+        Some(("compress", matches)) => compress::run(matches),
+        Some(("restore", matches)) => restore::run(matches),
         Some(("batch", matches)) => batch::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };

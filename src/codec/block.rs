@@ -60,6 +60,8 @@ pub struct Coded {
     pub payload: Vec<u8>,
     /// Cosine coefficients that are not zero, and one past the highest of them.
     pub kept: Option<(usize, usize)>,
+    /// Energy of the coefficients that were dropped, where nothing else is lost.
+    pub dropped: Option<f64>,
 }
 
 impl Coded {
@@ -70,9 +72,10 @@ impl Coded {
     pub fn truncated(samples: &[f64], keep: usize, planner: &Planner) -> Result<Coded> {
         let mut coefficients = samples.to_vec();
         segments::transform(&mut coefficients, planner)?;
+        let dropped = coefficients.iter().skip(keep).map(|c| c * c).sum();
         coefficients.truncate(keep);
         let payload = coefficients.iter().flat_map(|c| c.to_le_bytes()).collect();
-        Ok(Coded { mode: Mode::Truncated, payload, kept: Some((keep, keep)) })
+        Ok(Coded { mode: Mode::Truncated, payload, kept: Some((keep, keep)), dropped: Some(dropped) })
     }
 }
 

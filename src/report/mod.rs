@@ -1,5 +1,6 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod archive;
 mod comparison;
 mod examination;
 mod json;
@@ -23,13 +24,15 @@ use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure};
 
+pub use archive::{ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
 pub use comparison::{ChannelComparison, Comparison, Jump, Row};
 pub use examination::AuditReport;
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
-pub use text::{audit_text, comparison_text, plan_text, summary};
+pub(crate) use text::figure;
+pub use text::{archive_text, audit_text, comparison_text, plan_text, summary, listing_text, restore_text};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;

@@ -29,10 +29,6 @@ impl Map {
         self.put(key, |e| drop(e.str(value)));
     }
 
-    pub fn bytes(&mut self, key: u64, value: &[u8]) {
-        self.put(key, |e| drop(e.bytes(value)));
-    }
-
     pub fn map(&mut self, key: u64, value: Map) {
         self.entries.push((key, value.finish()));
     }
@@ -153,14 +149,6 @@ pub fn count(decoder: &mut Decoder<'_>) -> Result<u64> {
 /// `Malformed` for what is none.
 pub fn signed(decoder: &mut Decoder<'_>) -> Result<i64> {
     decoder.i64().map_err(fault)
-}
-
-/// Bytes.
-///
-/// # Errors
-/// `Malformed` for what is none.
-pub fn bytes(decoder: &mut Decoder<'_>) -> Result<Vec<u8>> {
-    decoder.bytes().map(<[u8]>::to_vec).map_err(fault)
 }
 
 fn fault(fault: Fault) -> Error {

@@ -180,8 +180,8 @@ impl Header {
         if decoder.position() != bytes.len() {
             return Err(Error::malformed("bytes after the header"));
         }
-        if header.channels.is_empty() {
-            return Err(Error::malformed("an archive of no channels"));
+        if header.channels.is_empty() || header.rows == 0 {
+            return Err(Error::malformed("an archive of no channels or no rows"));
         }
         Ok(header)
     }

@@ -130,6 +130,11 @@ impl<'a> Archive<'a> {
     /// # Errors
     /// `Malformed` with the byte of a block that does not decode.
     pub fn samples(&self, stream: usize, first: u64, end: u64, planner: &Planner) -> Result<Vec<f64>> {
+        // A row costs no byte where its block is lost: what a damaged header claims must not be allocated.
+        let most = (self.entries.len() + self.lost.len() + 1) as u64 * MOST_SAMPLES as u64;
+        if end.saturating_sub(first) > most {
+            return Err(Error::malformed(format!("{end} rows in so few blocks cannot be")));
+        }
         let mut out: Vec<f64> = Vec::new();
         let mut due = first;
         let mut blocks: Vec<&Entry> = self.entries.iter().filter(|entry| entry.stream == stream).collect();
@@ -211,26 +216,21 @@ impl<'a> Archive<'a> {
 
     /// Every row of every stream exactly once.
     fn is_complete(&self) -> Result<()> {
-        for stream in 0..self.header.streams() {
-            let mut spans: Vec<(u64, u64)> = self
-                .entries
-                .iter()
-                .filter(|entry| entry.stream == stream)
-                .map(|entry| (entry.first, entry.first + entry.rows as u64))
-                .collect();
-            spans.sort_unstable();
-            let mut due = 0;
-            for (first, end) in spans {
-                if first != due {
-                    return Err(Error::malformed(format!("rows missing or doubled from row {due} on")));
-                }
-                due = end;
+        let mut spans: Vec<(usize, u64, u64)> =
+            self.entries.iter().map(|entry| (entry.stream, entry.first, entry.first + entry.rows as u64)).collect();
+        spans.sort_unstable();
+        let (mut stream, mut due) = (0, 0);
+        let missing = |row: u64| Error::malformed(format!("rows missing or doubled from row {row} on"));
+        for (own, first, end) in spans {
+            if own == stream + 1 && due == self.header.rows {
+                (stream, due) = (own, 0);
             }
-            if due != self.header.rows {
-                return Err(Error::malformed(format!("rows missing from row {due} on")));
+            if own != stream || first != due {
+                return Err(missing(due));
             }
+            due = end;
         }
-        Ok(())
+        if stream + 1 != self.header.streams() || due != self.header.rows { Err(missing(due)) } else { Ok(()) }
     }
 }
 

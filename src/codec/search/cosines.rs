@@ -90,7 +90,7 @@ pub fn within(task: Task<'_>, bound: f64, least: usize) -> Result<Vec<Coded>> {
 
 fn coded(series: &Series, remainder: Option<&Remainder>) -> Coded {
     let mode = if remainder.is_some() { Mode::CosineLattice } else { Mode::Cosine };
-    Coded { mode, payload: series.encode(remainder), kept: Some(series.kept()) }
+    Coded { mode, payload: series.encode(remainder), kept: Some(series.kept()), dropped: None }
 }
 
 /// Bits that a prepared block would take, by its smoothed magnitudes.

@@ -99,7 +99,7 @@ pub fn in_the_mean(task: Task<'_>, goal: f64, least: usize) -> Vec<Coded> {
 }
 
 fn coded(plan: &(Plan, &[f64])) -> Coded {
-    Coded { mode: Mode::Predicted, payload: plan.0.encode(plan.1), kept: None }
+    Coded { mode: Mode::Predicted, payload: plan.0.encode(plan.1), kept: None, dropped: None }
 }
 
 /// Steps from zero, and from the mean rounded to it, so that a value of rest is met exactly; and free steps.

@@ -1,5 +1,6 @@
 //! Results for people: short lines and tables, units everywhere, nothing that a file could use to command a terminal.
 
+mod archived;
 mod audited;
 mod compared;
 mod conditioned;
@@ -14,12 +15,13 @@ use crate::compare::How;
 use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
 
+pub use archived::{archive_text, listing_text, restore_text};
 pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
 
-pub(super) use figure::figure;
+pub(crate) use figure::figure;
 pub(super) use planned::operators_text;
 
 /// A table without rules: first column to the left, the others to the right.
