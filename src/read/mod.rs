@@ -66,6 +66,7 @@ static FOREIGN: &[(&[u8], &str, &str)] = &[
     (b"BZh", "bzip2-compressed data", "unpack it first and read from standard input: bzip2 -dc FILE | ... -"),
     (b"PK\x03\x04", "a zip archive or a spreadsheet workbook", "unpack it, or save the sheet as delimited text"),
     (b"\xd0\xcf\x11\xe0", "a spreadsheet workbook", "save the sheet as delimited text"),
+    (b"\x89GRN", "an archive of this program", "restore it first: endgrain restore FILE -o -"),
     (b"\x89HDF\r\n", "an HDF5 file", "export the wanted channels as delimited text or WAV"),
     (b"%PDF", "a PDF document", "export the data as delimited text"),
 ];

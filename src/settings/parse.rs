@@ -2,6 +2,7 @@
 
 use std::str::FromStr;
 
+use crate::codec as archive;
 use crate::ends::Seat;
 use crate::error::{Error, Result};
 use crate::numeric::leading_number;
@@ -22,6 +23,8 @@ const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline",
 const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
 const BESIDES: Words<Beside> = &[("sigma", Beside::Sigma), ("corrected", Beside::Corrected)];
+const EFFORTS: Words<archive::Effort> =
+    &[("2", archive::Effort::Usual), ("1", archive::Effort::Quick), ("3", archive::Effort::Long)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
 /// The word for regridding where the stamps ask for it.
@@ -58,6 +61,14 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "regrid" if text == REGRID_BY_ITSELF => settings.regularise.regrid = None,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
         "strict" => settings.strict = switch(key, text)?,
+        "max-error" => bound(settings, archive::Request::Max(context(key, text.parse())?))?,
+        "rms-error" => bound(settings, archive::Request::Rms(context(key, text.parse())?))?,
+        "lossless" if switch(key, text)? => bound(settings, archive::Request::Lossless)?,
+        "lossless" => {}
+        "keep" => bound(settings, archive::Request::Keep(named(key, text, "a number of coefficients")?))?,
+        "corner" => bound(settings, archive::Request::Corner(context(key, Corner::parse(text))?))?,
+        "effort" => settings.archive.effort = one_of(key, text, EFFORTS)?,
+        "bare" => settings.archive.bare = switch(key, text)?,
         "extension" => settings.stage.extension = context(key, text.parse())?,
         "assert" => context(key, settings.assertion.add(text))?,
         "tolerance" => settings.tolerance = context(key, text.parse())?,
@@ -121,6 +132,16 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
         "shape" => Some(settings.shape.to_string()),
         _ => None,
     }
+}
+
+/// One bound and no other.
+fn bound(settings: &mut Settings, request: archive::Request) -> Result<()> {
+    if settings.archive.request.is_some() {
+        return Err(Error::usage("more than one bound on the error")
+            .remedy("give one of --max-error, --rms-error, --lossless, --keep, --corner"));
+    }
+    settings.archive.request = Some(request);
+    Ok(())
 }
 
 fn one_of<T: Copy>(key: &str, text: &str, words: Words<T>) -> Result<T> {
