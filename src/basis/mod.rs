@@ -30,6 +30,7 @@ mod plan;
 mod planner;
 pub mod series;
 
+pub use kernel::{is_smooth, smooth_from};
 pub use plan::Plan;
 pub use planner::Planner;
 

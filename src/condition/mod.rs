@@ -1,5 +1,6 @@
 //! The main job: a channel, its assumed continuation and a chain of operators make a conditioned channel.
 
+mod blocks;
 mod choice;
 mod pass;
 
@@ -11,8 +12,9 @@ use crate::operator::Chain;
 use crate::record::Channel;
 use crate::unit::Unit;
 
+pub use blocks::Layout;
 pub use choice::{ExtensionChoice, Stage};
-pub use pass::{Passed, apply};
+pub use pass::{Passed, apply, apply_whole};
 
 /// What conditioning made of one channel: the only input of metrics and reports.
 #[derive(Debug, Clone)]

@@ -1,5 +1,6 @@
 //! One pass of the chain over one channel: baseline off, transform, multiply, back, baseline carried and added.
 
+use super::blocks::{self, Layout};
 use crate::baseline::Baseline;
 use crate::basis::{Planner, series};
 use crate::ends::{Ends, Parity};
@@ -25,6 +26,25 @@ pub struct Passed {
 /// # Errors
 /// `Unsupported` for a record of no samples.
 pub fn apply(
+    samples: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    pass: &Pass,
+    rest: f64,
+    planner: &Planner,
+) -> Result<Passed> {
+    let len = samples.len();
+    if let Some(layout) = Layout::of(pass, len) {
+        return blocks::apply(samples, ends, baseline, pass, layout, planner);
+    }
+    apply_whole(samples, ends, baseline, pass, rest, planner)
+}
+
+/// As `apply`, by the transform of the record's own length whatever that costs: what the way in blocks is held against.
+///
+/// # Errors
+/// As `apply`.
+pub fn apply_whole(
     samples: &[f64],
     ends: Ends,
     baseline: &Baseline,
@@ -107,7 +127,7 @@ fn is_cosine(ends: Ends, k: usize) -> bool {
 ///
 /// A derivative takes a cosine to -omega sine and a sine to +omega cosine; an integral takes a cosine to +1/omega sine
 /// and a sine to -1/omega cosine; two of either multiply by -omega^2 or -1/omega^2.
-fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
+pub(super) fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
     let len = coefficients.len();
     let turns = pass.turns();
     let (mut last_frequency, mut last_gain) = (f64::NAN, 0.0);
@@ -157,7 +177,7 @@ fn from_rest(polynomial: Polynomial, coefficients: &[f64], ends: Ends, turns: i3
 }
 
 /// The polynomial after `turns` derivatives (positive) or integrals from x = 0 (negative).
-fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
+pub(super) fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
     for _ in 0..turns.abs() {
         polynomial = if turns > 0 { polynomial.derivative() } else { polynomial.integral() };
     }

@@ -20,6 +20,7 @@ use crate::record::{ColumnRole, Format, Layout, RawRecord, Source, TableLayout, 
 use fingerprint::{Fingerprinted, Unchanged};
 use selection::Candidate;
 
+pub use fingerprint::Fingerprint;
 pub use options::{Calibration, ReadOptions};
 
 /// What to read from.

@@ -7,11 +7,11 @@ use std::path::{Path, PathBuf};
 use std::sync::{Mutex, MutexGuard, PoisonError};
 
 use rayon::prelude::*;
-use sha2::{Digest, Sha256};
 use tempfile::{NamedTempFile, TempPath};
 
 use crate::error::{Error, Result};
 use crate::place::Place;
+use crate::read::Fingerprint;
 
 /// What to do with a file that is in the way.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
@@ -27,8 +27,7 @@ pub enum Overwrite {
 pub struct Pending<'a> {
     label: String,
     sink: Sink<'a>,
-    hash: Sha256,
-    bytes: u64,
+    fingerprint: Fingerprint,
 }
 
 enum Sink<'a> {
@@ -58,12 +57,12 @@ impl<'a> Pending<'a> {
     pub fn create(path: &Path, inputs: &[&Path], overwrite: Overwrite) -> Result<Pending<'a>> {
         let label = path.display().to_string();
         let sink = open(path, inputs, overwrite).map_err(|error| error.at(Place::file(label.clone())))?;
-        Ok(Pending { label, sink, hash: Sha256::new(), bytes: 0 })
+        Ok(Pending { label, sink, fingerprint: Fingerprint::default() })
     }
 
     /// An output that streams into `sink`, such as standard output under the label `-`.
     pub fn stream(label: &str, sink: impl Write + Send + 'a) -> Pending<'a> {
-        Pending { label: label.to_owned(), sink: Sink::Stream(Box::new(sink)), hash: Sha256::new(), bytes: 0 }
+        Pending { label: label.to_owned(), sink: Sink::Stream(Box::new(sink)), fingerprint: Fingerprint::default() }
     }
 
     /// Makes the output appear: everything is on the disk before the name is.
@@ -96,8 +95,8 @@ impl<'a> Pending<'a> {
     }
 
     fn written(self) -> Written {
-        let sha256 = self.hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect();
-        Written { path: self.label, sha256, bytes: self.bytes }
+        let (sha256, bytes) = self.fingerprint.finish();
+        Written { path: self.label, sha256, bytes }
     }
 
     /// An error of this output, with its name unless it tells another place.
@@ -112,8 +111,7 @@ impl Write for Pending<'_> {
             Sink::Whole { file, .. } => file.write(buffer),
             Sink::Stream(sink) => sink.write(buffer),
         }?;
-        self.hash.update(&buffer[..count]);
-        self.bytes += count as u64;
+        self.fingerprint.update(&buffer[..count]);
         Ok(count)
     }
 

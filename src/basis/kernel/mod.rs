@@ -14,6 +14,7 @@ mod tiles;
 mod turn;
 
 pub use four::LongFour;
+pub use grid::{is_smooth, smooth_from};
 
 use awkward::AwkwardCosine;
 use cosine::LongCosine;
