@@ -30,7 +30,6 @@ mod plan;
 mod planner;
 pub mod series;
 
-pub use kernel::{is_smooth, smooth_from};
 pub use plan::Plan;
 pub use planner::Planner;
 

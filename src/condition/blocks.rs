@@ -10,9 +10,11 @@ use rayon::prelude::*;
 
 use super::pass::{Passed, multiply, turned};
 use crate::baseline::Baseline;
-use crate::basis::{self, Planner};
+use crate::basis::Planner;
 use crate::ends::Ends;
 use crate::error::Result;
+use crate::numeric::polynomial::Polynomial;
+use crate::numeric::smooth::{is_smooth, smooth_from};
 use crate::numeric::sum;
 use crate::operator::Pass;
 
@@ -42,7 +44,7 @@ impl Layout {
         }
         let margin = reach.ceil() as usize;
         let cost = |block: usize| block as f64 * (block as f64).log2();
-        let whole = Layout { block: basis::smooth_from(len + 2 * margin), step: len, margin };
+        let whole = Layout { block: smooth_from(len + 2 * margin), step: len, margin };
         let cut = |bits: u32| {
             let block = 1_usize << bits;
             let most = block.checked_sub(2 * margin).filter(|step| *step >= block / 2)?;
@@ -50,7 +52,7 @@ impl Layout {
             Some(Layout { block, step: len.div_ceil(len.div_ceil(most)), margin })
         };
         let total = |layout: &Layout| cost(layout.block) * len.div_ceil(layout.step) as f64;
-        let exact = cost(len) * if basis::is_smooth(len) { 1.0 } else { AWKWARD };
+        let exact = cost(len) * if is_smooth(len) { 1.0 } else { AWKWARD };
         BLOCKS
             .filter_map(cut)
             .chain([whole])
@@ -115,7 +117,7 @@ pub fn apply(
 struct Extended<'a> {
     samples: &'a [f64],
     ends: Ends,
-    split: Option<&'a crate::numeric::polynomial::Polynomial>,
+    split: Option<&'a Polynomial>,
 }
 
 impl Extended<'_> {

@@ -28,6 +28,7 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
     let record = &intake.record;
     let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
     intake::refuse_notes(settings, &remarks)?;
+    work::refuse_beyond_memory(record, &chain, settings)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();
     let compared: Vec<(ChannelComparison, Option<Picture>)> = channels

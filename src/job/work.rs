@@ -2,16 +2,19 @@
 
 use rayon::prelude::*;
 
+use crate::audit::estimate::{self, Way};
 use crate::audit::level::Level;
 use crate::baseline::BaselineKind;
 use crate::basis::Planner;
 use crate::compare::{self, Chosen, Continuation, How, Judgement};
-use crate::condition::{self, ExtensionChoice, Outcome};
+use crate::condition::{self, ExtensionChoice, Layout, Outcome};
 use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::numeric::smooth::is_smooth;
 use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
+use crate::read;
 use crate::record::{Axis, Channel, Record};
 use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport};
 use crate::settings::Settings;
@@ -27,8 +30,21 @@ pub struct Worked {
     pub channels: Vec<ChannelReport>,
 }
 
+/// Refuses, before any work, a run that would take more memory than `--memory` allows.
+///
+/// # Errors
+/// `Unsupported` beyond the bound.
+pub fn refuse_beyond_memory(record: &Record, chain: &Chain, settings: &Settings) -> Result<()> {
+    let len = record.len();
+    let whole = chain.passes().iter().any(|pass| !pass.is_identity() && Layout::of(pass, len).is_none());
+    let way = if whole && !is_smooth(len) { Way::Awkward } else { Way::Easy };
+    let bytes = estimate::memory(record.channel_count(), len as u64, way);
+    read::refuse_beyond(settings.read.memory, bytes, "the run")
+}
+
 /// Conditions all channels; rows of the sample array are replaced one by one.
 pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
+    refuse_beyond_memory(&record, chain, settings)?;
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let planner = Planner::new();

@@ -14,7 +14,6 @@ mod tiles;
 mod turn;
 
 pub use four::LongFour;
-pub use grid::{is_smooth, smooth_from};
 
 use awkward::AwkwardCosine;
 use cosine::LongCosine;

@@ -6,8 +6,9 @@
 //! samples P/2 exponents apart and one with their differences. Both are done without wrapping, in a smooth length.
 
 use super::convolution::Convolution;
-use super::grid::{height, primes, smooth_from};
+use super::grid::{height, primes};
 use super::roots::Roots;
+use crate::numeric::smooth::smooth_from;
 
 /// A plan for P points, P an odd prime.
 pub struct PrimeTransform {

@@ -7,6 +7,7 @@ use super::ending::settle;
 use super::rows::{Cause, Plan, Rows};
 use crate::error::{Finding, Result};
 use crate::place::Place;
+use crate::read::{ReadOptions, refuse_beyond};
 
 /// The data block as read.
 #[derive(Debug)]
@@ -19,14 +20,15 @@ pub(super) struct Table {
 /// blocks nor on the number of threads.
 ///
 /// # Errors
-/// `Malformed` at the first line that is no row, unless it ends the data.
+/// `Malformed` at the first line that is no row, unless it ends the data; `Unsupported` beyond the bound on memory.
 pub(super) fn read<R: Read>(
     blocks: &mut Blocks<R>,
     plan: &Plan,
     first_line: u64,
     mut quoted: bool,
-    allow_truncated: bool,
+    options: &ReadOptions,
 ) -> Result<Table> {
+    let columns = (plan.channels + usize::from(plan.form.is_some())) as u64;
     let mut table = Table { rows: Rows::new(plan), findings: Vec::new() };
     let width = rayon::current_num_threads().max(1);
     let mut quotes = quoted.then_some(plan.dialect.delimiter);
@@ -55,6 +57,7 @@ pub(super) fn read<R: Read>(
                 break;
             }
         }
+        refuse_beyond(options.memory, table.rows.lines.rows() * columns * 8, "the record alone")?;
         let Some((index, fault)) = fault else {
             batch.into_iter().for_each(|block| blocks.recycle(block));
             batch = next?;
@@ -76,7 +79,7 @@ pub(super) fn read<R: Read>(
             &fault,
             first_line + table.rows.line_count,
             quoted,
-            allow_truncated,
+            options.allow_truncated,
         )?);
         return Ok(table);
     }
