@@ -131,7 +131,7 @@ fn report(
     judgement: Option<&Judgement>,
     outcome: &Outcome,
 ) -> ChannelReport {
-    let (before, after) = (Level::of(channel.samples), Level::of(&outcome.output));
+    let (before, after) = rayon::join(|| Level::of(channel.samples), || Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
     let (extension, _) = stage_reports(chosen, chain, settings);

@@ -123,13 +123,21 @@ fn describe_pass(pass: &Pass, axis: &Axis) -> PassDescription {
     PassDescription {
         ends: pass.ends,
         turns: pass.turns,
-        operators: pass.parts.iter().map(|part| describe_part(part, axis)).collect(),
+        operators: pass.parts.iter().map(|part| describe_part(part, alone(pass, part), axis)).collect(),
         reaches: pass.reaches,
     }
 }
 
-fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
+/// The reaches of one part without the others; those of the pass where it is all there is.
+fn alone(pass: &Pass, part: &Part) -> Reaches {
+    if pass.parts.len() == 1 && pass.turns == 0 {
+        return pass.reaches;
+    }
     let alone = std::slice::from_ref(part);
+    Reaches::of(|f| product(alone, f), 0, scale(alone))
+}
+
+fn describe_part(part: &Part, reaches: Reaches, axis: &Axis) -> OperatorDescription {
     OperatorDescription {
         kind: part.kind,
         option: part.key,
@@ -145,6 +153,6 @@ fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
                 gain: part.gain.at(corner.cycles),
             })
             .collect(),
-        reaches: Reaches::of(|f| product(alone, f), 0, scale(alone)),
+        reaches,
     }
 }

@@ -43,7 +43,10 @@ pub struct ReadOptions {
 /// `Unsupported` beyond the bound.
 pub fn refuse_beyond(bound: Option<u64>, bytes: u64, what: &str) -> Result<()> {
     let Some(bound) = bound.filter(|bound| bytes > *bound) else { return Ok(()) };
-    let size = |bytes: u64| format!("{} MiB", bytes.div_ceil(1 << 20));
+    let size = |bytes: u64| match bytes {
+        0..10_000_000 => format!("{} kB", bytes.div_ceil(1000)),
+        _ => format!("{} MiB", bytes.div_ceil(1 << 20)),
+    };
     Err(Error::unsupported(format!("{what} takes {} of memory, --memory allows {}", size(bytes), size(bound)))
         .remedy("raise --memory, or take fewer channels with --channel"))
 }
