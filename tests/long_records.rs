@@ -36,8 +36,8 @@ fn record(len: usize) -> Vec<f64> {
 fn apart(x: &[f64], ends: Ends, kind: BaselineKind, pass: &Pass) -> f64 {
     let planner = Planner::new();
     let baseline = Baseline::fit(kind, x, ends, Scale::assumed(x.len())).expect("a baseline");
-    let short = apply(x, ends, &baseline, pass, 0.0, &planner).expect("samples");
-    let long = apply_whole(x, ends, &baseline, pass, 0.0, &planner).expect("samples");
+    let short = apply(x, ends, &baseline, pass, 0, &planner).expect("samples");
+    let long = apply_whole(x, ends, &baseline, pass, 0, &planner).expect("samples");
     assert!(short.parseval < 1e-13 && long.parseval < 1e-13, "{} {}", short.parseval, long.parseval);
     let far = short.output.iter().zip(&long.output).map(|(a, b)| (a - b).abs()).fold(0.0, f64::max);
     far / rms(&long.output).max(rms(x))

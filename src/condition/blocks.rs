@@ -37,7 +37,9 @@ pub struct Layout {
 impl Layout {
     /// The cut of a record of `len` samples, where `pass` allows one and it costs less than the transform of the whole.
     pub fn of(pass: &Pass, len: usize) -> Option<Layout> {
-        let reach = pass.reaches().numeric.filter(|_| len >= LEAST && pass.turns() >= 0 && !pass.is_identity())?;
+        let plain = pass.is_real() && pass.resampling().is_none() && pass.robust().is_none();
+        let wanted = len >= LEAST && pass.turns() >= 0 && plain && !pass.is_identity();
+        let reach = pass.reaches().numeric.filter(|_| wanted)?;
         // The extension is folded from the record itself: within one reach of either end it is its mirror image.
         if 2.0 * reach > len as f64 {
             return None;
@@ -81,7 +83,7 @@ pub fn apply(
     let carried = turned(pass.carry(split), pass.turns());
     let record = Extended { samples, ends, split: (!split.is_zero()).then_some(split) };
     let mut gains = vec![1.0; layout.block];
-    multiply(&mut gains, Ends::EVEN, pass);
+    multiply(&mut gains, None, Ends::EVEN, pass);
 
     let mut output = vec![0.0; samples.len()];
     let work = |(index, slot): (usize, &mut [f64]), (block, scratch): &mut (Vec<f64>, Vec<f64>)| {

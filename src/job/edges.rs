@@ -58,8 +58,8 @@ pub fn marks(channels: &[ChannelReport], len: usize, settings: &Settings) -> Vec
     let mark = |channel: &ChannelReport| {
         let name = if channels.len() == 1 { "trusted".to_owned() } else { format!("{} trusted", channel.name) };
         let span = span_of(channel);
-        let judged = !channel.candidates.is_empty();
-        Mark { name, flags: (0..len).map(|n| judged.then(|| span.contains(&n))).collect() }
+        let is_known = is_known(channel);
+        Mark { name, flags: (0..len).map(|n| is_known.then(|| span.contains(&n))).collect() }
     };
     channels.iter().map(mark).collect()
 }
@@ -71,9 +71,14 @@ pub fn shown(channels: &[ChannelReport], settings: &Settings) -> Option<Vec<Rang
 
 /// Samples that are trusted: all of them where nothing was judged, since nothing then speaks against them.
 fn span_of(channel: &ChannelReport) -> Range<usize> {
-    match (&channel.trusted, channel.candidates.is_empty()) {
-        (Some(span), _) => span.first..span.last + 1,
-        (None, true) => 0..usize::MAX,
-        (None, false) => 0..0,
+    match &channel.trusted {
+        Some(span) => span.first..span.last + 1,
+        None if is_known(channel) => 0..0,
+        None => 0..usize::MAX,
     }
+}
+
+/// True where the edges of the extension in use were judged.
+fn is_known(channel: &ChannelReport) -> bool {
+    channel.verdict.as_ref().is_some_and(|verdict| verdict.adequacy.is_some())
 }

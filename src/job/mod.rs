@@ -1,15 +1,21 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod bound;
 mod comparison;
 mod conditioning;
 mod edges;
 mod examination;
 mod intake;
+mod judgement;
 mod origin;
+mod picture;
+mod preparation;
+mod running;
+mod requirement;
 mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, plan};
+pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
-pub use target::Target;
+pub use target::{PageFiles, Target};

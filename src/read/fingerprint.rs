@@ -60,13 +60,20 @@ impl Fingerprint {
         self.bytes
     }
 
-    /// The digest as lower-case hex, and the number of bytes.
-    pub fn finish(self) -> (String, u64) {
-        let digest = match self.way {
+    /// The digest of the bytes so far as lower-case hex.
+    pub fn so_far(&mut self) -> String {
+        // What follows is digested here: whoever asks has written nearly all.
+        let digest = match std::mem::replace(&mut self.way, Way::Here(Sha256::new())) {
             Way::Here(digest) => digest,
             Way::Aside(aside) => aside.finish(),
         };
-        (digest.finalize().iter().map(|byte| format!("{byte:02x}")).collect(), self.bytes)
+        self.way = Way::Here(digest.clone());
+        digest.finalize().iter().map(|byte| format!("{byte:02x}")).collect()
+    }
+
+    /// The digest as lower-case hex, and the number of bytes.
+    pub fn finish(mut self) -> (String, u64) {
+        (self.so_far(), self.bytes)
     }
 }
 
@@ -197,6 +204,7 @@ mod tests {
         for part in [1 << 12, PART - 1, PART, LONG as usize + 1, long.len()] {
             let mut fingerprint = Fingerprint::default();
             long.chunks(part).for_each(|bytes| fingerprint.update(bytes));
+            assert_eq!(fingerprint.so_far(), whole, "parts of {part}");
             assert_eq!(fingerprint.finish(), (whole.clone(), long.len() as u64), "parts of {part}");
         }
         assert!(io::copy(&mut Unchanged::new(&long[..], whole.clone()), &mut io::sink()).is_ok());

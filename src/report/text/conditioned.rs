@@ -2,9 +2,10 @@
 
 use std::collections::BTreeSet;
 
+use crate::compare::standings_text;
 use crate::place::escape;
 use crate::report::Report;
-use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
+use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table, unmet_text};
 
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
 pub fn summary(report: &Report) -> String {
@@ -35,17 +36,24 @@ pub fn summary(report: &Report) -> String {
     }
     text.push_str(&indented(&rows));
     for channel in &report.channels {
+        let name = escape(&channel.name);
+        let (despike, smoothing) = (channel.despike.as_ref(), channel.smoothing.as_ref());
+        text.push_str(&super::planned::treated_text(&name, despike, smoothing, &report.input.axis));
+    }
+    let axis_unit = report.input.axis.unit.to_string();
+    text.push_str(&super::exposed::exposures_text(&report.channels, &axis_unit, report.caution));
+    for channel in &report.channels {
         if let Some(verdict) = &channel.verdict {
             text.push_str(&format!("{}: {}\n", escape(&channel.name), verdict.sentence));
+        } else if !channel.assertions.is_empty() {
+            text.push_str(&format!("{}: asserted {}\n", escape(&channel.name), standings_text(&channel.assertions)));
         }
     }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {
         text.push_str(&notes_text(&channel.notes));
     }
-    if !report.requirement_met {
-        text.push_str("the required adequacy at the edges was not met\n");
-    }
+    text.push_str(&unmet_text(&report.unmet));
     for output in &report.outputs {
         if output.path == "-" {
             text.push_str("wrote to standard output\n");
