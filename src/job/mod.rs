@@ -1,6 +1,7 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
 mod archiving;
+mod bound;
 mod chain;
 mod comparison;
 mod conditioning;

@@ -53,6 +53,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
             settings.read.units.push((name.to_owned(), Unit::parse(unit)));
         }
         "calibrate" => settings.read.calibrate.push(calibration(text)?),
+        "memory" => settings.read.memory = Some(bytes(text)?),
         "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
         "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
         "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
@@ -183,6 +184,28 @@ fn decimals(text: &str) -> Result<u8> {
         );
     }
     Ok(count)
+}
+
+/// `500MB`, `4GiB`: at least a number of bytes.
+fn bytes(text: &str) -> Result<u64> {
+    const SIZES: [(&str, u64); 8] = [
+        ("kB", 1_000),
+        ("MB", 1_000_000),
+        ("GB", 1_000_000_000),
+        ("TB", 1_000_000_000_000),
+        ("KiB", 1 << 10),
+        ("MiB", 1 << 20),
+        ("GiB", 1 << 30),
+        ("TiB", 1 << 40),
+    ];
+    let size = SIZES.iter().find_map(|(unit, size)| Some((text.strip_suffix(unit)?.trim(), *size)));
+    let bytes = size.and_then(|(count, size)| {
+        let count = count.parse::<f64>().ok().filter(|count| count.is_finite() && *count > 0.0)?;
+        Some((count * size as f64) as u64) // saturates
+    });
+    bytes.ok_or_else(|| {
+        Error::usage(format!("--memory: not a size: \"{}\"", escape(text))).remedy("write it as 500MB or 4GiB")
+    })
 }
 
 fn running(text: &str) -> Result<f64> {
