@@ -158,6 +158,11 @@ def main():
                 folder / "velocity.html",
                 ["condition", "fixtures/hoist.csv", "--bandpass", "1Hz..12Hz", "--differentiate", "1", "-o", folder / "jerk.csv"],
             ),
+            "travel": (
+                folder / "travel.html",
+                ["condition", "fixtures/hoist.csv", "--channel", "ax", "--integrate", "2", "--highpass", "1Hz", "--conditions", "steady",
+                 "-o", folder / "travel.csv"],
+            ),
             "hostile": (folder / "hostile.html", ["compare", record, "--lowpass", "20Hz"]),
         }
         for page_file, command in made.values():

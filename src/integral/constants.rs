@@ -92,6 +92,17 @@ impl Constants {
 }
 
 impl Solver {
+    /// The same conditions with nothing displaced: what an error of the record, such as its noise, meets.
+    #[must_use]
+    pub fn homogeneous(&self) -> Solver {
+        match self {
+            Solver::RestTo(_) => Solver::RestTo(0.0),
+            Solver::StartRestTo(_) => Solver::StartRestTo(0.0),
+            Solver::Pinned(_) => Solver::Pinned(0.0),
+            other => other.clone(),
+        }
+    }
+
     /// Solves the constants. `offset` is a given one, for the conditions that do not solve it; `velocity` forms the first
     /// integral at the samples, which only `Still` needs beside a second one.
     ///

@@ -21,6 +21,10 @@ pub struct Formed {
     pub report: IntegralReport,
     pub notes: Vec<Finding>,
     pub columns: Vec<Column>,
+    /// Standard deviation of the result, sample by sample.
+    pub deviations: Vec<f64>,
+    /// The record less offset and drift, filtered, whose integral the result is.
+    pub corrected: Vec<f64>,
 }
 
 /// A column that stands beside the channels.
@@ -125,12 +129,12 @@ pub fn form(
     };
     let mut columns = Vec::new();
     if settings.beside.contains(&Beside::Sigma) {
-        columns.push(column("sigma", unit, deviations));
+        columns.push(column("sigma", unit, deviations.clone()));
     }
     if settings.beside.contains(&Beside::Corrected) {
-        columns.push(column("corrected", channel.unit, corrected));
+        columns.push(column("corrected", channel.unit, corrected.clone()));
     }
-    Ok(Some(Formed { report, notes, columns }))
+    Ok(Some(Formed { report, notes, columns, deviations, corrected }))
 }
 
 /// The band of noise 1, with the high-pass that follows the integral or without it.

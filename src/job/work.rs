@@ -10,6 +10,7 @@ use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
 use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::bound::refuse_beyond_memory;
 use crate::job::integral::{self, Column};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
 use crate::job::passage::passage;
@@ -20,7 +21,7 @@ use crate::metric::exposure::Exposure;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Channel, Record};
-use crate::report::page::Passage;
+use crate::report::page::{Passage, Stack};
 use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport};
 use crate::settings::Settings;
 use crate::verdict::{Auto, Trusted};
@@ -40,6 +41,7 @@ pub struct Worked {
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
 pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Worked> {
+    refuse_beyond_memory(&record, chain, settings)?;
     let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
@@ -128,11 +130,14 @@ fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Fin
     let mut report = report(channel, raw, chain, settings, &judged, &outcome);
     report.notes.extend(prepared.notes);
     report.notes.extend(derivative::remark(channel, chain, &outcome));
-    let mut columns = Vec::new();
+    let (mut columns, mut stack) = (Vec::new(), None);
     if let Some(formed) = integral {
         report.notes.extend(formed.notes);
         report.integral = Some(formed.report);
         columns = formed.columns;
+        // On another grid the result has no deviation of its own, sample by sample.
+        let drawn = page == Page::Wanted && chain.treatments().resampling.is_none();
+        stack = drawn.then(|| Stack::of(channel.axis, &formed.corrected, &outcome.output, &formed.deviations));
     }
     if let (Some(whole), Some(corner)) = (whole, split::corner(settings)) {
         let parts = split::of(channel, corner, whole, std::mem::take(&mut outcome.output), settings);
@@ -164,7 +169,8 @@ fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Fin
         Page::Wanted => {
             let picture = draw(channel, &chain.on_own_grid(), seat, &judged, &Scene::of(&report), planner)?;
             let picture = Some(picture).filter(|picture| !picture.curves.is_empty());
-            Some(passage(raw, &outcome.output, &axis, chain, &report, picture, planner))
+            let passage = passage(raw, &outcome.output, &axis, chain, &report, picture, planner);
+            Some(Passage { integral: stack, ..passage })
         }
     };
     Ok(Finished { report, output: outcome.output, columns, passage })
@@ -297,7 +303,7 @@ fn report(
     judged: &Judged,
     outcome: &Outcome,
 ) -> ChannelReport {
-    let (before, after) = (Level::of(raw.samples), Level::of(&outcome.output));
+    let (before, after) = rayon::join(|| Level::of(raw.samples), || Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
     let (extension, _) = stage_reports(&judged.chosen, chain, settings);

@@ -38,6 +38,29 @@ pub struct Spectra {
     pub gain: Vec<[f64; 2]>,
 }
 
+/// An integral with its uncertainty.
+#[derive(Debug, Clone)]
+pub struct Stack {
+    /// The record less offset and drift, whose integral the result is.
+    pub corrected: Vec<[f64; 2]>,
+    /// Place, and the result less and plus two standard deviations.
+    pub band: Vec<[f64; 3]>,
+}
+
+impl Stack {
+    /// Of an integral on the record's own grid.
+    pub fn of(axis: &Axis, corrected: &[f64], result: &[f64], deviations: &[f64]) -> Stack {
+        let every = result.len().div_ceil(KEPT / 2).max(1);
+        let limits = |n: usize| {
+            Some([axis.stamp(n), result.get(n)? - 2.0 * deviations.get(n)?, result[n] + 2.0 * deviations[n]])
+        };
+        Stack {
+            corrected: thinned(corrected, axis.start(), axis.step(), KEPT),
+            band: (0..result.len()).step_by(every).chain(result.len().checked_sub(1)).filter_map(limits).collect(),
+        }
+    }
+}
+
 /// Points kept of a line over the whole record: a page thins further where it shows several channels.
 const KEPT: usize = 1000;
 
@@ -56,6 +79,8 @@ pub struct Passage {
     pub removed: Option<Vec<[f64; 2]>>,
     /// What the operators did at every frequency; `None` for records too short for a density.
     pub spectra: Option<Spectra>,
+    /// The integral with its uncertainty, where there is one.
+    pub integral: Option<Stack>,
 }
 
 impl Passage {
@@ -82,6 +107,7 @@ impl Passage {
             after: thin(output, axis),
             removed,
             spectra,
+            integral: None,
         }
     }
 }

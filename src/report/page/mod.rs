@@ -15,7 +15,7 @@ use serde::Serialize;
 
 pub use compared::comparison_page;
 pub use conditioned::condition_page;
-pub use content::{Passage, Spectra};
+pub use content::{Passage, Spectra, Stack};
 pub use figures::{figures_csv, figures_json};
 pub use html::html;
 pub use spectral::spectrum_page;
