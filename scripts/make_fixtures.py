@@ -9,7 +9,7 @@ stops at arbitrary places. The stick between hoist and guide rail rocks the fram
 The profile. A planed floor plank from the same mill, measured with a stylus over 400 mm: a tilt from the fixture, a bow,
 planer waves of 2.6 mm and roughness.
 
-The calibration. The logger's pickup on a shaker: coupled through 0.15 Hz, rolling off as a second-order system at 90 Hz.
+The calibration. The logger's pickup on a shaker: coupled through 0.01 Hz, rolling off as a second-order system at 90 Hz.
 
 Usage: scripts/make_fixtures.py [FOLDER]   (default: fixtures beside this script's folder)
 """
@@ -58,10 +58,10 @@ def plank():
 def pickup():
     """Rows frequency, gain, phase in Hz, 1 and degrees, ten a decade."""
     rows = []
-    for n in range(31):
-        hz = 10 ** (n / 10 - 1)
+    for n in range(21):
+        hz = 10 ** (n / 10)
         r = hz / 90
-        response = 1 / complex(1 - r * r, 1.4 * r) * complex(0, hz / 0.15) / complex(1, hz / 0.15)
+        response = 1 / complex(1 - r * r, 1.4 * r) * complex(0, hz / 0.01) / complex(1, hz / 0.01)
         rows.append((hz, abs(response), math.degrees(math.atan2(response.imag, response.real))))
     return rows
 
