@@ -30,7 +30,8 @@ mod stream;
 pub use block::{Coded, MODES, MOST_SAMPLES, Mode};
 pub use cast::Cast;
 pub use container::{
-    Archive, ArchivedAxis, ArchivedChannel, ArchivedLayout, Entry, Gaps, Header, Lost, MAGIC, Origin, Rule, Writer, is_archive,
+    Archive, ArchivedAxis, ArchivedChannel, ArchivedLayout, Entry, Gaps, Header, Lost, MAGIC, Origin, Rule, Writer,
+    is_archive,
 };
 pub use fidelity::Fidelity;
 pub use goal::{Effort, Limit};

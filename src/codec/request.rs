@@ -121,7 +121,8 @@ impl Size {
                     (Some(a), Some(b)) if (a.length, a.time) == (b.length, b.time) => value * (a.scale / b.scale),
                     _ => {
                         let text = format!("an error in {own} says nothing of a channel in {unit}");
-                        return Err(Error::usage(text).remedy("leave the unit out, choose channels with --channel, or give a share (0.1%)"));
+                        return Err(Error::usage(text)
+                            .remedy("leave the unit out, choose channels with --channel, or give a share (0.1%)"));
                     }
                 }
             }

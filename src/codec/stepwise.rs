@@ -215,7 +215,8 @@ fn ordered_single(x: f32) -> i64 {
 }
 
 fn from_ordered_single(order: i64) -> f32 {
-    let bits = if order < 0 { (order.wrapping_neg().wrapping_sub(1)) as u32 | 1 << 31 } else { order as u32 & 0x7fff_ffff };
+    let bits =
+        if order < 0 { (order.wrapping_neg().wrapping_sub(1)) as u32 | 1 << 31 } else { order as u32 & 0x7fff_ffff };
     f32::from_bits(bits)
 }
 
@@ -262,7 +263,12 @@ mod tests {
                 let found = Plan::decode(&plan.encode(&samples), samples.len()).expect("its own payload");
                 assert_eq!((found[0], found[699]), (7.5, 1e9));
                 for n in 1..699 {
-                    assert!((found[n] - samples[n]).abs() <= error * (1.0 + 1e-9), "{scale:?} {method:?} {n} {} {}", found[n], samples[n]);
+                    assert!(
+                        (found[n] - samples[n]).abs() <= error * (1.0 + 1e-9),
+                        "{scale:?} {method:?} {n} {} {}",
+                        found[n],
+                        samples[n]
+                    );
                 }
             }
             let singles: Vec<f64> = samples.iter().map(|v| f64::from(*v as f32)).collect();

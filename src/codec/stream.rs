@@ -72,7 +72,8 @@ fn one(first: usize, rows: &[f64], cast: Cast, limit: Limit, effort: Effort, pla
     if missing > 0 {
         gaps.push((before, missing));
     }
-    let mut made = Made { first: first as u64, rows: rows.len(), gaps, coded: None, runner_up: None, restored: rows.to_vec() };
+    let mut made =
+        Made { first: first as u64, rows: rows.len(), gaps, coded: None, runner_up: None, restored: rows.to_vec() };
     if values.is_empty() {
         return Ok(made);
     }

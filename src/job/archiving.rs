@@ -7,7 +7,8 @@ use rayon::prelude::*;
 
 use crate::basis::Planner;
 use crate::codec::{
-    ArchivedAxis, ArchivedChannel, ArchivedLayout, Cast, Fidelity, Header, Limit, Made, Origin, Request, Rule, Writer, encode,
+    ArchivedAxis, ArchivedChannel, ArchivedLayout, Cast, Fidelity, Header, Limit, Made, Origin, Request, Rule, Writer,
+    encode,
 };
 use crate::error::{Error, Finding, Result};
 use crate::job::intake;
@@ -15,7 +16,7 @@ use crate::numeric::noise;
 use crate::numeric::rational::Rational;
 use crate::place::Place;
 use crate::read::{self, Input};
-use crate::record::{Axis, ColumnRole, Layout, RawChannel, RawRecord, RateSource, SampleType, Stamps};
+use crate::record::{Axis, ColumnRole, Layout, RateSource, RawChannel, RawRecord, SampleType, Stamps};
 use crate::report::{ArchiveReport, ArchivedReport, OutputReport, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::unit::Unit;
@@ -41,8 +42,11 @@ pub fn compress(input: Input, mut output: Pending<'_>, settings: &Settings) -> R
     let layout = if settings.archive.bare { None } else { layout_of(&raw, settings, &mut notes) };
     let planner = Planner::new();
     let even = even_axis(&raw, rows);
-    let coded: Vec<Coded> =
-        raw.channels.par_iter().map(|channel| code(channel, &raw, &request, even.as_ref(), settings, &planner)).collect::<Result<_>>()?;
+    let coded: Vec<Coded> = raw
+        .channels
+        .par_iter()
+        .map(|channel| code(channel, &raw, &request, even.as_ref(), settings, &planner))
+        .collect::<Result<_>>()?;
 
     let header = Header {
         rows: rows as u64,
@@ -109,7 +113,9 @@ fn code(
     let named = |error: Error| error.at(Place::channel(&channel.name)).at(Place::file(&raw.source.path));
     if let Some(n) = channel.values.iter().position(|v| v.is_infinite()) {
         let place = Place { sample: Some(n as u64), ..Place::channel(&channel.name) };
-        return Err(named(Error::unsupported("an infinite value").at(place).remedy("declare its spelling with --missing")));
+        return Err(named(
+            Error::unsupported("an infinite value").at(place).remedy("declare its spelling with --missing"),
+        ));
     }
     let values: Vec<f64> = channel.values.iter().copied().filter(|v| !v.is_nan()).collect();
     let single = matches!(&raw.layout, Layout::Wave(wave) if wave.sample_type == SampleType::Float(32));
@@ -253,7 +259,8 @@ fn layout_of(raw: &RawRecord, settings: &Settings, notes: &mut Vec<Finding>) -> 
 }
 
 fn origin_of(raw: &RawRecord, settings: &Settings) -> Origin {
-    let name = Path::new(&raw.source.path).file_name().map_or_else(|| "-".to_owned(), |n| n.to_string_lossy().into_owned());
+    let name =
+        Path::new(&raw.source.path).file_name().map_or_else(|| "-".to_owned(), |n| n.to_string_lossy().into_owned());
     let map = settings.to_map();
     let given = map.iter().filter_map(|(key, value)| match value {
         serde_json::Value::String(text) => settings.is_given(key).then(|| format!("--{key} {text}")),
@@ -273,13 +280,21 @@ fn origin_of(raw: &RawRecord, settings: &Settings) -> Origin {
     }
 }
 
-fn report(channel: &RawChannel, coded: &Coded, bytes: u64, even: Option<&Axis>, notes: &mut Vec<Finding>) -> ArchivedReport {
+fn report(
+    channel: &RawChannel,
+    coded: &Coded,
+    bytes: u64,
+    even: Option<&Axis>,
+    notes: &mut Vec<Finding>,
+) -> ArchivedReport {
     let restored: Vec<f64> = coded.made.iter().flat_map(|made| made.restored.iter().copied()).collect();
     let values: Vec<f64> = channel.values.iter().copied().filter(|v| !v.is_nan()).collect();
     let sigma = if values.len() < 8 { 0.0 } else { noise::sigma(&values) };
     let (error, noise_bits) = match coded.limit {
         // Half the logarithm of 2 pi e less that of a width 2 E: 1.05 + log2(sigma / E) bits a sample.
-        Limit::Max(bound) if bound > 0.0 && sigma > 0.0 => (Some(bound), Some((1.05 + (sigma / bound).log2()).max(0.0))),
+        Limit::Max(bound) if bound > 0.0 && sigma > 0.0 => {
+            (Some(bound), Some((1.05 + (sigma / bound).log2()).max(0.0)))
+        }
         // Rate of Gaussian noise at that distortion.
         Limit::Rms(bound) if bound > 0.0 && sigma > 0.0 => (Some(bound), Some((sigma / bound).log2().max(0.0))),
         Limit::Max(bound) | Limit::Rms(bound) => (Some(bound), None),
@@ -300,7 +315,8 @@ fn report(channel: &RawChannel, coded: &Coded, bytes: u64, even: Option<&Axis>, 
     let mode = blocks().max_by_key(|(made, _)| made.rows).map(|(_, block)| block.mode);
     let runner_up = blocks().max_by_key(|(made, _)| made.rows).and_then(|(made, _)| made.runner_up);
     let kept: Option<usize> = blocks().map(|(_, block)| block.kept.map(|(kept, _)| kept)).sum();
-    let top = blocks().filter_map(|(made, block)| block.kept.map(|(_, top)| top as f64 / made.rows as f64)).reduce(f64::max);
+    let top =
+        blocks().filter_map(|(made, block)| block.kept.map(|(_, top)| top as f64 / made.rows as f64)).reduce(f64::max);
     let parseval: Option<f64> = match coded.limit {
         Limit::Keep(_) => {
             let dropped: Option<f64> = blocks().map(|(_, block)| block.dropped).sum();

@@ -42,9 +42,8 @@ pub fn restore(input: Input, mut output: Pending<'_>, settings: &Settings, damag
     let (path, bytes) = bytes_of(input)?;
     let at_file = |error: Error| error.at(Place::file(&path));
     let archive = match damage {
-        Damage::Refuse => Archive::open(&bytes).map_err(|error| {
-            at_file(error.remedy("--recover restores the undamaged blocks of a damaged archive"))
-        })?,
+        Damage::Refuse => Archive::open(&bytes)
+            .map_err(|error| at_file(error.remedy("--recover restores the undamaged blocks of a damaged archive")))?,
         Damage::Recover => Archive::recover(&bytes).map_err(at_file)?,
     };
     let planner = Planner::new();
@@ -267,7 +266,13 @@ fn record_of(archive: &Archive<'_>, samples: Vec<Vec<f64>>, stamps: &StampColumn
                 }
                 Rule::Stated(p, q) => {
                     let base = Unit::parse(if unit.is_length() { "m" } else { "s" });
-                    let axis = Axis::new(base, stamps.stamp(first).unwrap_or(0.0), q as f64 / p as f64, rows, RateSource::Header)?;
+                    let axis = Axis::new(
+                        base,
+                        stamps.stamp(first).unwrap_or(0.0),
+                        q as f64 / p as f64,
+                        rows,
+                        RateSource::Header,
+                    )?;
                     match Rational::new(p, q) {
                         Some(rate) => axis.with_rate(rate),
                         None => axis,
@@ -286,7 +291,8 @@ fn record_of(archive: &Archive<'_>, samples: Vec<Vec<f64>>, stamps: &StampColumn
     let units = header.channels.iter().map(|c| Unit::parse(&c.unit)).collect();
     let count = samples.len();
     let flat: Vec<f64> = samples.into_iter().flatten().collect();
-    let array = Array2::from_shape_vec((count, rows), flat).map_err(|_| Error::malformed("channels of unequal length"))?;
+    let array =
+        Array2::from_shape_vec((count, rows), flat).map_err(|_| Error::malformed("channels of unequal length"))?;
     Record::new(axis, names, units, array)
 }
 

@@ -163,7 +163,8 @@ fn decimals(text: &str) -> Result<u8> {
 
 fn running(text: &str) -> Result<f64> {
     let fault = || {
-        Error::usage(format!("--running-rms: no time: \"{}\"", escape(text))).remedy("write it with its unit as 1s or 125ms")
+        Error::usage(format!("--running-rms: no time: \"{}\"", escape(text)))
+            .remedy("write it with its unit as 1s or 125ms")
     };
     match context("running-rms", Corner::parse(text)) {
         Ok(time) if time.measure() == Measure::Period => Ok(time.base()),

@@ -82,7 +82,8 @@ impl RestoredTable<'_> {
             out.extend(text.bytes().map(|byte| if byte == b'.' { self.decimal } else { byte }));
         } else {
             let value = self.samples.get(column as usize - 1).and_then(|samples| samples.get(row));
-            let digits = self.decimals.get(column as usize - 1).copied().flatten().map_or(Digits::Shortest, Digits::Fixed);
+            let digits =
+                self.decimals.get(column as usize - 1).copied().flatten().map_or(Digits::Shortest, Digits::Fixed);
             match value {
                 Some(value) if value.is_finite() => number::push(out, *value, digits, self.decimal),
                 // Between blanks an empty field needs a word, or the columns would shift.

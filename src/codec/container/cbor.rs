@@ -103,10 +103,7 @@ pub fn read_map(decoder: &mut Decoder<'_>, mut each: impl FnMut(u64, &mut Decode
 ///
 /// # Errors
 /// `Malformed` for what is no array of such items.
-pub fn read_array<T>(
-    decoder: &mut Decoder<'_>,
-    mut each: impl FnMut(&mut Decoder<'_>) -> Result<T>,
-) -> Result<Vec<T>> {
+pub fn read_array<T>(decoder: &mut Decoder<'_>, mut each: impl FnMut(&mut Decoder<'_>) -> Result<T>) -> Result<Vec<T>> {
     let count = decoder.array().map_err(fault)?.ok_or_else(|| Error::malformed("an array without a length"))?;
     let mut out = Vec::new();
     for _ in 0..count {

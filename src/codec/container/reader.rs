@@ -272,7 +272,8 @@ fn read_header(bytes: &[u8]) -> Result<(Header, usize)> {
     let end = start + length + 4;
     let sealed = bytes.get(..end).ok_or_else(|| damaged(start, "the header is cut off"))?;
     check(sealed).map_err(|error| error.at(Place::byte(0, None)))?;
-    let header = Header::decode(&bytes[start..start + length]).map_err(|error| error.at(Place::byte(start as u64, None)))?;
+    let header =
+        Header::decode(&bytes[start..start + length]).map_err(|error| error.at(Place::byte(start as u64, None)))?;
     Ok((header, end))
 }
 
@@ -300,7 +301,12 @@ fn read_index(bytes: &[u8]) -> Result<Index> {
     let mut blocks = Vec::with_capacity(count);
     for _ in 0..count {
         let most = bytes.len();
-        blocks.push((fields.length(u32::MAX as usize)?, fields.count()?, fields.length(MOST_SAMPLES)?, fields.length(most)?));
+        blocks.push((
+            fields.length(u32::MAX as usize)?,
+            fields.count()?,
+            fields.length(MOST_SAMPLES)?,
+            fields.length(most)?,
+        ));
     }
     if !fields.rest().is_empty() {
         return Err(damaged(at, "bytes after the index"));

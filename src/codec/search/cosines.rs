@@ -12,7 +12,7 @@ pub fn in_the_mean(task: Task<'_>, goal: f64) -> Result<Vec<Coded>> {
     let energy = goal * goal * task.samples.len() as f64;
     let whole = segments::whole(task.samples, goal, task.planner)?;
     let plain = Prepared::new(Vec::new(), whole.lengths.clone(), whole.coefficients.clone());
-    let (rounds, close) = if task.effort == Effort::Long { (24, 4e-3) } else { (10, 2e-2) };
+    let (rounds, close) = if task.effort == Effort::Long { (24, 1e-3) } else { (12, 3e-3) };
     let find = |prepared: &Prepared, quantiser: Quantiser, start: f64| {
         // The error is squared and summed: its square root grows with the step.
         root::largest(start, energy.sqrt(), close, rounds, |step| {
@@ -109,7 +109,8 @@ fn ways(task: Task<'_>, whole: &Parted, step: f64) -> Result<Vec<Prepared>> {
             Ok(values)
         };
         let degrees: &[usize] = if task.effort == Effort::Long { &[1, 2, 3, 4] } else { &[2] };
-        let powers = (1..=slope::MOST as i32).take(degrees[degrees.len() - 1]).map(power).collect::<Result<Vec<_>>>()?;
+        let powers =
+            (1..=slope::MOST as i32).take(degrees[degrees.len() - 1]).map(power).collect::<Result<Vec<_>>>()?;
         for degree in degrees {
             if let Some(factors) = slope::fit(&whole.coefficients, &powers[..*degree], step) {
                 let mut rest = task.samples.to_vec();
@@ -141,8 +142,7 @@ fn rough(task: Task<'_>, prepared: &Prepared, quantiser: Quantiser, bound: f64, 
         counts[(q.clamp(&-64, &64) + 64) as usize] += 1;
     }
     let total = remainder.steps.len() as f64;
-    let entropy: f64 =
-        counts.iter().filter(|n| **n > 0).map(|n| *n as f64 * (total / *n as f64).log2()).sum();
+    let entropy: f64 = counts.iter().filter(|n| **n > 0).map(|n| *n as f64 * (total / *n as f64).log2()).sum();
     let factor = if quantiser == Quantiser::Trellis { 0.5 } else { 1.0 };
     Ok(cost(prepared, step / factor) + entropy)
 }

@@ -11,7 +11,13 @@ type Tried<T> = (f64, T, f64);
 
 /// Looks for the largest step whose error (which grows about as the step does) is at most `target`: within `close` of it,
 /// or as near as `rounds` tries come. `None` where no step tried kept the target.
-pub fn largest<T>(start: f64, target: f64, close: f64, rounds: usize, mut make: impl FnMut(f64) -> (T, f64)) -> Option<Tried<T>> {
+pub fn largest<T>(
+    start: f64,
+    target: f64,
+    close: f64,
+    rounds: usize,
+    mut make: impl FnMut(f64) -> (T, f64),
+) -> Option<Tried<T>> {
     let mut best: Option<Tried<T>> = None;
     let mut beyond: Option<(f64, f64)> = None;
     let mut step = start;

@@ -15,8 +15,15 @@ const fn method(order: u8, memory: u8, taps: u16) -> Method {
 
 /// Predictions tried at each effort.
 static QUICK: &[Method] = &[method(8, 10, 0)];
-static USUAL: &[Method] =
-    &[method(0, 10, 0), method(1, 10, 0), method(2, 11, 0), method(8, 9, 0), method(16, 10, 0), method(16, 12, 0), method(32, 11, 0)];
+static USUAL: &[Method] = &[
+    method(0, 10, 0),
+    method(1, 10, 0),
+    method(2, 11, 0),
+    method(8, 9, 0),
+    method(16, 10, 0),
+    method(16, 12, 0),
+    method(32, 11, 0),
+];
 #[rustfmt::skip]
 static LONG: &[Method] = &[
     method(0, 10, 0), method(1, 9, 0), method(1, 13, 0), method(2, 8, 0), method(2, 10, 0), method(2, 13, 0), method(4, 9, 0), method(4, 12, 0),
@@ -171,7 +178,8 @@ impl Grid {
     fn coarser(&self, times: u64) -> Scale {
         // The origin moves to the multiple of the stride that is nearest zero.
         let stride = self.stride.saturating_mul(times).min(i64::MAX as u64);
-        let first = if times == 1 { self.first.rem_euclid(self.stride as i64) } else { self.first % self.stride as i64 };
+        let first =
+            if times == 1 { self.first.rem_euclid(self.stride as i64) } else { self.first % self.stride as i64 };
         Scale::Grid { numerator: self.numerator, denominator: self.denominator, first, stride }
     }
 

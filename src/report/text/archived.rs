@@ -9,7 +9,19 @@ use crate::report::{ArchiveListing, ArchiveReport, RestoreReport};
 /// The summary of an archive that was made.
 pub fn archive_text(report: &ArchiveReport) -> String {
     let mut text = format!("{}: {} rows, {} bytes\n", escape(&report.path), report.rows, report.source_bytes);
-    let mut rows = table(&["channel", "unit", "bound", "bits/sample", "RMSE", "max error", "at row", "PSNR dB", "retained", "kept", "noise"]);
+    let mut rows = table(&[
+        "channel",
+        "unit",
+        "bound",
+        "bits/sample",
+        "RMSE",
+        "max error",
+        "at row",
+        "PSNR dB",
+        "retained",
+        "kept",
+        "noise",
+    ]);
     let shown = |value: Option<f64>, digits: usize| value.map_or("-".to_owned(), |v| figure(v, digits));
     for channel in &report.channels {
         let fidelity = &channel.fidelity;
@@ -63,7 +75,8 @@ pub fn archive_text(report: &ArchiveReport) -> String {
 /// What an archive holds.
 pub fn listing_text(listing: &ArchiveListing) -> String {
     let axis = listing.axis.as_deref().map_or(String::new(), |axis| format!(", {axis}"));
-    let mut text = format!("{}: archive, {} bytes, {} rows{axis}\n", escape(&listing.path), listing.bytes, listing.rows);
+    let mut text =
+        format!("{}: archive, {} bytes, {} rows{axis}\n", escape(&listing.path), listing.bytes, listing.rows);
     let mut rows = table(&["channel", "unit", "bound", "error", "blocks", "bytes", "bits/sample", "modes"]);
     for channel in &listing.channels {
         let modes: Vec<&str> = channel.modes.iter().map(|mode| mode.name()).collect();
@@ -91,7 +104,8 @@ pub fn listing_text(listing: &ArchiveListing) -> String {
 
 /// The summary of a restored record.
 pub fn restore_text(report: &RestoreReport) -> String {
-    let mut text = format!("{}: rows {}..{}\n", escape(&report.path), report.first, report.first + report.rows.saturating_sub(1));
+    let mut text =
+        format!("{}: rows {}..{}\n", escape(&report.path), report.first, report.first + report.rows.saturating_sub(1));
     text.push_str(&notes_text(&report.notes));
     for output in &report.outputs {
         let _ = writeln!(text, "wrote {}", escape(&output.path));
