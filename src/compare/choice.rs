@@ -2,11 +2,12 @@
 
 use serde::Serialize;
 
-use crate::baseline::{BaselineKind, Side};
+use crate::baseline::{BaselineKind, Side, Tangent};
 use crate::compare::{Assertion, Judgement, Property, unjudged_chain};
 use crate::condition::{ExtensionChoice, Stage, default_baseline};
 use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Result};
+use crate::numeric::{noise, sum};
 use crate::operator::Chain;
 use crate::verdict::{Auto, CANDIDATES, Unjudged};
 
@@ -99,7 +100,10 @@ pub fn choose(
     refuse_contradictions(stage, assertion, chain)?;
     let named = |ends: Ends, how: How| {
         let ends = ends.seated(stage.seat);
-        let baseline = stage.baseline.unwrap_or_else(|| default_baseline(ends, chain));
+        // Odd ends of a derivative continue the record about its end values, never about zero.
+        let odd_derivative = chain.turns() > 0 && how == How::Default && ends.name() == "odd";
+        let own = || if odd_derivative { BaselineKind::Line } else { default_baseline(ends, chain) };
+        let baseline = stage.baseline.unwrap_or_else(own);
         Chosen { name: ends.name().to_owned(), continuation: Continuation::Symmetric(ends, baseline), how }
     };
     if let ExtensionChoice::Fixed(ends) = stage.extension {
@@ -108,7 +112,7 @@ pub fn choose(
     if !assertion.is_empty() {
         return asserted(samples, chain, stage, assertion, judgement);
     }
-    let default = || named(Ends::EVEN, How::Default);
+    let default = || named(derivative_ends(samples, chain), How::Default);
     let Some(judgement) = judgement else { return Ok(default()) };
     let forecast = |how: How| match &judgement.forecast {
         Some(ends) => Chosen { name: "forecast".to_owned(), continuation: Continuation::Given(ends.clone()), how },
@@ -133,6 +137,23 @@ pub fn choose(
             Auto::Even => named(Ends::EVEN, How::Verdict),
         },
     })
+}
+
+/// The default ends of a chain without a verdict: even, which for a derivative needs the slopes at the ends; where noise
+/// hides those, odd about the end values.
+///
+/// Even reflection about the parabola with the end slopes is the better one while the slopes are known to a fifth of the
+/// record's own RMS slope, measured on tones with noise of 0, 0.2 and 2 % of their RMS.
+fn derivative_ends(samples: &[f64], chain: &Chain) -> Ends {
+    if chain.turns() <= 0 {
+        return Ends::EVEN;
+    }
+    let noise = noise::sigma(samples);
+    let [left, right] = Tangent::both(samples, Ends::EVEN, noise);
+    let steps: Vec<f64> = samples.windows(2).map(|pair| pair[1] - pair[0]).collect();
+    // White noise adds 2 sigma^2 to the mean square of first differences.
+    let slope = (sum::rms(&steps).powi(2) - 2.0 * noise * noise).max(0.0).sqrt();
+    if left.error.max(right.error) <= 0.2 * slope { Ends::EVEN } else { Ends::ODD }
 }
 
 /// Both ends asserted give a basis; one asserted end is reflected, and the forecast continues the other.

@@ -57,7 +57,7 @@ pub fn judge(
     let samples = channel.samples;
     let len = samples.len();
     let output_unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
-    let tolerance = tolerance.resolve(&output_unit)?;
+    let tolerance = tolerance.resolve("--tolerance", &output_unit)?;
     let noise = noise::sigma(samples);
     let Some(shortest_wavelength) = chain.shortest_wavelength_samples().filter(|_| !keeps_offset(chain)) else {
         return Ok(Judgement::without_verdict(samples, chain, noise));

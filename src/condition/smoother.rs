@@ -102,7 +102,8 @@ impl Smoother {
             return guess.to_vec();
         }
         // In the basis: (C W C^T + s Lambda) z = C W y, preconditioned by mean(W) + s Lambda.
-        let mut right: Vec<f64> = samples.iter().zip(weights).map(|(y, w)| if *w > 0.0 { y * w } else { 0.0 }).collect();
+        let mut right: Vec<f64> =
+            samples.iter().zip(weights).map(|(y, w)| if *w > 0.0 { y * w } else { 0.0 }).collect();
         let mut scratch = vec![0.0; self.plan.scratch_len()];
         self.plan.forward(&mut right, &mut scratch);
         let mut z = guess.to_vec();
@@ -157,7 +158,12 @@ impl Smoother {
         let mut fit = bridged(samples, weights);
         let found = self.least(range, |strength| {
             fit = self.weighted(samples, weights, strength, &fit);
-            let rss: f64 = fit.iter().zip(samples).zip(weights).map(|((z, y), w)| if *w > 0.0 { w * (y - z).powi(2) } else { 0.0 }).sum();
+            let rss: f64 = fit
+                .iter()
+                .zip(samples)
+                .zip(weights)
+                .map(|((z, y), w)| if *w > 0.0 { w * (y - z).powi(2) } else { 0.0 })
+                .sum();
             (rss / known) / (1.0 - self.freedom(strength) / samples.len() as f64).powi(2)
         });
         let values = self.weighted(samples, weights, found.strength, &fit);
@@ -173,9 +179,7 @@ impl Smoother {
                 let found = strength.unwrap_or_else(|| self.validated(samples).strength);
                 (found, self.smooth(samples, found))
             }
-            (Some(base), Some(strength)) => {
-                (strength, self.weighted(samples, base, strength, &bridged(samples, base)))
-            }
+            (Some(base), Some(strength)) => (strength, self.weighted(samples, base, strength, &bridged(samples, base))),
             (Some(base), None) => {
                 let (found, fit) = self.weighted_validated(samples, base, None);
                 (found.strength, fit)

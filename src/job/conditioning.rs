@@ -6,6 +6,7 @@ use std::path::Path;
 use crate::audit::Audit;
 use crate::basis::Planner;
 use crate::error::{Error, Finding, Result};
+use crate::job::chain;
 use crate::job::edges;
 use crate::job::intake;
 use crate::job::judgement::{self, Judged, Page};
@@ -13,9 +14,9 @@ use crate::job::origin::{SourceRows, origin_of};
 use crate::job::preparation;
 use crate::job::requirement;
 use crate::job::running::{self, Running};
+use crate::job::split;
 use crate::job::target::{Opened, Target};
 use crate::job::work::{self, Worked};
-use crate::operator::Chain;
 use crate::place::Place;
 use crate::read::Input;
 use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord, Source};
@@ -33,7 +34,7 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
     let axis = record.axis();
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
+    let (chain, remarks) = chain::of(record, settings)?;
     preparation::check(&chain, settings)?;
     let planner = Planner::new();
     let channels = record.channels().enumerate().map(|(index, channel)| {
@@ -147,8 +148,7 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     };
     let format = format_of(settings, named.as_deref(), &intake.outline.source)?;
     refuse_unread(settings, format)?;
-    let (chain, remarks) =
-        Chain::resolve(&settings.requests, &settings.shape, intake.record.axis(), intake.record.len())?;
+    let (chain, remarks) = chain::of(&intake.record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
     preparation::check(&chain, settings)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
@@ -156,7 +156,8 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     let chain_report = chain.describe(intake.record.axis());
     refuse_columns(settings, format, intake.record.axis())?;
     let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
-    let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
+    let Worked { record, channels, columns, passages } =
+        work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
     for channel in &channels {
         intake::refuse_notes(settings, &channel.notes)?;
     }
@@ -168,12 +169,19 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
             RowMap::Regridded { count: grid.count }
         }
     };
-    let (record, rows) = edges::trimmed(record, rows, &channels, settings)?;
+    let kept = edges::kept(&channels, record.len(), settings)?;
+    let beside = edges::beside(&columns, &kept);
+    let (record, rows) = edges::trimmed(record, rows, &kept)?;
     let rows = SourceRows::of(&rows);
     let origin = origin_of(&intake.outline, &record, format, rows.as_ref())?;
     let marks = edges::marks(&channels, record.len(), settings);
     let running = running::columns(&record, settings);
-    let extra: Vec<_> = marks.iter().map(edges::Mark::column).chain(running.iter().map(Running::column)).collect();
+    let extra: Vec<_> = beside
+        .iter()
+        .map(edges::Beside::column)
+        .chain(marks.iter().map(edges::Mark::column))
+        .chain(running.iter().map(Running::column))
+        .collect();
     let shown = edges::shown(&channels, settings);
     let content = Content {
         record: &record,
@@ -215,20 +223,23 @@ fn untouched(outline: &RawRecord) -> Option<Finding> {
 
 /// Running RMS needs a time axis, and a form with room for columns.
 fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()> {
-    if settings.running_rms.is_none() {
-        return Ok(());
+    let wanted = [
+        ("--running-rms", settings.running_rms.is_some()),
+        ("--split", split::is_wanted(settings)),
+        ("--beside", !settings.beside.is_empty()),
+    ];
+    if let Some((option, _)) = wanted.iter().find(|(_, wanted)| *wanted && format == Format::Wav) {
+        return Err(Error::usage(format!("{option}: a WAV file has no room for further columns"))
+            .remedy("write CSV with --format csv"));
     }
-    if format == Format::Wav {
-        return Err(Error::usage("--running-rms: a WAV file has no room for further columns").remedy("write CSV with --format csv"));
-    }
-    if !axis.is_time() {
+    if settings.running_rms.is_some() && !axis.is_time() {
         return Err(Error::usage(format!("--running-rms: the record's axis is a length in {}", axis.unit()))
             .remedy("leave it out"));
     }
     Ok(())
 }
 
-fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
+pub(super) fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     let Some(name) = &settings.encoding else { return Ok(WaveEncoding::Float32) };
     write::WAVE_ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
         let known: Vec<&str> = write::WAVE_ENCODINGS.iter().map(|(name, _)| *name).collect();

@@ -26,11 +26,7 @@ pub struct Scene<'a> {
 impl<'a> Scene<'a> {
     /// Of a conditioned channel.
     pub fn of(report: &'a ChannelReport) -> Scene<'a> {
-        Scene {
-            takes: &report.extension.kind,
-            unit: &report.unit,
-            trusted: report.trusted,
-        }
+        Scene { takes: &report.extension.kind, unit: &report.unit, trusted: report.trusted }
     }
 }
 

@@ -135,7 +135,9 @@ fn bridge(
             let found = smoother.robust(&rest, Some(&weights), given);
             (found.strength, found.values)
         }
-        Some(strength) => (strength, smoother.weighted(&rest, &weights, strength, &condition::bridged(&rest, &weights))),
+        Some(strength) => {
+            (strength, smoother.weighted(&rest, &weights, strength, &condition::bridged(&rest, &weights)))
+        }
         None => {
             let (found, fit) = smoother.weighted_validated(&rest, &weights, None);
             (found.strength, fit)

@@ -8,19 +8,21 @@ use crate::baseline::BaselineKind;
 use crate::basis::Planner;
 use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
-use crate::ends::{Ends, Seat};
+use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::bound::refuse_beyond_memory;
+use crate::job::integral::{self, Column};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
+use crate::job::passage::passage;
 use crate::job::picture::{Scene, draw};
 use crate::job::preparation::prepare;
+use crate::job::{derivative, split};
 use crate::metric::exposure::Exposure;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Channel, Record};
-use crate::report::page::Passage;
-use crate::report::{
-    BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport,
-};
+use crate::report::page::{Passage, Stack};
+use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport};
 use crate::settings::Settings;
 use crate::verdict::{Auto, Trusted};
 
@@ -31,26 +33,25 @@ const ALONE_FROM: usize = 1 << 20;
 pub struct Worked {
     pub record: Record,
     pub channels: Vec<ChannelReport>,
+    /// What stands beside the channels.
+    pub columns: Vec<Column>,
     /// What a page draws, one entry a channel; empty where no page is wanted.
     pub passages: Vec<Passage>,
 }
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
-pub fn run(
-    record: Record,
-    chain: &Chain,
-    settings: &Settings,
-    planner: &Planner,
-    page: Page,
-) -> Result<Worked> {
+pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Worked> {
+    refuse_beyond_memory(&record, chain, settings)?;
     let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
     let resampling = chain.treatments().resampling;
+    let primary = split::primary(chain, settings, &axis, len)?;
+    let bench = Bench { chain, primary: primary.as_ref(), settings, planner, page };
     let work = |(index, row): (usize, &mut [f64])| -> Result<Finished> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let mut finished = one(channel, &missing[index], chain, settings, planner, page)?;
+        let mut finished = one(channel, &missing[index], &bench)?;
         if resampling.is_none() {
             row.copy_from_slice(&finished.output);
             finished.output = Vec::new();
@@ -63,10 +64,11 @@ pub fn run(
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
     let mut channels = Vec::with_capacity(names.len());
-    let (mut outputs, mut passages) = (Vec::new(), Vec::new());
+    let (mut outputs, mut passages, mut columns) = (Vec::new(), Vec::new(), Vec::new());
     for finished in worked? {
         channels.push(finished.report);
         outputs.push(finished.output);
+        columns.extend(finished.columns);
         passages.extend(finished.passage);
     }
     let units = channels.iter().map(|report| report.unit.clone()).collect();
@@ -80,53 +82,72 @@ pub fn run(
         }
     };
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
-    Ok(Worked { record, channels, passages })
+    Ok(Worked { record, channels, columns, passages })
 }
 
 /// A channel that is done.
 struct Finished {
     report: ChannelReport,
     output: Vec<f64>,
+    columns: Vec<Column>,
     passage: Option<Passage>,
 }
 
-fn one(
-    channel: Channel<'_>,
-    missing: &[usize],
-    chain: &Chain,
-    settings: &Settings,
-    planner: &Planner,
+/// What all channels of a run share.
+#[derive(Clone, Copy)]
+struct Bench<'a> {
+    chain: &'a Chain,
+    /// The chain without its split, where there is one.
+    primary: Option<&'a Chain>,
+    settings: &'a Settings,
+    planner: &'a Planner,
     page: Page,
-) -> Result<Finished> {
+}
+
+fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Finished> {
+    let Bench { chain, primary, settings, planner, page } = *bench;
     let prepared = prepare(channel, missing, chain, settings, planner)?;
     let (raw, chain) = (channel, &*prepared.chain);
     let channel = Channel { samples: &prepared.samples, ..channel };
-    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
+    let (chosen, judgement, mut outcome) = outcome(channel, chain, settings, planner, page)?;
     let seat = settings.stage.seat;
-    let known = foretold(&chosen, judgement.as_mut()).filter(|_| chain.treatments().resampling.is_none());
-    let outcome = match (&chosen.continuation, known) {
-        (_, Some(outcome)) => outcome,
-        (Continuation::Symmetric(ends, baseline), None) => {
-            condition::condition(channel, chain, *ends, *baseline, planner)?
-        }
-        (Continuation::Given([left, right]), None) => {
-            condition::condition_continued(channel, chain, left, right, seat, planner)?
-        }
+    // What is told of an integral is measured at the record's own rate.
+    let own = chain.on_own_grid();
+    let integral = if chain.turns() < 0 && chain.treatments().resampling.is_some() {
+        let own_outcome = formed(channel, &own, &chosen, seat, planner)?;
+        integral::form(channel, &own, settings, &own_outcome, past(&chosen), planner)?
+    } else {
+        integral::form(channel, chain, settings, &outcome, past(&chosen), planner)?
     };
-    if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
-        let place = Place { sample: Some(n as u64), ..Place::channel(channel.name) };
-        return Err(Error::unsupported("the result is too large for a double")
-            .at(place)
-            .remedy("scale the channel with --calibrate"));
-    }
+    let whole = match primary {
+        Some(primary) => Some(formed(channel, primary, &chosen, seat, planner)?.output),
+        None => None,
+    };
     let judged = match chain.treatments().resampling {
         None => Judged::by_output(channel, settings, chosen, judgement, &outcome.output),
         Some(_) => Judged::of(channel, chain, settings, chosen, judgement, planner)?,
     };
     let mut report = report(channel, raw, chain, settings, &judged, &outcome);
     report.notes.extend(prepared.notes);
+    report.notes.extend(derivative::remark(channel, chain, &outcome));
+    let (mut columns, mut stack) = (Vec::new(), None);
+    if let Some(formed) = integral {
+        report.notes.extend(formed.notes);
+        report.integral = Some(formed.report);
+        columns = formed.columns;
+        // On another grid the result has no deviation of its own, sample by sample.
+        let drawn = page == Page::Wanted && chain.treatments().resampling.is_none();
+        stack = drawn.then(|| Stack::of(channel.axis, &formed.corrected, &outcome.output, &formed.deviations));
+    }
+    if let (Some(whole), Some(corner)) = (whole, split::corner(settings)) {
+        let parts = split::of(channel, corner, whole, std::mem::take(&mut outcome.output), settings);
+        report.split = Some(parts.report);
+        columns.extend(parts.columns);
+        outcome.output = parts.primary;
+    }
     if !chain.is_real() && matches!(judged.chosen.continuation, Continuation::Symmetric(Ends::Mirror { .. }, _)) {
-        let reach = report.reach.samples.map_or_else(|| "the whole record".to_owned(), |r| format!("{} samples", r.ceil()));
+        let reach =
+            report.reach.samples.map_or_else(|| "the whole record".to_owned(), |r| format!("{} samples", r.ceil()));
         let text = format!(
             "{} ends run backwards in time, which no response that shifts phases undoes: within {reach} of an end the result \
              is not to be trusted; --extension forecast continues forwards",
@@ -148,10 +169,52 @@ fn one(
         Page::Wanted => {
             let picture = draw(channel, &chain.on_own_grid(), seat, &judged, &Scene::of(&report), planner)?;
             let picture = Some(picture).filter(|picture| !picture.curves.is_empty());
-            Some(Passage::of(raw, &outcome.output, &axis, report.unit == report.unit_in, picture))
+            let passage = passage(raw, &outcome.output, &axis, chain, &report, picture, planner);
+            Some(Passage { integral: stack, ..passage })
         }
     };
-    Ok(Finished { report, output: outcome.output, passage })
+    Ok(Finished { report, output: outcome.output, columns, passage })
+}
+
+/// A channel under the continuation of a run.
+fn formed(channel: Channel<'_>, chain: &Chain, chosen: &Chosen, seat: Seat, planner: &Planner) -> Result<Outcome> {
+    match &chosen.continuation {
+        Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner),
+        Continuation::Given([left, right]) => {
+            condition::condition_continued(channel, chain, left, right, seat, planner)
+        }
+    }
+}
+
+/// The samples past both ends, where they are given.
+fn past(chosen: &Chosen) -> Option<[&[f64]; 2]> {
+    match &chosen.continuation {
+        Continuation::Given([left, right]) => Some([left, right]),
+        Continuation::Symmetric(..) => None,
+    }
+}
+
+/// A prepared channel conditioned, with the continuation it took and the judgement that rests on.
+///
+/// # Errors
+/// Those of choosing and conditioning; `Unsupported` for a result too large for a double.
+pub fn outcome(
+    channel: Channel<'_>,
+    chain: &Chain,
+    settings: &Settings,
+    planner: &Planner,
+    page: Page,
+) -> Result<(Chosen, Option<Judgement>, Outcome)> {
+    let (chosen, mut judgement) = judgement::choose(channel, chain, settings, planner, page)?;
+    let known = foretold(&chosen, judgement.as_mut()).filter(|_| chain.treatments().resampling.is_none());
+    let outcome = known.map_or_else(|| formed(channel, chain, &chosen, settings.stage.seat, planner), Ok)?;
+    if let Some(n) = outcome.output.iter().position(|v| !v.is_finite()) {
+        let place = Place { sample: Some(n as u64), ..Place::channel(channel.name) };
+        return Err(Error::unsupported("the result is too large for a double")
+            .at(place)
+            .remedy("scale the channel with --calibrate"));
+    }
+    Ok((chosen, judgement, outcome))
 }
 
 /// Integration time of the running RMS that ISO 2631-1:1997, 6.3.1, recommends.
@@ -171,7 +234,8 @@ fn exposure_notes(channel: Channel<'_>, exposure: &Exposure, trusted: Option<&Tr
     if let (Some(at), Some(trusted)) = (exposure.mtvv_at, trusted)
         && !(trusted.from..=trusted.to).contains(&at)
     {
-        let text = "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
+        let text =
+            "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
         say("mtvv_untrusted", text.to_owned());
     }
     notes
@@ -195,11 +259,40 @@ pub fn stage_reports(chosen: &Chosen, chain: &Chain, settings: &Settings) -> (Ex
             (ends, baseline, format!("{} of the continued record", ends.transform()))
         }
     };
+    let end_treatment = match chosen.continuation {
+        Continuation::Symmetric(..) => end_treatment(ends, baseline),
+        Continuation::Given(_) => "extrapolation by linear prediction".to_owned(),
+    };
     let seat = match ends.seat() {
         Seat::Half => "half-sample",
         Seat::Whole => "whole-sample",
     };
-    (ExtensionReport { kind: chosen.name.clone(), seat, transform, how: chosen.how }, baseline.to_string())
+    (
+        ExtensionReport { kind: chosen.name.clone(), seat, transform, end_treatment, how: chosen.how },
+        baseline.to_string(),
+    )
+}
+
+/// The methods that ISO 16610-28:2016 names for the ends of a profile (terms from memory), as far as they are these.
+fn end_treatment(ends: Ends, baseline: BaselineKind) -> String {
+    let method = |parity: Parity| match parity {
+        Parity::Even => "line symmetrical reflection",
+        Parity::Odd => "point symmetrical reflection",
+    };
+    let method = match ends {
+        Ends::Periodic => "closed profile".to_owned(),
+        Ends::Mirror { left, right, .. } if left == right => method(left).to_owned(),
+        Ends::Mirror { left, right, .. } => format!("{} at the left, {} at the right", method(left), method(right)),
+    };
+    let about = match baseline {
+        BaselineKind::None => "",
+        BaselineKind::Mean => " about the mean",
+        BaselineKind::Level(_) => " about the level at the odd end",
+        BaselineKind::Line => " about the line through the end values",
+        BaselineKind::Slopes | BaselineKind::Tangents => " about the parabola with the end slopes",
+        BaselineKind::Trend(_) => " about the least-squares polynomial",
+    };
+    format!("{method}{about}")
 }
 
 fn report(
@@ -210,7 +303,7 @@ fn report(
     judged: &Judged,
     outcome: &Outcome,
 ) -> ChannelReport {
-    let (before, after) = (Level::of(raw.samples), Level::of(&outcome.output));
+    let (before, after) = rayon::join(|| Level::of(raw.samples), || Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
     let (extension, _) = stage_reports(&judged.chosen, chain, settings);
@@ -252,6 +345,8 @@ fn report(
         despike: None,
         smoothing: None,
         exposure: None,
+        split: None,
+        integral: None,
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
         parseval: outcome.parseval,

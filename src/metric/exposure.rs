@@ -48,7 +48,8 @@ impl Exposure {
         let duration_s = samples.len() as f64 * step_s;
         let rms = factor * sum::rms(samples);
         let running = running_rms(samples, window(running_s, step_s));
-        let largest = running.iter().enumerate().filter_map(|(n, v)| v.map(|v| (n, v))).max_by(|a, b| a.1.total_cmp(&b.1));
+        let largest =
+            running.iter().enumerate().filter_map(|(n, v)| v.map(|v| (n, v))).max_by(|a, b| a.1.total_cmp(&b.1));
         let mtvv = largest.map(|(_, v)| factor * v);
         let fourth: Vec<f64> = samples.iter().map(|v| (factor * v).powi(4)).collect();
         let vdv = (sum::sum(&fourth) * step_s).powf(0.25);
@@ -129,7 +130,8 @@ mod tests {
         let highest = (std::f64::consts::TAU * 0.002).cos();
         assert!((found.crest.unwrap() - 2.0_f64.sqrt() * highest).abs() < 1e-12 && found.msdv.is_none());
         // The same for 1 s out of 10: the running RMS is largest where the burst ends.
-        let burst: Vec<f64> = wave.iter().enumerate().map(|(n, v)| if (3000..4000).contains(&n) { *v } else { 0.0 }).collect();
+        let burst: Vec<f64> =
+            wave.iter().enumerate().map(|(n, v)| if (3000..4000).contains(&n) { *v } else { 0.0 }).collect();
         let found = Exposure::of(&burst, &Unit::parse("g"), &axis, "Wf", 1.0);
         let g = crate::unit::STANDARD_GRAVITY;
         assert!((found.mtvv.unwrap() - g * 2.0_f64.sqrt()).abs() < 1e-10 && found.mtvv_at == Some(3.999));

@@ -8,6 +8,7 @@
 mod band;
 mod calibration;
 mod chain;
+mod conditions;
 mod corner;
 mod description;
 mod despike;
@@ -15,6 +16,7 @@ mod edge;
 mod gain;
 mod kernel;
 mod notch;
+mod quantity;
 mod range;
 mod reach;
 mod request;
@@ -29,10 +31,12 @@ mod turn;
 mod weighting;
 
 pub use chain::{Chain, Pass, PassEnds};
+pub use conditions::{CONDITIONS, Conditions, ConditionsRow, Drift, Needs, Offset};
 pub use corner::{Corner, Measure};
 pub use description::{ChainDescription, CheckPoint, CornerDescription, OperatorDescription, PassDescription};
 pub use gain::Series;
 pub use kernel::impulse_response;
+pub use quantity::Quantity;
 pub use range::{CentreWidth, Orders, Range};
 pub use reach::{Reach, Reaches, Scale};
 pub use request::Request;

@@ -51,7 +51,8 @@ struct Decimate {
 pub(super) fn resample(text: &str) -> Result<Box<dyn Setting>> {
     let (rate, start) = parted(text);
     let rate = StatedRate::parse(rate).map_err(|_| {
-        Error::usage(format!("{}: no sampling rate", quoted(rate))).remedy("write a rate as 100Hz or 2/mm; add :start to keep the first stamp")
+        Error::usage(format!("{}: no sampling rate", quoted(rate)))
+            .remedy("write a rate as 100Hz or 2/mm; add :start to keep the first stamp")
     })?;
     Ok(Box::new(Resample { rate, start }))
 }
@@ -119,7 +120,9 @@ fn effect(frame: &Frame<'_>, ratio: Rational, start: Start) -> Result<Effect> {
     };
     if fits == 0 || fits as f64 > LONGEST {
         let text = format!("{}: {} samples would become {fits}", frame.option, frame.len);
-        return Err(Error::unsupported(text).remedy(format!("choose a rate nearer that of the record for {}", frame.option)));
+        return Err(
+            Error::unsupported(text).remedy(format!("choose a rate nearer that of the record for {}", frame.option))
+        );
     }
     let resampling = Resampling { ratio, count: fits as usize, start };
     let mut parts = Vec::new();
@@ -163,7 +166,9 @@ impl Resampling {
     /// How far the first sample stands after the first of the record, in old steps; negative before it.
     pub fn shift_steps(&self) -> f64 {
         match self.start {
-            Start::Centre => (self.ratio.numerator as f64 - self.ratio.denominator as f64) / (2.0 * self.ratio.denominator as f64),
+            Start::Centre => {
+                (self.ratio.numerator as f64 - self.ratio.denominator as f64) / (2.0 * self.ratio.denominator as f64)
+            }
             Start::Kept => 0.0,
         }
     }

@@ -17,6 +17,7 @@ use super::step::{CornerPoint, Effect, Frame, Part, Setting, Stage};
 #[derive(Debug)]
 struct Correct {
     path: String,
+    sha256: String,
     table: Arc<Calibration>,
 }
 
@@ -31,7 +32,7 @@ pub(super) fn response(text: &str) -> Result<Box<dyn Setting>> {
     let raw = read::read(Input::Path(PathBuf::from(path)), &options).map_err(|error| error.at(place()))?;
     let columns: Vec<_> = raw.channels.iter().map(|c| (c.name.as_str(), c.unit.label(), c.values.as_slice())).collect();
     let table = Calibration::from_columns(&columns).map_err(|error| error.at(place()))?;
-    Ok(Box::new(Correct { path: path.to_owned(), table: Arc::new(table) }))
+    Ok(Box::new(Correct { path: path.to_owned(), sha256: raw.source.sha256, table: Arc::new(table) }))
 }
 
 impl Setting for Correct {
@@ -68,7 +69,7 @@ impl Setting for Correct {
             value: self.path.clone(),
             stage: Stage::Response,
             corners,
-            gain: Arc::new(Inverse { table: table.clone(), rate_hz }),
+            gain: Arc::new(Inverse { table: table.clone(), sha256: self.sha256.clone(), rate_hz }),
         };
         Ok(Effect { parts: vec![part], findings, ..Effect::default() })
     }
@@ -81,7 +82,8 @@ impl Correct {
         let mut findings = Vec::new();
         let mut tell = |code, text: String| findings.push(Finding::new(code, text).at(Place::file(path)));
         if !table.has_phase() {
-            let text = "the table has no phase: magnitudes are corrected and delays are not, which changes the wave form";
+            let text =
+                "the table has no phase: magnitudes are corrected and delays are not, which changes the wave form";
             tell("response_without_phase", text.to_owned());
         }
         if let Some(Coarse { from_hz, to_hz, decibels, degrees }) = table.coarsest() {
@@ -96,12 +98,9 @@ impl Correct {
             tell("response_coarse", text);
         }
         if let Some([from, to]) = table.limited_hz() {
-            let text = format!(
-                "the correction is limited to {} dB between {} and {} Hz",
-                figure(20.0 * BOOST.log10()),
-                figure(from),
-                figure(to)
-            );
+            let (from, to) = (figure(from), figure(to));
+            let span = if from == to { format!("at {to} Hz") } else { format!("between {from} and {to} Hz") };
+            let text = format!("the correction is limited to {} dB {span}", figure(20.0 * BOOST.log10()));
             tell("response_limited", text);
         }
         if high < nyquist_hz {
@@ -120,6 +119,7 @@ impl Correct {
 #[derive(Debug)]
 struct Inverse {
     table: Arc<Calibration>,
+    sha256: String,
     rate_hz: f64,
 }
 
@@ -146,6 +146,9 @@ impl Gain for Inverse {
             })
             .collect();
         Series::of_quotient(&terms, &[1.0])
+    }
+    fn fingerprint(&self) -> Option<&str> {
+        Some(&self.sha256)
     }
     fn extent_samples(&self) -> f64 {
         4.0 * self.rate_hz / self.table.span_hz()[0]

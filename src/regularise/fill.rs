@@ -13,9 +13,9 @@ use crate::place::Place;
 use crate::record::{Axis, Record};
 use crate::unit::counted;
 
-use super::{Gaps, RowMap};
 use super::band::edge_frequency;
 use super::table::Table;
+use super::{Gaps, RowMap};
 
 /// Largest gap, in cycles of the band edge, that a cubic crosses (error 3e-4 of the RMS without noise).
 const CUBIC_CYCLES: f64 = 0.1;

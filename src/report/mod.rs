@@ -1,11 +1,15 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod archive;
 mod comparison;
 mod examination;
+mod integral;
 mod json;
 pub mod page;
 mod plan;
 mod plot;
+mod spectral;
+mod spectral_plot;
 mod text;
 mod treatment;
 
@@ -22,12 +26,22 @@ use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
+pub use archive::{ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
 pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
+pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
-pub use text::{audit_text, comparison_text, figure, plan_text, summary};
+pub use spectral::{
+    BandReport, ChannelSpectrum, CoefficientReport, CoefficientSeries, CoefficientsReport, DensityReport,
+    DensitySeries, LineReport, OctaveReport, Ratio, RoadReport, SPECTRUM_CAUTION, SegmentsReport, SpectrumReport,
+    SumCheck, Trace, WindowReport,
+};
+pub use spectral_plot::spectrum_svg;
+pub use text::{
+    archive_text, audit_text, comparison_text, figure, listing_text, plan_text, restore_text, spectrum_text, summary,
+};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
@@ -199,6 +213,10 @@ pub struct ChannelReport {
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
+    /// Both parts of a split; null without one.
+    pub split: Option<SplitReport>,
+    /// Constants and uncertainty of an integral; null without one.
+    pub integral: Option<IntegralReport>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }
@@ -288,8 +306,23 @@ pub struct ExtensionReport {
     pub seat: &'static str,
     /// The forward transform that follows.
     pub transform: String,
+    /// The same in the terms of profile filtering (ISO 16610-28).
+    pub end_treatment: String,
     /// Who chose it.
     pub how: How,
+}
+
+/// Both parts of a split, which stand in columns beside the record and add up to it.
+#[derive(Debug, Clone, Serialize)]
+pub struct SplitReport {
+    /// The corner as written.
+    pub corner: String,
+    /// What is longer than the corner.
+    pub waviness: Option<Level>,
+    /// What is left.
+    pub roughness: Option<Level>,
+    /// Decimals that both parts are rounded to, so that they add up to the record digit by digit.
+    pub decimals: i32,
 }
 
 /// How far the ends reach in.

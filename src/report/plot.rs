@@ -48,7 +48,7 @@ pub struct Curve {
 }
 
 /// Okabe and Ito (2008), "Color Universal Design": distinct for colour-blind readers. Forecast first.
-const COLOURS: [RGBColor; 8] = [
+pub(super) const COLOURS: [RGBColor; 8] = [
     RGBColor(0, 0, 0),
     RGBColor(230, 159, 0),
     RGBColor(86, 180, 233),
@@ -60,7 +60,7 @@ const COLOURS: [RGBColor; 8] = [
 ];
 
 /// Dash and gap in pixels, the second code beside colour; no gap is a solid line.
-const DASHES: [(u32, u32); 8] = [(1, 0), (10, 4), (2, 3), (6, 3), (12, 3), (4, 4), (8, 6), (3, 6)];
+pub(super) const DASHES: [(u32, u32); 8] = [(1, 0), (10, 4), (2, 3), (6, 3), (12, 3), (4, 4), (8, 6), (3, 6)];
 
 const WIDTH: u32 = 1200;
 const HEIGHT: u32 = 760;
@@ -118,17 +118,22 @@ fn draw(picture: &Picture, block: &Area<'_>) -> Result<()> {
 fn legend(picture: &Picture, area: &Area<'_>) -> Result<()> {
     let step = WIDTH as i32 / (picture.curves.len() as i32 + 1);
     for (index, curve) in picture.curves.iter().enumerate() {
-        let x = 20 + step * index as i32;
-        let (dash, gap) = DASHES[index % DASHES.len()];
-        let style = COLOURS[index % COLOURS.len()].stroke_width(2);
-        let mut from = x;
-        while from < x + 34 {
-            let to = if gap == 0 { x + 34 } else { (from + dash as i32).min(x + 34) };
-            area.draw(&PathElement::new(vec![(from, 12), (to, 12)], style)).map_err(failed)?;
-            from = to + gap.max(1) as i32;
-        }
-        area.draw(&Text::new(curve.name, (x + 40, 5), ("sans-serif", 14))).map_err(failed)?;
+        legend_line(area, index, 20 + step * index as i32, curve.name)?;
     }
+    Ok(())
+}
+
+/// One name of a legend in the colour and dash of its curve, from `x` on.
+pub(super) fn legend_line(area: &Area<'_>, index: usize, x: i32, name: &str) -> Result<()> {
+    let (dash, gap) = DASHES[index % DASHES.len()];
+    let style = COLOURS[index % COLOURS.len()].stroke_width(2);
+    let mut from = x;
+    while from < x + 34 {
+        let to = if gap == 0 { x + 34 } else { (from + dash as i32).min(x + 34) };
+        area.draw(&PathElement::new(vec![(from, 12), (to, 12)], style)).map_err(failed)?;
+        from = to + gap.max(1) as i32;
+    }
+    area.draw(&Text::new(name.to_owned(), (x + 40, 5), ("sans-serif", 14))).map_err(failed)?;
     Ok(())
 }
 
@@ -271,6 +276,6 @@ fn stamp(picture: &Picture, n: i64) -> f64 {
     picture.axis.start() + n as f64 * picture.axis.step()
 }
 
-fn failed(error: impl std::fmt::Display) -> Error {
+pub(super) fn failed(error: impl std::fmt::Display) -> Error {
     Error::io(format!("the picture could not be drawn: {error}"))
 }

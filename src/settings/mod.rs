@@ -2,22 +2,25 @@
 
 mod layer;
 mod parse;
+mod spectral;
 mod table;
 
 use std::collections::BTreeMap;
 
 use serde_json::{Map, Value};
 
+use crate::codec::Wanted;
 use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
-use crate::operator::{Request, Shape};
+use crate::operator::{Conditions, Offset, Request, Shape};
 use crate::read::ReadOptions;
 use crate::record::Format;
 use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
 pub use layer::Layer;
+pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
@@ -33,10 +36,22 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// End conditions of an integral; there is no default.
+    pub conditions: Option<Conditions>,
+    /// The sensor's offset, where the end conditions do not solve it.
+    pub offset: Option<Offset>,
+    /// Take end conditions that the record speaks against.
+    pub insist: bool,
+    /// Uncertainty of an integral that is aimed at: the report names the high-pass that gives it.
+    pub target_sigma: Option<ToleranceRequest>,
+    /// Columns that stand beside the result.
+    pub beside: Vec<Beside>,
     /// Integration time of the running RMS, in s.
     pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
+    /// How a spectrum is formed and what is read from it.
+    pub spectrum: SpectrumOptions,
     /// Edge error that is tolerable.
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
@@ -49,10 +64,21 @@ pub struct Settings {
     pub encoding: Option<String>,
     /// Fixed decimals of CSV output; shortest digits when `None`.
     pub decimals: Option<u8>,
+    /// What an archive may lose.
+    pub archive: Wanted,
     /// Notes are errors.
     pub strict: bool,
     /// What was set, as written.
     texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+/// A column that stands beside each channel of the result.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Beside {
+    /// Standard deviation of an integral from the noise of the record.
+    Sigma,
+    /// The record as corrected: filtered, less offset and drift, high-passed; the result is its integral.
+    Corrected,
 }
 
 /// What happens to output outside the trusted span.
@@ -95,6 +121,8 @@ impl Settings {
     pub fn to_map(&self) -> Map<String, Value> {
         rows()
             .into_iter()
+            // An archive's options say nothing of other results.
+            .filter(|row| row.group != Group::Archive || self.texts.contains_key(row.key))
             .map(|row| {
                 let texts = self.texts.get(row.key);
                 let value = match row.arity {

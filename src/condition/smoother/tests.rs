@@ -155,7 +155,8 @@ fn outliers_and_gaps_do_not_spoil_a_robust_fit() {
     // Slow tones of RMS 1 with noise 0.1 and 3 % of outliers. Cross-validation without weights follows the outliers: the
     // robust fit must come within half of its error, and near what the same fit makes of the record without outliers.
     let len = 2000;
-    let truth: Vec<f64> = (0..len).map(|n| (TAU * 0.004 * n as f64).sin() + (TAU * 0.0091 * n as f64 + 1.0).sin()).collect();
+    let truth: Vec<f64> =
+        (0..len).map(|n| (TAU * 0.004 * n as f64).sin() + (TAU * 0.0091 * n as f64 + 1.0).sin()).collect();
     let mut y: Vec<f64> = truth.iter().zip(noise(len, 9)).map(|(t, e)| t + 0.1 * e).collect();
     let clean = y.clone();
     for n in (0..len).step_by(33) {

@@ -64,9 +64,7 @@ fn section(
     match picture {
         Some(picture) => blocks.extend(shared::ends(picture, axis, count)),
         None if index >= DRAWN => {
-            blocks.push(Block::Text(format!(
-                "Figures are drawn for the first {DRAWN} channels; choose others with --channel."
-            )));
+            blocks.push(Block::Text(shared::too_many()));
         }
         None => blocks.push(Block::Text("Nothing was judged here, so there is no figure.".to_owned())),
     }

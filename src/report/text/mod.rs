@@ -1,11 +1,14 @@
 //! Results for people: short lines and tables, units everywhere, nothing that a file could use to command a terminal.
 
+mod archived;
 mod audited;
 mod compared;
 mod conditioned;
 mod exposed;
 mod figure;
+mod integrated;
 mod planned;
+mod spectral;
 
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
@@ -15,10 +18,12 @@ use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
 use crate::unit::counted;
 
+pub use archived::{archive_text, listing_text, restore_text};
 pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
+pub use spectral::spectrum_text;
 
 pub use figure::figure;
 pub(super) use planned::operators_text;
