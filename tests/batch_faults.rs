@@ -207,8 +207,9 @@ fn wait_for(what: &str, ready: impl Fn() -> bool) {
 }
 
 fn temporaries(scene: &Scene) -> Vec<String> {
-    fs::read_dir(scene.path("out"))
-        .expect("a folder")
+    ["out", "out/results"]
+        .iter()
+        .flat_map(|folder| fs::read_dir(scene.path(folder)).expect("a folder"))
         .map(|entry| entry.expect("an entry").file_name().to_string_lossy().into_owned())
         .filter(|name| name.starts_with('.'))
         .collect()
@@ -244,6 +245,8 @@ fn killed_at_any_instant_nothing_is_lost_doubled_or_partial() {
                 }
             }
         }
+        // What a kill leaves of a plan is stale like what it leaves of an output.
+        scene.file("out/results/.plan.jsonl.abcdefgh.part", "half");
         // An orphan runs on beside the retry.
         let orphan = scene.start(&arguments);
         scene.ends(0, &arguments);
