@@ -1,11 +1,14 @@
 //! `audit`: what is in a record and whether it is fit.
 
-use std::path::PathBuf;
+use std::io::Write;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::{Arg, ArgMatches, Command};
 use endgrain::error::{Error, Result};
+use endgrain::place::Place;
 use endgrain::settings::Group;
+use endgrain::write::Pending;
 use endgrain::{job, report};
 
 use crate::cli::{args, exit, stream};
@@ -29,32 +32,50 @@ pub fn command() -> Command {
                 .num_args(1..)
                 .help("Records: CSV or WAV, '-' for standard input"),
         )
+        .arg(args::json())
+        .arg(args::force("Report"))
         .after_help(exit::HELP)
 }
 
-/// Runs it: one block a file, the first error ends it.
+/// Runs it: one block a file. A file that cannot be audited is told and passed over; the first such fault decides the exit
+/// code.
 ///
 /// # Errors
-/// Whatever stops a reader.
+/// Whatever stops the report from being written.
 pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
-    let settings = args::settings(matches, GROUPS)?;
+    let files: Vec<&String> = matches.get_many::<String>("input").into_iter().flatten().collect();
+    let inputs: Vec<&Path> = files.iter().map(Path::new).collect();
     let json = matches.get_one::<String>("json").map(PathBuf::from);
-    let mut reports = Vec::new();
-    for file in matches.get_many::<String>("input").into_iter().flatten() {
-        let report = job::audit(stream::input(file)?, &settings)?;
-        if json.is_none() && !matches.get_flag("quiet") {
-            stream::print(&report::audit_text(&report))?;
+    let mut output = match &json {
+        Some(path) if !stream::is_stdout(path) => Some(Pending::create(path, &inputs, args::overwrite(matches))?),
+        _ => None,
+    };
+    let (mut reports, mut outcome) = (Vec::new(), ExitCode::SUCCESS);
+    for file in files {
+        let settings = args::settings(matches, GROUPS, Some(file))?;
+        match stream::input(file).and_then(|input| job::audit(input, &settings)) {
+            Ok(report) => {
+                if json.is_none() && !matches.get_flag("quiet") {
+                    stream::print(&report::audit_text(&report))?;
+                }
+                reports.push(report);
+            }
+            Err(error) => {
+                stream::complain(&error);
+                if outcome == ExitCode::SUCCESS {
+                    outcome = exit::code(&error);
+                }
+            }
         }
-        reports.push(report);
     }
-    match json {
-        Some(path) if stream::is_stdout(&path) => stream::print(&report::to_json(&reports)?)?,
-        Some(path) => {
-            let mut out = endgrain::write::Pending::create(&path, &[], endgrain::write::Overwrite::Refuse)?;
-            std::io::Write::write_all(&mut out, report::to_json(&reports)?.as_bytes()).map_err(Error::from)?;
-            out.finish()?;
+    match output.take() {
+        Some(mut output) => {
+            let text = report::to_json(&reports)?;
+            output.write_all(text.as_bytes()).map_err(|error| Error::from(error).at(Place::file(output.label())))?;
+            output.finish()?;
         }
+        None if json.is_some() => stream::print(&report::to_json(&reports)?)?,
         None => {}
     }
-    Ok(ExitCode::SUCCESS)
+    Ok(outcome)
 }

@@ -1,6 +1,6 @@
 //! `condition`: the main job on one record.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::{Arg, ArgAction, ArgMatches, Command};
@@ -8,7 +8,7 @@ use endgrain::error::{Error, Result};
 use endgrain::job::{self, Target};
 use endgrain::report;
 use endgrain::settings::Group;
-use endgrain::write::Overwrite;
+use endgrain::write::Durability;
 
 use crate::cli::{args, exit, stream};
 
@@ -19,11 +19,15 @@ const EXAMPLES: &str = "\
 Examples:
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
   endgrain condition log.csv --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.csv
-  endgrain condition log.csv --channel ax --integrate 1 --highpass 0.5Hz -o velocity.csv
+  endgrain condition log.csv --channel ax --integrate 1 --conditions steady --highpass 0.5Hz -o velocity.csv
+  endgrain condition lift.csv --integrate 2 --conditions rest-to=0.25m --beside sigma -o travel.csv
+  endgrain condition profile.csv --split 0.8mm --extension odd --baseline line -o parts.csv
   endgrain condition profile.csv --lowpass 0.8mm --shape gaussian -o waviness.csv
   endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
   logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
+  endgrain condition log.csv --lowpass 40Hz -o clean.csv --html report.html
   endgrain condition log.csv --lowpass 40Hz --dry-run
+  endgrain condition log.csv --recipe clean.csv.json -o again.csv
 ";
 
 /// The subcommand.
@@ -44,20 +48,24 @@ pub fn command() -> Command {
             .help_heading(Group::Output.heading())
             .help("Where the result goes, '-' for standard output; the JSON sidecar is OUT with .json appended"),
     )
+    .arg(args::json())
+    .arg(args::force(Group::Output.heading()))
     .arg(
-        Arg::new("force")
-            .long("force")
+        Arg::new("sync")
+            .long("sync")
             .action(ArgAction::SetTrue)
             .help_heading(Group::Output.heading())
-            .help("Replace files that are in the way"),
+            .help("Wait until the outputs are on the disk: a power failure right after then loses nothing"),
     )
     .arg(
         Arg::new("dry-run")
             .long("dry-run")
             .action(ArgAction::SetTrue)
+            .conflicts_with("json")
             .help_heading(Group::Output.heading())
             .help("Print the resolved plan and the gain at and around each corner; write nothing"),
     )
+    .arg(args::page())
     .after_help(exit::HELP)
 }
 
@@ -66,8 +74,8 @@ pub fn command() -> Command {
 /// # Errors
 /// Whatever stops the job.
 pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
-    let settings = args::settings(matches, GROUPS)?;
     let Some(file) = matches.get_one::<String>("input") else { return Err(Error::usage("no input file")) };
+    let settings = args::settings(matches, GROUPS, Some(file))?;
     let json = matches.get_one::<String>("json").map(PathBuf::from);
     let quiet = matches.get_flag("quiet");
     if matches.get_flag("dry-run") {
@@ -83,14 +91,19 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         return Err(Error::usage("the record and the JSON cannot both go to standard output")
             .remedy("give one of them a file name"));
     }
-    let overwrite = if matches.get_flag("force") { Overwrite::Force } else { Overwrite::Refuse };
+    let overwrite = args::overwrite(matches);
+    let durability = if matches.get_flag("sync") { Durability::OnDisk } else { Durability::Handed };
     let json_file = json.as_deref().filter(|path| !stream::is_stdout(path));
     let target = if to_stdout {
         Target::stream(Box::new(std::io::stdout()), json_file, overwrite)
     } else {
         Target::file(&output, json_file, overwrite)
     };
-    let report = job::condition(stream::input(file)?, target, &settings)?;
+    let target = match matches.get_one::<String>("html") {
+        Some(page) => target.with_page(Path::new(page)),
+        None => target,
+    };
+    let report = job::condition(stream::input(file)?, target.durable(durability), &settings)?;
     if json.as_deref().is_some_and(stream::is_stdout) {
         stream::print(&report::to_json(&report)?)?;
     }

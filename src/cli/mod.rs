@@ -2,9 +2,14 @@
 
 mod args;
 mod audit;
+mod batch;
 mod compare;
 mod condition;
 mod exit;
+mod generate;
+mod machine;
+mod merge;
+mod progress;
 mod spectrum;
 mod stream;
 
@@ -21,6 +26,9 @@ pub fn run() -> ExitCode {
         Some(("compare", matches)) => compare::run(matches),
         Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
+        Some(("batch", matches)) => batch::run(matches),
+        Some(("merge", matches)) => merge::run(matches),
+        Some(("generate", matches)) => generate::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };
     match outcome {

@@ -4,6 +4,7 @@ use std::fmt;
 use std::str::FromStr;
 
 use crate::error::{Error, Result};
+use crate::numeric::leading_number;
 use crate::place::escape;
 use crate::unit::Unit;
 use crate::verdict::Tolerance;
@@ -32,13 +33,7 @@ impl FromStr for ToleranceRequest {
             Error::usage(format!("not a tolerance: \"{}\"", escape(text)))
                 .remedy("write a share of the output's standard deviation as 10%, or a value with its unit as 0.02m/s")
         };
-        let text = text.trim();
-        let split = (1..=text.len())
-            .rev()
-            .find(|&n| text.is_char_boundary(n) && text[..n].trim().parse::<f64>().is_ok_and(f64::is_finite))
-            .ok_or_else(wrong)?;
-        let value: f64 = text[..split].trim().parse().map_err(|_| wrong())?;
-        let unit = text[split..].trim();
+        let (value, unit) = leading_number::split(text).ok_or_else(wrong)?;
         if value <= 0.0 || unit.is_empty() {
             return Err(wrong());
         }
@@ -56,11 +51,11 @@ impl fmt::Display for ToleranceRequest {
 }
 
 impl ToleranceRequest {
-    /// In the unit of the output.
+    /// In the unit of the output; `option` is named in errors.
     ///
     /// # Errors
     /// `Usage` when the units cannot be converted.
-    pub(super) fn resolve(&self, output: &Unit) -> Result<Tolerance> {
+    pub fn resolve(&self, option: &str, output: &Unit) -> Result<Tolerance> {
         let (value, unit) = match self {
             Self::Share(share) => return Ok(Tolerance::Share(*share)),
             Self::Value(value, unit) => (*value, unit),
@@ -72,8 +67,8 @@ impl ToleranceRequest {
             (Some(own), Some(wanted)) if (own.length, own.time) == (wanted.length, wanted.time) => {
                 Ok(Tolerance::Absolute(value * own.scale / wanted.scale))
             }
-            _ => Err(Error::usage(format!("--tolerance {self}: the output is in \"{output}\""))
-                .remedy("give the tolerance in that unit or in %")),
+            _ => Err(Error::usage(format!("{option} {self}: the output is in \"{output}\""))
+                .remedy(format!("give {option} in that unit or in %"))),
         }
     }
 }
@@ -87,10 +82,10 @@ mod tests {
         let parse = |text: &str| text.parse::<ToleranceRequest>();
         assert_eq!(parse("10%"), Ok(ToleranceRequest::Share(0.1)));
         let mm = parse("2 mm/s").expect("a tolerance");
-        let Ok(Tolerance::Absolute(value)) = mm.resolve(&Unit::parse("m/s")) else { panic!("absolute") };
+        let Ok(Tolerance::Absolute(value)) = mm.resolve("--tolerance", &Unit::parse("m/s")) else { panic!("absolute") };
         assert!((value - 0.002).abs() < 1e-15);
-        assert!(mm.resolve(&Unit::parse("V")).is_err());
-        for text in ["", "10", "-5%", "nan%", "x", "%"] {
+        assert!(mm.resolve("--tolerance", &Unit::parse("V")).is_err());
+        for text in ["", "10", "-5%", "nan%", "x", "%", "1e400%", "1e400m/s", "5 5%"] {
             assert!(parse(text).is_err(), "{text}");
         }
     }

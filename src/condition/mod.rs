@@ -1,7 +1,10 @@
 //! The main job: a channel, its assumed continuation and a chain of operators make a conditioned channel.
 
 mod choice;
+mod despike;
 mod pass;
+mod run;
+mod smoother;
 
 use crate::baseline::{Baseline, BaselineKind, Scale};
 use crate::basis::Planner;
@@ -12,7 +15,12 @@ use crate::record::Channel;
 use crate::unit::Unit;
 
 pub use choice::{ExtensionChoice, Stage};
-pub use pass::{Passed, apply};
+pub use despike::{Despiked, despike};
+pub use pass::{Passed, Span, apply};
+pub use run::Integral;
+pub use smoother::{Robust, Smoother, Validated, bridged, freedom};
+
+use run::Scene;
 
 /// What conditioning made of one channel: the only input of metrics and reports.
 #[derive(Debug, Clone)]
@@ -29,6 +37,10 @@ pub struct Outcome {
     pub scale: Scale,
     /// Relative energy difference between remainder and coefficients in the first pass: rounding only.
     pub parseval: f64,
+    /// Samples that robust smoothing gave no weight, continuation included; `None` without it.
+    pub outliers: Option<usize>,
+    /// What the end conditions made of an integral; `None` without one.
+    pub integral: Option<Integral>,
 }
 
 /// The fit widths for a record of `len` samples under a chain.
@@ -42,12 +54,14 @@ pub fn scale_of(chain: &Chain, len: usize) -> Scale {
     }
 }
 
-/// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `slopes` for
-/// integrals and derivatives with even ends (their kink is what an even extension adds), otherwise none.
+/// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `tangents` for
+/// integrals and derivatives with even ends and `slopes` for resampling (their kink is what an even extension adds),
+/// otherwise none.
 pub fn default_baseline(ends: Ends, chain: &Chain) -> BaselineKind {
     match ends {
         Ends::Mirror { left, right, .. } if left != right => BaselineKind::Level(None),
-        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Slopes,
+        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Tangents,
+        Ends::Mirror { left: Parity::Even, .. } if chain.treatments().resampling.is_some() => BaselineKind::Slopes,
         _ => BaselineKind::None,
     }
 }
@@ -68,8 +82,30 @@ pub fn condition(
     planner: &Planner,
 ) -> Result<Outcome> {
     let scale = scale_of(chain, channel.samples.len());
-    let baseline = Baseline::fit(baseline, channel.samples, ends, scale)?;
+    let baseline = fitted(baseline, channel.samples, chain, ends, scale, planner)?;
     condition_with(channel, chain, ends, baseline, scale, planner)
+}
+
+/// The baseline of a run. The end slopes that resampling needs are those of the band that is kept: a strong tone above it
+/// would tilt them, so they are measured after its low-pass.
+fn fitted(
+    kind: BaselineKind,
+    samples: &[f64],
+    chain: &Chain,
+    ends: Ends,
+    scale: Scale,
+    planner: &Planner,
+) -> Result<Baseline> {
+    let resamples = chain.treatments().resampling.is_some();
+    if !(resamples && kind == BaselineKind::Slopes && chain.turns() == 0 && chain.is_real()) {
+        return Baseline::fit(kind, samples, ends, scale);
+    }
+    let nothing = Baseline::fit(BaselineKind::None, samples, ends, scale)?;
+    let own = chain.on_own_grid();
+    let scene = Scene { chain: &own, unit: Unit::unknown(), factor: 1.0, resolved: None, scale, planner };
+    let kept = run::passes(&scene, samples, ends, &nothing, Span::whole(samples))?;
+    let found = Baseline::fit(kind, &kept.output, ends, scale)?;
+    Ok(Baseline::exact(kind, found.polynomial().clone()))
 }
 
 /// As `condition`, with a baseline that is already known.
@@ -84,15 +120,21 @@ pub fn condition_with(
     scale: Scale,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let (unit, factor) = scaling(channel, chain);
-    let (output, parseval) = run(channel.samples, chain, ends, &baseline, 0.0, factor, planner)?;
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    let scene = Scene::of(channel, chain, ends, scale, planner)?;
+    let ran = run::passes(&scene, channel.samples, ends, &baseline, Span::whole(channel.samples))?;
+    Ok(ran.outcome(scene.unit, ends, baseline, scale))
+}
+
+/// What a continued record itself is conditioned under: even reflection, with the baseline that goes with it.
+pub fn beyond(seat: Seat, chain: &Chain) -> (Ends, BaselineKind) {
+    let ends = Ends::EVEN.seated(seat);
+    (ends, default_baseline(ends, chain))
 }
 
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
 ///
-/// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
-/// channel's own samples are cut out again. Integrals start at rest at the channel's own left end.
+/// The continued record runs through the whole chain as `beyond` says, and the channel's own samples are cut out again. End
+/// conditions of an integral hold at the channel's own ends.
 ///
 /// # Errors
 /// As `condition`.
@@ -104,16 +146,46 @@ pub fn condition_continued(
     seat: Seat,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let ends = Ends::EVEN.seated(seat);
+    let (ends, kind) = beyond(seat, chain);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
-    let baseline = Baseline::fit(default_baseline(ends, chain), &continued, ends, scale)?;
-    let (unit, factor) = scaling(channel, chain);
-    let rest = left.len() as f64;
-    let (mut output, parseval) = run(&continued, chain, ends, &baseline, rest, factor, planner)?;
-    output.truncate(left.len() + channel.samples.len());
-    output.drain(..left.len());
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    let baseline = fitted(kind, &continued, chain, ends, scale, planner)?;
+    let scene = Scene::of(channel, chain, ends, scale, planner)?;
+    let span = Span { lead: left.len(), len: channel.samples.len() };
+    let mut ran = run::passes(&scene, &continued, ends, &baseline, span)?;
+    if chain.treatments().resampling.is_none() {
+        ran.output = own(ran.output, span);
+    }
+    Ok(ran.outcome(scene.unit, ends, baseline, scale))
+}
+
+/// The record that the integral of `outcome` is the integral of, in the record's unit: filtered, less the offset and drift
+/// that the end conditions found, high-passed under even reflection. `past` is the continuation that was used, if any.
+/// For chains that keep the record's own rate.
+///
+/// # Errors
+/// As `condition`.
+pub fn corrected(
+    channel: Channel<'_>,
+    chain: &Chain,
+    outcome: &Outcome,
+    past: Option<[&[f64]; 2]>,
+    planner: &Planner,
+) -> Result<Vec<f64>> {
+    let constants = outcome.integral.as_ref().map(|integral| integral.constants).unwrap_or_default();
+    let [left, right] = past.unwrap_or([&[], &[]]);
+    let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
+    let span = Span { lead: left.len(), len: channel.samples.len() };
+    let scene = Scene::of(channel, chain, outcome.ends, outcome.scale, planner)?;
+    let all = run::corrected(&scene, &continued, outcome.ends, &outcome.baseline, span, constants)?;
+    Ok(own(all, span))
+}
+
+/// The channel's own samples.
+fn own(mut all: Vec<f64>, span: Span) -> Vec<f64> {
+    all.truncate(span.lead + span.len);
+    all.drain(..span.lead);
+    all
 }
 
 /// Unit of the output, and the factor that brings numbers formed in steps into it.
@@ -121,37 +193,4 @@ pub fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     let turns = chain.turns();
     let (unit, factor) = channel.unit.turned(turns, channel.axis.unit());
     (unit, channel.axis.step_base().powi(-turns) * factor)
-}
-
-/// All passes of a chain; the output and the Parseval check of the first.
-fn run(
-    samples: &[f64],
-    chain: &Chain,
-    ends: Ends,
-    baseline: &Baseline,
-    rest: f64,
-    factor: f64,
-    planner: &Planner,
-) -> Result<(Vec<f64>, f64)> {
-    let mut parseval = 0.0;
-    let mut output: Option<Vec<f64>> = None;
-    for pass in chain.passes().iter().filter(|pass| !pass.is_identity()) {
-        let passed = match &output {
-            None => {
-                let mut passed = apply(samples, ends, baseline, pass, rest, planner)?;
-                parseval = passed.parseval;
-                if factor != 1.0 {
-                    passed.output.iter_mut().for_each(|v| *v *= factor);
-                }
-                passed
-            }
-            Some(so_far) => {
-                let even = Ends::EVEN.seated(ends.seat());
-                let nothing = Baseline::fit(BaselineKind::None, so_far, even, Scale::assumed(so_far.len()))?;
-                apply(so_far, even, &nothing, pass, rest, planner)?
-            }
-        };
-        output = Some(passed.output);
-    }
-    Ok((output.unwrap_or_else(|| samples.to_vec()), parseval))
 }

@@ -1,17 +1,27 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod chain;
 mod comparison;
 mod conditioning;
+mod derivative;
 mod edges;
 mod examination;
 mod intake;
+mod integral;
+mod judgement;
 mod origin;
+mod passage;
+mod picture;
+mod preparation;
+mod requirement;
+mod running;
 mod spectrum;
+mod split;
 mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, plan};
+pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
 pub use examination::audit;
 pub use spectrum::spectrum;
-pub use target::Target;
+pub use target::{PageFiles, Target};

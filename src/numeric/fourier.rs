@@ -63,11 +63,27 @@ pub fn impulse_response(grid: usize, gain: impl Fn(f64) -> f64, turns: i32) -> V
     })
 }
 
-/// Mean square of the part of one period that lies above `frequency`, in cycles per sample.
-pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
+/// The impulse response of a complex `response(f)` on a periodic grid of `grid` samples: lags 0, 1, ..., then, counted back
+/// from the end, -1, -2, ...
+pub fn two_sided_response(grid: usize, response: impl Fn(f64) -> Complex<f64>) -> Vec<f64> {
+    with_planner(|planner| {
+        let inverse = planner.plan_fft_inverse(grid);
+        let line = |k: usize| response(k as f64 / grid as f64) / grid as f64;
+        let mut spectrum: Vec<Complex<f64>> = (0..grid / 2 + 1).map(line).collect();
+        real_ends(&mut spectrum, grid);
+        let mut out = vec![0.0; grid];
+        // The lengths are the plan's own, the only thing this call can reject.
+        let _ = inverse.process(&mut spectrum, &mut out);
+        out
+    })
+}
+
+/// Mean square that each line of one period stands for, from the constant to half the period; their sum is the mean square
+/// of the period (Parseval).
+pub fn energies(period: &[f64]) -> Vec<f64> {
     let len = period.len();
     if len == 0 {
-        return 0.0;
+        return Vec::new();
     }
     with_planner(|planner| {
         let forward = planner.plan_fft_forward(len);
@@ -75,9 +91,16 @@ pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
         let _ = forward.process(&mut period.to_vec(), &mut spectrum);
         // Every line but the constant and the Nyquist line stands for a pair.
         let share = |k: usize| if k == 0 || 2 * k == len { 1.0 } else { 2.0 };
-        let lines = spectrum.iter().enumerate().filter(|(k, _)| *k as f64 > frequency * len as f64);
-        lines.map(|(k, c)| share(k) * c.norm_sqr()).sum::<f64>() / (len as f64 * len as f64)
+        let square = len as f64 * len as f64;
+        spectrum.iter().enumerate().map(|(k, c)| share(k) * c.norm_sqr() / square).collect()
     })
+}
+
+/// Mean square of the part of one period that lies above `frequency`, in cycles per sample.
+pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
+    let lines = energies(period);
+    let above = |k: usize| k as f64 > frequency * period.len() as f64;
+    lines.iter().enumerate().filter(|(k, _)| above(*k)).map(|(_, energy)| energy).sum()
 }
 
 /// Constant and Nyquist are real in a real sequence; an odd number of quarter turns removes them.

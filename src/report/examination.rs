@@ -1,6 +1,7 @@
 //! The result of an audit as plain data.
 
 use serde::Serialize;
+use serde_json::{Map, Value};
 
 use crate::audit::Audit;
 use crate::report::{AxisReport, Tool};
@@ -14,6 +15,8 @@ pub struct AuditReport {
     pub tool: Tool,
     /// `audit`.
     pub command: &'static str,
+    /// Every setting as resolved.
+    pub settings: Map<String, Value>,
     /// Path as given.
     pub path: String,
     /// SHA-256 of the bytes as stored.

@@ -2,28 +2,32 @@
 
 mod comparison;
 mod examination;
+mod integral;
 mod json;
+pub mod page;
 mod plan;
 mod plot;
 mod spectral;
 mod spectral_plot;
 mod text;
+mod treatment;
 
 use serde::Serialize;
 use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
 use crate::baseline::EndEstimates;
-use crate::compare::How;
-use crate::compare::Standing;
+use crate::compare::{EndStanding, How, Standing};
 use crate::error::Finding;
-use crate::operator::ChainDescription;
+use crate::metric::exposure::Exposure;
+use crate::operator::{Chain, ChainDescription};
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
-use crate::verdict::{self, Adequacy, Edge, Structure};
+use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
-pub use comparison::{ChannelComparison, Comparison, Jump, Row};
+pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
+pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
@@ -33,7 +37,8 @@ pub use spectral::{
     SumCheck, Trace, WindowReport,
 };
 pub use spectral_plot::spectrum_svg;
-pub use text::{audit_text, comparison_text, plan_text, spectrum_text, summary};
+pub use text::{audit_text, comparison_text, figure, plan_text, spectrum_text, summary};
+pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -59,6 +64,8 @@ pub struct Report {
     pub channels: Vec<ChannelReport>,
     /// False where `--require` was not met.
     pub requirement_met: bool,
+    /// The channels that did not meet it, and why.
+    pub unmet: Vec<Finding>,
     /// What was written.
     pub outputs: Vec<OutputReport>,
     /// What results of this kind may and may not be used for.
@@ -83,6 +90,16 @@ impl Tool {
 pub const CAUTION: &str = "Filtered, integrated or restored records are estimates under the stated assumption about the \
 ends. Decisions on machine protection, structural safety or human exposure follow the applicable standards and local \
 codes under qualified practice; this program does not certify.";
+
+/// The caution that goes with a weighted record.
+pub const WEIGHTED_CAUTION: &str = "Weighted accelerations and the figures formed from them are estimates from one record \
+under the stated assumption about the ends: not the readings of a measuring instrument in the sense of ISO 8041-1. Decisions \
+on human exposure follow local codes and qualified practice; this program does not certify.";
+
+/// The caution that belongs to what a chain does.
+pub fn caution(chain: &Chain) -> &'static str {
+    if chain.treatments().weighting.is_some() { WEIGHTED_CAUTION } else { CAUTION }
+}
 
 /// What was read.
 #[derive(Debug, Clone, Serialize)]
@@ -172,16 +189,30 @@ pub struct ChannelReport {
     pub reach: ReachReport,
     /// What the record's ends support, and at what cost; null where the chain has nothing to judge.
     pub verdict: Option<VerdictReport>,
+    /// Why nothing is known about the edges; null where they were judged, and where nothing asked for it.
+    pub not_judged: Option<Unjudged>,
+    /// How each assertion stands against the record, end by end.
+    pub assertions: Vec<EndStanding>,
     /// Every candidate at the edges: predicted error, bound, adequacy, trusted span.
     pub candidates: Vec<Edge>,
     /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.
     pub edge: Option<EndEstimates>,
     /// First and last trusted sample of the output; null where nothing was judged or nothing is trusted.
     pub trusted: Option<TrustedReport>,
+    /// Spikes that were replaced; null where that was not asked for.
+    pub despike: Option<DespikeReport>,
+    /// Smoothing; null without it.
+    pub smoothing: Option<SmoothReport>,
+    /// Exposure figures; null without a weighting.
+    pub exposure: Option<Exposure>,
     /// RMS before and after.
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
+    /// Both parts of a split; null without one.
+    pub split: Option<SplitReport>,
+    /// Constants and uncertainty of an integral; null without one.
+    pub integral: Option<IntegralReport>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }
@@ -213,7 +244,7 @@ pub struct VerdictReport {
     pub zone: usize,
     /// How smoothly the ends join.
     pub joins: Structure,
-    /// How an assertion stands against the record.
+    /// How the assertions stand against the record: the worst of the ends.
     pub assertion: Option<Standing>,
     /// In words.
     pub sentence: String,
@@ -271,8 +302,23 @@ pub struct ExtensionReport {
     pub seat: &'static str,
     /// The forward transform that follows.
     pub transform: String,
+    /// The same in the terms of profile filtering (ISO 16610-28).
+    pub end_treatment: String,
     /// Who chose it.
     pub how: How,
+}
+
+/// Both parts of a split, which stand in columns beside the record and add up to it.
+#[derive(Debug, Clone, Serialize)]
+pub struct SplitReport {
+    /// The corner as written.
+    pub corner: String,
+    /// What is longer than the corner.
+    pub waviness: Option<Level>,
+    /// What is left.
+    pub roughness: Option<Level>,
+    /// Decimals that both parts are rounded to, so that they add up to the record digit by digit.
+    pub decimals: i32,
 }
 
 /// How far the ends reach in.

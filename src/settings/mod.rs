@@ -1,5 +1,6 @@
 //! Everything that changes a result, under one name each: command line, recipes and JSON share these keys.
 
+mod layer;
 mod parse;
 mod spectral;
 mod table;
@@ -11,14 +12,15 @@ use serde_json::{Map, Value};
 use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
-use crate::operator::{Request, Shape};
+use crate::operator::{Conditions, Offset, Request, Shape};
 use crate::read::ReadOptions;
 use crate::record::Format;
 use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
+pub use layer::Layer;
 pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
-pub use table::{Arity, Group, OptionRow, find, rows};
+pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
 #[derive(Debug, Clone, Default)]
@@ -33,6 +35,18 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// End conditions of an integral; there is no default.
+    pub conditions: Option<Conditions>,
+    /// The sensor's offset, where the end conditions do not solve it.
+    pub offset: Option<Offset>,
+    /// Take end conditions that the record speaks against.
+    pub insist: bool,
+    /// Uncertainty of an integral that is aimed at: the report names the high-pass that gives it.
+    pub target_sigma: Option<ToleranceRequest>,
+    /// Columns that stand beside the result.
+    pub beside: Vec<Beside>,
+    /// Integration time of the running RMS, in s.
+    pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
     /// How a spectrum is formed and what is read from it.
@@ -41,7 +55,7 @@ pub struct Settings {
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
     pub require: Option<Adequacy>,
-    /// What happens to output outside the trusted span.
+/// What happens to output outside the trusted span.
     pub edges: Edges,
     /// Format of the output; that of the input when `None`.
     pub format: Option<Format>,
@@ -53,6 +67,15 @@ pub struct Settings {
     pub strict: bool,
     /// What was set, as written.
     texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+/// A column that stands beside each channel of the result.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Beside {
+    /// Standard deviation of an integral from the noise of the record.
+    Sigma,
+    /// The record as corrected: filtered, less offset and drift, high-passed; the result is its integral.
+    Corrected,
 }
 
 /// What happens to output outside the trusted span.
@@ -76,25 +99,18 @@ impl Settings {
     /// `Usage` for an unknown key (with the nearest known one), for a value that does not parse, and for a second value
     /// of a key that takes one.
     pub fn set(&mut self, key: &str, text: &str) -> Result<()> {
-        let Some(row) = find(key) else {
-            let all = rows();
-            let nearest = all
-                .iter()
-                .map(|row| (strsim::jaro_winkler(row.key, key), row.key))
-                .max_by(|a, b| a.0.total_cmp(&b.0))
-                .filter(|(likeness, _)| *likeness > 0.8);
-            let error = Error::usage(format!("unknown setting {key:?}"));
-            return Err(match nearest {
-                Some((_, known)) => error.remedy(format!("did you mean {known:?}?")),
-                None => error,
-            });
-        };
+        let row = known(key)?;
         let texts = self.texts.entry(row.key).or_default();
         if row.arity != Arity::Many && !texts.is_empty() {
             return Err(Error::usage(format!("--{key} is given twice")));
         }
         texts.push(text.to_owned());
         parse::set(self, row.key, text)
+    }
+
+    /// True for a key that was set, if only to its default.
+    pub fn is_given(&self, key: &str) -> bool {
+        self.texts.contains_key(key)
     }
 
     /// Every setting as resolved, for results: what was not given stands as its default, `null` where it is decided by
@@ -115,6 +131,13 @@ impl Settings {
                 (row.key.to_owned(), value)
             })
             .collect()
+    }
+
+    /// The same for a result in a format: what the settings leave to the output stands as it was resolved.
+    pub fn to_map_for(&self, format: Format) -> Map<String, Value> {
+        let mut map = self.to_map();
+        map.extend(parse::resolved(self, format).into_iter().map(|(key, text)| (key.to_owned(), Value::from(text))));
+        map
     }
 }
 

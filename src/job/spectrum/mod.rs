@@ -10,6 +10,7 @@ use crate::audit::level::Level;
 use crate::basis::Planner;
 use crate::condition::Stage;
 use crate::error::{Error, Finding, Result};
+use crate::job::chain;
 use crate::job::intake::{self, Intake};
 use crate::operator::Chain;
 use crate::place::Place;
@@ -97,8 +98,15 @@ impl Taken {
     fn of(input: Input, settings: &Settings) -> Result<Taken> {
         let intake = intake::take(input, settings)?;
         let record = &intake.record;
-        let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+        let (chain, remarks) = chain::of(record, settings)?;
         intake::refuse_notes(settings, &remarks)?;
+        if chain.treatments().resampling.is_some() {
+            return Err(Error::usage("--resample and --decimate: a spectrum is formed on the record's own grid")
+                .remedy("condition the record first"));
+        }
+        if (0..record.channel_count()).any(|index| !record.missing(index).is_empty()) {
+            return Err(Error::usage("--gaps smooth: a spectrum needs every sample").remedy("use --gaps fill"));
+        }
         let notes = record.findings().iter().cloned().chain(remarks).collect();
         Ok(Taken { intake, chain, notes })
     }

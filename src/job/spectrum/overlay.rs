@@ -8,6 +8,8 @@ use crate::compare::Continuation;
 use crate::condition::{Stage, default_baseline, scale_of};
 use crate::ends::Ends;
 use crate::error::Result;
+use crate::job::judgement::Page;
+use crate::job::preparation::prepare;
 use crate::job::work;
 use crate::numeric::polynomial::Polynomial;
 use crate::operator::Chain;
@@ -30,7 +32,7 @@ pub struct Subject<'a> {
 
 /// True where a chain changes a record at all.
 pub fn is_active(chain: &Chain) -> bool {
-    chain.turns() != 0 || chain.passes().iter().any(|pass| !pass.is_identity())
+    !chain.is_identity()
 }
 
 /// Everything to lay over each other for one record.
@@ -73,10 +75,13 @@ pub fn last<'a>(
 
 /// The same, named by its extension and baseline.
 fn named<'a>(channel: Channel<'a>, chain: &Chain, settings: &Settings, planner: &Planner) -> Result<Subject<'a>> {
-    let (chosen, _, outcome) = work::outcome(channel, chain, settings, planner)?;
+    let prepared = prepare(channel, &[], chain, settings, planner)?;
+    let (raw, chain) = (channel, &*prepared.chain);
+    let channel = Channel { samples: &prepared.samples, ..raw };
+    let (chosen, _, outcome) = work::outcome(channel, chain, settings, planner, Page::Unwanted)?;
     let (extension, baseline) = work::stage_reports(&chosen, chain, settings);
     let samples: Cow<'a, [f64]> =
-        if is_active(chain) { Cow::Owned(outcome.output) } else { Cow::Borrowed(channel.samples) };
+        if is_active(chain) { Cow::Owned(outcome.output) } else { Cow::Borrowed(raw.samples) };
     // A continued record has no basis of its own length: its output is shown in the cosines that the continuation ends in.
     let (ends, kind) = match chosen.continuation {
         Continuation::Symmetric(ends, kind) => (ends, kind),
@@ -89,7 +94,7 @@ fn named<'a>(channel: Channel<'a>, chain: &Chain, settings: &Settings, planner: 
         label,
         samples,
         unit: outcome.unit,
-        axis: channel.axis,
+        axis: raw.axis,
         extension: Some(extension),
         baseline: Some(baseline),
         basis: (ends, basis.polynomial().clone()),
