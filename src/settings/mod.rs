@@ -20,6 +20,7 @@ use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
 pub use layer::Layer;
+pub use parse::bytes;
 pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 

@@ -186,8 +186,11 @@ fn decimals(text: &str) -> Result<u8> {
     Ok(count)
 }
 
-/// `500MB`, `4GiB`: at least a number of bytes.
-fn bytes(text: &str) -> Result<u64> {
+/// Bytes from text such as `500MB` or `4GiB`.
+///
+/// # Errors
+/// `Usage` for anything else.
+pub fn bytes(text: &str) -> Result<u64> {
     const SIZES: [(&str, u64); 8] = [
         ("kB", 1_000),
         ("MB", 1_000_000),

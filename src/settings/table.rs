@@ -89,7 +89,7 @@ static OPTIONS: &[OptionRow] = &[
     row("missing", "TEXT", Many, Input, "A further spelling that stands for a missing value, such as -9999; may be repeated"),
     row("unit", "NAME=UNIT", Many, Input, "Unit of a channel where the header tells none or a wrong one, such as ax=g; may be repeated"),
     row("calibrate", "NAME=FACTOR[UNIT]", Many, Input, "Factor from the numbers in the file to a unit, such as ch1=98.1m/s2; may be repeated"),
-    row("memory", "SIZE", Once, Input, "Refuse, before working, what would take more memory than this: 500MB, 4GiB. Default: no bound"),
+    row("memory", "SIZE", Once, Input, "Refuse, before working, what would take more memory than this: 500MB, 4GiB. Default: no bound. For batch: of all jobs together, by default half of what is free"),
     row("allow-truncated", "", Switch, Input, "Accept a file whose end is missing, with a note"),
     row("from", "STAMP", Once, Cut, "First stamp to use, with its unit: 2.5s, 30mm"),
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
