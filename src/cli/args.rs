@@ -2,7 +2,7 @@
 
 use clap::builder::{PossibleValuesParser, StyledStr};
 use clap::{Arg, ArgAction, ArgMatches, Command};
-use endgrain::error::Result;
+use endgrain::error::{Error, Result};
 use endgrain::settings::{Arity, Group, Settings, rows};
 
 use crate::cli::{audit, compare, condition, exit};
@@ -92,6 +92,10 @@ pub fn settings(matches: &ArgMatches, groups: &[Group]) -> Result<Settings> {
                 }
             }
         }
+    }
+    if settings.fitness.is_some() && groups.contains(&Group::Judgement) {
+        return Err(Error::usage("--require: \"clean\" is asked of an audit")
+            .remedy("use within or borderline here, and audit FILE --require clean before"));
     }
     Ok(settings)
 }

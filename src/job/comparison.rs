@@ -10,6 +10,7 @@ use crate::condition::{condition, condition_continued, scale_of};
 use crate::ends::Ends;
 use crate::error::Result;
 use crate::job::intake;
+use crate::job::repairs;
 use crate::job::work;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
@@ -26,7 +27,8 @@ use crate::verdict::{CANDIDATES, ODD_ZERO};
 pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Comparison, Vec<Picture>)> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+    let (chain, mut remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+    remarks.extend(repairs::near_ends(record, &intake.repairs, &chain, &intake.outline.source.path));
     intake::refuse_notes(settings, &remarks)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();

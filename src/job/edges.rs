@@ -5,24 +5,26 @@ use std::ops::Range;
 use ndarray::s;
 
 use crate::error::{Error, Result};
-use crate::record::Record;
+use crate::job::repairs;
+use crate::record::{Record, Repair};
 use crate::regularise::RowMap;
 use crate::report::ChannelReport;
 use crate::settings::{Edges, Settings};
 use crate::write::{Cells, Extra};
 
-/// The record cut to the span that every channel trusts, with the rows it keeps; unchanged unless trimming is asked for.
+/// The record cut to the span that every channel trusts, with the rows and repairs it keeps; unchanged unless trimming is asked for.
 ///
 /// # Errors
 /// `Unsupported` when no sample is trusted by all channels.
 pub fn trimmed(
     record: Record,
     rows: RowMap,
+    repairs: Vec<Vec<Repair>>,
     channels: &[ChannelReport],
     settings: &Settings,
-) -> Result<(Record, RowMap)> {
+) -> Result<(Record, RowMap, Vec<Vec<Repair>>)> {
     if settings.edges != Edges::Trim {
-        return Ok((record, rows));
+        return Ok((record, rows, repairs));
     }
     let spans: Vec<Range<usize>> = channels.iter().map(span_of).collect();
     let first = spans.iter().map(|span| span.start).max().unwrap_or(0);
@@ -34,7 +36,7 @@ pub fn trimmed(
     let (axis, names, units, samples, findings) = record.into_parts();
     let kept = samples.slice(s![.., first..end]).to_owned();
     let record = Record::new(axis.cut(first, end - first), names, units, kept)?.with_findings(findings);
-    Ok((record, rows.cut(first, end - first)))
+    Ok((record, rows.cut(first, end - first), repairs::cut(&repairs, first, end - first)))
 }
 
 /// A column that tells which samples of a channel are trusted.

@@ -6,10 +6,11 @@ mod edges;
 mod examination;
 mod intake;
 mod origin;
+mod repairs;
 mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, plan};
+pub use conditioning::{condition, condition_parts, plan};
 pub use examination::audit;
 pub use target::Target;

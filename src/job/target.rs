@@ -3,7 +3,7 @@
 use std::io::Write;
 use std::path::{Path, PathBuf};
 
-use crate::error::Result;
+use crate::error::{Error, Result};
 use crate::write::{Overwrite, Pending};
 
 /// The outputs of a job, opened before any work so that a refusal costs nothing.
@@ -44,6 +44,11 @@ impl<'a> Target<'a> {
         }
     }
 
+    /// What happens to files that are in the way.
+    pub(super) fn overwrite(&self) -> Overwrite {
+        self.overwrite
+    }
+
     /// Opens everything; the input is protected from being overwritten unasked.
     pub(super) fn open(self, input: Option<&Path>) -> Result<Opened<'a>> {
         let inputs: Vec<&Path> = input.into_iter().collect();
@@ -58,6 +63,34 @@ impl<'a> Target<'a> {
         };
         Ok(Opened { record, sidecar, json })
     }
+}
+
+/// Opens the record and the sidecar of each of `count` parts: `clean-01.csv` to `clean-12.csv`.
+pub(super) fn open_parts<'a>(
+    path: Option<&Path>,
+    count: usize,
+    input: Option<&Path>,
+    overwrite: Overwrite,
+) -> Result<Vec<(Pending<'a>, Pending<'a>)>> {
+    let Some(path) = path else {
+        return Err(Error::usage(format!("gaps split the record into {count} parts, which one stream cannot hold"))
+            .remedy("name a file with -o; the parts are numbered after it"));
+    };
+    let inputs: Vec<&Path> = input.into_iter().collect();
+    let open = |number: usize| {
+        let path = part_of(path, number, count);
+        let sidecar = Pending::create(&sidecar_of(&path), &inputs, overwrite)?;
+        Ok((Pending::create(&path, &inputs, overwrite)?, sidecar))
+    };
+    (1..=count).map(open).collect()
+}
+
+/// `clean.csv` has the parts `clean-1.csv`, `clean-2.csv`; numbers are as wide as the last of them.
+fn part_of(path: &Path, number: usize, count: usize) -> PathBuf {
+    let width = count.to_string().len();
+    let stem = path.file_stem().unwrap_or_default().to_string_lossy();
+    let extension = path.extension().map(|e| format!(".{}", e.to_string_lossy())).unwrap_or_default();
+    path.with_file_name(format!("{stem}-{number:0width$}{extension}"))
 }
 
 /// `clean.csv` has the sidecar `clean.csv.json`.

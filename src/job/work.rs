@@ -156,6 +156,8 @@ fn report(
         trusted: edge.and_then(|edge| edge.trusted).map(|span| trusted_report(span.first, span.last, channel.axis)),
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
+        repaired: 0,
+        repairs: Vec::new(),
         parseval: outcome.parseval,
     }
 }

@@ -13,6 +13,8 @@ pub enum Gaps {
     Reject,
     /// They are interpolated where the content allows it, and are an error where it does not.
     Fill,
+    /// The record falls into the stretches between them, each a record of its own.
+    Split,
 }
 
 /// What happens to rows that repeat the stamp of the row before.
@@ -30,14 +32,17 @@ pub enum Duplicates {
 pub enum Regrid {
     /// The samples are interpolated onto an even grid by a cubic spline.
     Cubic,
+    /// The cosine series that fits the samples best is read off on an even grid: for content near the end of the band.
+    LeastSquares,
     /// The samples are taken as even: right where the stamps scatter and the sampling does not.
     Off,
 }
 
 /// The words of each choice, first the one that results show.
-const GAPS: &[(&str, Gaps)] = &[("reject", Gaps::Reject), ("fill", Gaps::Fill)];
+const GAPS: &[(&str, Gaps)] = &[("reject", Gaps::Reject), ("fill", Gaps::Fill), ("split", Gaps::Split)];
 const DUPLICATES: &[(&str, Duplicates)] = &[("reject", Duplicates::Reject), ("drop", Duplicates::Drop)];
-const REGRIDS: &[(&str, Regrid)] = &[("cubic", Regrid::Cubic), ("off", Regrid::Off)];
+const REGRIDS: &[(&str, Regrid)] =
+    &[("cubic", Regrid::Cubic), ("least-squares", Regrid::LeastSquares), ("off", Regrid::Off)];
 
 fn chosen<T: Copy>(rows: &[(&str, T)], text: &str) -> Result<T, Error> {
     rows.iter().find(|(word, _)| *word == text).map(|(_, value)| *value).ok_or_else(|| {
@@ -107,6 +112,6 @@ mod tests {
         for (text, value) in REGRIDS {
             assert_eq!((text.parse(), value.to_string().as_str()), (Ok(*value), *text));
         }
-        assert!("split".parse::<Gaps>().is_err_and(|e| e.to_string().contains("choose reject or fill")));
+        assert!("cut".parse::<Gaps>().is_err_and(|e| e.to_string().contains("choose reject or fill or split")));
     }
 }

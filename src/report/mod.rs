@@ -16,12 +16,13 @@ use crate::compare::How;
 use crate::compare::Standing;
 use crate::error::Finding;
 use crate::operator::ChainDescription;
-use crate::record::{Axis, RateSource, Source};
+use crate::record::{Axis, RateSource, Repair, Source};
+use crate::regularise::Segment;
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure};
 
 pub use comparison::{ChannelComparison, Comparison, Jump, Row};
-pub use examination::AuditReport;
+pub use examination::{AuditReport, Audited, RecordReport, RefusedReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
@@ -89,6 +90,8 @@ pub struct InputReport {
     pub format: crate::record::Format,
     /// Samples a channel after cutting and repair.
     pub samples: usize,
+    /// Which part of the file it is, where gaps split that.
+    pub part: Option<PartReport>,
     /// The axis.
     pub axis: AxisReport,
 }
@@ -102,9 +105,26 @@ impl InputReport {
             bytes: source.bytes,
             format: source.format,
             samples: axis.len(),
+            part: None,
             axis: AxisReport::new(axis),
         }
     }
+
+    /// The same, of a part of the file.
+    #[must_use]
+    pub fn with_part(self, segment: Option<Segment>) -> InputReport {
+        let part = segment.map(|segment| PartReport { number: segment.number, count: segment.count });
+        InputReport { part, ..self }
+    }
+}
+
+/// A part of a file between gaps.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+pub struct PartReport {
+    /// Number of the part, from 1.
+    pub number: usize,
+    /// Number of parts.
+    pub count: usize,
 }
 
 /// The axis of a record.
@@ -174,6 +194,10 @@ pub struct ChannelReport {
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
+    /// Samples of the input that are not as they were read.
+    pub repaired: usize,
+    /// Which they are, and what they were made from.
+    pub repairs: Vec<Repair>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }

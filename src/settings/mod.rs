@@ -37,6 +37,8 @@ pub struct Settings {
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
     pub require: Option<Adequacy>,
+    /// What an audited record must be, or the audit counts as insufficient.
+    pub fitness: Option<Fitness>,
     /// What happens to output outside the trusted span.
     pub edges: Edges,
     /// Format of the output; that of the input when `None`.
@@ -45,10 +47,19 @@ pub struct Settings {
     pub encoding: Option<String>,
     /// Fixed decimals of CSV output; shortest digits when `None`.
     pub decimals: Option<u8>,
+    /// Columns tell which samples were mended.
+    pub mark_repairs: bool,
     /// Notes are errors.
     pub strict: bool,
     /// What was set, as written.
     texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+/// What an audit can be required to find.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Fitness {
+    /// Nothing at all: no note, no fault.
+    Clean,
 }
 
 /// What happens to output outside the trusted span.

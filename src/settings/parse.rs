@@ -9,7 +9,7 @@ use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::{Edges, Settings};
+use crate::settings::{Edges, Fitness, Settings};
 use crate::unit::Unit;
 use crate::verdict::Adequacy;
 
@@ -18,6 +18,8 @@ type Words<T> = &'static [(&'static str, T)];
 
 const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
 const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline", Adequacy::Borderline)];
+/// What `--require` can ask of an audit.
+const CLEAN: &str = "clean";
 const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
@@ -49,10 +51,12 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "gaps" => settings.regularise.gaps = context(key, text.parse())?,
         "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
+        "mark-repairs" => settings.mark_repairs = switch(key, text)?,
         "strict" => settings.strict = switch(key, text)?,
         "extension" => settings.stage.extension = context(key, text.parse())?,
         "assert" => context(key, settings.assertion.add(text))?,
         "tolerance" => settings.tolerance = context(key, text.parse())?,
+        "require" if text == CLEAN => settings.fitness = Some(Fitness::Clean),
         "require" => settings.require = Some(one_of(key, text, REQUIRES)?),
         "edges" => settings.edges = one_of(key, text, EDGES)?,
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),

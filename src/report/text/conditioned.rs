@@ -39,6 +39,10 @@ pub fn summary(report: &Report) -> String {
             text.push_str(&format!("{}: {}\n", escape(&channel.name), verdict.sentence));
         }
     }
+    for channel in report.channels.iter().filter(|channel| channel.repaired > 0) {
+        let (name, count, gaps) = (escape(&channel.name), channel.repaired, channel.repairs.len());
+        text.push_str(&format!("{name}: {count} samples in {gaps} places are not measured but filled in\n"));
+    }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {
         text.push_str(&notes_text(&channel.notes));
