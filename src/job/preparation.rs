@@ -26,8 +26,6 @@ pub struct Prepared<'a> {
 
 /// Residuals of neighbours correlated more than this are no white noise.
 const CORRELATED: f64 = 0.3;
-/// Spikes listed by place.
-const LISTED: usize = 1000;
 
 /// Gaps that are left to smoothing need some.
 ///
@@ -106,7 +104,7 @@ fn despike(channel: Channel<'_>, prepared: &mut Prepared<'_>) -> Result<()> {
             prepared.samples = Cow::Owned(found.samples);
             DespikeReport {
                 count: found.spikes.len(),
-                samples: found.spikes.into_iter().take(LISTED).collect(),
+                samples: found.spikes,
                 largest: Some(found.largest),
                 how: Some(found.how),
             }
