@@ -1,5 +1,4 @@
 //! What must hold for any bytes at all: shared by the fuzz targets and the test that replays their finds.
-#![expect(dead_code, reason = "every fuzz target calls one of them")]
 
 use std::io::Cursor;
 

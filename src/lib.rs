@@ -44,3 +44,4 @@ pub mod settings;
 pub mod report;
 pub mod write;
 pub mod job;
+pub mod fleet;

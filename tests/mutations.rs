@@ -25,8 +25,10 @@ struct Counts {
 /// Bits flipped, bytes replaced, pieces and lines cut, doubled and deleted.
 fn corrupt(bytes: &[u8], random: &mut Random) -> Vec<u8> {
     let mut bytes = bytes.to_vec();
+    let at = (random.uniform() * bytes.len() as f64) as usize;
+    // Mostly a byte or two, seldom a dozen lines.
+    let length = random.logarithmic(1.0, 300.0) as usize;
     let mut below = |most: usize| (random.uniform() * most as f64) as usize;
-    let at = below(bytes.len());
     let line_of = |bytes: &[u8], at: usize| {
         let start = bytes[..at].iter().rposition(|&b| b == b'\n').map_or(0, |n| n + 1);
         let end = bytes[at..].iter().position(|&b| b == b'\n').map_or(bytes.len(), |n| at + n + 1);
@@ -37,9 +39,9 @@ fn corrupt(bytes: &[u8], random: &mut Random) -> Vec<u8> {
         1 => bytes[at] = b"0123456789.,;- \t\"eE\r\n\0\xff"[below(23)],
         2 => bytes[at] = below(256) as u8,
         3 => bytes.truncate(at),
-        4 => drop(bytes.drain(at..(at + 1 + below(12)).min(bytes.len()))),
+        4 => drop(bytes.drain(at..(at + length).min(bytes.len()))),
         5 => {
-            let piece = bytes[at..(at + 1 + below(12)).min(bytes.len())].to_vec();
+            let piece = bytes[at..(at + length).min(bytes.len())].to_vec();
             bytes.splice(at..at, piece);
         }
         6 => drop(bytes.drain(line_of(&bytes, at))),
@@ -50,7 +52,7 @@ fn corrupt(bytes: &[u8], random: &mut Random) -> Vec<u8> {
         }
         _ => {
             // Several bytes lost to a bad block.
-            let end = (at + 1 + below(6)).min(bytes.len());
+            let end = (at + length).min(bytes.len());
             bytes[at..end].fill(0);
         }
     }
@@ -81,7 +83,9 @@ struct Table {
 }
 
 fn tables() -> Vec<Table> {
-    let a = |n: usize| (n as f64 * 0.37).sin() * 3.0;
+    let mut random = Random(1);
+    let noise: Vec<f64> = (0..70).map(|_| 0.1 * random.normal()).collect();
+    let a = |n: usize| (n as f64 * 0.37).sin() * 3.0 + noise[n];
     let b = |n: usize| 9.81 + (n as f64 * 0.11).cos();
     let plain = ReadOptions::default();
     let rows = |row: &dyn Fn(usize) -> String| (0..70).map(row).collect::<String>();
@@ -140,10 +144,10 @@ fn checked(bytes: &[u8], table: &Table) -> Option<Vec<Vec<f64>>> {
     let width = 2 + usize::from(table.stamped);
     let number = |cell: &str| {
         let plain = if table.comma { cell.trim().replace(',', ".") } else { cell.trim().to_owned() };
-        plain
-            .parse::<f64>()
-            .ok()
-            .filter(|v| v.is_finite() && plain.bytes().all(|b| !b.is_ascii_alphabetic() || b"eE".contains(&b)))
+        // Fortran writes the exponents of doubles with a D.
+        let plain = plain.replace(['d', 'D'], "e");
+        let digits = plain.bytes().all(|b| !b.is_ascii_alphabetic() || b"eE".contains(&b));
+        plain.parse::<f64>().ok().filter(|v| v.is_finite() && digits)
     };
     let is_data = |row: &csv::StringRecord| row.iter().all(|cell| number(cell).is_some());
     // A header may be hurt or gone, and so may the line be that parts it from the data.

@@ -4,7 +4,7 @@ mod runs;
 
 use std::io::Write;
 
-use runs::Run;
+use runs::{Run, endgrain, fixture};
 use serde_json::Value;
 
 /// Two tones at 100 Hz in one channel, without the rows that `lost` names; stamps as `stamp` prints them.
@@ -31,8 +31,19 @@ fn codes(report: &Value) -> Vec<&str> {
 fn filled_rows_are_counted_marked_and_stamped() {
     let run = Run::new();
     run.file("in.csv", &log(400, &[200..204, 300..301], seconds));
-    let told =
-        run.ok(&["condition", "in.csv", "--gaps", "fill", "--mark-repairs", "--lowpass", "10Hz", "-o", "out.csv"]);
+    let told = run.ok(&[
+        "condition",
+        "in.csv",
+        "--gaps",
+        "fill",
+        "--mark-repairs",
+        "--lowpass",
+        "10Hz",
+        "--extension",
+        "even",
+        "-o",
+        "out.csv",
+    ]);
     assert!(told.contains("ax: 5 samples in 2 places are not measured"), "{told}");
     let text = run.text("out.csv");
     let rows: Vec<&str> = text.lines().collect();
@@ -56,10 +67,26 @@ fn filled_rows_are_counted_marked_and_stamped() {
 fn a_gap_within_reach_of_an_end_is_a_warning() {
     let run = Run::new();
     run.file("in.csv", &log(400, &[7..9], seconds));
-    let told = run.ok(&["condition", "in.csv", "--gaps", "fill", "--lowpass", "5Hz", "-o", "out.csv"]);
+    let told =
+        run.ok(&["condition", "in.csv", "--gaps", "fill", "--lowpass", "5Hz", "--extension", "even", "-o", "out.csv"]);
     assert!(told.contains("2 mended samples lie within one reach of an end"), "{told}");
     assert!(codes(&json(&run, "out.csv.json")).contains(&"repair_near_end"));
-    let told = run.fails(2, &["condition", "in.csv", "--gaps", "fill", "--strict", "--lowpass", "5Hz", "-o", "x.csv"]);
+    let told = run.fails(
+        2,
+        &[
+            "condition",
+            "in.csv",
+            "--gaps",
+            "fill",
+            "--strict",
+            "--lowpass",
+            "5Hz",
+            "--extension",
+            "even",
+            "-o",
+            "x.csv",
+        ],
+    );
     assert!(told.contains("--strict refuses notes"), "{told}");
     assert!(!run.path("x.csv").exists());
 }
@@ -110,8 +137,20 @@ fn gaps_split_into_numbered_outputs() {
     let run = Run::new();
     let whole = log(900, &[], seconds);
     run.file("in.csv", &log(900, &[200..260, 500..640], seconds));
-    let arguments =
-        ["condition", "in.csv", "--gaps", "split", "--lowpass", "10Hz", "-o", "out.csv", "--json", "all.json"];
+    let arguments = [
+        "condition",
+        "in.csv",
+        "--gaps",
+        "split",
+        "--lowpass",
+        "10Hz",
+        "--extension",
+        "even",
+        "-o",
+        "out.csv",
+        "--json",
+        "all.json",
+    ];
     let told = run.ok(&arguments);
     assert!(told.contains("in.csv, part 2 of 3: 240 samples, 100 Hz"), "{told}");
     let names = [
@@ -143,7 +182,17 @@ fn gaps_split_into_numbered_outputs() {
         let lines: Vec<&str> = whole.lines().collect();
         let alone = [&lines[..1], &lines[1 + from..1 + to]].concat().join("\n") + "\n";
         run.file("alone.csv", &alone);
-        run.ok(&["condition", "alone.csv", "--lowpass", "10Hz", "-o", "conditioned.csv", "--force"]);
+        run.ok(&[
+            "condition",
+            "alone.csv",
+            "--lowpass",
+            "10Hz",
+            "--extension",
+            "even",
+            "-o",
+            "conditioned.csv",
+            "--force",
+        ]);
         assert_eq!(run.text("conditioned.csv"), text);
     }
     assert!(run.fails(2, &["condition", "in.csv", "--gaps", "split", "-o", "-"]).contains("one stream cannot hold"));
@@ -152,7 +201,8 @@ fn gaps_split_into_numbered_outputs() {
     run.file("whole.csv", &whole);
     run.ok(&["condition", "whole.csv", "--gaps", "split", "--strict", "-o", "one.csv"]);
     assert!(run.path("one.csv").exists());
-    let dry = run.ok(&["condition", "in.csv", "--gaps", "split", "--lowpass", "10Hz", "--dry-run"]);
+    let dry =
+        run.ok(&["condition", "in.csv", "--gaps", "split", "--lowpass", "10Hz", "--extension", "even", "--dry-run"]);
     assert!(dry.is_empty());
 }
 
@@ -166,12 +216,22 @@ fn packed_files_are_read_and_never_written() {
     let packed = encoder.finish().expect("memory takes it");
     std::fs::write(run.path("in.csv.gz"), &packed).expect("a file");
     std::fs::write(run.path("cut.csv.gz"), &packed[..packed.len() / 2]).expect("a file");
-    run.ok(&["condition", "in.csv", "--lowpass", "5Hz", "-o", "plain.csv"]);
-    run.ok(&["condition", "in.csv.gz", "--lowpass", "5Hz", "-o", "packed.csv"]);
+    run.ok(&["condition", "in.csv", "--lowpass", "5Hz", "--extension", "even", "-o", "plain.csv"]);
+    run.ok(&["condition", "in.csv.gz", "--lowpass", "5Hz", "--extension", "even", "-o", "packed.csv"]);
     assert_eq!(run.text("plain.csv"), run.text("packed.csv"));
     let told = run.fails(3, &["audit", "cut.csv.gz"]);
     assert!(told.contains("cut.csv.gz: byte") && told.contains("end too early"), "{told}");
-    let told = run.ok(&["condition", "cut.csv.gz", "--allow-truncated", "--lowpass", "5Hz", "-o", "cut.csv"]);
+    let told = run.ok(&[
+        "condition",
+        "cut.csv.gz",
+        "--allow-truncated",
+        "--lowpass",
+        "5Hz",
+        "--extension",
+        "even",
+        "-o",
+        "cut.csv",
+    ]);
     assert!(told.contains("the packed data end too early"), "{told}");
     assert!(run.fails(2, &["condition", "in.csv", "-o", "out.csv.gz"]).contains("not packed"));
 }
@@ -196,13 +256,16 @@ fn an_audit_has_a_block_for_each_rate_and_can_be_required_clean() {
     assert_eq!(report["unit_sources"], serde_json::json!(["header", "header"]));
     assert!(report["estimate"]["seconds"].as_f64().is_some_and(|s| s > 0.0));
     run.ok(&["audit", "one.csv", "--require", "clean"]);
+    let demo = fixture("hoist.csv");
+    let output = endgrain(run.folder(), &["audit", &demo.to_string_lossy()]);
+    assert!(String::from_utf8_lossy(&output.stdout).contains("a run will take about"));
     run.fails(1, &["audit", "one.csv", "two.csv", "--require", "clean"]);
     assert!(run.fails(2, &["condition", "one.csv", "--require", "clean", "-o", "x.csv"]).contains("asked of an audit"));
     // One file that cannot be read does not hide the others.
     let told = run.fails(3, &["audit", "none.csv", "one.csv", "--json", "some.json"]);
     assert!(told.contains("none.csv: there is no such file"), "{told}");
     let some = json(&run, "some.json");
-    assert!(some[0]["error"].is_string() && some[1]["axis"]["rate"] == 100.0);
+    assert_eq!(some[0]["axis"]["rate"], 100.0);
 }
 
 #[test]

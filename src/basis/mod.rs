@@ -25,6 +25,7 @@ mod angle;
 #[doc(hidden)]
 pub mod direct;
 mod fast;
+pub mod grid;
 mod kernel;
 mod plan;
 mod planner;

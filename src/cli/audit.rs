@@ -1,14 +1,15 @@
 //! `audit`: what is in a record and whether it is fit.
 
 use std::io::Write;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::builder::PossibleValuesParser;
-use clap::{Arg, ArgAction, ArgMatches, Command};
-use endgrain::error::{Error, Kind, Result};
+use clap::{Arg, ArgMatches, Command};
+use endgrain::error::{Error, Result};
+use endgrain::place::Place;
 use endgrain::settings::Group;
-use endgrain::write::{Overwrite, Pending};
+use endgrain::write::Pending;
 use endgrain::{job, report};
 
 use crate::cli::{args, exit, stream};
@@ -41,60 +42,54 @@ pub fn command() -> Command {
                 .help_heading(Group::Judgement.heading())
                 .help("Exit with 1 unless nothing at all was noted: no gap, guess, clipping, spike or dead channel"),
         )
-        .arg(
-            Arg::new("force")
-                .long("force")
-                .action(ArgAction::SetTrue)
-                .help_heading("Report")
-                .help("Replace the JSON file that is in the way"),
-        )
+        .arg(args::json())
+        .arg(args::force("Report"))
         .after_help(exit::HELP)
 }
 
-/// Runs it: one block a file. A file that cannot be read is told and left out; the exit code is that of the first.
+/// Runs it: one block a file. A file that cannot be audited is told and passed over; the first such fault decides the exit
+/// code.
 ///
 /// # Errors
-/// Whatever stops the outputs.
+/// Whatever stops the report from being written.
 pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
-    let mut settings = args::settings(matches, GROUPS)?;
-    if let Some(what) = matches.get_one::<String>("require") {
-        settings.set("require", what)?;
-    }
+    let files: Vec<&String> = matches.get_many::<String>("input").into_iter().flatten().collect();
+    let inputs: Vec<&Path> = files.iter().map(Path::new).collect();
     let json = matches.get_one::<String>("json").map(PathBuf::from);
-    let overwrite = if matches.get_flag("force") { Overwrite::Force } else { Overwrite::Refuse };
-    let to_file = json.as_ref().filter(|path| !stream::is_stdout(path));
-    let file = to_file.map(|path| Pending::create(path, &[], overwrite)).transpose()?;
-    let mut audited = Vec::new();
-    let mut failed: Option<Error> = None;
-    let mut met = true;
-    for path in matches.get_many::<String>("input").into_iter().flatten() {
-        match stream::input(path).and_then(|input| job::audit(input, &settings)) {
+    let mut output = match &json {
+        Some(path) if !stream::is_stdout(path) => Some(Pending::create(path, &inputs, args::overwrite(matches))?),
+        _ => None,
+    };
+    let (mut reports, mut outcome, mut met) = (Vec::new(), ExitCode::SUCCESS, true);
+    for file in files {
+        let mut settings = args::settings(matches, GROUPS, Some(file))?;
+        if let Some(what) = matches.get_one::<String>("require") {
+            settings.set("require", what)?;
+        }
+        match stream::input(file).and_then(|input| job::audit(input, &settings)) {
             Ok(report) => {
                 if json.is_none() && !matches.get_flag("quiet") {
                     stream::print(&report::audit_text(&report))?;
                 }
                 met &= report.requirement_met;
-                audited.push(report::Audited::Read(Box::new(report)));
+                reports.push(report);
             }
-            Err(error) if error.kind() == Kind::Closed => return Err(error),
             Err(error) => {
                 stream::complain(&error);
-                audited.push(report::Audited::refused(path, &error));
-                failed.get_or_insert(error);
+                if outcome == ExitCode::SUCCESS {
+                    outcome = exit::code(&error);
+                }
             }
         }
     }
-    match (file, &json) {
-        (Some(mut out), _) => {
-            out.write_all(report::to_json(&audited)?.as_bytes()).map_err(Error::from)?;
-            out.finish()?;
+    match output.take() {
+        Some(mut output) => {
+            let text = report::to_json(&reports)?;
+            output.write_all(text.as_bytes()).map_err(|error| Error::from(error).at(Place::file(output.label())))?;
+            output.finish()?;
         }
-        (None, Some(_)) => stream::print(&report::to_json(&audited)?)?,
-        (None, None) => {}
+        None if json.is_some() => stream::print(&report::to_json(&reports)?)?,
+        None => {}
     }
-    Ok(match failed {
-        Some(error) => exit::code(&error),
-        None if met => ExitCode::SUCCESS,
-        None => ExitCode::from(exit::NOT_MET),
-    })
+    Ok(if met || outcome != ExitCode::SUCCESS { outcome } else { ExitCode::from(exit::NOT_MET) })
 }

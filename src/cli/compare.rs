@@ -1,13 +1,15 @@
 //! `compare`: every extension side by side for the wanted operators.
 
 use std::io::Write;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
-use clap::{Arg, ArgAction, ArgMatches, Command};
+use clap::{Arg, ArgMatches, Command};
 use endgrain::error::{Error, Result};
+use endgrain::job::PageFiles;
+use endgrain::place::Place;
 use endgrain::settings::Group;
-use endgrain::write::{Overwrite, Pending};
+use endgrain::write::{Durability, Pending, finish_together, refuse_twins};
 use endgrain::{job, report};
 
 use crate::cli::{args, exit, stream};
@@ -19,6 +21,7 @@ Examples:
   endgrain compare log.csv --lowpass 40Hz
   endgrain compare log.csv --channel ax --bandpass 2Hz..40Hz --tolerance 5%
   endgrain compare profile.csv --lowpass 0.8mm --shape gaussian --plot ends.svg
+  endgrain compare log.csv --lowpass 40Hz --html ends.html
   endgrain compare log.csv --lowpass 40Hz --require within --json
 ";
 
@@ -38,13 +41,9 @@ pub fn command() -> Command {
             .help_heading("Report")
             .help("Draw the continuations past both ends and the outputs over the edges, as SVG"),
     )
-    .arg(
-        Arg::new("force")
-            .long("force")
-            .action(ArgAction::SetTrue)
-            .help_heading("Report")
-            .help("Replace files that are in the way"),
-    )
+    .arg(args::json())
+    .arg(args::force("Report"))
+    .arg(args::page())
     .after_help(exit::HELP)
 }
 
@@ -53,21 +52,31 @@ pub fn command() -> Command {
 /// # Errors
 /// Whatever stops the job.
 pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
-    let settings = args::settings(matches, GROUPS)?;
     let Some(file) = matches.get_one::<String>("input") else { return Err(Error::usage("no input file")) };
-    let overwrite = if matches.get_flag("force") { Overwrite::Force } else { Overwrite::Refuse };
+    let settings = args::settings(matches, GROUPS, Some(file))?;
     let plot = matches.get_one::<String>("plot").map(PathBuf::from);
     let json = matches.get_one::<String>("json").map(PathBuf::from);
-    let open = |path: &PathBuf| Pending::create(path, &[], overwrite);
-    let plot = plot.as_ref().map(open).transpose()?;
-    let json_file = json.as_ref().filter(|path| !stream::is_stdout(path)).map(open).transpose()?;
-    let (comparison, pictures) = job::compare(stream::input(file)?, &settings, plot.is_some())?;
+    let json_path = json.as_deref().filter(|path| !stream::is_stdout(path));
+    let page = matches.get_one::<String>("html").map(Path::new);
+    let (input, overwrite) = ([Path::new(file)], args::overwrite(matches));
+    let open = |path: &Path| Pending::create(path, &input, overwrite);
+    refuse_twins(&plot.as_deref().into_iter().chain(json_path).chain(page).collect::<Vec<_>>())?;
+    let plot = plot.as_deref().map(open).transpose()?;
+    let json_file = json_path.map(open).transpose()?;
+    let page = page.map(|path| PageFiles::create(path, &input, overwrite)).transpose()?;
+    let wanted = plot.is_some() || page.is_some();
+    let (comparison, pictures) = job::compare(stream::input(file)?, &settings, wanted)?;
+    let mut outputs = Vec::new();
+    if let Some(page) = page {
+        outputs.extend(page.fill(&comparison, &report::page::comparison_page(&comparison, &pictures))?);
+    }
     for (output, text) in [(plot, report::svg(&pictures)), (json_file, report::to_json(&comparison))] {
         if let Some(mut output) = output {
-            output.write_all(text?.as_bytes()).map_err(Error::from)?;
-            output.finish()?;
+            output.write_all(text?.as_bytes()).map_err(|error| Error::from(error).at(Place::file(output.label())))?;
+            outputs.push(output);
         }
     }
+    finish_together(outputs, Durability::Handed)?;
     if json.as_deref().is_some_and(stream::is_stdout) {
         stream::print(&report::to_json(&comparison)?)?;
     } else if !matches.get_flag("quiet") {

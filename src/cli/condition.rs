@@ -1,6 +1,6 @@
 //! `condition`: the main job on one record.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::{Arg, ArgAction, ArgMatches, Command};
@@ -9,7 +9,7 @@ use endgrain::job::{self, Target};
 use endgrain::regularise::Gaps;
 use endgrain::report;
 use endgrain::settings::Group;
-use endgrain::write::Overwrite;
+use endgrain::write::Durability;
 
 use crate::cli::{args, exit, stream};
 
@@ -24,8 +24,10 @@ Examples:
   endgrain condition profile.csv --lowpass 0.8mm --shape gaussian -o waviness.csv
   endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
   logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
+  endgrain condition log.csv --lowpass 40Hz -o clean.csv --html report.html
   endgrain condition outage.csv --gaps split --lowpass 40Hz -o clean.csv
   endgrain condition log.csv --lowpass 40Hz --dry-run
+  endgrain condition log.csv --recipe clean.csv.json -o again.csv
 ";
 
 /// The subcommand.
@@ -46,20 +48,24 @@ pub fn command() -> Command {
             .help_heading(Group::Output.heading())
             .help("Where the result goes, '-' for standard output; the JSON sidecar is OUT with .json appended"),
     )
+    .arg(args::json())
+    .arg(args::force(Group::Output.heading()))
     .arg(
-        Arg::new("force")
-            .long("force")
+        Arg::new("sync")
+            .long("sync")
             .action(ArgAction::SetTrue)
             .help_heading(Group::Output.heading())
-            .help("Replace files that are in the way"),
+            .help("Wait until the outputs are on the disk: a power failure right after then loses nothing"),
     )
     .arg(
         Arg::new("dry-run")
             .long("dry-run")
             .action(ArgAction::SetTrue)
+            .conflicts_with("json")
             .help_heading(Group::Output.heading())
             .help("Print the resolved plan and the gain at and around each corner; write nothing"),
     )
+    .arg(args::page())
     .after_help(exit::HELP)
 }
 
@@ -68,8 +74,8 @@ pub fn command() -> Command {
 /// # Errors
 /// Whatever stops the job.
 pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
-    let settings = args::settings(matches, GROUPS)?;
     let Some(file) = matches.get_one::<String>("input") else { return Err(Error::usage("no input file")) };
+    let settings = args::settings(matches, GROUPS, Some(file))?;
     let json = matches.get_one::<String>("json").map(PathBuf::from);
     let quiet = matches.get_flag("quiet");
     if matches.get_flag("dry-run") {
@@ -86,13 +92,19 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         return Err(Error::usage("the record and the JSON cannot both go to standard output")
             .remedy("give one of them a file name"));
     }
-    let overwrite = if matches.get_flag("force") { Overwrite::Force } else { Overwrite::Refuse };
+    let overwrite = args::overwrite(matches);
+    let durability = if matches.get_flag("sync") { Durability::OnDisk } else { Durability::Handed };
     let json_file = json.as_deref().filter(|path| !stream::is_stdout(path));
     let target = if to_stdout {
         Target::stream(Box::new(std::io::stdout()), json_file, overwrite)
     } else {
         Target::file(&output, json_file, overwrite)
     };
+    let target = match matches.get_one::<String>("html") {
+        Some(page) => target.with_page(Path::new(page)),
+        None => target,
+    };
+    let target = target.durable(durability);
     let split = settings.regularise.gaps == Gaps::Split;
     let reports = if split {
         job::condition_parts(stream::input(file)?, target, &settings)?

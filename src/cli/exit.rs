@@ -7,6 +7,12 @@ use endgrain::error::{Error, Kind};
 /// Complete, but a requirement was not met.
 pub const NOT_MET: u8 = 1;
 
+/// A batch is complete, but some records failed.
+pub const SOME_FAILED: u8 = 5;
+
+/// Interrupted: run it again.
+pub const INTERRUPTED: u8 = 75;
+
 /// The exit code of an error.
 pub fn code(error: &Error) -> ExitCode {
     ExitCode::from(match error.kind() {
@@ -27,5 +33,6 @@ Exit codes:
   2   the request contradicts itself or asks for something unknown
   3   the input is unreadable or malformed
   4   the data cannot support the request
+  5   a batch is complete, but some records failed
   74  input/output: disk full, permission, a file in the way
   75  interrupted or temporary: run it again";

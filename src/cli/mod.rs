@@ -2,9 +2,12 @@
 
 mod args;
 mod audit;
+mod batch;
 mod compare;
 mod condition;
 mod exit;
+mod machine;
+mod progress;
 mod stream;
 
 use std::process::ExitCode;
@@ -19,6 +22,7 @@ pub fn run() -> ExitCode {
         Some(("condition", matches)) => condition::run(matches),
         Some(("compare", matches)) => compare::run(matches),
         Some(("audit", matches)) => audit::run(matches),
+        Some(("batch", matches)) => batch::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };
     match outcome {

@@ -2,6 +2,7 @@
 
 use std::io::{self, IsTerminal, Read, Write};
 use std::path::{Path, PathBuf};
+use std::sync::atomic::{AtomicBool, Ordering};
 
 use endgrain::error::{Error, Result};
 use endgrain::read::Input;
@@ -49,12 +50,27 @@ pub fn complain(error: &Error) {
     tell(&format!("endgrain: {error}\n"));
 }
 
+/// Set by the first interrupt of a batch: it ends after the records in work.
+pub static STOP: AtomicBool = AtomicBool::new(false);
+
+/// True while an interrupt means to end in good order.
+static ORDERLY: AtomicBool = AtomicBool::new(false);
+
+/// From now on the first interrupt sets `STOP`; a second one ends at once.
+pub fn end_orderly_on_interrupt() {
+    ORDERLY.store(true, Ordering::SeqCst);
+}
+
 /// On an interrupt or a request to end: remove what is half written, then stop with 75 (run it again).
 pub fn discard_partial_files_on_interrupt() {
     // Without a handler the default action ends the program too, only less tidily: a failure here changes no result.
     let _ = ctrlc::set_handler(|| {
+        if ORDERLY.load(Ordering::SeqCst) && !STOP.swap(true, Ordering::SeqCst) {
+            tell("endgrain: interrupted; ending after the records in work (again: at once)\n");
+            return;
+        }
         write::discard_pending();
-        tell("endgrain: interrupted; nothing was written\n");
+        tell("endgrain: interrupted; no partial file is left\n");
         std::process::exit(75);
     });
 }

@@ -4,6 +4,8 @@ mod assertion;
 mod choice;
 mod tolerance;
 
+use realfft::num_complex::Complex;
+
 use crate::baseline::{EndEstimates, Side};
 use crate::basis::Planner;
 use crate::condition::{condition, condition_continued, scaling};
@@ -45,6 +47,8 @@ pub fn judge(
     tolerance: &ToleranceRequest,
     planner: &Planner,
 ) -> Result<Judgement> {
+    let own = chain.on_own_grid();
+    let chain = &own;
     let samples = channel.samples;
     let len = samples.len();
     let output_unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
@@ -58,7 +62,16 @@ pub fn judge(
         let structure = verdict::Structure::default();
         return Ok(Judgement { verdict: None, estimates, forecast: None, deviation: Default::default(), structure });
     };
-    let response = Response::of(Shape { gain: &gain, turns: chain.turns(), shortest_wavelength }, len);
+    let shape = Shape { gain: &gain, turns: chain.turns(), shortest_wavelength };
+    let response = if chain.is_real() {
+        Response::of(shape, len)
+    } else {
+        let phase = |f: f64| {
+            let response = chain.response(f);
+            if response.norm() > 0.0 { response / response.norm() } else { Complex::new(1.0, 0.0) }
+        };
+        Response::with_phase(shape, &phase, len)
+    };
     let estimates = verdict::estimates(samples, &response, noise);
     let block = Evidence::block_length(shortest_wavelength);
     let evidence = Evidence::gather(samples, block);
@@ -81,7 +94,7 @@ pub fn judge(
         estimates,
         response: &response,
         output: &output,
-        formed: if chain.passes().len() > 1 { Formed::InSeveral } else { Formed::InOnePass },
+        formed: if chain.passes().len() > 1 || !chain.is_real() { Formed::InSeveral } else { Formed::InOnePass },
         tolerance,
     };
     let verdict = Verdict::of(&case, FlatEnds::Ignored);

@@ -4,6 +4,7 @@ use std::fmt;
 use std::str::FromStr;
 
 use crate::error::{Error, Result};
+use crate::numeric::leading_number;
 use crate::place::escape;
 use crate::unit::Unit;
 use crate::verdict::Tolerance;
@@ -32,13 +33,7 @@ impl FromStr for ToleranceRequest {
             Error::usage(format!("not a tolerance: \"{}\"", escape(text)))
                 .remedy("write a share of the output's standard deviation as 10%, or a value with its unit as 0.02m/s")
         };
-        let text = text.trim();
-        let split = (1..=text.len())
-            .rev()
-            .find(|&n| text.is_char_boundary(n) && text[..n].trim().parse::<f64>().is_ok_and(f64::is_finite))
-            .ok_or_else(wrong)?;
-        let value: f64 = text[..split].trim().parse().map_err(|_| wrong())?;
-        let unit = text[split..].trim();
+        let (value, unit) = leading_number::split(text).ok_or_else(wrong)?;
         if value <= 0.0 || unit.is_empty() {
             return Err(wrong());
         }
@@ -90,7 +85,7 @@ mod tests {
         let Ok(Tolerance::Absolute(value)) = mm.resolve(&Unit::parse("m/s")) else { panic!("absolute") };
         assert!((value - 0.002).abs() < 1e-15);
         assert!(mm.resolve(&Unit::parse("V")).is_err());
-        for text in ["", "10", "-5%", "nan%", "x", "%"] {
+        for text in ["", "10", "-5%", "nan%", "x", "%", "1e400%", "1e400m/s", "5 5%"] {
             assert!(parse(text).is_err(), "{text}");
         }
     }

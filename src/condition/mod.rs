@@ -1,18 +1,22 @@
 //! The main job: a channel, its assumed continuation and a chain of operators make a conditioned channel.
 
 mod choice;
+mod despike;
 mod pass;
+mod smoother;
 
 use crate::baseline::{Baseline, BaselineKind, Scale};
 use crate::basis::Planner;
 use crate::ends::{Ends, Parity, Seat};
 use crate::error::Result;
-use crate::operator::Chain;
+use crate::operator::{Chain, PassEnds};
 use crate::record::Channel;
 use crate::unit::Unit;
 
 pub use choice::{ExtensionChoice, Stage};
+pub use despike::{Despiked, despike};
 pub use pass::{Passed, apply};
+pub use smoother::{Robust, Smoother, Validated, bridged, freedom};
 
 /// What conditioning made of one channel: the only input of metrics and reports.
 #[derive(Debug, Clone)]
@@ -29,6 +33,8 @@ pub struct Outcome {
     pub scale: Scale,
     /// Relative energy difference between remainder and coefficients in the first pass: rounding only.
     pub parseval: f64,
+    /// Samples that robust smoothing gave no weight, continuation included; `None` without it.
+    pub outliers: Option<usize>,
 }
 
 /// The fit widths for a record of `len` samples under a chain.
@@ -43,11 +49,13 @@ pub fn scale_of(chain: &Chain, len: usize) -> Scale {
 }
 
 /// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `slopes` for
-/// integrals and derivatives with even ends (their kink is what an even extension adds), otherwise none.
+/// integrals, derivatives and resampling with even ends (their kink is what an even extension adds), otherwise none.
 pub fn default_baseline(ends: Ends, chain: &Chain) -> BaselineKind {
     match ends {
         Ends::Mirror { left, right, .. } if left != right => BaselineKind::Level(None),
-        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Slopes,
+        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 || chain.treatments().resampling.is_some() => {
+            BaselineKind::Slopes
+        }
         _ => BaselineKind::None,
     }
 }
@@ -68,8 +76,28 @@ pub fn condition(
     planner: &Planner,
 ) -> Result<Outcome> {
     let scale = scale_of(chain, channel.samples.len());
-    let baseline = Baseline::fit(baseline, channel.samples, ends, scale)?;
+    let baseline = fitted(baseline, channel.samples, chain, ends, scale, planner)?;
     condition_with(channel, chain, ends, baseline, scale, planner)
+}
+
+/// The baseline of a run. The end slopes that resampling needs are those of the band that is kept: a strong tone above it
+/// would tilt them, so they are measured after its low-pass.
+fn fitted(
+    kind: BaselineKind,
+    samples: &[f64],
+    chain: &Chain,
+    ends: Ends,
+    scale: Scale,
+    planner: &Planner,
+) -> Result<Baseline> {
+    let resamples = chain.treatments().resampling.is_some();
+    if !(resamples && kind == BaselineKind::Slopes && chain.turns() == 0 && chain.is_real()) {
+        return Baseline::fit(kind, samples, ends, scale);
+    }
+    let nothing = Baseline::fit(BaselineKind::None, samples, ends, scale)?;
+    let (kept, _) = run(samples, &chain.on_own_grid(), ends, &nothing, scale, 0, 1.0, planner)?;
+    let found = Baseline::fit(kind, &kept.output, ends, scale)?;
+    Ok(Baseline::exact(kind, found.polynomial().clone()))
 }
 
 /// As `condition`, with a baseline that is already known.
@@ -85,8 +113,9 @@ pub fn condition_with(
     planner: &Planner,
 ) -> Result<Outcome> {
     let (unit, factor) = scaling(channel, chain);
-    let (output, parseval) = run(channel.samples, chain, ends, &baseline, 0.0, factor, planner)?;
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    let (Passed { output, parseval }, outliers) =
+        run(channel.samples, chain, ends, &baseline, scale, 0, factor, planner)?;
+    Ok(Outcome { output, unit, ends, baseline, scale, parseval, outliers })
 }
 
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
@@ -107,13 +136,16 @@ pub fn condition_continued(
     let ends = Ends::EVEN.seated(seat);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
-    let baseline = Baseline::fit(default_baseline(ends, chain), &continued, ends, scale)?;
+    let baseline = fitted(default_baseline(ends, chain), &continued, chain, ends, scale, planner)?;
     let (unit, factor) = scaling(channel, chain);
-    let rest = left.len() as f64;
-    let (mut output, parseval) = run(&continued, chain, ends, &baseline, rest, factor, planner)?;
-    output.truncate(left.len() + channel.samples.len());
-    output.drain(..left.len());
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval })
+    let lead = left.len();
+    let (Passed { mut output, parseval }, outliers) =
+        run(&continued, chain, ends, &baseline, scale, lead, factor, planner)?;
+    if chain.treatments().resampling.is_none() {
+        output.truncate(lead + channel.samples.len());
+        output.drain(..lead);
+    }
+    Ok(Outcome { output, unit, ends, baseline, scale, parseval, outliers })
 }
 
 /// Unit of the output, and the factor that brings numbers formed in steps into it.
@@ -123,35 +155,60 @@ pub fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     (unit, channel.axis.step_base().powi(-turns) * factor)
 }
 
-/// All passes of a chain; the output and the Parseval check of the first.
+/// All passes of a chain: the output with the Parseval check of the first, and the samples that robust smoothing gave no
+/// weight.
+#[expect(clippy::too_many_arguments, reason = "what a run is made of, in one place")]
 fn run(
     samples: &[f64],
     chain: &Chain,
     ends: Ends,
     baseline: &Baseline,
-    rest: f64,
+    scale: Scale,
+    lead: usize,
     factor: f64,
     planner: &Planner,
-) -> Result<(Vec<f64>, f64)> {
-    let mut parseval = 0.0;
-    let mut output: Option<Vec<f64>> = None;
+) -> Result<(Passed, Option<usize>)> {
+    let mut so_far: Option<Passed> = None;
+    let mut outliers = None;
     for pass in chain.passes().iter().filter(|pass| !pass.is_identity()) {
-        let passed = match &output {
-            None => {
-                let mut passed = apply(samples, ends, baseline, pass, rest, planner)?;
-                parseval = passed.parseval;
-                if factor != 1.0 {
-                    passed.output.iter_mut().for_each(|v| *v *= factor);
-                }
-                passed
-            }
-            Some(so_far) => {
+        let input = so_far.as_ref().map_or(samples, |passed| passed.output.as_slice());
+        let (ends, baseline) = match pass.ends() {
+            PassEnds::Chosen if so_far.is_none() => (ends, baseline.clone()),
+            PassEnds::Chosen => (ends, Baseline::fit(baseline.kind(), input, ends, scale)?),
+            PassEnds::EvenWithoutBaseline => {
                 let even = Ends::EVEN.seated(ends.seat());
-                let nothing = Baseline::fit(BaselineKind::None, so_far, even, Scale::assumed(so_far.len()))?;
-                apply(so_far, even, &nothing, pass, rest, planner)?
+                (even, Baseline::fit(BaselineKind::None, input, even, Scale::assumed(input.len()))?)
             }
         };
-        output = Some(passed.output);
+        let mut passed = match pass.robust() {
+            Some(strength) => {
+                let (passed, count) = robust(input, ends, &baseline, strength, planner)?;
+                outliers = Some(count);
+                passed
+            }
+            None => apply(input, ends, &baseline, pass, lead, planner)?,
+        };
+        if pass.turns() != 0 && factor != 1.0 {
+            passed.output.iter_mut().for_each(|v| *v *= factor);
+        }
+        passed.parseval = so_far.map_or(passed.parseval, |first| first.parseval);
+        so_far = Some(passed);
     }
-    Ok((output.unwrap_or_else(|| samples.to_vec()), parseval))
+    let unchanged = || Passed { output: samples.to_vec(), parseval: 0.0 };
+    Ok((so_far.unwrap_or_else(unchanged), outliers))
+}
+
+/// Robust smoothing of what a baseline leaves.
+fn robust(
+    samples: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    strength: f64,
+    planner: &Planner,
+) -> Result<(Passed, usize)> {
+    let at = |n: usize| baseline.polynomial().at(n as f64 + ends.first_position());
+    let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
+    let Robust { values, weights, .. } = Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, Some(strength));
+    let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
+    Ok((Passed { output, parseval: 0.0 }, weights.iter().filter(|w| **w == 0.0).count()))
 }

@@ -1,12 +1,15 @@
 //! One pass of the chain over one channel: baseline off, transform, multiply, back, baseline carried and added.
 
+use realfft::num_complex::Complex;
+
 use crate::baseline::Baseline;
+use crate::basis::grid::{self, Grid};
 use crate::basis::{Planner, series};
 use crate::ends::{Ends, Parity};
 use crate::error::Result;
 use crate::numeric::polynomial::Polynomial;
 use crate::numeric::sum;
-use crate::operator::Pass;
+use crate::operator::{Pass, Resampling, Start};
 
 /// What a pass made of a record.
 #[derive(Debug, Clone)]
@@ -17,10 +20,12 @@ pub struct Passed {
     pub parseval: f64,
 }
 
-/// Applies `pass` to `samples` under `ends` after splitting `baseline` off.
+/// Applies `pass` to `samples` under `ends` after splitting `baseline` off. The channel proper begins `lead` samples in:
+/// what stands before continues it.
 ///
 /// Derivatives are per step and integrals in steps: the caller multiplies by step^(-turns). Integrals start at rest: the
-/// first is zero at `rest` (in steps from the left mirror), and so is the second.
+/// first is zero `lead` steps from the left mirror, and so is the second. A pass that resamples gives the values of the
+/// channel's new grid alone.
 ///
 /// # Errors
 /// `Unsupported` for a record of no samples.
@@ -29,7 +34,7 @@ pub fn apply(
     ends: Ends,
     baseline: &Baseline,
     pass: &Pass,
-    rest: f64,
+    lead: usize,
     planner: &Planner,
 ) -> Result<Passed> {
     let len = samples.len();
@@ -56,15 +61,37 @@ pub fn apply(
         carried = carried.plus_constant(work[0] / constant_norm(ends, len));
         work[0] = 0.0;
     }
-    multiply(&mut work, ends, pass);
+    let mut turned_work = (!pass.is_real()).then(|| work.clone());
+    multiply(&mut work, turned_work.as_deref_mut(), ends, pass);
     let mut polynomial = turned(pass.carry(&carried), turns);
     if turns < 0 {
-        polynomial = from_rest(polynomial, &work, ends, turns, rest);
+        polynomial = from_rest(polynomial, &work, ends, turns, lead as f64);
     }
-    if turns.rem_euclid(2) == 1 {
+    let odd = turns.rem_euclid(2) == 1;
+    if let Some(resampling) = pass.resampling() {
+        let places = places(ends, resampling, lead);
+        let nothing = vec![0.0; if odd { len } else { 0 }];
+        let (straight, turned) = match (odd, &turned_work) {
+            (true, _) => (nothing.as_slice(), Some(work.as_slice())),
+            (false, other) => (work.as_slice(), other.as_deref()),
+        };
+        let mut output = grid::on_grid(ends, len, straight, turned, places);
+        if !polynomial.is_zero() {
+            for (m, value) in output.iter_mut().enumerate() {
+                let numerator = places.first + m as i128 * i128::from(places.step);
+                *value += polynomial.at(numerator as f64 / places.parts as f64);
+            }
+        }
+        return Ok(Passed { output, parseval });
+    }
+    if odd {
         plan.inverse_turned(&mut work, &mut scratch);
     } else {
         plan.inverse(&mut work, &mut scratch);
+    }
+    if let Some(mut other) = turned_work {
+        plan.inverse_turned(&mut other, &mut scratch);
+        work.iter_mut().zip(&other).for_each(|(value, other)| *value += other);
     }
     if !polynomial.is_zero() {
         for (n, value) in work.iter_mut().enumerate() {
@@ -72,6 +99,19 @@ pub fn apply(
         }
     }
     Ok(Passed { output: work, parseval })
+}
+
+/// Where the samples of a new grid stand, counted from the left mirror of a record that begins `lead` samples earlier.
+fn places(ends: Ends, resampling: Resampling, lead: usize) -> Grid {
+    let (over, under) = (resampling.ratio.numerator, resampling.ratio.denominator);
+    // Twice the positions, in parts of 1/under of a step: all whole numbers.
+    let twice_first = (2.0 * ends.first_position()) as i128;
+    let origin = (twice_first + 2 * lead as i128) * i128::from(under);
+    let shift = match resampling.start {
+        Start::Centre => i128::from(over) - i128::from(under),
+        Start::Kept => 0,
+    };
+    Grid { first: origin + shift, step: 2 * over, parts: 2 * under, count: resampling.count }
 }
 
 /// Sum of w x^2 with the weight 1/2 on even whole-sample mirrors.
@@ -103,23 +143,25 @@ fn is_cosine(ends: Ends, k: usize) -> bool {
     }
 }
 
-/// Multiplies every coefficient by the gain and by the power of angular frequency (per step) that the turns ask for.
+/// Multiplies every coefficient by the response and by the power of angular frequency (per step) that the turns ask for.
 ///
 /// A derivative takes a cosine to -omega sine and a sine to +omega cosine; an integral takes a cosine to +1/omega sine
-/// and a sine to -1/omega cosine; two of either multiply by -omega^2 or -1/omega^2.
-fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
+/// and a sine to -1/omega cosine; two of either multiply by -omega^2 or -1/omega^2. A response R + i I takes a cosine to
+/// R cosine - I sine and a sine to R sine + I cosine: `turned` gets the second terms. Only passes without turns have one.
+fn multiply(coefficients: &mut [f64], mut turned: Option<&mut [f64]>, ends: Ends, pass: &Pass) {
     let len = coefficients.len();
     let turns = pass.turns();
-    let (mut last_frequency, mut last_gain) = (f64::NAN, 0.0);
-    for (k, c) in coefficients.iter_mut().enumerate() {
+    let (mut last_frequency, mut last_gain) = (f64::NAN, Complex::default());
+    for k in 0..len {
         let frequency = ends.frequency(len, k);
         // Periodic functions come in pairs of one frequency: the gain is worked out once.
         if frequency != last_frequency {
             let omega = std::f64::consts::TAU * frequency;
             last_gain = match turns {
-                0 => pass.gain(frequency),
-                _ if frequency == 0.0 => 0.0,
-                _ => pass.gain(frequency) * omega.powi(turns),
+                0 if turned.is_some() => pass.response(frequency),
+                0 => Complex::new(pass.gain(frequency), 0.0),
+                _ if frequency == 0.0 => Complex::default(),
+                _ => Complex::new(pass.gain(frequency) * omega.powi(turns), 0.0),
             };
             last_frequency = frequency;
         }
@@ -130,7 +172,10 @@ fn multiply(coefficients: &mut [f64], ends: Ends, pass: &Pass) {
             -1 if !is_cosine(ends, k) => -1.0,
             _ => 1.0,
         };
-        *c *= sign * last_gain;
+        coefficients[k] *= sign * last_gain.re;
+        if let Some(turned) = turned.as_deref_mut() {
+            turned[k] *= if is_cosine(ends, k) { -last_gain.im } else { last_gain.im };
+        }
     }
 }
 

@@ -38,22 +38,23 @@ impl Forecast {
         let pad = response.reach().max(8).min(len);
         let steps = pad.div_ceil(block);
         let zone = response.zone(len);
-        let sight = Sight::of(response, zone, steps, block);
-        let sides = [Side::Left, Side::Right].map(|side| evidence.at(side));
-        let scores = sides.map(|end| Backcasts::of(end, &sight, steps));
+        let both = [Side::Left, Side::Right];
+        let sights = both.map(|side| Sight::of(response, side, zone, steps, block));
+        let sides = both.map(|side| evidence.at(side));
+        let scores = [0, 1].map(|side| Backcasts::of(sides[side], &sights[side], steps));
         let weights = weights(&scores, sides[0].past.len());
         let blocks = [0, 1].map(|side| mixture(&sides[side].fits.continued(&sides[side].past, steps), &weights[side]));
         let farthest = response.trimmable(len).max(zone);
         // Rounding to the quantisation step is the least that is unforeseen.
         let rounding = evidence.quantum().powi(2) / (12.0 * block as f64);
-        let by_innovations = sides.map(|end| {
-            let (predictor, innovation) = end.fits.innovations();
-            variance::profile(&predictor, innovation.max(rounding), response, block, steps, farthest)
+        let by_innovations = both.map(|side| {
+            let (predictor, innovation) = evidence.at(side).fits.innovations();
+            variance::profile(&predictor, innovation.max(rounding), response, side, block, steps, farthest)
         });
-        let by_backcasts = [0, 1].map(|side| scores[side].variances(&sight, &weights[side]));
-        let wide = Sight::of(response, farthest, steps, block);
+        let by_backcasts = [0, 1].map(|side| scores[side].variances(&sights[side], &weights[side]));
+        let wide = both.map(|side| Sight::of(response, side, farthest, steps, block));
         let profiles = [0, 1].map(|side| {
-            let backcast = wide.spread(&scores[side].variances(&wide, &weights[side]), farthest);
+            let backcast = wide[side].spread(&scores[side].variances(&wide[side], &weights[side]), farthest);
             by_innovations[side].iter().zip(&backcast).map(|(a, b)| 0.5 * (a + b)).collect()
         });
         Forecast {
@@ -112,10 +113,11 @@ struct Sight {
 }
 
 impl Sight {
-    fn of(response: &Response, zone: usize, steps: usize, block: usize) -> Sight {
+    fn of(response: &Response, side: Side, zone: usize, steps: usize, block: usize) -> Sight {
         let place = |k: usize| k * (zone - 1) / (PLACES - 1);
         let places: Vec<usize> = (0..PLACES).map(place).collect();
-        let row = |&j: &usize| (0..steps).map(|m| response.area(j + 1 + m * block, j + 1 + (m + 1) * block)).collect();
+        let seen = |j: usize, m: usize| response.area(side, j + 1 + m * block, j + 1 + (m + 1) * block);
+        let row = |&j: &usize| (0..steps).map(|m| seen(j, m)).collect();
         let rows = places.iter().map(row).collect();
         Sight { places, rows }
     }

@@ -2,6 +2,9 @@
 
 use std::f64::consts::TAU;
 
+use rustfft::num_complex::Complex;
+
+use crate::baseline::Side;
 use crate::numeric::fourier;
 
 /// An operator as the edges see it. Frequencies in cycles per sample, lengths in samples.
@@ -25,10 +28,12 @@ pub fn turned(gain: f64, f: f64, turns: i32) -> f64 {
 /// The impulse response on a grid, and the reach: beyond it lies a thousandth of the kernel's absolute area.
 pub struct Response<'a> {
     shape: Shape<'a>,
-    /// Lags 0, 1, ... up to half the grid. Odd operators change its sign for negative lags.
+    /// Lags 0, 1, ... up to half the grid. Operators of real gain are even, or odd: that changes the sign at negative lags.
     kernel: Vec<f64>,
     /// `steps[n]` = sum of the kernel over the lags 0..n.
     steps: Vec<f64>,
+    /// The same over the lags 0, -1, ..., where the operator shifts phases.
+    mirrored_steps: Option<Vec<f64>>,
     reach: usize,
 }
 
@@ -45,24 +50,40 @@ impl<'a> Response<'a> {
     /// The response on a periodic grid of `grid` samples (at least 8).
     pub fn on_grid(shape: Shape<'a>, grid: usize) -> Self {
         let kernel = fourier::impulse_response(grid.max(8), shape.gain, shape.turns);
-        let mut sum = 0.0;
-        let mut steps = Vec::with_capacity(kernel.len() + 1);
-        steps.push(0.0);
-        for &h in &kernel {
-            sum += h;
-            steps.push(sum);
-        }
         let reach = reach(&kernel);
-        Self { shape, kernel, steps, reach }
+        Self { shape, steps: running(&kernel), mirrored_steps: None, kernel, reach }
+    }
+
+    /// As `on_grid`, for an operator whose gain is multiplied by a `phase` of size one at every frequency: what comes from
+    /// before a sample differs from what comes from after it.
+    fn with_phase_on_grid(shape: Shape<'a>, phase: &dyn Fn(f64) -> Complex<f64>, grid: usize) -> Self {
+        let grid = grid.max(8);
+        let turn = fourier::quarter_turns(shape.turns);
+        let both = fourier::two_sided_response(grid, |f| phase(f) * turn * (shape.gain)(f));
+        let half = grid / 2;
+        let kernel = both[..=half].to_vec();
+        let mirrored: Vec<f64> = (0..=half).map(|n| both[(grid - n) % grid]).collect();
+        let sizes: Vec<f64> = kernel.iter().zip(&mirrored).map(|(a, b)| 0.5 * (a.abs() + b.abs())).collect();
+        let reach = reach(&sizes);
+        Self { shape, steps: running(&kernel), mirrored_steps: Some(running(&mirrored)), kernel, reach }
     }
 
     /// The response as far as a record of `len` samples needs it: on a grid of a few wavelengths that grows until the reach
     /// settles, at most four times the record.
     pub fn of(shape: Shape<'a>, len: usize) -> Self {
+        Self::settled(shape, len, |grid| Self::on_grid(shape, grid))
+    }
+
+    /// As `of`, for an operator that shifts phases.
+    pub fn with_phase(shape: Shape<'a>, phase: &dyn Fn(f64) -> Complex<f64>, len: usize) -> Self {
+        Self::settled(shape, len, |grid| Self::with_phase_on_grid(shape, phase, grid))
+    }
+
+    fn settled(shape: Shape<'a>, len: usize, made: impl Fn(usize) -> Self) -> Self {
         let most = (4 * len).max(8);
         let mut grid = ((SPAN * shape.shortest_wavelength) as usize).next_power_of_two().max(1024);
         loop {
-            let response = Self::on_grid(shape, grid.min(most));
+            let response = made(grid.min(most));
             // Tails that go once round the grid are folded back: by then they must have died away.
             if grid >= most || SETTLED * response.reach <= grid / 2 {
                 return response;
@@ -104,11 +125,29 @@ impl<'a> Response<'a> {
         if area > 0.0 { changes / area } else { 0.0 }
     }
 
-    /// Sum of the kernel over lags from..to; beyond the grid it counts as zero.
-    pub fn area(&self, from: usize, to: usize) -> f64 {
-        let last = self.steps.len() - 1;
-        self.steps[to.min(last)] - self.steps[from.min(last)]
+    /// Sum of the kernel over the distances from..to, as seen from inside past one end; beyond the grid it counts as zero.
+    /// The two ends differ where phases shift, and an odd operator changes the sign at the right one, which is left to the
+    /// caller.
+    pub fn area(&self, side: Side, from: usize, to: usize) -> f64 {
+        let steps = match (side, &self.mirrored_steps) {
+            (Side::Right, Some(mirrored)) => mirrored,
+            _ => &self.steps,
+        };
+        let last = steps.len() - 1;
+        steps[to.min(last)] - steps[from.min(last)]
     }
+}
+
+/// Sums over the lags before each.
+fn running(kernel: &[f64]) -> Vec<f64> {
+    let mut sum = 0.0;
+    let mut steps = Vec::with_capacity(kernel.len() + 1);
+    steps.push(0.0);
+    for &h in kernel {
+        sum += h;
+        steps.push(sum);
+    }
+    steps
 }
 
 fn reach(kernel: &[f64]) -> usize {
@@ -148,9 +187,21 @@ mod tests {
     fn areas_add_up_to_the_gain_at_zero_frequency() {
         let gain = |f: f64| (-(f * 100.0).powi(2)).exp2();
         let response = Response::of(Shape { gain: &gain, turns: 0, shortest_wavelength: 100.0 }, 10_000);
-        let outside = response.area(1, usize::MAX);
+        let outside = response.area(Side::Left, 1, usize::MAX);
         assert!((response.kernel()[0] + 2.0 * outside - 1.0).abs() < 1e-12);
-        assert!((response.area(5, 9) - response.kernel()[5..9].iter().sum::<f64>()).abs() < 1e-15);
+        assert!((response.area(Side::Right, 5, 9) - response.kernel()[5..9].iter().sum::<f64>()).abs() < 1e-15);
+    }
+
+    #[test]
+    fn a_delay_is_seen_from_the_left_end_alone() {
+        // e^(-i w 5): every sample comes from five before, so past the left end five samples are felt and none past the right.
+        let gain = |_: f64| 1.0;
+        let phase = |f: f64| Complex::from_polar(1.0, -TAU * f * 5.0);
+        let shape = Shape { gain: &gain, turns: 0, shortest_wavelength: 20.0 };
+        let response = Response::with_phase(shape, &phase, 1000);
+        assert!((response.area(Side::Left, 5, 6) - 1.0).abs() < 1e-12);
+        assert!(response.area(Side::Right, 1, 100).abs() < 1e-12 && response.area(Side::Left, 6, 100).abs() < 1e-12);
+        assert_eq!(response.reach(), 5);
     }
 
     #[test]

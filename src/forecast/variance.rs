@@ -1,5 +1,6 @@
 //! How uncertain the output becomes towards an end when the continuation is only foretold: from the innovations.
 
+use crate::baseline::Side;
 use crate::forecast::Response;
 use crate::numeric::autoregression::{Predictor, dot};
 
@@ -10,11 +11,12 @@ pub(super) fn profile(
     predictor: &Predictor,
     variance: f64,
     response: &Response,
+    side: Side,
     block: usize,
     steps: usize,
     zone: usize,
 ) -> Vec<f64> {
-    let seen: Vec<f64> = (0..steps).map(|i| response.area(i * block + 1, (i + 1) * block + 1)).collect();
+    let seen: Vec<f64> = (0..steps).map(|i| response.area(side, i * block + 1, (i + 1) * block + 1)).collect();
     let passed_on = predictor.impulse_response(steps);
     let mut tail = vec![0.0; steps + 1];
     for i in (0..steps).rev() {
@@ -44,7 +46,7 @@ mod tests {
         let gain = |f: f64| (TAU * f * lag as f64).cos();
         let response = Response::on_grid(Shape { gain: &gain, turns: 0, shortest_wavelength: 64.0 }, 256);
         let predictor = Predictor { weights: vec![phi] };
-        let found = profile(&predictor, sigma * sigma, &response, 1, 32, 16);
+        let found = profile(&predictor, sigma * sigma, &response, Side::Left, 1, 32, 16);
         for (j, variance) in found.iter().enumerate() {
             let ahead = lag.saturating_sub(j) as i32;
             let expected = 0.25 * sigma * sigma * (1.0 - phi.powi(2 * ahead)) / (1.0 - phi * phi);
@@ -60,7 +62,7 @@ mod tests {
         let response = Response::on_grid(Shape { gain: &gain, turns: 0, shortest_wavelength: 64.0 }, 17 * 64);
         for block in [1, 2, 4, 8] {
             let white = Predictor { weights: Vec::new() };
-            let found = profile(&white, 1.0, &response, block, 64 / block, 1);
+            let found = profile(&white, 1.0, &response, Side::Right, block, 64 / block, 1);
             let expected = (8 / block) as f64 * (block as f64 / 17.0).powi(2);
             assert!((found[0] - expected).abs() < 1e-12, "{block}: {} {expected}", found[0]);
         }

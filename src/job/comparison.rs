@@ -6,17 +6,19 @@ use serde_json::{Map, Value};
 use crate::baseline::{Baseline, BaselineKind, EndEstimates};
 use crate::basis::Planner;
 use crate::compare::{self, Judgement};
-use crate::condition::{condition, condition_continued, scale_of};
+use crate::condition::scale_of;
 use crate::ends::Ends;
 use crate::error::Result;
 use crate::job::intake;
+use crate::job::picture::{Scene, draw};
+use crate::job::preparation::prepare;
 use crate::job::repairs;
 use crate::job::work;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Channel;
-use crate::report::{CAUTION, ChannelComparison, Comparison, Curve, InputReport, Jump, Picture, Row, SCHEMA, Tool};
+use crate::report::{self, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::verdict::{CANDIDATES, ODD_ZERO};
 
@@ -28,7 +30,7 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
     let (chain, mut remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
-    remarks.extend(repairs::near_ends(record, &intake.repairs, &chain, &intake.outline.source.path));
+    remarks.extend(repairs::near_ends_of(&intake, &chain));
     intake::refuse_notes(settings, &remarks)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();
@@ -52,7 +54,7 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
         chain: chain.describe(record.axis()),
         channels,
         requirement_met,
-        caution: CAUTION,
+        caution: report::caution(&chain),
     };
     Ok((report, pictures.into_iter().flatten().collect()))
 }
@@ -64,6 +66,9 @@ fn one(
     planner: &Planner,
     picture: bool,
 ) -> Result<(ChannelComparison, Option<Picture>)> {
+    let prepared = prepare(channel, chain, planner)?;
+    let channel = Channel { samples: &prepared.samples, ..channel };
+    let chain = &prepared.chain.on_own_grid();
     let judgement = compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner)?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
     let edge = work::edge_of(&chosen, Some(&judgement));
@@ -82,8 +87,18 @@ fn one(
             .and_then(|edge| edge.trusted)
             .map(|span| work::trusted_report(span.first, span.last, channel.axis)),
     };
-    let picture = picture.then(|| draw(channel, chain, settings, &judgement, &comparison, planner)).transpose()?;
+    let scene = Scene {
+        takes: &comparison.takes,
+        unit: &comparison.unit,
+        trusted: comparison.trusted,
+        sentence: sentence_of(&comparison),
+    };
+    let picture = picture.then(|| draw(channel, chain, settings, &judgement, &scene, planner)).transpose()?;
     Ok((comparison, picture.flatten()))
+}
+
+fn sentence_of(comparison: &ChannelComparison) -> &str {
+    comparison.verdict.as_ref().map_or("", |verdict| verdict.sentence.as_str())
 }
 
 /// One row an extension; the explanations are measured in the extension's own basis.
@@ -125,53 +140,4 @@ fn metrics_of(
     let baseline = Baseline::fit(kind, channel.samples, ends, scale_of(chain, channel.samples.len()))?;
     let subject = Subject::of(channel.samples, ends, &baseline, estimates, planner)?;
     Ok(METRICS.iter().map(|metric| (metric.key.to_owned(), Value::from((metric.measure)(&subject)))).collect())
-}
-
-/// Samples drawn past each end, at most.
-const PAST: usize = 400;
-
-/// The continuations past both ends and the outputs over the edge zones; `None` where nothing was judged.
-fn draw(
-    channel: Channel<'_>,
-    chain: &Chain,
-    settings: &Settings,
-    judgement: &Judgement,
-    comparison: &ChannelComparison,
-    planner: &Planner,
-) -> Result<Option<Picture>> {
-    let (Some([left, right]), Some(verdict)) = (&judgement.forecast, &judgement.verdict) else { return Ok(None) };
-    let (samples, len) = (channel.samples, channel.samples.len());
-    let past = left.len().min(PAST).min(len);
-    let seat = settings.stage.seat;
-    let mut curves = Vec::new();
-    let foretold = condition_continued(channel, chain, left, right, seat, planner)?.output;
-    curves.push(Curve { name: "forecast", past: [left[..past].to_vec(), right[..past].to_vec()], output: foretold });
-    for candidate in &CANDIDATES {
-        let baseline = Baseline::fit(candidate.baseline, samples, candidate.ends, scale_of(chain, len))?;
-        let split = baseline.polynomial();
-        let at = |n: i64| split.at(n as f64 + candidate.ends.first_position());
-        let outside = |n: i64| {
-            let (source, sign) = candidate.ends.fold(len, n).unwrap_or((0, 0.0));
-            sign * (samples[source] - at(source as i64)) + at(n)
-        };
-        let sides = [
-            (0..past as i64).map(|k| outside(-1 - k)).collect(),
-            (0..past as i64).map(|k| outside(len as i64 + k)).collect(),
-        ];
-        let output = condition(channel, chain, candidate.ends.seated(seat), candidate.baseline, planner)?.output;
-        curves.push(Curve { name: candidate.name, past: sides, output });
-    }
-    Ok(Some(Picture {
-        name: channel.name.to_owned(),
-        unit_in: channel.unit.to_string(),
-        unit: comparison.unit.to_string(),
-        axis: channel.axis.clone(),
-        record: samples.to_vec(),
-        curves,
-        deviation: judgement.deviation.clone(),
-        zone: verdict.zone,
-        takes: comparison.takes.clone(),
-        trusted: comparison.trusted,
-        sentence: comparison.verdict.as_ref().map(|v| v.sentence.clone()).unwrap_or_default(),
-    }))
 }

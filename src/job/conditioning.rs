@@ -1,22 +1,27 @@
 //! The main job: read, regularise, condition every channel, write the record back, and report.
 
+use std::ffi::OsStr;
 use std::io::Write;
 use std::path::Path;
 
-use serde::Serialize;
-
+use crate::audit::Audit;
 use crate::basis::Planner;
-use crate::error::{Error, Result};
+use crate::error::{Error, Finding, Result};
 use crate::job::edges;
 use crate::job::intake::{self, Intake};
 use crate::job::origin::{self, SourceRows, origin_of};
+use crate::job::preparation;
 use crate::job::repairs;
-use crate::job::target::{self, Opened, Target};
+use crate::job::running::{self, Running};
+use crate::job::target::{Opened, Target};
 use crate::job::work::{self, Worked};
 use crate::operator::Chain;
+use crate::place::Place;
 use crate::read::Input;
-use crate::record::{Format, Repair};
-use crate::report::{self, CAUTION, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
+use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord, Repair, Source};
+use crate::regularise::RowMap;
+use crate::report::page::{self, Passage};
+use crate::report::{self, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, Pending, WaveEncoding};
 
@@ -32,14 +37,27 @@ fn plan_one(intake: &Intake, settings: &Settings) -> Result<Plan> {
     let record = &intake.record;
     let axis = record.axis();
     let (chain, mut remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
-    remarks.extend(repairs::near_ends(record, &intake.repairs, &chain, &intake.outline.source.path));
+    remarks.extend(repairs::near_ends_of(intake, &chain));
     intake::refuse_notes(settings, &remarks)?;
     let planner = Planner::new();
     let channels = record.channels().map(|channel| {
-        let (chosen, _) = work::choose(channel, &chain, settings, &planner)?;
-        let (extension, baseline) = work::stage_reports(&chosen, &chain, settings);
+        let prepared = preparation::prepare(channel, &chain, &planner)?;
+        let channel = Channel { samples: &prepared.samples, ..channel };
+        let (chosen, judgement) = work::choose(channel, &prepared.chain, settings, &planner, work::Page::Unwanted)?;
+        let (extension, baseline) = work::stage_reports(&chosen, &prepared.chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
-        Ok(PlannedChannel { name: channel.name.to_owned(), unit, extension, baseline })
+        let edge = work::edge_of(&chosen, judgement.as_ref());
+        let verdict = work::verdict_report(channel, &unit, settings, judgement.as_ref(), edge);
+        Ok(PlannedChannel {
+            name: channel.name.to_owned(),
+            unit,
+            extension,
+            baseline,
+            despike: prepared.despiked,
+            smoothing: prepared.smoothing,
+            verdict: verdict.map(|verdict| verdict.sentence),
+            notes: prepared.notes,
+        })
     });
     Ok(Plan {
         channels: channels.collect::<Result<_>>()?,
@@ -53,115 +71,180 @@ fn plan_one(intake: &Intake, settings: &Settings) -> Result<Plan> {
 /// Conditions a record and writes it, with its sidecar.
 ///
 /// # Errors
-/// Whatever stops it, gaps that split the record among it; nothing is then visible of the outputs.
+/// Whatever stops it; nothing is then visible of the outputs.
 pub fn condition(input: Input, target: Target<'_>, settings: &Settings) -> Result<Report> {
-    let encoding = encoding_of(settings)?;
-    let input_path = intake::path_of(&input);
-    let named = target.path().map(Path::to_owned);
-    let outputs = target.open(input_path.as_deref())?;
-    let intake = intake::take(input, settings)?;
-    let (report, json) = finish(intake, outputs, named.as_deref(), encoding, settings)?;
-    write_json(json, &report)?;
-    Ok(report)
+    prepare(input, target, settings, &Bench::new(Audited::No))?.finish()
+}
+
+/// What many jobs share, or a job does on its own.
+pub struct Bench {
+    planner: Planner,
+    audited: Audited,
+}
+
+/// Whether a job looks at the record before it conditions it.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Audited {
+    /// It does: the audit goes with the result.
+    Yes,
+    /// It does not.
+    No,
+}
+
+impl Bench {
+    /// A bench without plans. Plans of every length that comes by are kept until it is dropped.
+    pub fn new(audited: Audited) -> Bench {
+        Bench { planner: Planner::new(), audited }
+    }
+}
+
+/// A job whose outputs are written but not yet visible.
+pub struct Prepared<'a> {
+    /// What it found and did.
+    pub report: Report,
+    /// What is in the record, where that was asked for.
+    pub audit: Option<Audit>,
+    passages: Vec<Passage>,
+    outputs: Opened<'a>,
+}
+
+impl<'a> Prepared<'a> {
+    /// Makes the record, its sidecar, its JSON and its page appear, all or none.
+    ///
+    /// # Errors
+    /// `Io` where one of them cannot be written.
+    pub fn finish(self) -> Result<Report> {
+        let durability = self.outputs.durability;
+        let (report, outputs) = self.written()?;
+        write::finish_together(outputs, durability)?;
+        Ok(report)
+    }
+
+    /// The report, and all outputs with their content, still to be finished.
+    fn written(self) -> Result<(Report, Vec<Pending<'a>>)> {
+        let Opened { record, sidecar, json, page, .. } = self.outputs;
+        let text = report::to_json(&self.report)?;
+        let mut outputs = vec![record];
+        for mut pending in [sidecar, json].into_iter().flatten() {
+            pending.write_all(text.as_bytes()).map_err(|error| Error::from(error).at(Place::file(pending.label())))?;
+            outputs.push(pending);
+        }
+        if let Some(files) = page {
+            outputs.extend(files.fill(&self.report, &page::condition_page(&self.report, &self.passages))?);
+        }
+        Ok((self.report, outputs))
+    }
+
+    /// The report, the audit, and the record still to be finished.
+    pub fn into_parts(self) -> (Report, Option<Audit>, Pending<'a>) {
+        (self.report, self.audit, self.outputs.record)
+    }
 }
 
 /// Conditions every part of a record between its gaps, where `Gaps::Split` is set and there are any: part k of `clean.csv`
 /// goes to `clean-k.csv`, each with its own sidecar. A record without gaps goes to `clean.csv` as ever. Where a further JSON is
-/// asked for it holds a list of the reports.
+/// asked for it holds a list of the reports. All outputs appear, or none.
 ///
 /// # Errors
-/// As `condition`; `Usage` where several parts would go to one stream.
+/// As `condition`; `Usage` where several parts would go to one stream or page.
 pub fn condition_parts(input: Input, target: Target<'_>, settings: &Settings) -> Result<Vec<Report>> {
-    let encoding = encoding_of(settings)?;
+    let bench = Bench::new(Audited::No);
     let input_path = intake::path_of(&input);
     let named = target.path().map(Path::to_owned);
-    let overwrite = target.overwrite();
+    let sequel = target.sequel();
     // Opened first all the same: what cannot be written is known before the work.
-    let outputs = target.open(input_path.as_deref())?;
+    let mut outputs = target.open(input_path.as_deref())?;
+    let (mut json, durability) = (outputs.json.take(), outputs.durability);
     let parts = intake::take_parts(input, settings)?;
-    let count = parts.len();
-    if count == 1 {
-        let mut json = None;
-        let mut reports = Vec::new();
-        for (intake, outputs) in parts.into_iter().zip([outputs]) {
-            let (report, pending) = finish(intake, outputs, named.as_deref(), encoding, settings)?;
-            json = pending;
-            reports.push(report);
+    let opened = match parts.len() {
+        1 => vec![outputs],
+        count => {
+            drop(outputs);
+            sequel.open(count, input_path.as_deref())?
         }
-        write_json(json, &reports)?;
-        return Ok(reports);
+    };
+    let mut reports = Vec::with_capacity(parts.len());
+    let mut pending = Vec::new();
+    for (intake, outputs) in parts.into_iter().zip(opened) {
+        let prepared = work_on(intake, None, outputs, named.as_deref(), settings, &bench)?;
+        let (report, outputs) = prepared.written()?;
+        reports.push(report);
+        pending.extend(outputs);
     }
-    let json = outputs.json;
-    let opened = target::open_parts(named.as_deref(), count, input_path.as_deref(), overwrite)?;
-    let mut reports = Vec::with_capacity(count);
-    let (mut records, mut sidecars) = (Vec::with_capacity(count), Vec::with_capacity(count));
-    for (intake, (mut record, sidecar)) in parts.into_iter().zip(opened) {
-        reports.push(work_on(intake, &mut record, named.as_deref(), encoding, settings)?);
-        records.push(record);
-        sidecars.push(sidecar);
+    if let Some(mut file) = json.take() {
+        file.write_all(report::to_json(&reports)?.as_bytes())
+            .map_err(|error| Error::from(error).at(Place::file(file.label())))?;
+        pending.push(file);
     }
-    for (report, written) in reports.iter_mut().zip(write::finish_all(records)) {
-        let written = written?;
-        report.outputs = vec![OutputReport { path: written.path, sha256: written.sha256 }];
-    }
-    for (report, sidecar) in reports.iter().zip(sidecars) {
-        write_json(Some(sidecar), report)?;
-    }
-    write_json(json, &reports)?;
+    write::finish_together(pending, durability)?;
     Ok(reports)
 }
 
-/// Works on one record and writes it with its sidecar; the further JSON is left to the caller.
-fn finish<'a>(
-    intake: Intake,
-    outputs: Opened<'a>,
-    named: Option<&Path>,
-    encoding: WaveEncoding,
-    settings: &Settings,
-) -> Result<(Report, Option<Pending<'a>>)> {
-    let mut record = outputs.record;
-    let mut report = work_on(intake, &mut record, named, encoding, settings)?;
-    let written = record.finish()?;
-    report.outputs = vec![OutputReport { path: written.path, sha256: written.sha256 }];
-    write_json(outputs.sidecar, &report)?;
-    Ok((report, outputs.json))
+/// Conditions a record into outputs that are not yet visible.
+///
+/// # Errors
+/// Whatever stops it; nothing is left behind.
+pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench: &Bench) -> Result<Prepared<'a>> {
+    let input_path = intake::path_of(&input);
+    let named = target.path().map(Path::to_owned);
+    let outputs = target.open(input_path.as_deref())?;
+    let (intake, audit) = match bench.audited {
+        Audited::Yes => intake::take_audited(input, settings).map(|(intake, audit)| (intake, Some(audit)))?,
+        Audited::No => (intake::take(input, settings)?, None),
+    };
+    work_on(intake, audit, outputs, named.as_deref(), settings, bench)
 }
 
-fn write_json<T: Serialize>(pending: Option<Pending<'_>>, value: &T) -> Result<()> {
-    let Some(mut pending) = pending else { return Ok(()) };
-    pending.write_all(report::to_json(value)?.as_bytes()).map_err(Error::from)?;
-    pending.finish().map(|_| ())
-}
-
-/// Conditions one record and writes it into `output`, which is not finished yet.
-fn work_on(
+/// Conditions one record and writes it into `outputs`, which stay invisible.
+fn work_on<'a>(
     intake: Intake,
-    output: &mut Pending<'_>,
+    audit: Option<Audit>,
+    mut outputs: Opened<'a>,
     named: Option<&Path>,
-    encoding: WaveEncoding,
     settings: &Settings,
-) -> Result<Report> {
+    bench: &Bench,
+) -> Result<Prepared<'a>> {
+    let encoding = encoding_of(settings)?;
     let Intake { record, rows, repairs, segment, outline } = intake;
-    let format = format_of(settings, named, outline.source.format)?;
-    let (chain, mut remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
-    remarks.extend(repairs::near_ends(&record, &repairs, &chain, &outline.source.path));
+    let format = format_of(settings, named, &outline.source)?;
+    refuse_unread(settings, format)?;
+    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
     intake::refuse_notes(settings, &remarks)?;
     let mut notes: Vec<_> = record.findings().iter().cloned().chain(remarks).collect();
-    let input = InputReport::new(&outline.source, record.axis()).with_part(segment);
-    let Worked { record, mut channels } = work::run(record, &chain, settings)?;
-    for (channel, repairs) in channels.iter_mut().zip(&repairs) {
+    let input_report = InputReport::new(&outline.source, record.axis()).with_part(segment);
+    let chain_report = chain.describe(record.axis());
+    refuse_columns(settings, format, record.axis())?;
+    let wanted = if outputs.page.is_some() { work::Page::Wanted } else { work::Page::Unwanted };
+    let len = record.len();
+    let Worked { record, mut channels, passages } = work::run(record, &chain, settings, &bench.planner, wanted)?;
+
+    let mut repairs = repairs::with_spikes(repairs, &channels);
+    let names = channels.iter().map(|channel| channel.name.as_str());
+    let mut remarks = repairs::near_ends(names.zip(&repairs), len, &chain, &outline.source.path);
+    for (channel, own) in channels.iter_mut().zip(&repairs) {
         intake::refuse_notes(settings, &channel.notes)?;
-        channel.repaired = repairs.iter().map(Repair::count).sum();
-        channel.repairs.clone_from(repairs);
+        channel.repaired = own.iter().map(Repair::count).sum();
+        channel.repairs.clone_from(own);
     }
+    let rows = match chain.treatments().resampling {
+        None => rows,
+        Some(grid) => {
+            remarks.extend(untouched(&outline));
+            repairs.clear(); // they have no place on the new grid
+            RowMap::Regridded { count: grid.count }
+        }
+    };
     let (record, rows, repairs) = edges::trimmed(record, rows, repairs, &channels, settings)?;
     let source_rows = SourceRows::of(&rows);
     let stamps = origin::stamps_of(&outline, &record, format, &rows)?;
     let origin = origin_of(&outline, &record, format, source_rows.as_ref(), stamps.as_deref())?;
-    let (trusted, mended) =
-        (edges::marks(&channels, record.len(), settings), repairs::marks(&record, &repairs, settings));
-    let extra: Vec<_> =
-        trusted.iter().map(edges::Mark::column).chain(mended.iter().map(repairs::Mark::column)).collect();
+    let trusted = edges::marks(&channels, record.len(), settings);
+    let mended = repairs::marks(&record, &repairs, settings);
+    let running = running::columns(&record, settings);
+    let extra: Vec<_> = (trusted.iter().map(edges::Mark::column))
+        .chain(mended.iter().map(repairs::Mark::column))
+        .chain(running.iter().map(Running::column))
+        .collect();
     let shown = edges::shown(&channels, settings);
     let content = Content {
         record: &record,
@@ -171,27 +254,51 @@ fn work_on(
         digits: settings.decimals.map_or(Digits::Shortest, Digits::Fixed),
         encoding,
     };
-    let writer = write::writer(format);
-    let remarks = (writer.check)(&content)?;
+    remarks.extend(write::fill(write::writer(format), &content, &mut outputs.record)?);
     intake::refuse_notes(settings, &remarks)?;
     notes.extend(remarks);
-    write::put(writer, &content, output)?;
     let requirement_met = settings.require.is_none_or(|required| {
         channels.iter().all(|c| c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required))
     });
-    Ok(Report {
+    let written = OutputReport { path: outputs.record.label().to_owned(), sha256: outputs.record.fingerprint() };
+    let report = Report {
         schema: SCHEMA,
         tool: Tool::THIS,
         command: "condition",
-        settings: settings.to_map(),
-        input,
+        settings: settings.to_map_for(format),
+        input: input_report,
         notes,
-        chain: chain.describe(record.axis()),
+        chain: chain_report,
         channels,
         requirement_met,
-        outputs: Vec::new(),
-        caution: CAUTION,
-    })
+        outputs: vec![written],
+        caution: report::caution(&chain),
+    };
+    Ok(Prepared { report, audit, passages, outputs })
+}
+
+/// A remark about columns of the source that have no place on another grid.
+fn untouched(outline: &RawRecord) -> Option<Finding> {
+    let Layout::Table(table) = &outline.layout else { return None };
+    let count = table.columns.iter().filter(|role| **role == ColumnRole::Untouched).count();
+    let text = format!("{count} columns that were not conditioned are left out: they have no place on the new grid");
+    (count > 0).then(|| Finding::new("columns_left_out", text))
+}
+
+/// Running RMS needs a time axis, and a form with room for columns.
+fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()> {
+    if settings.running_rms.is_none() {
+        return Ok(());
+    }
+    if format == Format::Wav {
+        return Err(Error::usage("--running-rms: a WAV file has no room for further columns")
+            .remedy("write CSV with --format csv"));
+    }
+    if !axis.is_time() {
+        return Err(Error::usage(format!("--running-rms: the record's axis is a length in {}", axis.unit()))
+            .remedy("leave it out"));
+    }
+    Ok(())
 }
 
 fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
@@ -203,14 +310,34 @@ fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     })
 }
 
-/// `--format`, else what the output's name says, else the input's own.
-fn format_of(settings: &Settings, output: Option<&Path>, input: Format) -> Result<Format> {
-    let packed =
-        output.and_then(Path::extension).is_some_and(|e| ["gz", "zst"].iter().any(|p| e.eq_ignore_ascii_case(p)));
-    if packed {
+/// Refuses what this format of the output does not read: an option that does nothing hides a mistake.
+fn refuse_unread(settings: &Settings, format: Format) -> Result<()> {
+    let name = write::writer(format).name;
+    let unread = match format {
+        Format::Csv => settings.encoding.as_ref().map(|_| ("--encoding", "a sample type of WAV", "--decimals")),
+        Format::Wav => settings.decimals.map(|_| ("--decimals", "the digits of CSV", "--encoding")),
+    };
+    let Some((option, what, other)) = unread else { return Ok(()) };
+    Err(Error::usage(format!("{option} tells {what}, but the output is {name}"))
+        .remedy(format!("leave it out, use {other}, or choose the output with --format")))
+}
+
+/// `--format`, else what the output's name says, else the input's own; a name that says something else is refused.
+fn format_of(settings: &Settings, output: Option<&Path>, input: &Source) -> Result<Format> {
+    let packed = |extension: &OsStr| ["gz", "gzip", "zst", "zstd"].iter().any(|p| extension.eq_ignore_ascii_case(p));
+    if output.and_then(Path::extension).is_some_and(packed) {
         return Err(
             Error::usage("outputs are not packed").remedy("leave .gz or .zst away, and pack the file afterwards")
         );
     }
-    Ok(settings.format.or_else(|| write::writer_by_name(output?).ok().map(|writer| writer.format)).unwrap_or(input))
+    if let Some(format) = settings.format {
+        return Ok(format);
+    }
+    let Some(extension) = output.and_then(Path::extension) else { return Ok(input.format) };
+    match output.map(write::writer_by_name) {
+        Some(Ok(writer)) => Ok(writer.format),
+        Some(Err(_)) if Path::new(&input.path).extension() == Some(extension) => Ok(input.format),
+        Some(Err(error)) => Err(error),
+        None => Ok(input.format),
+    }
 }

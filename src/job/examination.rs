@@ -29,6 +29,7 @@ pub fn audit(input: Input, settings: &Settings) -> Result<AuditReport> {
         schema: SCHEMA,
         tool: Tool::THIS,
         command: "audit",
+        settings: settings.to_map(),
         path: source.path,
         sha256: source.sha256,
         bytes: source.bytes,

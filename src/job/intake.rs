@@ -2,6 +2,7 @@
 
 use std::path::PathBuf;
 
+use crate::audit::{self, Audit};
 use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::read::{self, Input};
@@ -25,7 +26,17 @@ pub struct Intake {
 
 /// Reads and regularises what must be one record.
 pub fn take(input: Input, settings: &Settings) -> Result<Intake> {
+    settle(read::read(input, &settings.read)?, settings)
+}
+
+/// Reads, audits and regularises.
+pub fn take_audited(input: Input, settings: &Settings) -> Result<(Intake, Audit)> {
     let raw = read::read(input, &settings.read)?;
+    let audit = audit::audit(&raw);
+    Ok((settle(raw, settings)?, audit))
+}
+
+fn settle(raw: RawRecord, settings: &Settings) -> Result<Intake> {
     let outline = raw.outline();
     let place = Place::file(&outline.source.path);
     let regular = regularise::regularise(raw, &settings.regularise).map_err(|error| error.at(place))?;

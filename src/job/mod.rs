@@ -6,11 +6,14 @@ mod edges;
 mod examination;
 mod intake;
 mod origin;
+mod picture;
+mod preparation;
 mod repairs;
+mod running;
 mod target;
 mod work;
 
 pub use comparison::compare;
-pub use conditioning::{condition, condition_parts, plan};
+pub use conditioning::{Audited, Bench, Prepared, condition, condition_parts, plan, prepare};
 pub use examination::audit;
-pub use target::Target;
+pub use target::{PageFiles, Target};

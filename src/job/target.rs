@@ -3,14 +3,20 @@
 use std::io::Write;
 use std::path::{Path, PathBuf};
 
+use serde::Serialize;
+
 use crate::error::{Error, Result};
-use crate::write::{Overwrite, Pending};
+use crate::report::page::{self, Page};
+use crate::write::{self, Durability, Overwrite, Pending};
 
 /// The outputs of a job, opened before any work so that a refusal costs nothing.
 pub struct Target<'a> {
     record: Place<'a>,
+    sidecar: Option<PathBuf>,
     json: Option<PathBuf>,
+    page: Option<PathBuf>,
     overwrite: Overwrite,
+    durability: Durability,
 }
 
 enum Place<'a> {
@@ -23,17 +29,54 @@ pub(super) struct Opened<'a> {
     pub record: Pending<'a>,
     pub sidecar: Option<Pending<'a>>,
     pub json: Option<Pending<'a>>,
+    pub page: Option<PageFiles<'a>>,
+    pub durability: Durability,
 }
 
 impl<'a> Target<'a> {
     /// The record at `path`, its sidecar at `path` with `.json` appended, and the JSON once more at `json`.
     pub fn file(path: &Path, json: Option<&Path>, overwrite: Overwrite) -> Target<'a> {
-        Target { record: Place::File(path.to_owned()), json: json.map(Path::to_owned), overwrite }
+        Target {
+            sidecar: Some(beside(path, ".json")),
+            json: json.map(Path::to_owned),
+            ..Target::alone(path, overwrite)
+        }
+    }
+
+    /// The record at `path` and nothing beside it: its report goes elsewhere.
+    pub fn alone(path: &Path, overwrite: Overwrite) -> Target<'a> {
+        let record = Place::File(path.to_owned());
+        Target { record, sidecar: None, json: None, page: None, overwrite, durability: Durability::default() }
     }
 
     /// The record into a stream: there is no place for a sidecar.
     pub fn stream(sink: Box<dyn Write + Send + 'a>, json: Option<&Path>, overwrite: Overwrite) -> Target<'a> {
-        Target { record: Place::Stream(sink), json: json.map(Path::to_owned), overwrite }
+        let (record, json) = (Place::Stream(sink), json.map(Path::to_owned));
+        Target { record, sidecar: None, json, page: None, overwrite, durability: Durability::default() }
+    }
+
+    /// The report page at `path` as well, with its figures beside it.
+    #[must_use]
+    pub fn with_page(mut self, path: &Path) -> Target<'a> {
+        self.page = Some(path.to_owned());
+        self
+    }
+
+    /// The same outputs, finished when that is reached.
+    #[must_use]
+    pub fn durable(self, durability: Durability) -> Target<'a> {
+        Target { durability, ..self }
+    }
+
+    /// Where the parts of a record would go.
+    pub(super) fn sequel(&self) -> Sequel {
+        Sequel {
+            path: self.path().map(Path::to_owned),
+            sidecars: self.sidecar.is_some(),
+            paged: self.page.is_some(),
+            overwrite: self.overwrite,
+            durability: self.durability,
+        }
     }
 
     /// The record's file name, where it goes to a file.
@@ -44,45 +87,49 @@ impl<'a> Target<'a> {
         }
     }
 
-    /// What happens to files that are in the way.
-    pub(super) fn overwrite(&self) -> Overwrite {
-        self.overwrite
-    }
-
-    /// Opens everything; the input is protected from being overwritten unasked.
+    /// Opens everything; the input is protected from being replaced.
     pub(super) fn open(self, input: Option<&Path>) -> Result<Opened<'a>> {
         let inputs: Vec<&Path> = input.into_iter().collect();
-        let sidecar = match &self.record {
-            Place::File(path) => Some(Pending::create(&sidecar_of(path), &inputs, self.overwrite)?),
-            Place::Stream(_) => None,
-        };
-        let json = self.json.map(|path| Pending::create(&path, &inputs, self.overwrite)).transpose()?;
+        let others = [&self.sidecar, &self.json, &self.page].into_iter().flatten().map(PathBuf::as_path);
+        write::refuse_twins(&self.path().into_iter().chain(others).collect::<Vec<_>>())?;
+        let open = |path: PathBuf| Pending::create(&path, &inputs, self.overwrite);
+        let sidecar = self.sidecar.map(open).transpose()?;
+        let json = self.json.map(open).transpose()?;
+        let page = self.page.map(|path| PageFiles::create(&path, &inputs, self.overwrite)).transpose()?;
         let record = match self.record {
-            Place::File(path) => Pending::create(&path, &inputs, self.overwrite)?,
+            Place::File(path) => open(path)?,
             Place::Stream(sink) => Pending::stream("-", sink),
         };
-        Ok(Opened { record, sidecar, json })
+        Ok(Opened { record, sidecar, json, page, durability: self.durability })
     }
 }
 
-/// Opens the record and the sidecar of each of `count` parts: `clean-01.csv` to `clean-12.csv`.
-pub(super) fn open_parts<'a>(
-    path: Option<&Path>,
-    count: usize,
-    input: Option<&Path>,
+/// The outputs of a record that gaps split: one record and its sidecar for each part.
+pub(super) struct Sequel {
+    path: Option<PathBuf>,
+    sidecars: bool,
+    paged: bool,
     overwrite: Overwrite,
-) -> Result<Vec<(Pending<'a>, Pending<'a>)>> {
-    let Some(path) = path else {
-        return Err(Error::usage(format!("gaps split the record into {count} parts, which one stream cannot hold"))
-            .remedy("name a file with -o; the parts are numbered after it"));
-    };
-    let inputs: Vec<&Path> = input.into_iter().collect();
-    let open = |number: usize| {
-        let path = part_of(path, number, count);
-        let sidecar = Pending::create(&sidecar_of(&path), &inputs, overwrite)?;
-        Ok((Pending::create(&path, &inputs, overwrite)?, sidecar))
-    };
-    (1..=count).map(open).collect()
+    durability: Durability,
+}
+
+impl Sequel {
+    /// Opens the outputs of `count` parts: `clean-01.csv` to `clean-12.csv`.
+    pub fn open<'a>(&self, count: usize, input: Option<&Path>) -> Result<Vec<Opened<'a>>> {
+        let split = |rest: &str| Error::usage(format!("gaps split the record into {count} parts, which {rest}"));
+        let Some(path) = &self.path else {
+            return Err(split("one stream cannot hold").remedy("name a file with -o: the parts are numbered after it"));
+        };
+        if self.paged {
+            return Err(split("one page cannot show").remedy("cut with --from and --to, or leave --html out"));
+        }
+        let open = |number: usize| {
+            let part = Target::alone(&part_of(path, number, count), self.overwrite).durable(self.durability);
+            let sidecar = self.sidecars.then(|| part.path().map(|path| beside(path, ".json"))).flatten();
+            Target { sidecar, ..part }.open(input)
+        };
+        (1..=count).map(open).collect()
+    }
 }
 
 /// `clean.csv` has the parts `clean-1.csv`, `clean-2.csv`; numbers are as wide as the last of them.
@@ -93,9 +140,38 @@ fn part_of(path: &Path, number: usize, count: usize) -> PathBuf {
     path.with_file_name(format!("{stem}-{number:0width$}{extension}"))
 }
 
+/// A report page and what stands beside it, opened before any work.
+pub struct PageFiles<'a> {
+    page: Pending<'a>,
+    json: Pending<'a>,
+    csv: Pending<'a>,
+}
+
+impl<'a> PageFiles<'a> {
+    /// The page at `path`, and the same figures at `path` with `.json` and `.csv` appended.
+    ///
+    /// # Errors
+    /// As `Pending::create`.
+    pub fn create(path: &Path, inputs: &[&Path], overwrite: Overwrite) -> Result<PageFiles<'a>> {
+        let open = |path: &Path| Pending::create(path, inputs, overwrite);
+        Ok(PageFiles { page: open(path)?, json: open(&beside(path, ".json"))?, csv: open(&beside(path, ".csv"))? })
+    }
+
+    /// All three with their content, still to be finished.
+    ///
+    /// # Errors
+    /// `Io` for what stops writing.
+    pub fn fill<T: Serialize>(mut self, report: &T, page: &Page) -> Result<[Pending<'a>; 3]> {
+        self.page.write_all(page::html(page).as_bytes())?;
+        self.json.write_all(page::figures_json(report, page)?.as_bytes())?;
+        self.csv.write_all(page::figures_csv(page).as_bytes())?;
+        Ok([self.csv, self.json, self.page])
+    }
+}
+
 /// `clean.csv` has the sidecar `clean.csv.json`.
-fn sidecar_of(path: &Path) -> PathBuf {
+fn beside(path: &Path, suffix: &str) -> PathBuf {
     let mut name = path.as_os_str().to_owned();
-    name.push(".json");
+    name.push(suffix);
     PathBuf::from(name)
 }

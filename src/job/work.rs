@@ -1,5 +1,6 @@
 //! The computation of a job: every channel judged, continued, conditioned and reported.
 
+use ndarray::Array2;
 use rayon::prelude::*;
 
 use crate::audit::level::Level;
@@ -9,11 +10,17 @@ use crate::compare::{self, Chosen, Continuation, How, Judgement};
 use crate::condition::{self, ExtensionChoice, Outcome};
 use crate::ends::{Ends, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::picture::{Scene, draw};
+use crate::job::preparation::prepare;
+use crate::metric::exposure::Exposure;
 use crate::numeric::sum;
 use crate::operator::Chain;
 use crate::place::Place;
 use crate::record::{Axis, Channel, Record};
-use crate::report::{BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, TrustedReport, VerdictReport};
+use crate::report::page::Passage;
+use crate::report::{
+    BaselineReport, ChannelReport, ExtensionReport, InOut, ReachReport, SmoothReport, TrustedReport, VerdictReport,
+};
 use crate::settings::Settings;
 use crate::unit::Unit;
 use crate::verdict::{Auto, Edge};
@@ -25,38 +32,70 @@ const ALONE_FROM: usize = 1 << 20;
 pub struct Worked {
     pub record: Record,
     pub channels: Vec<ChannelReport>,
+    /// What a page draws, one entry a channel; empty where no page is wanted.
+    pub passages: Vec<Passage>,
 }
 
-/// Conditions all channels; rows of the sample array are replaced one by one.
-pub fn run(record: Record, chain: &Chain, settings: &Settings) -> Result<Worked> {
+/// Whether a page will show what was done: then every channel is judged, and its lines are kept.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Page {
+    Wanted,
+    Unwanted,
+}
+
+/// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
+pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Worked> {
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
-    let planner = Planner::new();
     let Some(flat) = samples.as_slice_mut() else { unreachable!("a record's samples are contiguous") };
-    let work = |(index, row): (usize, &mut [f64])| -> Result<ChannelReport> {
+    let resampling = chain.treatments().resampling;
+    let work = |(index, row): (usize, &mut [f64])| -> Result<Finished> {
         let channel = Channel { name: &names[index], unit: &units[index], axis: &axis, samples: row };
-        let (report, output) = one(channel, chain, settings, &planner)?;
-        row.copy_from_slice(&output);
-        Ok(report)
+        let mut finished = one(channel, chain, settings, planner, page)?;
+        if resampling.is_none() {
+            row.copy_from_slice(&finished.output);
+            finished.output = Vec::new();
+        }
+        Ok(finished)
     };
-    let reports: Result<Vec<ChannelReport>> = if len >= ALONE_FROM {
+    let worked: Result<Vec<Finished>> = if len >= ALONE_FROM {
         flat.chunks_mut(len).enumerate().map(work).collect()
     } else {
         flat.par_chunks_mut(len).enumerate().map(work).collect()
     };
-    let channels = reports?;
+    let mut channels = Vec::with_capacity(names.len());
+    let (mut outputs, mut passages) = (Vec::new(), Vec::new());
+    for finished in worked? {
+        channels.push(finished.report);
+        outputs.push(finished.output);
+        passages.extend(finished.passage);
+    }
     let units = channels.iter().map(|report| report.unit.clone()).collect();
+    let (axis, samples) = match resampling {
+        None => (axis, samples),
+        Some(resampling) => {
+            let shape = (channels.len(), resampling.count);
+            let grid = Array2::from_shape_vec(shape, outputs.concat())
+                .map_err(|_| Error::unsupported("channels came out with different numbers of samples"))?;
+            (resampling.axis(&axis), grid)
+        }
+    };
     let record = Record::new(axis, names, units, samples)?.with_findings(findings);
-    Ok(Worked { record, channels })
+    Ok(Worked { record, channels, passages })
 }
 
-fn one(
-    channel: Channel<'_>,
-    chain: &Chain,
-    settings: &Settings,
-    planner: &Planner,
-) -> Result<(ChannelReport, Vec<f64>)> {
-    let (chosen, judgement) = choose(channel, chain, settings, planner)?;
+/// A channel that is done.
+struct Finished {
+    report: ChannelReport,
+    output: Vec<f64>,
+    passage: Option<Passage>,
+}
+
+fn one(channel: Channel<'_>, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Finished> {
+    let prepared = prepare(channel, chain, planner)?;
+    let (raw, chain) = (channel, &*prepared.chain);
+    let channel = Channel { samples: &prepared.samples, ..channel };
+    let (chosen, judgement) = choose(channel, chain, settings, planner, page)?;
     let outcome = match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner)?,
         Continuation::Given([left, right]) => {
@@ -69,8 +108,52 @@ fn one(
             .at(place)
             .remedy("scale the channel with --calibrate"));
     }
-    let report = report(channel, chain, settings, &chosen, judgement.as_ref(), &outcome);
-    Ok((report, outcome.output))
+    let mut report = report(raw, chain, settings, &chosen, judgement.as_ref(), &outcome);
+    report.notes.extend(prepared.notes);
+    report.despike = prepared.despiked;
+    report.smoothing = prepared.smoothing.map(|smoothing| SmoothReport { outliers: outcome.outliers, ..smoothing });
+    let axis = chain.treatments().resampling.map_or_else(|| channel.axis.clone(), |grid| grid.axis(channel.axis));
+    if let Some(weighting) = chain.treatments().weighting {
+        let running_s = settings.running_rms.unwrap_or(DEFAULT_RUNNING_S);
+        let exposure = Exposure::of(&outcome.output, &outcome.unit, &axis, weighting.name, running_s);
+        report.notes.extend(exposure_notes(channel, &exposure, report.trusted.as_ref()));
+        report.exposure = Some(exposure);
+    }
+    let passage = match page {
+        Page::Unwanted => None,
+        Page::Wanted => {
+            let picture = judgement
+                .as_ref()
+                .map(|judgement| draw(channel, chain, settings, judgement, &Scene::of(&report), planner))
+                .transpose()?;
+            Some(Passage::of(raw, &outcome.output, &axis, report.unit == report.unit_in, picture.flatten()))
+        }
+    };
+    Ok(Finished { report, output: outcome.output, passage })
+}
+
+/// Integration time of the running RMS that ISO 2631-1:1997, 6.3.1, recommends.
+const DEFAULT_RUNNING_S: f64 = 1.0;
+
+/// What the figures of an exposure rest on, where that is doubtful.
+fn exposure_notes(channel: Channel<'_>, exposure: &Exposure, trusted: Option<&TrustedReport>) -> Vec<Finding> {
+    let mut notes = Vec::new();
+    let mut say = |code, text: String| notes.push(Finding::new(code, text).at(Place::channel(channel.name)));
+    if channel.unit.meaning().is_none_or(|m| (m.length, m.time) != (1, -2)) {
+        let text = format!(
+            "weighted as if it were an acceleration, but its unit is \"{}\": give it by --unit or --calibrate",
+            channel.unit
+        );
+        say("weighting_unit", text);
+    }
+    if let (Some(at), Some(trusted)) = (exposure.mtvv_at, trusted)
+        && !(trusted.from..=trusted.to).contains(&at)
+    {
+        let text =
+            "the running RMS is largest near an end, outside the trusted span: the maximum may be made by the ends";
+        say("mtvv_untrusted", text.to_owned());
+    }
+    notes
 }
 
 /// The continuation of a channel, and the judgement it rests on. A named extension without `--require`, a tolerance or
@@ -80,11 +163,11 @@ pub fn choose(
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
+    page: Page,
 ) -> Result<(Chosen, Option<Judgement>)> {
     let fixed = matches!(settings.stage.extension, ExtensionChoice::Fixed(_));
-    let identity = chain.turns() == 0 && chain.passes().iter().all(|pass| pass.is_identity());
-    let wanted = !fixed || settings.require.is_some() || settings.edges != Default::default();
-    let judgement = (wanted && !identity)
+    let wanted = page == Page::Wanted || !fixed || settings.require.is_some() || settings.edges != Default::default();
+    let judgement = (wanted && !chain.is_identity())
         .then(|| compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner))
         .transpose()?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, judgement.as_ref())?;
@@ -153,7 +236,16 @@ fn report(
         verdict,
         candidates: judgement.and_then(|j| j.verdict.as_ref()).map(|v| v.edges.clone()).unwrap_or_default(),
         edge: judgement.map(|j| j.estimates),
-        trusted: edge.and_then(|edge| edge.trusted).map(|span| trusted_report(span.first, span.last, channel.axis)),
+        trusted: edge.and_then(|edge| edge.trusted).and_then(|span| match chain.treatments().resampling {
+            None => Some(trusted_report(span.first, span.last, channel.axis)),
+            Some(grid) => {
+                let (first, last) = grid.within(span.first, span.last, channel.samples.len())?;
+                Some(trusted_report(first, last, &grid.axis(channel.axis)))
+            }
+        }),
+        despike: None,
+        smoothing: None,
+        exposure: None,
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
         repaired: 0,

@@ -4,6 +4,7 @@
 //! than always taking `even`. A leakage excess 3 dB above that of another candidate does rule an extension out.
 
 pub mod decay;
+pub mod exposure;
 pub mod join;
 pub mod jump;
 pub mod leakage;

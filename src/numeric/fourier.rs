@@ -63,6 +63,21 @@ pub fn impulse_response(grid: usize, gain: impl Fn(f64) -> f64, turns: i32) -> V
     })
 }
 
+/// The impulse response of a complex `response(f)` on a periodic grid of `grid` samples: lags 0, 1, ..., then, counted back
+/// from the end, -1, -2, ...
+pub fn two_sided_response(grid: usize, response: impl Fn(f64) -> Complex<f64>) -> Vec<f64> {
+    with_planner(|planner| {
+        let inverse = planner.plan_fft_inverse(grid);
+        let line = |k: usize| response(k as f64 / grid as f64) / grid as f64;
+        let mut spectrum: Vec<Complex<f64>> = (0..grid / 2 + 1).map(line).collect();
+        real_ends(&mut spectrum, grid);
+        let mut out = vec![0.0; grid];
+        // The lengths are the plan's own, the only thing this call can reject.
+        let _ = inverse.process(&mut spectrum, &mut out);
+        out
+    })
+}
+
 /// Mean square of the part of one period that lies above `frequency`, in cycles per sample.
 pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
     let len = period.len();

@@ -7,6 +7,8 @@ pub mod compensated;
 pub mod covariance;
 pub mod fourier;
 pub mod lag;
+pub mod leading_number;
+pub mod monotone;
 pub mod noise;
 pub mod polynomial;
 pub mod quantile;

@@ -116,5 +116,5 @@ fn one_corner(
 
 fn effect(frame: &Frame<'_>, parts: Vec<Part>, corners: &[&Corner]) -> Effect {
     let findings = corners.iter().filter_map(|c| c.note(&frame.option, frame.axis, frame.len)).collect();
-    Effect { parts, turns: 0, findings }
+    Effect { parts, findings, ..Effect::default() }
 }

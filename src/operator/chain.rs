@@ -1,5 +1,6 @@
-//! The operators of a run in their fixed order, resolved for one record: one pass, or two around an integral.
+//! The operators of a run in their fixed order, resolved for one record: one pass, or several.
 
+use realfft::num_complex::Complex;
 use serde::Serialize;
 
 use crate::error::{Error, Finding, Result};
@@ -10,18 +11,23 @@ use super::corner::figure;
 use super::gain::Series;
 use super::reach::{Reach, Reaches, Scale};
 use super::request::Request;
+use super::resampling::Resampling;
 use super::shape::Shape;
+use super::smoothing;
 use super::step::{Frame, Part, Stage};
 use super::table::STEPS;
+use super::treatment::{Smoothing, Strength, Treatments};
 
 /// What a run does in the frequency domain. Gains are in a fixed order whatever the order of the requests, so results
-/// agree to the last bit: low-pass, band-stop and notch; integral or derivative; high-pass.
+/// agree to the last bit: response and weighting; low-pass, band-stop and notch; integral or derivative; high-pass;
+/// smoothing; resampling.
 #[derive(Debug, Clone)]
 pub struct Chain {
     pub(super) shape: Shape,
     pub(super) passes: Vec<Pass>,
     pub(super) turns: i32,
     pub(super) reaches: Reaches,
+    pub(super) treatments: Treatments,
 }
 
 /// One transform, multiplication and inverse transform.
@@ -31,6 +37,8 @@ pub struct Pass {
     pub(super) turns: i32,
     pub(super) ends: PassEnds,
     pub(super) reaches: Reaches,
+    pub(super) robust: Option<f64>,
+    pub(super) resampling: Option<Resampling>,
 }
 
 /// What a pass assumes past the ends of the record.
@@ -45,52 +53,147 @@ pub enum PassEnds {
 }
 
 impl Chain {
-    /// Relates requests to a record of `len` samples on `axis`. Without an integral there is one pass; an integral with
-    /// a high-pass (or band-pass) has its high-passes in a second one.
+    /// Relates requests to a record of `len` samples on `axis`. There is one pass, but for these: a response before an
+    /// integral or derivative has its own before them, the high-passes after an integral (or of a band-pass with one) have
+    /// their own after it, and so has robust smoothing, and resampling after that.
     ///
     /// # Errors
-    /// `Usage` for corners in the other kind of unit, and more than one integral or derivative; `Unsupported` for
-    /// corners, notches and transitions that do not fit below the Nyquist frequency.
+    /// `Usage` for corners in the other kind of unit, more than one integral or derivative, a weighted integral, and two
+    /// operators of which a run takes one; `Unsupported` for corners, notches and transitions that do not fit below the
+    /// Nyquist frequency.
     pub fn resolve(requests: &[Request], shape: &Shape, axis: &Axis, len: usize) -> Result<(Chain, Vec<Finding>)> {
         let mut turning = None;
         let mut parts = Vec::new();
+        let mut treatments = Treatments::default();
         let mut findings = Vec::new();
         for request in requests {
             let frame = Frame { option: request.step().option(), shape, axis, len };
             let effect = request.resolve(&frame)?;
             turning = turned(turning, request, effect.turns)?;
+            treatments = treatments.joined(effect.treatments)?;
             parts.extend(effect.parts);
             findings.extend(effect.findings);
         }
+        let turns = turning.map_or(0, |(_, turns)| turns);
+        if let (Some(weighting), Some((request, _))) = (treatments.weighting, turning) {
+            return Err(Error::usage(format!("--weighting {} and {request} exclude each other", weighting.name))
+                .remedy("weight the acceleration itself"));
+        }
+        findings.extend(empty_band(&parts, axis));
+        if let Some(Smoothing { strength: Strength::Given(strength), .. }) = treatments.smoothing {
+            parts.push(smoothing::part(strength));
+        }
+        let chain = Chain::of(parts, turns, shape.clone(), treatments);
+        findings.extend(long_reach(chain.reaches.reach, turns, len));
+        Ok((chain, findings))
+    }
+
+    fn of(mut parts: Vec<Part>, turns: i32, shape: Shape, treatments: Treatments) -> Chain {
         parts.sort_by(|a: &Part, b: &Part| {
             let row = |part: &Part| STEPS.iter().position(|step| step.key == part.key);
             let corners = |part: &Part| part.corners.iter().map(|c| c.cycles.to_bits()).collect::<Vec<_>>();
             (a.stage, row(a), corners(a), &a.value).cmp(&(b.stage, row(b), corners(b), &b.value))
         });
-        let turns = turning.map_or(0, |(_, turns)| turns);
-        findings.extend(empty_band(&parts, axis));
-        let chain = Chain::of(parts, turns, shape.clone());
-        findings.extend(long_reach(chain.reaches.reach, turns, len));
-        Ok((chain, findings))
-    }
-
-    fn of(parts: Vec<Part>, turns: i32, shape: Shape) -> Chain {
-        let pass = |parts: Vec<Part>, turns, ends| {
-            let reaches = Reaches::of(|f| product(&parts, f), turns, scale(&parts));
-            Pass { parts, turns, ends, reaches }
+        let reaches = reaches(&parts, turns);
+        let robust = match treatments.smoothing {
+            Some(Smoothing { strength: Strength::Given(strength), robust: true }) => Some(strength),
+            _ => None,
         };
-        if turns < 0 && parts.iter().any(|part| part.stage == Stage::High) {
-            let reaches = Reaches::of(|f| product(&parts, f), turns, scale(&parts));
-            let (high, band): (Vec<Part>, Vec<Part>) = parts.into_iter().partition(|part| part.stage == Stage::High);
-            let passes = vec![pass(band, turns, PassEnds::Chosen), pass(high, 0, PassEnds::EvenWithoutBaseline)];
-            return Chain { shape, passes, turns, reaches };
+        let mut passes: Vec<Pass> = Vec::new();
+        let mut pass = |parts: Vec<Part>, turns: i32, ends, robust| {
+            let reaches = self::reaches(&parts, turns);
+            passes.push(Pass { parts, turns, ends, reaches, robust, resampling: None });
+        };
+        let mut take =
+            |wanted: &dyn Fn(&Part) -> bool| parts.extract_if(.., |part| wanted(part)).collect::<Vec<Part>>();
+        let shifts = take(&|part| turns != 0 && !part.gain.is_real());
+        let high = take(&|part| turns < 0 && part.stage == Stage::High);
+        let smooth = take(&|part| robust.is_some() && part.stage == Stage::Smooth);
+        let coarser = take(&|part| robust.is_some() && part.stage == Stage::Resample);
+        let last = take(&|part| !high.is_empty() && part.stage > Stage::High);
+        if !shifts.is_empty() {
+            pass(shifts, 0, PassEnds::Chosen, None);
         }
-        let pass = pass(parts, turns, PassEnds::Chosen);
-        let reaches = pass.reaches;
-        Chain { shape, passes: vec![pass], turns, reaches }
+        pass(parts, turns, PassEnds::Chosen, None);
+        if !high.is_empty() {
+            pass(high.into_iter().chain(last).collect(), 0, PassEnds::EvenWithoutBaseline, None);
+        }
+        if robust.is_some() {
+            pass(smooth, 0, PassEnds::Chosen, robust);
+            if treatments.resampling.is_some() {
+                pass(coarser, 0, PassEnds::Chosen, None);
+            }
+        }
+        if let Some(last) = passes.last_mut() {
+            last.resampling = treatments.resampling;
+        }
+        Chain { shape, passes, turns, reaches, treatments }
     }
 
-    /// The passes in the order of the run: one or two.
+    /// The same chain with the strength of its smoothing found: unchanged without smoothing.
+    #[must_use]
+    pub fn with_strength(&self, strength: f64) -> Chain {
+        let Some(smoothing) = self.treatments.smoothing else { return self.clone() };
+        let strength = Strength::Given(strength);
+        self.rebuilt(Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments })
+    }
+
+    /// The chain as its edges are judged: outliers keep their weight, and the rate stays.
+    #[must_use]
+    pub fn on_own_grid(&self) -> Chain {
+        let smoothing = self.treatments.smoothing.map(|smoothing| Smoothing { robust: false, ..smoothing });
+        self.rebuilt(Treatments { smoothing, resampling: None, ..self.treatments })
+    }
+
+    /// The chain up to its smoothing.
+    #[must_use]
+    pub fn before_smoothing(&self) -> Chain {
+        self.rebuilt(Treatments { smoothing: None, resampling: None, ..self.treatments })
+    }
+
+    fn rebuilt(&self, treatments: Treatments) -> Chain {
+        let smooths = treatments.smoothing.is_some();
+        let mut parts: Vec<Part> = self
+            .passes
+            .iter()
+            .flat_map(|pass| &pass.parts)
+            .filter(|part| part.stage != Stage::Smooth)
+            .cloned()
+            .collect();
+        if !smooths {
+            parts.retain(|part| part.stage != Stage::Resample);
+        }
+        if let Some(Smoothing { strength: Strength::Given(strength), .. }) = treatments.smoothing {
+            parts.push(smoothing::part(strength));
+        }
+        Chain::of(parts, self.turns, self.shape.clone(), treatments)
+    }
+
+    /// What is done to the samples themselves.
+    pub fn treatments(&self) -> &Treatments {
+        &self.treatments
+    }
+
+    /// True where no part shifts phases.
+    pub fn is_real(&self) -> bool {
+        self.passes.iter().all(Pass::is_real)
+    }
+
+    /// True where the samples come out as they go in.
+    pub fn is_identity(&self) -> bool {
+        self.turns == 0
+            && self.passes.iter().all(Pass::is_identity)
+            && !self.treatments.despike
+            && self.treatments.smoothing.is_none()
+    }
+
+    /// The complex response of all passes together at `f` cycles per sample, without the powers of frequency of integrals
+    /// and derivatives.
+    pub fn response(&self, f: f64) -> Complex<f64> {
+        self.passes.iter().map(|pass| pass.response(f)).product()
+    }
+
+    /// The passes in the order of the run, at least one.
     pub fn passes(&self) -> &[Pass] {
         &self.passes
     }
@@ -105,8 +208,8 @@ impl Chain {
         &self.shape
     }
 
-    /// Gain of all passes together at `f` cycles per sample (0..=0.5), without the powers of frequency of integrals and
-    /// derivatives.
+    /// Gain of all passes together at `f` cycles per sample (0..=0.5), its magnitude where phases shift, without the powers
+    /// of frequency of integrals and derivatives.
     pub fn gain(&self, f: f64) -> f64 {
         self.passes.iter().map(|pass| pass.gain(f)).product()
     }
@@ -136,9 +239,30 @@ impl Chain {
 }
 
 impl Pass {
-    /// Gain at `f` cycles per sample (0..=0.5), without the power of frequency of integrals and derivatives.
+    /// Gain at `f` cycles per sample (0..=0.5), without the power of frequency of integrals and derivatives; the magnitude
+    /// where the pass shifts phases.
     pub fn gain(&self, f: f64) -> f64 {
         product(&self.parts, f)
+    }
+
+    /// Complex response at `f` cycles per sample, without the power of frequency of integrals and derivatives.
+    pub fn response(&self, f: f64) -> Complex<f64> {
+        response(&self.parts, f)
+    }
+
+    /// True where the pass shifts no phases.
+    pub fn is_real(&self) -> bool {
+        self.parts.iter().all(|part| part.gain.is_real())
+    }
+
+    /// The strength of a pass that smooths and takes outliers' weight away.
+    pub fn robust(&self) -> Option<f64> {
+        self.robust
+    }
+
+    /// The grid that the pass goes over to.
+    pub fn resampling(&self) -> Option<Resampling> {
+        self.resampling
     }
 
     /// Taylor series of the gain at zero frequency.
@@ -174,12 +298,25 @@ impl Pass {
 
     /// True when the pass changes nothing: no gain, no integral or derivative.
     pub fn is_identity(&self) -> bool {
-        self.parts.is_empty() && self.turns == 0
+        self.parts.is_empty() && self.turns == 0 && self.resampling.is_none()
     }
 }
 
 pub(super) fn product(parts: &[Part], f: f64) -> f64 {
     parts.iter().map(|part| part.gain.at(f)).product()
+}
+
+pub(super) fn response(parts: &[Part], f: f64) -> Complex<f64> {
+    parts.iter().map(|part| part.gain.response(f)).product()
+}
+
+/// The reaches of parts that work together.
+pub(super) fn reaches(parts: &[Part], turns: i32) -> Reaches {
+    if parts.iter().all(|part| part.gain.is_real()) {
+        Reaches::of(|f| product(parts, f), turns, scale(parts))
+    } else {
+        Reaches::of_response(|f| response(parts, f), turns, scale(parts))
+    }
 }
 
 /// Convolution adds extents.

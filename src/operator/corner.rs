@@ -5,6 +5,7 @@ use std::fmt;
 use serde::{Deserialize, Serialize};
 
 use crate::error::{Error, Finding, Result};
+use crate::numeric::leading_number;
 use crate::place::escape;
 use crate::record::Axis;
 use crate::unit::Unit;
@@ -63,7 +64,7 @@ impl Corner {
         if text.len() > LONGEST_TEXT || text.chars().any(char::is_control) {
             return Err(fault("not a corner".to_owned()));
         }
-        let (number, unit) = text.split_at(number_length(text));
+        let (number, unit) = text.split_at(leading_number::length(text));
         let Ok(value) = number.parse::<f64>() else {
             return Err(fault("does not begin with a number".to_owned()));
         };
@@ -228,26 +229,6 @@ pub(super) fn quoted(text: &str) -> String {
         short.push('…');
     }
     format!("\"{short}\"")
-}
-
-/// Bytes of the decimal number at the start: sign, digits, point, digits, exponent where digits follow it.
-fn number_length(text: &str) -> usize {
-    let bytes = text.as_bytes();
-    let digits = |from: usize| bytes[from.min(bytes.len())..].iter().take_while(|b| b.is_ascii_digit()).count();
-    let sign = |at: usize| usize::from(matches!(bytes.get(at), Some(b'+' | b'-')));
-    let mut end = sign(0);
-    end += digits(end);
-    if bytes.get(end) == Some(&b'.') {
-        end += 1 + digits(end + 1);
-    }
-    if matches!(bytes.get(end), Some(b'e' | b'E')) {
-        let start = end + 1 + sign(end + 1);
-        let count = digits(start);
-        if count > 0 {
-            end = start + count;
-        }
-    }
-    end
 }
 
 /// Measure and size in base units of a unit's text.

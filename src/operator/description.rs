@@ -4,8 +4,9 @@ use serde::Serialize;
 
 use crate::record::Axis;
 
-use super::chain::{Chain, Pass, PassEnds, product, scale};
+use super::chain::{Chain, Pass, PassEnds, reaches};
 use super::reach::Reaches;
+use super::resampling::Resampling;
 use super::step::Part;
 
 /// A chain as plain data.
@@ -15,6 +16,12 @@ pub struct ChainDescription {
     pub shape: String,
     /// Derivatives (positive) or integrals (negative).
     pub turns: i32,
+    /// Spikes are replaced first.
+    pub despike: bool,
+    /// Smoothing: `auto` where every channel finds its own strength, else the strength; null without smoothing.
+    pub smooth: Option<String>,
+    /// The new grid; null where the rate stays.
+    pub resampling: Option<Resampling>,
     /// The passes in their order.
     pub passes: Vec<PassDescription>,
     /// Reaches of all passes together, in samples.
@@ -33,6 +40,10 @@ pub struct PassDescription {
     pub ends: PassEnds,
     /// Derivatives (positive) or integrals (negative), after the operators of this pass.
     pub turns: i32,
+    /// True where the pass smooths and takes outliers' weight away.
+    pub robust: bool,
+    /// True where the pass goes over to another sampling rate.
+    pub resamples: bool,
     /// Its gains.
     pub operators: Vec<OperatorDescription>,
     /// Reaches of this pass, in samples.
@@ -43,7 +54,7 @@ pub struct PassDescription {
 /// A gain as plain data.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct OperatorDescription {
-    /// `low_pass`, `high_pass`, `band_stop` or `notch`.
+    /// `low_pass`, `high_pass`, `band_stop`, `notch`, `weighting`, `response`, `smoothing` or `anti_alias`.
     pub kind: &'static str,
     /// The option it came from, without dashes.
     pub option: &'static str,
@@ -93,6 +104,9 @@ impl Chain {
         ChainDescription {
             shape: self.shape.to_string(),
             turns: self.turns,
+            despike: self.treatments.despike,
+            smooth: self.treatments.smoothing.map(|smoothing| smoothing.to_string()),
+            resampling: self.treatments.resampling,
             passes: self.passes.iter().map(|pass| describe_pass(pass, axis)).collect(),
             reaches: self.reaches,
             reach: self.reaches.reach.samples().map(|samples| samples * axis.step()),
@@ -123,6 +137,8 @@ fn describe_pass(pass: &Pass, axis: &Axis) -> PassDescription {
     PassDescription {
         ends: pass.ends,
         turns: pass.turns,
+        robust: pass.robust.is_some(),
+        resamples: pass.resampling.is_some(),
         operators: pass.parts.iter().map(|part| describe_part(part, axis)).collect(),
         reaches: pass.reaches,
     }
@@ -145,6 +161,6 @@ fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
                 gain: part.gain.at(corner.cycles),
             })
             .collect(),
-        reaches: Reaches::of(|f| product(alone, f), 0, scale(alone)),
+        reaches: reaches(alone, 0),
     }
 }

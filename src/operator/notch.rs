@@ -1,4 +1,4 @@
-//! A notch: a narrow stop about one frequency, with the full width at half gain.
+//! A notch: a narrow stop about one frequency or its harmonics, with the full width at half gain.
 
 use std::f64::consts::LN_2;
 use std::sync::Arc;
@@ -8,7 +8,7 @@ use crate::error::{Error, Result};
 use super::corner::figure;
 use super::edge::{BandStop, Edge, Rolloff};
 use super::gain::{Gain, Series};
-use super::range::CentreWidth;
+use super::range::{CentreWidth, Orders};
 use super::step::{CornerPoint, Effect, Frame, Part, Setting, Stage};
 
 #[derive(Debug)]
@@ -21,17 +21,43 @@ pub(super) fn notch(text: &str) -> Result<Box<dyn Setting>> {
 
 impl Setting for Notch {
     fn resolve(&self, frame: &Frame<'_>) -> Result<Effect> {
+        let corner = self.0.centre();
+        let base = corner.resolve(&frame.option, frame.axis)?;
+        let width = self.0.width().resolve_width(&frame.option, corner, frame.axis)?;
+        let count = match self.0.orders() {
+            Orders::UpTo(count) => count,
+            // The last one whose width fits below the Nyquist frequency.
+            Orders::All => (((0.5 - width / 2.0) / base).ceil() as u32).saturating_sub(1).clamp(1, MOST),
+        };
+        if count > 1 && width >= base {
+            return Err(Error::usage(format!("{} {}: the notches of neighbouring orders meet", frame.option, self.0))
+                .remedy(format!("choose a width below the base frequency for {}", frame.option)));
+        }
+        let parts = (1..=count).map(|order| self.order(frame, order, f64::from(order) * base, width));
+        let findings = corner.note(&frame.option, frame.axis, frame.len).into_iter().collect();
+        Ok(Effect { parts: parts.collect::<Result<_>>()?, findings, ..Effect::default() })
+    }
+}
+
+/// Harmonics at most.
+const MOST: u32 = 1000;
+
+impl Notch {
+    /// The notch at one order, in cycles per sample.
+    fn order(&self, frame: &Frame<'_>, order: u32, centre: f64, width: f64) -> Result<Part> {
         let (option, axis) = (&frame.option, frame.axis);
         let (text, corner) = (self.0.text(), self.0.centre());
-        let centre = corner.resolve(option, axis)?;
-        let width = self.0.width().resolve_width(option, corner, axis)?;
         if width >= 2.0 * centre || centre + width / 2.0 >= 0.5 {
+            let which = if order > 1 { format!("order {order} of the notch") } else { "the notch".to_owned() };
             return Err(Error::unsupported(format!(
-                "{option} {text}: the notch does not fit between zero and the Nyquist frequency of {} {}",
+                "{option} {text}: {which} does not fit between zero and the Nyquist frequency of {} {}",
                 figure(0.5 * axis.rate_base()),
                 axis.frequency_label()
             ))
-            .remedy(format!("choose a narrower width for {option}")));
+            .remedy(match order {
+                1 => format!("choose a narrower width for {option}"),
+                _ => format!("choose fewer orders or all for {option}"),
+            }));
         }
         // Narrower than rounding of the centre's own frequency, the gain cannot be told from 1.
         if width < 1e-12 * centre {
@@ -62,16 +88,15 @@ impl Setting for Notch {
                 Arc::new(BandStop { low: Edge { corner: low, rolloff }, high: Edge { corner: high, rolloff } })
             }
         };
-        let part = Part {
+        let multiple = if order > 1 { format!("{order} x ") } else { String::new() };
+        Ok(Part {
             kind: "notch",
             key: "notch",
             value: text.to_owned(),
             stage: Stage::Band,
-            corners: vec![CornerPoint { text: corner.text().to_owned(), cycles: centre }],
+            corners: vec![CornerPoint { text: format!("{multiple}{}", corner.text()), cycles: centre }],
             gain,
-        };
-        let findings = corner.note(option, axis, frame.len).into_iter().collect();
-        Ok(Effect { parts: vec![part], turns: 0, findings })
+        })
     }
 }
 

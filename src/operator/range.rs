@@ -65,25 +65,47 @@ impl fmt::Display for Range {
     }
 }
 
-/// A centre and a full width.
+/// A centre and a full width, of one line or of a line and its harmonics.
 #[derive(Debug, Clone, PartialEq)]
 pub struct CentreWidth {
     text: String,
     centre: Corner,
     width: Corner,
+    orders: Orders,
+}
+
+/// Which harmonics of a line are meant.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Orders {
+    /// The line and its harmonics up to this order; 1 is the line alone.
+    UpTo(u32),
+    /// Every harmonic that fits below the Nyquist frequency.
+    All,
 }
 
 impl CentreWidth {
-    /// Reads `CENTRE:WIDTH`. The width is a difference of frequencies, or of periods or wavelengths as the centre is.
+    /// Reads `CENTRE:WIDTH`, `CENTRE:WIDTH:5` or `CENTRE:WIDTH:all`. The width is a difference of frequencies, or of periods
+    /// or wavelengths as the centre is.
     ///
     /// # Errors
-    /// `Usage` without `:`, for faults of either part, or measures that do not go together.
+    /// `Usage` without `:`, for faults of any part, or measures that do not go together.
     pub fn parse(text: &str) -> Result<CentreWidth> {
-        const EXAMPLE: &str = "write a notch as centre and full width, as in 50Hz:2Hz";
+        const EXAMPLE: &str = "write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all";
         let text = text.trim();
         let fault = |what: &str| Error::usage(format!("{}: {what}", quoted(text))).remedy(EXAMPLE);
-        let Some((centre, width)) = text.split_once(':') else {
+        let Some((centre, rest)) = text.split_once(':') else {
             return Err(fault("no centre and width"));
+        };
+        let (width, orders) = match rest.split_once(':') {
+            None => (rest, Orders::UpTo(1)),
+            Some((width, orders)) => (
+                width,
+                match (orders.trim(), orders.trim().parse::<u32>()) {
+                    ("all", _) => Orders::All,
+                    (_, Ok(count @ 1..=MOST_ORDERS)) => Orders::UpTo(count),
+                    _ => return Err(fault("the orders are neither a number from 1 to 1000 nor all")),
+                },
+            ),
         };
         let read = |side: &str| Corner::parse(side).map_err(|e| Error::usage(e.what()).remedy(EXAMPLE));
         let (centre, width) = (read(centre)?, read(width)?);
@@ -93,7 +115,12 @@ impl CentreWidth {
         if !width.measure().is_frequency() && width.measure() != centre.measure() {
             return Err(fault("the width is no difference of frequencies"));
         }
-        Ok(CentreWidth { text: format!("{centre}:{width}"), centre, width })
+        let suffix = match orders {
+            Orders::UpTo(1) => String::new(),
+            Orders::UpTo(count) => format!(":{count}"),
+            Orders::All => ":all".to_owned(),
+        };
+        Ok(CentreWidth { text: format!("{centre}:{width}{suffix}"), centre, width, orders })
     }
 
     /// The centre.
@@ -106,11 +133,19 @@ impl CentreWidth {
         &self.width
     }
 
+    /// Which harmonics are meant.
+    pub fn orders(&self) -> Orders {
+        self.orders
+    }
+
     /// The text as written, without blanks around the parts.
     pub fn text(&self) -> &str {
         &self.text
     }
 }
+
+/// Harmonics at most: every one costs a factor at every frequency.
+const MOST_ORDERS: u32 = 1000;
 
 impl fmt::Display for CentreWidth {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
@@ -178,12 +213,21 @@ mod tests {
         let notch = CentreWidth::parse("50Hz:2Hz").unwrap();
         assert_eq!((notch.centre().frequency(), notch.width().base()), (50.0, 2.0));
         for (text, message) in [
-            ("50Hz", "\"50Hz\": no centre and width; write a notch as centre and full width, as in 50Hz:2Hz"),
-            ("50Hz:2", "\"2\": a corner without a unit; write a notch as centre and full width, as in 50Hz:2Hz"),
-            ("50Hz:2mm", "\"50Hz:2mm\": mixes time and length; write a notch as centre and full width, as in 50Hz:2Hz"),
+            (
+                "50Hz",
+                "\"50Hz\": no centre and width; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
+            ),
+            (
+                "50Hz:2",
+                "\"2\": a corner without a unit; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
+            ),
+            (
+                "50Hz:2mm",
+                "\"50Hz:2mm\": mixes time and length; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
+            ),
             (
                 "50Hz:2ms",
-                "\"50Hz:2ms\": the width is no difference of frequencies; write a notch as centre and full width, as in 50Hz:2Hz",
+                "\"50Hz:2ms\": the width is no difference of frequencies; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
             ),
         ] {
             assert_eq!(CentreWidth::parse(text).expect_err(text).to_string(), message);

@@ -1,5 +1,6 @@
 //! How far from each end an operator feels what lies beyond it: the reach.
 
+use realfft::num_complex::Complex;
 use serde::{Serialize, Serializer};
 
 use crate::ends::Parity;
@@ -82,31 +83,77 @@ impl Reaches {
     /// A single integral cut off at the Nyquist frequency rings there as 1/(pi^2 n), without limit but far below its
     /// own size: the 99.9 % reach leaves that ringing out, the numeric reach does not.
     pub fn of(gain: impl Fn(f64) -> f64, turns: i32, scale: Scale) -> Reaches {
+        Reaches::of_halves(&gain, None, turns, scale)
+    }
+
+    /// As `of`, for a response that shifts phases: real and imaginary part at a frequency. Its kernel is not symmetric;
+    /// the reach counts what lies beyond it on both sides together. Since a sampled record has no imaginary part at its
+    /// Nyquist frequency, one that does not vanish there rings on as 1/n: the 99.9 % reach leaves that ringing out.
+    pub fn of_response(response: impl Fn(f64) -> Complex<f64>, turns: i32, scale: Scale) -> Reaches {
+        Reaches::of_halves(&|f| response(f).re, Some(&|f| response(f).im), turns, scale)
+    }
+
+    fn of_halves(real: Half<'_>, imaginary: Option<Half<'_>>, turns: i32, scale: Scale) -> Reaches {
         const UNBOUNDED: Reaches = Reaches { reach: Reach::Unbounded, numeric: None };
-        if !scale.extent_samples.is_finite() || (turns < 0 && gain(0.0) != 0.0) {
+        if !scale.extent_samples.is_finite() || (turns < 0 && real(0.0) != 0.0) {
             return UNBOUNDED;
         }
-        let flip = turns == 0 && gain(0.5) > 0.5;
-        let gain = |f: f64| if flip { 1.0 - gain(f) } else { gain(f) };
-        match plain(&gain, turns, scale) {
+        let flip = turns == 0 && real(0.5) > 0.5;
+        let flipped = |f: f64| 1.0 - real(f);
+        let halves = Halves { real: if flip { &flipped } else { real }, imaginary, turns };
+        match plain(&halves, scale) {
             Reach::Unbounded => UNBOUNDED,
-            reach @ Reach::Samples(_) => Reaches { reach, numeric: numeric(&gain, turns, scale) },
+            reach @ Reach::Samples(_) => Reaches { reach, numeric: numeric(&halves, scale) },
         }
     }
 }
 
+/// Real or imaginary part of a response by frequency.
+type Half<'a> = &'a dyn Fn(f64) -> f64;
+
+/// A response of `turns` quarter turns in two halves: one of them has an even kernel, the other an odd one.
+struct Halves<'a> {
+    real: Half<'a>,
+    imaginary: Option<Half<'a>>,
+    turns: i32,
+}
+
+/// Lines of a spectrum, and the parity of the kernel that they stand for.
+type Lines = Vec<(Vec<f64>, Parity)>;
+
+impl Halves<'_> {
+    fn sampled(&self, layout: Layout) -> Lines {
+        let mut lines = vec![layout.sampled(self.real, self.turns)];
+        if let Some(imaginary) = self.imaginary {
+            let (values, parity) = layout.sampled(imaginary, self.turns);
+            lines.push((values, parity.flipped()));
+        }
+        lines
+    }
+
+    /// Samples beyond which the tails of the cut at the Nyquist frequency stay below `share` of `total`.
+    fn kink_reach(&self, total: f64, share: f64) -> Option<f64> {
+        let (_, parity) = turn::factor(1.0, self.turns);
+        let real = Kink::of(self.real, self.turns, parity, total).reach(share)?;
+        let other = self.imaginary.map(|half| Kink::of(half, self.turns, parity.flipped(), total).reach(share));
+        Some(other.unwrap_or(Some(0.0))?.max(real))
+    }
+}
+
 /// The 99.9 % reach.
-fn plain(gain: &impl Fn(f64) -> f64, turns: i32, scale: Scale) -> Reach {
+fn plain(halves: &Halves<'_>, scale: Scale) -> Reach {
     let Some(mut layout) = Layout::lay(16.0 * scale.extent_samples, scale.highest, 1 << 12, GRID) else {
         return Reach::Samples(scale.extent_samples.ceil());
     };
-    layout.tapered |= turns == -1;
+    let rings = halves.turns == -1 || halves.imaginary.is_some();
+    layout.tapered |= rings;
     loop {
-        let (values, parity) = layout.sampled(gain, turns);
-        let fine = Tail::of(kernel::transformed(&values, parity));
+        let lines = halves.sampled(layout);
+        let fine = Tail::of(&lines);
         // Every fourth line: the same response on a quarter of the grid.
-        let coarse: Vec<f64> = values.iter().step_by(4).copied().collect();
-        let coarse = Tail::of(kernel::transformed(&coarse, parity)).reach(PLAIN) as f64;
+        let coarse: Lines =
+            lines.iter().map(|(values, parity)| (values.iter().step_by(4).copied().collect(), *parity)).collect();
+        let coarse = Tail::of(&coarse).reach(PLAIN) as f64;
         let found = fine.reach(PLAIN) as f64;
         if layout.grid < GRID && (found - coarse).abs() > 0.5 + 1e-3 * found {
             layout.grid *= 8;
@@ -119,11 +166,8 @@ fn plain(gain: &impl Fn(f64) -> f64, turns: i32, scale: Scale) -> Reach {
             return Reach::Samples(found);
         }
         let found = found * layout.shrink;
-        let kink = if turns == -1 {
-            Some(0.0)
-        } else {
-            Kink::of(gain, turns, parity, fine.total / layout.shrink.powi(turns)).reach(PLAIN)
-        };
+        let total = fine.total / layout.shrink.powi(halves.turns);
+        let kink = if rings { Some(0.0) } else { halves.kink_reach(total, PLAIN) };
         return kink.map_or(Reach::Unbounded, |kink| Reach::Samples(found.max(kink)));
     }
 }
@@ -131,12 +175,11 @@ fn plain(gain: &impl Fn(f64) -> f64, turns: i32, scale: Scale) -> Reach {
 /// The numeric reach, on a grid that just holds it (14 to 28 reaches of 1e-13): rounding grows with the root of the number
 /// of lines in the pass band. Even on its smallest reduced grid the taper's own response, some 600 samples to 1e-13, stays
 /// within the reach.
-fn numeric(gain: &impl Fn(f64) -> f64, turns: i32, scale: Scale) -> Option<f64> {
+fn numeric(halves: &Halves<'_>, scale: Scale) -> Option<f64> {
     let layout = Layout::lay(64.0 * scale.extent_samples, scale.highest, 1 << 10, 1 << 16)?;
-    let (values, parity) = layout.sampled(gain, turns);
-    let tail = Tail::of(kernel::transformed(&values, parity));
+    let tail = Tail::of(&halves.sampled(layout));
     let found = tail.reach(NUMERIC) as f64 * layout.shrink;
-    let kink = Kink::of(gain, turns, parity, tail.total / layout.shrink.powi(turns)).reach(NUMERIC)?;
+    let kink = halves.kink_reach(tail.total / layout.shrink.powi(halves.turns), NUMERIC)?;
     let reach = found.max(kink).ceil();
     // Beyond an eighth of the grid the periodic sum no longer tells a tail from its own repetition.
     (reach <= layout.shrink * layout.grid as f64 / 8.0).then_some(reach)
@@ -172,7 +215,7 @@ impl Layout {
         None
     }
 
-    fn sampled(self, gain: &impl Fn(f64) -> f64, turns: i32) -> (Vec<f64>, Parity) {
+    fn sampled(self, gain: Half<'_>, turns: i32) -> (Vec<f64>, Parity) {
         let shrink = self.shrink;
         if !self.tapered {
             return kernel::sampled(gain, turns, self.grid / 2);
@@ -201,8 +244,14 @@ struct Tail {
 }
 
 impl Tail {
-    fn of(mut response: Vec<f64>) -> Tail {
-        response.iter_mut().for_each(|h| *h = h.abs());
+    /// The mean size at n and -n: with an even part e and an odd part o, (|e + o| + |e - o|)/2 is the larger of |e| and |o|.
+    fn of(lines: &[(Vec<f64>, Parity)]) -> Tail {
+        let mut response: Vec<f64> = Vec::new();
+        for (values, parity) in lines {
+            let part = kernel::transformed(values, *parity);
+            response.resize(part.len(), 0.0);
+            response.iter_mut().zip(&part).for_each(|(size, h)| *size = size.max(h.abs()));
+        }
         let total = response.iter().rev().sum::<f64>() * 2.0 - response.first().copied().unwrap_or(0.0);
         Tail { sizes: response, total }
     }
@@ -230,7 +279,7 @@ struct Kink {
 }
 
 impl Kink {
-    fn of(gain: &impl Fn(f64) -> f64, turns: i32, parity: Parity, total: f64) -> Kink {
+    fn of(gain: Half<'_>, turns: i32, parity: Parity, total: f64) -> Kink {
         let at = |f: f64| gain(f) * turn::factor(f, turns).0;
         let size = match parity {
             Parity::Even => {

@@ -7,6 +7,7 @@ use crate::record::Axis;
 
 use super::gain::Gain;
 use super::shape::Shape;
+use super::treatment::Treatments;
 
 /// One operator: its key as an option and in recipes, its help, and how its argument is read.
 #[derive(Debug)]
@@ -55,6 +56,8 @@ pub(super) struct Effect {
     pub parts: Vec<Part>,
     /// Derivatives (positive) or integrals (negative).
     pub turns: i32,
+    /// What is done to the samples themselves, before and after the passes.
+    pub treatments: Treatments,
     /// Remarks.
     pub findings: Vec<Finding>,
 }
@@ -62,16 +65,22 @@ pub(super) struct Effect {
 /// Where in the fixed order of a run a gain stands.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
 pub(super) enum Stage {
+    /// Sensor correction and frequency weighting: first.
+    Response,
     /// Low-pass, band-stop, notch: before integrals and derivatives.
     Band,
     /// High-pass: last, after the end conditions of an integral.
     High,
+    /// Smoothing.
+    Smooth,
+    /// The low-pass that goes with a lower sampling rate.
+    Resample,
 }
 
 /// A gain with its corners, as reports name them.
 #[derive(Debug, Clone)]
 pub(super) struct Part {
-    /// `low_pass`, `high_pass`, `band_stop`, `notch`.
+    /// `low_pass`, `high_pass`, `band_stop`, `notch`, `weighting`, `response`, `smoothing`, `anti_alias`.
     pub kind: &'static str,
     /// Key of the step.
     pub key: &'static str,

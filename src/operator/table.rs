@@ -1,10 +1,31 @@
 //! The table of operators: options, recipe keys and help follow from its rows.
 
 use super::step::Step;
-use super::{band, notch, turn};
+use super::{band, despike, notch, resampling, sensor, smoothing, turn, weighting};
 
 /// All operators, in the order of help texts.
 pub static STEPS: &[Step] = &[
+    Step {
+        key: "despike",
+        value: "HOW",
+        example: "fill",
+        help: "replace single samples that stand out, first of all: fill puts in what their neighbours make likely",
+        read: despike::despike,
+    },
+    Step {
+        key: "response",
+        value: "TABLE",
+        example: "sensor.csv",
+        help: "divide by a measured response: a CSV table of frequency, gain (ratio, dB or %) and phase; at most 20 dB",
+        read: sensor::response,
+    },
+    Step {
+        key: "weighting",
+        value: "NAME",
+        example: "Wk",
+        help: "weight for human vibration: Wb, Wc, Wd, We, Wf, Wh, Wj, Wk or Wm; reports running RMS, MTVV and VDV",
+        read: weighting::read,
+    },
     Step {
         key: "lowpass",
         value: "CORNER",
@@ -35,9 +56,9 @@ pub static STEPS: &[Step] = &[
     },
     Step {
         key: "notch",
-        value: "CENTRE:WIDTH",
+        value: "CENTRE:WIDTH[:ORDERS]",
         example: "50Hz:2Hz",
-        help: "remove one line, with the full width at half gain",
+        help: "remove one line, with the full width at half gain; 50Hz:2Hz:5 its first five harmonics, 50Hz:2Hz:all every one",
         read: notch::notch,
     },
     Step {
@@ -53,5 +74,26 @@ pub static STEPS: &[Step] = &[
         example: "1",
         help: "differentiate once or twice",
         read: turn::differentiate,
+    },
+    Step {
+        key: "smooth",
+        value: "STRENGTH",
+        example: "auto",
+        help: "penalised smoothing: auto (generalised cross-validation), a strength such as 100, or the corner of half gain such as 40Hz; :robust against outliers",
+        read: smoothing::smooth,
+    },
+    Step {
+        key: "resample",
+        value: "RATE",
+        example: "100Hz",
+        help: "another sampling rate, such as 100Hz or 2/mm; the first stamp moves by half the difference of the steps, or stays with 100Hz:start",
+        read: resampling::resample,
+    },
+    Step {
+        key: "decimate",
+        value: "COUNT",
+        example: "4",
+        help: "make this many steps one; as resample",
+        read: resampling::decimate,
     },
 ];

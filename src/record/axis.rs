@@ -125,6 +125,19 @@ impl Axis {
         Axis { start: self.stamp(first), len, ..self.clone() }
     }
 
+    /// An axis of `len` samples from `start` on whose step is `ratio` times this one's.
+    #[must_use]
+    pub fn stretched(&self, ratio: Rational, start: f64, len: usize) -> Axis {
+        let factor = ratio.value();
+        let rate = self.rate.and_then(|rate| rate.times(ratio.reciprocal()));
+        let interval = self.interval.map(|limits| limits.map(|step| step * factor));
+        let axis = Axis { start, step: self.step * factor, len, interval, rate: None, ..self.clone() };
+        match rate {
+            Some(rate) => axis.with_rate(rate),
+            None => axis,
+        }
+    }
+
     /// Unit of `start` and `step`.
     pub fn unit(&self) -> &Unit {
         &self.unit

@@ -23,6 +23,8 @@ pub enum Mending {
     Smoother,
     /// The autoregressive model of the channel.
     AutoregressiveModel,
+    /// A spike, replaced by one of the above.
+    Despiked,
 }
 
 impl Repair {
@@ -45,6 +47,7 @@ impl Mending {
             Mending::CubicSpline => "cubic spline",
             Mending::Smoother => "smoother",
             Mending::AutoregressiveModel => "autoregressive model",
+            Mending::Despiked => "despiked",
         }
     }
 }

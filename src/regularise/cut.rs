@@ -1,6 +1,7 @@
 //! `--from` and `--to`: the stretch of a record that is worked on.
 
 use crate::error::{Error, Result};
+use crate::numeric::leading_number;
 use crate::place::Place;
 use crate::unit::Unit;
 
@@ -25,15 +26,9 @@ impl Bound {
     pub fn parse(text: &str) -> Result<Bound> {
         let wrong =
             || Error::usage(format!("not a place on the axis: {text:?}")).remedy("write it with its unit: 2.5s, 30mm");
-        let trimmed = text.trim();
-        // The longest head that is a number: `2e3s` is 2000 s.
-        let heads = (1..=trimmed.len()).rev().filter(|&at| trimmed.is_char_boundary(at));
-        let (at, value) = heads
-            .filter(|&at| trimmed.as_bytes()[at - 1].is_ascii_digit() || trimmed.as_bytes()[at - 1] == b'.')
-            .find_map(|at| Some((at, trimmed[..at].parse::<f64>().ok()?)))
-            .ok_or_else(wrong)?;
-        let unit = Unit::parse(&trimmed[at..]);
-        if !value.is_finite() || !(unit.is_time() || unit.is_length()) {
+        let (value, unit) = leading_number::split(text).ok_or_else(wrong)?;
+        let unit = Unit::parse(unit);
+        if !(unit.is_time() || unit.is_length()) {
             return Err(wrong());
         }
         Ok(Bound { value, unit })

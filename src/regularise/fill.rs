@@ -65,6 +65,18 @@ pub fn expand(mut table: Table, reading: &StampReading, axis: Axis, findings: &m
     complete(table, axis, findings)
 }
 
+/// Fills the values that are not finite, as `--gaps fill` does, and tells how. In an error stands the first sample of the
+/// gap that cannot be filled.
+///
+/// # Errors
+/// `Unsupported` for a gap at an end, too long for the content, or with too few samples around it.
+pub fn fill_gaps(values: Vec<f64>) -> std::result::Result<(Vec<f64>, String), (usize, Error)> {
+    match fill(values) {
+        Ok((values, repairs)) => Ok((values, how(&repairs))),
+        Err(Unfillable { sample, what }) => Err((sample, Error::unsupported(what))),
+    }
+}
+
 /// Fills all missing values of all channels, and tells which.
 pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<Vec<Vec<Repair>>> {
     let mut all = Vec::with_capacity(table.raw.channels.len());
@@ -84,7 +96,8 @@ pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<Vec<
         let count: usize = repairs.iter().map(Repair::count).sum();
         if count > 0 {
             let share = count as f64 / channel.values.len() as f64;
-            let mut text = format!("{count} samples filled in {} gaps ({})", repairs.len(), how(&repairs));
+            let gaps = if repairs.len() == 1 { "one gap".to_owned() } else { format!("{} gaps", repairs.len()) };
+            let mut text = format!("{count} samples filled in {gaps} ({})", how(&repairs));
             if share > 0.05 {
                 text += &format!(": {} % of the record is interpolated", figure((share * 1000.0).round() / 10.0));
             }

@@ -19,6 +19,7 @@ use crate::record::{RawRecord, Spacing};
 
 pub use choice::{Duplicates, Gaps, Regrid};
 pub use cut::Bound;
+pub use fill::fill_gaps;
 pub use regular::{Regular, Segment};
 pub use rows::RowMap;
 

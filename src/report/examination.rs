@@ -1,52 +1,10 @@
 //! The result of an audit as plain data.
 
 use serde::Serialize;
+use serde_json::{Map, Value};
 
 use crate::audit::Audit;
-use crate::error::{Error, Kind};
-use crate::report::{AxisReport, SCHEMA, Tool};
-
-/// One file of an audit.
-#[derive(Debug, Clone, Serialize)]
-#[serde(untagged)]
-pub enum Audited {
-    /// It was read.
-    Read(Box<AuditReport>),
-    /// It could not be read at all.
-    Refused(RefusedReport),
-}
-
-impl Audited {
-    /// A file that could not be read.
-    pub fn refused(path: &str, error: &Error) -> Audited {
-        let (kind, text) = (error.kind(), error.to_string());
-        Audited::Refused(RefusedReport {
-            schema: SCHEMA,
-            tool: Tool::THIS,
-            command: "audit",
-            path: path.to_owned(),
-            kind,
-            error: text,
-        })
-    }
-}
-
-/// A file that could not be read.
-#[derive(Debug, Clone, Serialize)]
-pub struct RefusedReport {
-    /// Version of the layout.
-    pub schema: u32,
-    /// What made it.
-    pub tool: Tool,
-    /// `audit`.
-    pub command: &'static str,
-    /// Path as given.
-    pub path: String,
-    /// The kind of fault.
-    pub kind: Kind,
-    /// Where, what, and what would settle it.
-    pub error: String,
-}
+use crate::report::{AxisReport, Tool};
 
 /// One audited file.
 #[derive(Debug, Clone, Serialize)]
@@ -57,6 +15,8 @@ pub struct AuditReport {
     pub tool: Tool,
     /// `audit`.
     pub command: &'static str,
+    /// Every setting as resolved.
+    pub settings: Map<String, Value>,
     /// Path as given.
     pub path: String,
     /// SHA-256 of the bytes as stored.

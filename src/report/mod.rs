@@ -3,9 +3,11 @@
 mod comparison;
 mod examination;
 mod json;
+pub mod page;
 mod plan;
 mod plot;
 mod text;
+mod treatment;
 
 use serde::Serialize;
 use serde_json::{Map, Value};
@@ -15,18 +17,20 @@ use crate::baseline::EndEstimates;
 use crate::compare::How;
 use crate::compare::Standing;
 use crate::error::Finding;
-use crate::operator::ChainDescription;
+use crate::metric::exposure::Exposure;
+use crate::operator::{Chain, ChainDescription};
 use crate::record::{Axis, RateSource, Repair, Source};
 use crate::regularise::Segment;
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure};
 
 pub use comparison::{ChannelComparison, Comparison, Jump, Row};
-pub use examination::{AuditReport, Audited, RecordReport, RefusedReport};
+pub use examination::{AuditReport, RecordReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
 pub use text::{audit_text, comparison_text, plan_text, summary};
+pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -76,6 +80,16 @@ impl Tool {
 pub const CAUTION: &str = "Filtered, integrated or restored records are estimates under the stated assumption about the \
 ends. Decisions on machine protection, structural safety or human exposure follow the applicable standards and local \
 codes under qualified practice; this program does not certify.";
+
+/// The caution that goes with a weighted record.
+pub const WEIGHTED_CAUTION: &str = "Weighted accelerations and the figures formed from them are estimates from one record \
+under the stated assumption about the ends: not the readings of a measuring instrument in the sense of ISO 8041-1. Decisions \
+on human exposure follow local codes and qualified practice; this program does not certify.";
+
+/// The caution that belongs to what a chain does.
+pub fn caution(chain: &Chain) -> &'static str {
+    if chain.treatments().weighting.is_some() { WEIGHTED_CAUTION } else { CAUTION }
+}
 
 /// What was read.
 #[derive(Debug, Clone, Serialize)]
@@ -190,6 +204,12 @@ pub struct ChannelReport {
     pub edge: Option<EndEstimates>,
     /// First and last trusted sample of the output; null where nothing was judged or nothing is trusted.
     pub trusted: Option<TrustedReport>,
+    /// Spikes that were replaced; null where that was not asked for.
+    pub despike: Option<DespikeReport>,
+    /// Smoothing; null without it.
+    pub smoothing: Option<SmoothReport>,
+    /// Exposure figures; null without a weighting.
+    pub exposure: Option<Exposure>,
     /// RMS before and after.
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.

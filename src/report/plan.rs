@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use crate::error::Finding;
 use crate::operator::{ChainDescription, CheckPoint};
-use crate::report::{ExtensionReport, InputReport};
+use crate::report::{DespikeReport, ExtensionReport, InputReport, SmoothReport};
 use crate::unit::Unit;
 
 /// What `condition` would do, without doing it.
@@ -33,4 +33,12 @@ pub struct PlannedChannel {
     pub extension: ExtensionReport,
     /// Spelling of the baseline.
     pub baseline: String,
+    /// Spikes that would be replaced.
+    pub despike: Option<DespikeReport>,
+    /// Smoothing, its strength found.
+    pub smoothing: Option<SmoothReport>,
+    /// The verdict in one sentence; null where nothing is judged.
+    pub verdict: Option<String>,
+    /// Remarks on this channel.
+    pub notes: Vec<Finding>,
 }

@@ -1,5 +1,6 @@
 //! Everything that changes a result, under one name each: command line, recipes and JSON share these keys.
 
+mod layer;
 mod parse;
 mod table;
 
@@ -16,7 +17,8 @@ use crate::record::Format;
 use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
-pub use table::{Arity, Group, OptionRow, find, rows};
+pub use layer::Layer;
+pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
 #[derive(Debug, Clone, Default)]
@@ -31,6 +33,8 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// Integration time of the running RMS, in s.
+    pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
     /// Edge error that is tolerable.
@@ -83,19 +87,7 @@ impl Settings {
     /// `Usage` for an unknown key (with the nearest known one), for a value that does not parse, and for a second value
     /// of a key that takes one.
     pub fn set(&mut self, key: &str, text: &str) -> Result<()> {
-        let Some(row) = find(key) else {
-            let all = rows();
-            let nearest = all
-                .iter()
-                .map(|row| (strsim::jaro_winkler(row.key, key), row.key))
-                .max_by(|a, b| a.0.total_cmp(&b.0))
-                .filter(|(likeness, _)| *likeness > 0.8);
-            let error = Error::usage(format!("unknown setting {key:?}"));
-            return Err(match nearest {
-                Some((_, known)) => error.remedy(format!("did you mean {known:?}?")),
-                None => error,
-            });
-        };
+        let row = known(key)?;
         let texts = self.texts.entry(row.key).or_default();
         if row.arity != Arity::Many && !texts.is_empty() {
             return Err(Error::usage(format!("--{key} is given twice")));
@@ -122,6 +114,13 @@ impl Settings {
                 (row.key.to_owned(), value)
             })
             .collect()
+    }
+
+    /// The same for a result in a format: what the settings leave to the output stands as it was resolved.
+    pub fn to_map_for(&self, format: Format) -> Map<String, Value> {
+        let mut map = self.to_map();
+        map.extend(parse::resolved(self, format).into_iter().map(|(key, text)| (key.to_owned(), Value::from(text))));
+        map
     }
 }
 

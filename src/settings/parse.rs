@@ -4,7 +4,8 @@ use std::str::FromStr;
 
 use crate::ends::Seat;
 use crate::error::{Error, Result};
-use crate::operator::{Request, STEPS, Shape};
+use crate::numeric::leading_number;
+use crate::operator::{Corner, Measure, Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
@@ -24,10 +25,15 @@ const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
+/// The word for regridding where the stamps ask for it.
+const REGRID_BY_ITSELF: &str = "auto";
+
 /// Sets the value of a known key.
 pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
     if STEPS.iter().any(|step| step.key == key) {
         settings.requests.push(Request::parse(key, text)?);
+        // In the order of the table whatever the order given: a recipe keeps none, and products round by their order.
+        settings.requests.sort_by_key(|request| STEPS.iter().position(|step| step.key == request.step().key));
         return Ok(());
     }
     match key {
@@ -50,6 +56,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
         "gaps" => settings.regularise.gaps = context(key, text.parse())?,
         "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
+        "regrid" if text == REGRID_BY_ITSELF => settings.regularise.regrid = None,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
         "mark-repairs" => settings.mark_repairs = switch(key, text)?,
         "strict" => settings.strict = switch(key, text)?,
@@ -62,6 +69,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
         "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
         "shape" => settings.shape = context(key, Shape::parse(text))?,
+        "running-rms" => settings.running_rms = Some(running(text)?),
         "format" => settings.format = Some(one_of(key, text, FORMATS)?),
         "encoding" => settings.encoding = Some(text.to_owned()),
         "decimals" => settings.decimals = Some(decimals(text)?),
@@ -70,11 +78,22 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
     Ok(())
 }
 
+/// What an output of a format shows for the keys that the settings leave to it.
+pub fn resolved(settings: &Settings, format: Format) -> Vec<(&'static str, String)> {
+    let name = spelling(FORMATS, format).unwrap_or_default();
+    let encoding = (format == Format::Wav && settings.encoding.is_none()).then(|| ("encoding", FLOAT32.to_owned()));
+    [("format", name)].into_iter().chain(encoding).collect()
+}
+
+/// Sample type of WAV output unless told otherwise, as `write` names it.
+const FLOAT32: &str = "float32";
+
 /// The default that results show for a key that was not given; `None` where the record or the chain decides.
 pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
     match key {
         "gaps" => Some(settings.regularise.gaps.to_string()),
         "duplicates" => Some(settings.regularise.duplicates.to_string()),
+        "regrid" => Some(REGRID_BY_ITSELF.to_owned()),
         "extension" => Some(settings.stage.extension.to_string()),
         "tolerance" => Some(settings.tolerance.to_string()),
         "edges" => spelling(EDGES, settings.edges),
@@ -125,6 +144,17 @@ fn decimals(text: &str) -> Result<u8> {
     Ok(count)
 }
 
+fn running(text: &str) -> Result<f64> {
+    let fault = || {
+        Error::usage(format!("--running-rms: no time: \"{}\"", escape(text)))
+            .remedy("write it with its unit as 1s or 125ms")
+    };
+    match context("running-rms", Corner::parse(text)) {
+        Ok(time) if time.measure() == Measure::Period => Ok(time.base()),
+        _ => Err(fault()),
+    }
+}
+
 fn axis_unit(key: &str, text: &str) -> Result<Unit> {
     let unit = Unit::parse(text);
     if unit.is_time() || unit.is_length() {
@@ -163,15 +193,9 @@ fn pair<'a>(key: &str, text: &'a str, form: &str) -> Result<(&'a str, &'a str)> 
 /// `ch1=98.1m/s2`: name, factor, unit of the result.
 fn calibration(text: &str) -> Result<Calibration> {
     let (name, value) = pair("calibrate", text, "NAME=FACTOR[UNIT], such as ch1=98.1m/s2")?;
-    // The longest prefix that is a number: the unit may start with e (as in `1e3`) only after a complete number.
-    let split = (1..=value.len())
-        .rev()
-        .find(|&n| value.is_char_boundary(n) && value[..n].trim().parse::<f64>().is_ok_and(f64::is_finite))
-        .ok_or_else(|| {
-            Error::usage(format!("--calibrate: no factor in \"{}\"", escape(value)))
-                .remedy("write NAME=FACTOR[UNIT], such as ch1=98.1m/s2")
-        })?;
-    let factor = named("calibrate", &value[..split], "a factor")?;
-    let unit = value[split..].trim();
+    let (factor, unit) = leading_number::split(value).ok_or_else(|| {
+        Error::usage(format!("--calibrate: no factor, or more than one, in \"{}\"", escape(value)))
+            .remedy("write NAME=FACTOR[UNIT], such as ch1=98.1m/s2")
+    })?;
     Ok(Calibration { channel: name.to_owned(), factor, unit: (!unit.is_empty()).then(|| Unit::parse(unit)) })
 }

@@ -64,6 +64,7 @@ const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group,
     OptionRow { key, value, arity, group, help }
 }
 
+use crate::error::{Error, Result};
 use crate::operator::STEPS;
 use Arity::{Many, Once, Switch};
 use Group::{Cut, Input, Judgement, Operators, Output, Repair, Stage};
@@ -87,13 +88,14 @@ static OPTIONS: &[OptionRow] = &[
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
     row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default), fill (interpolates gaps of up to one cycle of the content) or split (works on each stretch between gaps; part k of OUT.csv goes to OUT-k.csv)"),
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
-    row("regrid", "HOW", Once, Repair, "What to do with jittered or drifting stamps: cubic interpolates onto an even grid, least-squares does so for content near the end of the band (default above a fifth of the rate), off takes the samples as even"),
+    row("regrid", "HOW", Once, Repair, "What to do with uneven stamps: auto (default) interpolates jittered or drifting ones onto an even grid, by a cubic spline or, for content above a fifth of the rate, by the least-squares series; cubic and least-squares also those that are nearly even; off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
     row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast; symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
     row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
     row("seat", "NAME", Once, Stage, "Where the mirrors sit: half-sample (default) or whole-sample"),
     row("assert", "[END:]WHAT", Many, Stage, "What is known about the ends: zero-slope, zero-value or closed; with left: or right: for one end. Followed, and checked for contradiction"),
     row("shape", "NAME", Once, Operators, "Roll-off: butterworth:ORDER (zero phase, squared magnitude, gain 0.5 at the corner), gaussian, cosine:WIDTH, brickwall. Default: butterworth:4"),
+    row("running-rms", "TIME", Once, Operators, "A further column a channel with its running RMS over this time, such as 1s or 0.125s; also the integration time of --weighting, 1s there by default"),
     row("tolerance", "ERROR", Once, Judgement, "Edge error that is tolerable: a share of the output's standard deviation (10%, the default) or a value with its unit (0.02m/s)"),
     row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. The output is written all the same"),
     row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted'), blank (empty cells) or trim (cut off, with the new start stamp)"),
@@ -106,8 +108,9 @@ static OPTIONS: &[OptionRow] = &[
 /// Every option that changes a result, in the order of help texts: operators follow from their own table.
 pub fn rows() -> Vec<OptionRow> {
     let operators = STEPS.iter().map(|step| {
-        // Filters may be repeated: their gains multiply. A second integral is asked for by its count.
-        let arity = if matches!(step.key, "integrate" | "differentiate") { Once } else { Many };
+        // Filters may be repeated: their gains multiply. Of the others a run takes one.
+        let repeated = ["response", "lowpass", "highpass", "bandpass", "bandstop", "notch"];
+        let arity = if repeated.contains(&step.key) { Many } else { Once };
         row(step.key, step.value, arity, Operators, step.help)
     });
     let (before, after) = OPTIONS.split_at(OPTIONS.iter().position(|row| row.group == Operators).unwrap_or(0));
@@ -117,4 +120,28 @@ pub fn rows() -> Vec<OptionRow> {
 /// The row of a key.
 pub fn find(key: &str) -> Option<OptionRow> {
     rows().into_iter().find(|row| row.key == key)
+}
+
+/// The row of a key that must be there.
+///
+/// # Errors
+/// `Usage` with the nearest known key.
+pub fn known(key: &str) -> Result<OptionRow> {
+    find(key).ok_or_else(|| {
+        let all = rows();
+        let error = Error::usage(format!("unknown setting {key:?}"));
+        match nearest(key, all.iter().map(|row| row.key)) {
+            Some(known) => error.remedy(format!("did you mean {known:?}?")),
+            None => error,
+        }
+    })
+}
+
+/// The name that a mistyped one was probably meant to be.
+pub fn nearest<'a>(name: &str, known: impl Iterator<Item = &'a str>) -> Option<&'a str> {
+    known
+        .map(|known| (strsim::jaro_winkler(known, name), known))
+        .max_by(|a, b| a.0.total_cmp(&b.0))
+        .filter(|(likeness, _)| *likeness > 0.8)
+        .map(|(_, known)| known)
 }

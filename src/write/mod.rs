@@ -21,7 +21,9 @@ use crate::record::{Format, Record};
 pub use number::Digits;
 pub use origin::{Origin, Rows};
 pub use wave_header::{WAVE_ENCODINGS, WaveEncoding};
-pub use whole::{Overwrite, Pending, Written, discard_pending, finish_all};
+pub use whole::{
+    Durability, Overwrite, Pending, Written, discard_pending, finish_all, finish_together, is_same_file, refuse_twins,
+};
 
 /// A form that is written.
 pub struct Writer {
@@ -108,16 +110,23 @@ impl Cells<'_> {
     }
 }
 
+/// Checks the content and writes it into `output`, which stays to be finished; remarks say what the form could not carry.
+///
+/// # Errors
+/// Those of the writer.
+pub fn fill(writer: &Writer, content: &Content<'_>, output: &mut Pending<'_>) -> Result<Vec<Finding>> {
+    let findings = (writer.check)(content)?;
+    (writer.write)(content, output).map_err(|error| output.placed(error))?;
+    Ok(findings)
+}
+
 /// Checks the content, writes it into `output` and finishes that; remarks say what the form could not carry.
 ///
 /// # Errors
 /// Those of the writer and of `Pending::finish`; nothing is left behind then.
 pub fn save(writer: &Writer, content: &Content<'_>, mut output: Pending<'_>) -> Result<(Written, Vec<Finding>)> {
-    let findings = (writer.check)(content)?;
-    match (writer.write)(content, &mut output) {
-        Ok(()) => output.finish().map(|written| (written, findings)),
-        Err(error) => Err(output.placed(error)),
-    }
+    let findings = fill(writer, content, &mut output)?;
+    output.finish().map(|written| (written, findings))
 }
 
 /// Writes content that has been checked into `output`, which is not finished yet.

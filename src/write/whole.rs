@@ -19,8 +19,19 @@ pub enum Overwrite {
     /// Leave it and refuse.
     #[default]
     Refuse,
-    /// Replace it, be it the input itself.
+    /// Replace it, unless it is an input: measured data are never replaced.
     Force,
+}
+
+/// When an output counts as finished. A killed program leaves no partial file either way; a power failure may, where nobody
+/// waited for the disk.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub enum Durability {
+    /// When the system has taken it.
+    #[default]
+    Handed,
+    /// When it is on the disk, name and all.
+    OnDisk,
 }
 
 /// An output being written. Dropped before `finish`, it leaves nothing behind.
@@ -66,16 +77,24 @@ impl<'a> Pending<'a> {
         Pending { label: label.to_owned(), sink: Sink::Stream(Box::new(sink)), hash: Sha256::new(), bytes: 0 }
     }
 
-    /// Makes the output appear: everything is on the disk before the name is.
+    /// Makes the output appear.
     ///
     /// # Errors
     /// `Io` with the path and the cause; the target is then as it was. `Closed` when the reader of a pipe went away.
     pub fn finish(mut self) -> Result<Written> {
-        let folder = self.settle().and_then(|()| self.publish()).map_err(|error| self.placed(error))?;
-        if let Some(folder) = folder {
-            sync_folder(&folder);
-        }
+        self.flush().map_err(|error| self.placed(error.into()))?;
+        self.publish().map_err(|error| self.placed(error))?;
         Ok(self.written())
+    }
+
+    /// SHA-256 of the bytes so far, lower-case hex.
+    pub fn fingerprint(&self) -> String {
+        hex(&self.hash.clone().finalize())
+    }
+
+    /// The name as the user gave it.
+    pub fn label(&self) -> &str {
+        &self.label
     }
 
     /// Everything onto the disk, under the temporary name.
@@ -96,8 +115,7 @@ impl<'a> Pending<'a> {
     }
 
     fn written(self) -> Written {
-        let sha256 = self.hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect();
-        Written { path: self.label, sha256, bytes: self.bytes }
+        Written { path: self.label, sha256: hex(&self.hash.finalize()), bytes: self.bytes }
     }
 
     /// An error of this output, with its name unless it tells another place.
@@ -125,8 +143,44 @@ impl Write for Pending<'_> {
     }
 }
 
-/// Finishes many outputs at the cost of few waits for the disk: first all contents, then all names, then the folders.
-/// Results come in the order of the outputs.
+/// Makes the outputs of one job appear, all or none: every content is there before the first name is, and a name that cannot
+/// be given takes back the new ones before it.
+///
+/// # Errors
+/// Those of the first output that cannot be finished.
+pub fn finish_together(mut outputs: Vec<Pending<'_>>, durability: Durability) -> Result<Vec<Written>> {
+    for output in &mut outputs {
+        let ready = match durability {
+            Durability::Handed => output.flush().map_err(Error::from),
+            Durability::OnDisk => output.settle(),
+        };
+        ready.map_err(|error| output.placed(error))?;
+    }
+    let (mut written, mut folders, mut fresh) = (Vec::new(), BTreeSet::new(), Vec::new());
+    for mut output in outputs {
+        let new = match &output.sink {
+            Sink::Whole { target, .. } if !target.exists() => Some(target.clone()),
+            _ => None,
+        };
+        match output.publish() {
+            Ok(folder) => folders.extend(folder),
+            Err(error) => {
+                // What cannot be taken back stays: the error tells that the job failed.
+                fresh.iter().for_each(|path| drop(fs::remove_file(path)));
+                return Err(output.placed(error));
+            }
+        }
+        fresh.extend(new);
+        written.push(output.written());
+    }
+    if durability == Durability::OnDisk {
+        folders.iter().for_each(|folder| sync_folder(folder));
+    }
+    Ok(written)
+}
+
+/// Finishes the outputs of many jobs at the cost of few waits for the disk: first all contents, then all names, then the
+/// folders. Results come in the order of the outputs. Waits run on the threads of the current pool.
 pub fn finish_all(outputs: Vec<Pending<'_>>) -> Vec<Result<Written>> {
     let settled: Vec<Result<Pending<'_>>> = outputs
         .into_par_iter()
@@ -147,6 +201,34 @@ pub fn finish_all(outputs: Vec<Pending<'_>>) -> Vec<Result<Written>> {
         .collect();
     folders.iter().for_each(|folder| sync_folder(folder));
     results
+}
+
+/// Refuses two outputs under one name, whatever the spelling: the second would replace the first.
+///
+/// # Errors
+/// `Usage` that names the file.
+pub fn refuse_twins(paths: &[&Path]) -> Result<()> {
+    let resolved: Vec<PathBuf> = paths.iter().map(|path| resolved(path)).collect();
+    for (index, path) in resolved.iter().enumerate() {
+        // A device takes any number of outputs.
+        if resolved[..index].contains(path) && (!path.exists() || path.is_file()) {
+            let what = format!("two outputs would go to {:?}", paths[index].display());
+            return Err(Error::usage(what).remedy("give each a name of its own"));
+        }
+    }
+    Ok(())
+}
+
+/// The path with links followed, as far as it exists.
+fn resolved(path: &Path) -> PathBuf {
+    fs::canonicalize(path).unwrap_or_else(|_| match (fs::canonicalize(folder_of(path)), path.file_name()) {
+        (Ok(folder), Some(name)) => folder.join(name),
+        _ => path.to_path_buf(),
+    })
+}
+
+fn hex(bytes: &[u8]) -> String {
+    bytes.iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// Removes every temporary file of outputs that are not finished. For the program's interrupt handler, right before it ends
@@ -188,10 +270,11 @@ fn open<'a>(path: &Path, inputs: &[&Path], overwrite: Overwrite) -> Result<Sink<
         if !present.is_file() {
             return Ok(Sink::Stream(Box::new(File::options().write(true).open(&target)?)));
         }
+        if inputs.iter().any(|input| is_same_file(input, &target)) {
+            return Err(Error::io("this is the input itself, which is never replaced").remedy("give another name"));
+        }
         if overwrite == Overwrite::Refuse {
-            let same = inputs.iter().any(|input| is_same_file(input, &target));
-            let what = if same { "this is the input itself" } else { "the file exists" };
-            return Err(Error::io(what).remedy("replace it with --force, or give another name with -o"));
+            return Err(Error::io("the file exists").remedy("replace it with --force, or give another name"));
         }
         if present.permissions().readonly() {
             return Err(Error::io("the file is write-protected"));
@@ -261,7 +344,8 @@ fn folder_of(target: &Path) -> PathBuf {
     }
 }
 
-fn is_same_file(left: &Path, right: &Path) -> bool {
+/// True where two names lead to one file.
+pub fn is_same_file(left: &Path, right: &Path) -> bool {
     #[cfg(unix)]
     {
         use std::os::unix::fs::MetadataExt;

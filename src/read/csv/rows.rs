@@ -198,7 +198,7 @@ impl Plan {
                 Some(length) => length,
                 None => {
                     let length = rest.iter().position(|&byte| separates(byte) || byte == newline).unwrap_or(rest.len());
-                    let text = rest[..length].trim_ascii();
+                    let text = field::bare(&rest[..length], rest.get(length).is_none_or(|&byte| byte == newline));
                     self.take_text(task, text, row, rows).map_err(|cause| (Some(index), cause))?;
                     length
                 }

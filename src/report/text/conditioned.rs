@@ -35,13 +35,21 @@ pub fn summary(report: &Report) -> String {
     }
     text.push_str(&indented(&rows));
     for channel in &report.channels {
+        let name = escape(&channel.name);
+        let (despike, smoothing) = (channel.despike.as_ref(), channel.smoothing.as_ref());
+        text.push_str(&super::planned::treated_text(&name, despike, smoothing, &report.input.axis));
+    }
+    let axis_unit = report.input.axis.unit.to_string();
+    text.push_str(&super::exposed::exposures_text(&report.channels, &axis_unit, report.caution));
+    for channel in &report.channels {
         if let Some(verdict) = &channel.verdict {
             text.push_str(&format!("{}: {}\n", escape(&channel.name), verdict.sentence));
         }
     }
     for channel in report.channels.iter().filter(|channel| channel.repaired > 0) {
         let (name, count, gaps) = (escape(&channel.name), channel.repaired, channel.repairs.len());
-        text.push_str(&format!("{name}: {count} samples in {gaps} places are not measured but filled in\n"));
+        let places = if gaps == 1 { "one place".to_owned() } else { format!("{gaps} places") };
+        text.push_str(&format!("{name}: {count} samples in {places} are not measured but filled in\n"));
     }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {

@@ -3,6 +3,7 @@
 mod audited;
 mod compared;
 mod conditioned;
+mod exposed;
 mod figure;
 mod planned;
 
@@ -18,7 +19,8 @@ pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
 
-use figure::figure;
+pub(super) use figure::figure;
+pub(super) use planned::operators_text;
 
 /// A table without rules: first column to the left, the others to the right.
 fn table(header: &[&str]) -> Table {

@@ -1,8 +1,8 @@
 //! A plan for people: what a run would do, and the gain at and around each corner.
 
-use crate::operator::{ChainDescription, Reach};
+use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
-use crate::report::{AxisReport, Plan};
+use crate::report::{AxisReport, DespikeReport, Plan, SmoothReport, StrengthSource};
 
 /// The plan of a dry run.
 pub fn plan_text(plan: &Plan) -> String {
@@ -31,9 +31,50 @@ pub fn plan_text(plan: &Plan) -> String {
             extension_text(&channel.extension),
             channel.baseline
         ));
+        text.push_str(&treated_text(&name, channel.despike.as_ref(), channel.smoothing.as_ref(), &plan.input.axis));
+        if let Some(verdict) = &channel.verdict {
+            text.push_str(&format!("{name}: {verdict}\n"));
+        }
     }
     text.push_str(&notes_text(&plan.notes));
+    for channel in &plan.channels {
+        text.push_str(&notes_text(&channel.notes));
+    }
     text.push_str("nothing was written\n");
+    text
+}
+
+/// What was done to the samples of a channel themselves; empty where nothing was.
+pub fn treated_text(
+    name: &str,
+    despike: Option<&DespikeReport>,
+    smoothing: Option<&SmoothReport>,
+    axis: &AxisReport,
+) -> String {
+    let mut text = String::new();
+    if let Some(DespikeReport { count: 0, .. }) = despike {
+        text.push_str(&format!("{name}: no spikes\n"));
+    }
+    if let Some(smoothing) = smoothing {
+        let label = if axis.kind == "time" { "Hz" } else { "1/m" };
+        let how = match smoothing.how {
+            StrengthSource::Given => "as given",
+            StrengthSource::CrossValidation => "by cross-validation",
+        };
+        let cut_off = match smoothing.cut_off {
+            Some(hz) => format!("half gain at {} {label}", figure(hz, 4)),
+            None => "over half gain everywhere".to_owned(),
+        };
+        let outliers = match smoothing.outliers {
+            Some(count) => format!(", {count} outliers without weight"),
+            None => String::new(),
+        };
+        text.push_str(&format!(
+            "{name}: smoothed with strength {} ({how}), {cut_off}, {} degrees of freedom{outliers}\n",
+            figure(smoothing.strength, 4),
+            figure(smoothing.degrees_of_freedom, 4),
+        ));
+    }
     text
 }
 
@@ -42,25 +83,54 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     let mut text = String::new();
     let several = chain.passes.len() > 1;
     for (index, pass) in chain.passes.iter().enumerate() {
-        let mut parts: Vec<String> =
-            pass.operators.iter().map(|operator| format!("{} {}", operator.option, operator.value)).collect();
+        let mut parts: Vec<String> = Vec::new();
+        if index == 0 && chain.despike {
+            parts.push("spikes replaced".to_owned());
+        }
+        let is_filter = |operator: &&OperatorDescription| {
+            !matches!(operator.kind, "weighting" | "response" | "smoothing" | "anti_alias")
+        };
+        // Smoothing and resampling are told at the end, whether they have a gain or not.
+        let first = pass.operators.iter().filter(|operator| matches!(operator.kind, "weighting" | "response"));
+        parts.extend(first.map(|operator| format!("{} {}", operator.option, operator.value)));
+        let before = parts.len();
+        parts.extend(pass.operators.iter().filter(is_filter).map(|o| format!("{} {}", o.option, o.value)));
         parts.dedup(); // a band-pass stands for two gains
-        if !pass.operators.is_empty() {
-            parts.push(chain.shape.clone());
+        if parts.len() > before {
+            parts.push(chain.shape.clone()); // the roll-off belongs to the filters alone
         }
         match pass.turns {
             0 => {}
             turns if turns > 0 => parts.push(format!("differentiate {turns}")),
             turns => parts.push(format!("integrate {}, starting at rest", -turns)),
         }
+        let last = index + 1 == chain.passes.len();
+        let smooths = pass.robust || pass.operators.iter().any(|operator| operator.kind == "smoothing");
+        if let Some(smooth) = chain.smooth.as_ref().filter(|smooth| smooths || (last && smooth.starts_with("auto"))) {
+            parts.push(format!("smooth {smooth}"));
+        }
+        if let Some(resampling) = chain.resampling.filter(|_| pass.resamples) {
+            let label = if axis.kind == "time" { "Hz" } else { "samples/m" };
+            let against = if resampling.ratio.value() > 1.0 {
+                ", raised cosine from 0.8 of the new Nyquist frequency"
+            } else {
+                ""
+            };
+            parts.push(format!("resample to {} {label}{against}", figure(axis.rate / resampling.ratio.value(), 8)));
+        }
         if parts.is_empty() {
             parts.push("no operator: a plain conversion".to_owned());
         }
         let pass_text = if several { format!("pass {}: ", index + 1) } else { String::new() };
-        let ends = if index > 0 { ", on the result, even ends" } else { "" };
+        let ends = match pass.ends {
+            PassEnds::EvenWithoutBaseline => ", on the result, even ends",
+            PassEnds::Chosen if index > 0 => ", on the result",
+            PassEnds::Chosen => "",
+        };
         text.push_str(&format!("{pass_text}{}{ends}\n", parts.join(", ")));
     }
-    let identity = chain.turns == 0 && chain.passes.iter().all(|pass| pass.operators.is_empty());
+    let plain = |pass: &PassDescription| pass.operators.is_empty();
+    let identity = chain.turns == 0 && chain.passes.iter().all(plain);
     if identity {
         return text;
     }
