@@ -6,6 +6,7 @@ use std::process::ExitCode;
 
 use clap::{Arg, ArgMatches, Command};
 use endgrain::error::{Error, Result};
+use endgrain::job::Examined;
 use endgrain::place::Place;
 use endgrain::settings::Group;
 use endgrain::write::Pending;
@@ -20,6 +21,7 @@ Examples:
   endgrain audit log.csv
   endgrain audit log.wav --json
   endgrain audit log.csv --channel ax --rate 200
+  endgrain audit log.grain
 ";
 
 /// The subcommand.
@@ -30,7 +32,7 @@ pub fn command() -> Command {
                 .value_name("FILE")
                 .required(true)
                 .num_args(1..)
-                .help("Records: CSV or WAV, '-' for standard input"),
+                .help("Records: CSV, WAV or archives, '-' for standard input"),
         )
         .arg(args::json())
         .arg(args::force("Report"))
@@ -53,10 +55,13 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let (mut reports, mut outcome) = (Vec::new(), ExitCode::SUCCESS);
     for file in files {
         let settings = args::settings(matches, GROUPS, Some(file))?;
-        match stream::input(file).and_then(|input| job::audit(input, &settings)) {
+        match stream::input(file).and_then(|input| job::examine(input, &settings)) {
             Ok(report) => {
                 if json.is_none() && !matches.get_flag("quiet") {
-                    stream::print(&report::audit_text(&report))?;
+                    stream::print(&match &report {
+                        Examined::Record(report) => report::audit_text(report),
+                        Examined::Archive(listing) => report::listing_text(listing),
+                    })?;
                 }
                 reports.push(report);
             }

@@ -26,6 +26,10 @@ Examples:
   endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
   logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
   endgrain condition log.csv --lowpass 40Hz -o clean.csv --html report.html
+  endgrain condition seat.csv --channel az --weighting Wk --running-rms 1s -o weighted.csv
+  endgrain condition log.csv --response pickup.csv --notch 50Hz:2Hz:all --despike fill -o corrected.csv
+  endgrain condition profile.csv --gaps smooth --smooth auto:robust -o smooth.csv
+  endgrain condition log.csv --decimate 4 -o slow.csv
   endgrain condition log.csv --lowpass 40Hz --dry-run
   endgrain condition log.csv --recipe clean.csv.json -o again.csv
 ";

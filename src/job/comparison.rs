@@ -9,6 +9,7 @@ use crate::compare::{self, Judgement};
 use crate::condition::scale_of;
 use crate::ends::{Ends, Seat};
 use crate::error::Result;
+use crate::job::bound::refuse_beyond_memory;
 use crate::job::chain;
 use crate::job::intake;
 use crate::job::judgement::{Judged, trusted_report};
@@ -32,6 +33,7 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
     let record = &intake.record;
     let (chain, remarks) = chain::of(record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
+    refuse_beyond_memory(record, &chain, settings)?;
     preparation::check(&chain, settings)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();

@@ -239,7 +239,7 @@ fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()
     Ok(())
 }
 
-fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
+pub(super) fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     let Some(name) = &settings.encoding else { return Ok(WaveEncoding::Float32) };
     write::WAVE_ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
         let known: Vec<&str> = write::WAVE_ENCODINGS.iter().map(|(name, _)| *name).collect();

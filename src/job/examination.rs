@@ -1,13 +1,110 @@
 //! `audit`: what is in a record, and whether a run would take it.
 
+use std::io::Read;
+
+use serde::Serialize;
+use sha2::{Digest, Sha256};
+
 use crate::audit;
+use crate::codec;
 use crate::error::{Error, Result};
-use crate::job::intake;
-use crate::place::Place;
+use crate::job::{intake, restoration};
+use crate::place::{Place, escape};
 use crate::read::{self, Input};
 use crate::regularise;
-use crate::report::{AuditReport, AxisReport, SCHEMA, Tool};
+use crate::report::{ArchiveListing, AuditReport, AxisReport, ListedChannel, SCHEMA, Tool};
 use crate::settings::Settings;
+use crate::unit::Unit;
+
+/// What a file turned out to be.
+#[derive(Debug, Clone, Serialize)]
+#[serde(untagged)]
+pub enum Examined {
+    /// A record, audited.
+    Record(Box<AuditReport>),
+    /// An archive, listed without decoding.
+    Archive(Box<ArchiveListing>),
+}
+
+/// Audits a record, or tells what an archive holds.
+///
+/// # Errors
+/// As [`audit`]; `Malformed` with the byte where an archive is damaged.
+pub fn examine(input: Input, settings: &Settings) -> Result<Examined> {
+    let mut first = Vec::new();
+    let input = match input {
+        Input::Path(path) => {
+            if let Ok(file) = std::fs::File::open(&path)
+                && path.is_file()
+            {
+                file.take(codec::MAGIC.len() as u64).read_to_end(&mut first)?;
+            }
+            Input::Path(path)
+        }
+        Input::Stream(mut stream) => {
+            stream.by_ref().take(codec::MAGIC.len() as u64).read_to_end(&mut first)?;
+            Input::Stream(Box::new(std::io::Cursor::new(first.clone()).chain(stream)))
+        }
+    };
+    if codec::is_archive(&first) {
+        return list(input, settings).map(|listing| Examined::Archive(Box::new(listing)));
+    }
+    audit(input, settings).map(|report| Examined::Record(Box::new(report)))
+}
+
+/// What an archive holds: its header and index, with every checksum checked.
+fn list(input: Input, settings: &Settings) -> Result<ArchiveListing> {
+    let (path, bytes) = restoration::bytes_of(input)?;
+    let archive = codec::Archive::open(&bytes).map_err(|error| error.at(Place::file(&path)))?;
+    let header = &archive.header;
+    let channels = header.channels.iter().enumerate().map(|(stream, channel)| {
+        let entries = || archive.entries.iter().filter(move |entry| entry.stream == stream);
+        let mut modes: Vec<codec::Mode> = entries().map(|entry| entry.mode).collect();
+        modes.sort_by_key(|mode| mode.number());
+        modes.dedup();
+        ListedChannel {
+            name: channel.name.clone(),
+            unit: Unit::parse(&channel.unit),
+            bound: (!channel.bound.is_empty()).then(|| channel.bound.clone()),
+            error: channel.error,
+            blocks: entries().count(),
+            bytes: entries().map(|entry| entry.bytes as u64).sum(),
+            modes,
+        }
+    });
+    let origin = header.origin.as_ref();
+    Ok(ArchiveListing {
+        schema: SCHEMA,
+        tool: Tool::THIS,
+        command: "audit",
+        settings: settings.to_map(),
+        sha256: Sha256::digest(&bytes).iter().map(|byte| format!("{byte:02x}")).collect(),
+        bytes: bytes.len() as u64,
+        format: "grain",
+        rows: header.rows,
+        axis: header.axis.as_ref().map(axis_in_words),
+        channels: channels.collect(),
+        notes: header.notes.clone(),
+        source: origin.map(|origin| origin.name.clone()),
+        source_sha256: origin.map(|origin| origin.sha256.clone()),
+        source_bytes: origin.map(|origin| origin.bytes),
+        made_by: origin.map(|origin| origin.tool.clone()),
+        made_with: origin.map(|origin| origin.settings.clone()),
+        path,
+    })
+}
+
+fn axis_in_words(axis: &codec::ArchivedAxis) -> String {
+    let unit = escape(&axis.unit);
+    match axis.rule {
+        codec::Rule::Even(p, q) if q == 1 => format!("a row every {} {unit}", p as f64 * axis.tick),
+        codec::Rule::Even(p, q) => format!("a row every {p}/{q} of {} {unit}", axis.tick),
+        codec::Rule::Coded => format!("uneven stamps in {unit}, kept exactly"),
+        codec::Rule::Stated(p, 1) => format!("{p} rows a second or metre, as stated"),
+        codec::Rule::Stated(p, q) => format!("{p}/{q} rows a second or metre, as stated"),
+        codec::Rule::StatedDouble(rate) => format!("{rate} rows a second or metre, as stated"),
+    }
+}
 
 /// Audits one file.
 ///

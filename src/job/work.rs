@@ -10,6 +10,7 @@ use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
 use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::bound::refuse_beyond_memory;
 use crate::job::integral::{self, Column};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
 use crate::job::passage::passage;
@@ -40,6 +41,7 @@ pub struct Worked {
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
 pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Worked> {
+    refuse_beyond_memory(&record, chain, settings)?;
     let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
@@ -301,7 +303,7 @@ fn report(
     judged: &Judged,
     outcome: &Outcome,
 ) -> ChannelReport {
-    let (before, after) = (Level::of(raw.samples), Level::of(&outcome.output));
+    let (before, after) = rayon::join(|| Level::of(raw.samples), || Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
     let (extension, _) = stage_reports(&judged.chosen, chain, settings);

@@ -17,6 +17,7 @@ pub mod quantile;
 pub mod quantum;
 pub mod rational;
 pub mod running_median;
+pub mod smooth;
 pub mod spline;
 pub mod stretch;
 pub mod strip;

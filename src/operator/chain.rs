@@ -163,20 +163,31 @@ impl Chain {
     pub fn with_strength(&self, strength: f64) -> Chain {
         let Some(smoothing) = self.treatments.smoothing else { return self.clone() };
         let strength = Strength::Given(strength);
-        self.rebuilt(Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments })
+        self.rebuilt(
+            self.parts().cloned().collect(),
+            Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments },
+        )
     }
 
     /// The chain as its edges are judged: outliers keep their weight, and the rate stays.
     #[must_use]
     pub fn on_own_grid(&self) -> Chain {
         let smoothing = self.treatments.smoothing.map(|smoothing| Smoothing { robust: false, ..smoothing });
-        self.rebuilt(Treatments { smoothing, resampling: None, ..self.treatments })
+        let treatments = Treatments { smoothing, resampling: None, ..self.treatments };
+        // Reaches are costly: nothing is measured twice.
+        if treatments == self.treatments {
+            self.clone()
+        } else {
+            self.rebuilt(self.parts().cloned().collect(), treatments)
+        }
     }
 
     /// The chain up to its smoothing.
     #[must_use]
     pub fn before_smoothing(&self) -> Chain {
-        self.rebuilt(Treatments { smoothing: None, resampling: None, ..self.treatments })
+        // Without it neither the low-pass that goes with a lower rate is wanted.
+        let parts = self.parts().filter(|part| part.stage != Stage::Resample).cloned().collect();
+        self.rebuilt(parts, Treatments { smoothing: None, resampling: None, ..self.treatments })
     }
 
     /// The chain without its derivatives or integrals: what is done to the record itself.
@@ -190,22 +201,12 @@ impl Chain {
         chain
     }
 
-    fn rebuilt(&self, treatments: Treatments) -> Chain {
-        // Reaches are costly: nothing is measured twice.
-        if treatments == self.treatments {
-            return self.clone();
-        }
-        let smooths = treatments.smoothing.is_some();
-        let mut parts: Vec<Part> = self
-            .passes
-            .iter()
-            .flat_map(|pass| &pass.parts)
-            .filter(|part| part.stage != Stage::Smooth)
-            .cloned()
-            .collect();
-        if !smooths {
-            parts.retain(|part| part.stage != Stage::Resample);
-        }
+    fn parts(&self) -> impl Iterator<Item = &Part> {
+        self.passes.iter().flat_map(|pass| &pass.parts)
+    }
+
+    fn rebuilt(&self, mut parts: Vec<Part>, treatments: Treatments) -> Chain {
+        parts.retain(|part| part.stage != Stage::Smooth);
         if let Some(Smoothing { strength: Strength::Given(strength), order, .. }) = treatments.smoothing {
             parts.push(smoothing::part(strength, order));
         }

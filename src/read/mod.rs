@@ -20,7 +20,8 @@ use crate::record::{ColumnRole, Format, Layout, RawRecord, Source, TableLayout, 
 use fingerprint::{Fingerprinted, Unchanged};
 use selection::Candidate;
 
-pub use options::{Calibration, ReadOptions};
+pub use fingerprint::Fingerprint;
+pub use options::{Calibration, ReadOptions, refuse_beyond};
 
 /// What to read from.
 pub enum Input {
@@ -66,6 +67,7 @@ static FOREIGN: &[(&[u8], &str, &str)] = &[
     (b"BZh", "bzip2-compressed data", "unpack it first and read from standard input: bzip2 -dc FILE | ... -"),
     (b"PK\x03\x04", "a zip archive or a spreadsheet workbook", "unpack it, or save the sheet as delimited text"),
     (b"\xd0\xcf\x11\xe0", "a spreadsheet workbook", "save the sheet as delimited text"),
+    (b"\x89GRN", "an archive of this program", "restore it first: endgrain restore FILE -o -"),
     (b"\x89HDF\r\n", "an HDF5 file", "export the wanted channels as delimited text or WAV"),
     (b"%PDF", "a PDF document", "export the data as delimited text"),
 ];
@@ -112,6 +114,7 @@ fn read_wave(intake: &mut Intake<'_>, options: &ReadOptions) -> Result<RawRecord
         allow_truncated: options.allow_truncated,
         channels: options.channels.as_deref(),
         rate_hz: options.rate.as_ref().filter(|rate| rate.unit.is_time()).map(|rate| rate.rate_base),
+        memory: options.memory,
     };
     wav::read(intake.stream, intake.name, &wanted)
 }

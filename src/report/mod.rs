@@ -1,5 +1,6 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod archive;
 mod comparison;
 mod examination;
 mod integral;
@@ -25,6 +26,7 @@ use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
+pub use archive::{ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
 pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
 pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
@@ -37,7 +39,9 @@ pub use spectral::{
     SumCheck, Trace, WindowReport,
 };
 pub use spectral_plot::spectrum_svg;
-pub use text::{audit_text, comparison_text, figure, plan_text, spectrum_text, summary};
+pub use text::{
+    archive_text, audit_text, comparison_text, figure, listing_text, plan_text, restore_text, spectrum_text, summary,
+};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.

@@ -13,7 +13,7 @@ const WIDTH: u32 = 1200;
 const HEIGHT: u32 = 560;
 /// Points drawn for a curve at most; each stands for the smallest and the largest value of its stretch.
 const POINTS: usize = 2000;
-/// Decades shown below the largest value at most.
+/// Decades shown below the largest density at most; half as many of amplitudes.
 const DECADES: f64 = 10.0;
 
 /// An SVG with one panel a channel.
@@ -129,14 +129,16 @@ fn draw(channel: &ChannelSpectrum, curves: &[Curve<'_>], block: &Area<'_>) -> Re
             y = (y.0.min(low), y.1.max(high));
         }
     }
-    y.0 = y.0.max(y.1 * 10_f64.powf(-DECADES));
+    let decades = if first.density.is_some() { DECADES } else { DECADES / 2.0 };
+    y.0 = y.0.max(y.1 * 10_f64.powf(-decades));
     // One point, or one value: an axis needs a width.
     let widened = |(low, high): (f64, f64)| if high > low * 1.01 { low..high } else { low / 2.0..high * 2.0 };
     let along = if frequency_unit == "Hz" { "frequency" } else { "spatial frequency" };
     let mut chart: Chart<'_, '_> = ChartBuilder::on(&panel)
         .margin(8)
+        .margin_right(28)
         .x_label_area_size(40)
-        .y_label_area_size(80)
+        .y_label_area_size(84)
         .build_cartesian_2d(widened(x).log_scale(), widened((y.0 / 1.5, y.1 * 1.5)).log_scale())
         .map_err(failed)?;
     let value = if first.density.is_some() { "density" } else { "amplitude" };
@@ -149,7 +151,7 @@ fn draw(channel: &ChannelSpectrum, curves: &[Curve<'_>], block: &Area<'_>) -> Re
         .x_desc(format!("{along} [{frequency_unit}]"))
         .y_desc(format!("{value}{unit}"))
         .label_style(("sans-serif", 13))
-        .light_line_style(WHITE)
+        .light_line_style(RGBColor(235, 235, 235))
         .x_label_formatter(&|v| short(*v))
         .y_label_formatter(&|v| short(*v))
         .draw()
@@ -168,18 +170,21 @@ fn add(chart: &mut Chart<'_, '_>, curve: &Curve<'_>, index: usize, floor: f64) -
     if !outline.is_empty() {
         chart.draw_series(std::iter::once(Polygon::new(outline, colour.mix(0.18)))).map_err(failed)?;
     }
-    let line = curve.line.iter().map(|(f, v)| (*f, v.max(floor)));
     let style = colour.stroke_width(if index == 0 { 2 } else { 1 });
     let (dash, gap) = DASHES[index % DASHES.len()];
-    if gap == 0 {
-        chart.draw_series(LineSeries::new(line, style)).map_err(failed)?;
-    } else {
-        chart.draw_series(DashedLineSeries::new(line, dash, gap, style)).map_err(failed)?;
+    // What lies below the picture is left out, not drawn along its edge.
+    for piece in curve.line.split(|(_, value)| *value < floor).filter(|piece| !piece.is_empty()) {
+        let points = piece.iter().copied();
+        if gap == 0 {
+            chart.draw_series(LineSeries::new(points, style)).map_err(failed)?;
+        } else {
+            chart.draw_series(DashedLineSeries::new(points, dash, gap, style)).map_err(failed)?;
+        }
     }
     let marks = curve.trace.lines.iter().filter_map(|found| {
         let nearest =
             curve.line.iter().min_by(|a, b| (a.0 - found.frequency).abs().total_cmp(&(b.0 - found.frequency).abs()))?;
-        Some(Circle::new((nearest.0, nearest.1.max(floor)), 4, colour.stroke_width(1)))
+        (nearest.1 >= floor).then(|| Circle::new(*nearest, 4, colour.stroke_width(1)))
     });
     chart.draw_series(marks).map_err(failed)?;
     Ok(())
@@ -189,7 +194,8 @@ fn bracketed(trace: &Trace) -> String {
     if trace.unit.is_unknown() { String::new() } else { format!(" [{}]", trace.unit) }
 }
 
-/// A tick: powers of ten in short.
+/// A tick in short: axes step by multiplication, whose rounding nobody wants to read.
 fn short(value: f64) -> String {
-    if (1e-3..1e5).contains(&value) { format!("{value}") } else { format!("{value:e}") }
+    let rounded: f64 = format!("{value:.3e}").parse().unwrap_or(value);
+    if (1e-3..1e5).contains(&rounded) { format!("{rounded}") } else { format!("{rounded:e}") }
 }

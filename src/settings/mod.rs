@@ -9,6 +9,7 @@ use std::collections::BTreeMap;
 
 use serde_json::{Map, Value};
 
+use crate::codec::Wanted;
 use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
@@ -63,6 +64,8 @@ pub struct Settings {
     pub encoding: Option<String>,
     /// Fixed decimals of CSV output; shortest digits when `None`.
     pub decimals: Option<u8>,
+    /// What an archive may lose.
+    pub archive: Wanted,
     /// Notes are errors.
     pub strict: bool,
     /// What was set, as written.
@@ -118,6 +121,8 @@ impl Settings {
     pub fn to_map(&self) -> Map<String, Value> {
         rows()
             .into_iter()
+            // An archive's options say nothing of other results.
+            .filter(|row| row.group != Group::Archive || self.texts.contains_key(row.key))
             .map(|row| {
                 let texts = self.texts.get(row.key);
                 let value = match row.arity {

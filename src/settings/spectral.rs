@@ -119,8 +119,12 @@ impl SegmentLength {
                     return Err(Error::usage(format!("--segment {corner}: the record's axis is in {}", axis.unit()))
                         .remedy("give it in samples, or as a piece of the axis"));
                 }
-                // A float beyond every record saturates here and is refused as longer than the record.
-                Ok((axis.rate_base() / corner.frequency()).round() as usize)
+                let samples = (axis.rate_base() / corner.frequency()).round();
+                if samples > axis.len() as f64 {
+                    return Err(Error::unsupported(format!("--segment {corner}: longer than the record"))
+                        .remedy("give a shorter one"));
+                }
+                Ok(samples as usize)
             }
         }
     }

@@ -62,7 +62,11 @@ pub fn lines(record: &[f64], rate: f64, count: usize, planner: &Planner) -> Resu
     let mut peaks: Vec<usize> = (2..bins.saturating_sub(2))
         .filter(|&k| {
             let p = &spectrum.power;
-            p[k] > threshold * noise[k] && p[k] > rounding && p[k] >= p[k - 1] && p[k] > p[k + 1]
+            p[k] > threshold * noise[k]
+                && p[k] > rounding
+                && p[k] >= p[k - 1]
+                && p[k] > p[k + 1]
+                && p[k] > threshold * spectrum.noise_of_the_louder_side(k)
         })
         .collect();
     peaks.sort_by(|&a, &b| spectrum.power[b].total_cmp(&spectrum.power[a]).then(a.cmp(&b)));
@@ -136,6 +140,15 @@ impl Spectrum {
                 median(&mut about).unwrap_or(0.0).max(far[k]) / LN_2
             })
             .collect()
+    }
+
+    /// Mean power of the noise on that side of a bin where there is more: on a slope the median of both sides lies too low.
+    fn noise_of_the_louder_side(&self, k: usize) -> f64 {
+        let bins = self.power.len();
+        let sides =
+            [k.saturating_sub(NEAR)..k.saturating_sub(LOBE), (k + LOBE + 1).min(bins)..(k + NEAR + 1).min(bins)];
+        let level = |side: std::ops::Range<usize>| median(&mut self.power[side].to_vec()).unwrap_or(0.0);
+        sides.into_iter().map(level).fold(0.0, f64::max) / LN_2
     }
 
     /// The line at bin `k`, its frequency in cycles per sample.

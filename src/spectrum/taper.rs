@@ -146,9 +146,10 @@ fn bandwidths(points: usize, most: u32) -> Vec<f64> {
 
 /// Degrees of freedom of `count` tapers at line `q` of a flat density: 2K, fewer near zero and near the Nyquist frequency.
 ///
-/// Tapers j and l at line q also see the mirror image of the line: their coefficients are correlated with each other's
-/// conjugates by 1/2 where |j - l| or j + l is four times the line's distance from the end, by 1 at the end itself for j = l.
-/// The variance of the estimate is that of independent coefficients times 1 + (sum of these squares)/K.
+/// Tapers j and l at line q also see the mirror image of the line: p = sum_n v_j v_l exp(-2 i a n), a the line's angle from the
+/// end. Its real part is 1/2 where |j - l| or j + l is four times the line's distance from the end, 1 for j = l at the end
+/// itself; its imaginary part is a sum of cotangents where j - l is odd. The variance of the estimate is that of independent
+/// coefficients times 1 + (sum of |p|^2)/K.
 fn freedom(points: usize, q: usize, count: u32) -> f64 {
     let tapers = i64::from(count);
     let to_end = (4 * q as i64).min(2 * points as i64 - 4 * q as i64).abs();
@@ -157,9 +158,36 @@ fn freedom(points: usize, q: usize, count: u32) -> f64 {
     } else {
         let differing = 2 * (tapers - to_end).max(0);
         let adding = (to_end - 1).min(2 * tapers + 1 - to_end).max(0);
-        (differing + adding) as f64 / 4.0
+        (differing + adding) as f64 / 4.0 + imaginary_squares(points, to_end, tapers)
     };
     2.0 * tapers as f64 / (1.0 + squares / tapers as f64)
+}
+
+/// Sum over all pairs of tapers of the squared imaginary part of p: with d = |j - l| and s = j + l, both odd, p is A(d) - A(s),
+/// A(m) = (cot(b (e + m)) + cot(b (e - m)))/(2(N+1)), b = pi/(2(N+1)), e four times the distance from the end.
+fn imaginary_squares(points: usize, to_end: i64, tapers: i64) -> f64 {
+    if to_end > 4 * tapers {
+        return 0.0; // below a thousandth of the tapers
+    }
+    let unit = std::f64::consts::PI / (2.0 * points as f64);
+    let cotangent = |m: i64| (unit * m as f64).tan().recip();
+    let part = |m: i64| (cotangent(to_end + m) + cotangent(to_end - m)) / (2.0 * points as f64);
+    // Sums over odd s below each: entry i covers s = 1, 3, ..., 2i - 1.
+    let (mut sums, mut squares) = (vec![0.0], vec![0.0]);
+    for i in 0..tapers {
+        let value = part(2 * i + 1);
+        sums.push(sums[i as usize] + value);
+        squares.push(squares[i as usize] + value * value);
+    }
+    let mut total = 0.0;
+    for d in (1..tapers).step_by(2) {
+        // s runs over d + 2, d + 4, ..., 2K - d.
+        let (from, to) = ((d + 1) as usize / 2, (2 * tapers - d + 1) as usize / 2);
+        let value = part(d);
+        let pairs = (to - from) as f64;
+        total += pairs * value * value - 2.0 * value * (sums[to] - sums[from]) + squares[to] - squares[from];
+    }
+    2.0 * total
 }
 
 #[cfg(test)]
@@ -236,6 +264,35 @@ mod tests {
             let power = density.values[300] * density.bandwidth[300];
             // The image at -300 leaks in by about (K/600)^2.
             assert!((power - 0.5).abs() < 1e-3, "{tapers}: {power}");
+        }
+    }
+
+    #[test]
+    fn degrees_of_freedom_near_the_ends_are_those_of_the_covariances_written_out() {
+        let tau = std::f64::consts::TAU;
+        for (len, tapers) in [(199_usize, 8_usize), (200, 5), (64, 7), (30, 1)] {
+            let points = len + 1;
+            let taper =
+                |j: usize, n: usize| (2.0 / points as f64).sqrt() * (tau / 2.0 * (j * n) as f64 / points as f64).sin();
+            for q in 0..=points / 2 {
+                let mut squares = 0.0;
+                for j in 1..=tapers {
+                    for l in 1..=tapers {
+                        let (mut re, mut im) = (0.0, 0.0);
+                        for n in 1..=len {
+                            let angle = 2.0 * tau * q as f64 * n as f64 / points as f64;
+                            re += taper(j, n) * taper(l, n) * angle.cos();
+                            im += taper(j, n) * taper(l, n) * angle.sin();
+                        }
+                        squares += re * re + im * im;
+                    }
+                }
+                let count = tapers as f64;
+                let expected = 2.0 * count * count / (count + squares);
+                let found = freedom(points, q, tapers as u32);
+                // Beyond four times as many lines as tapers the imaginary parts are left out.
+                assert!((found / expected - 1.0).abs() < 1e-3, "{len} {tapers} {q}: {found} {expected}");
+            }
         }
     }
 }

@@ -6,6 +6,7 @@ mod field;
 mod header;
 mod number;
 mod origin;
+mod restored;
 mod series;
 mod stamp;
 mod table;
@@ -21,6 +22,7 @@ use crate::error::{Error, Finding, Result};
 use crate::record::{Format, Record};
 pub use number::Digits;
 pub use origin::{Origin, Rows};
+pub use restored::RestoredTable;
 pub use series::spectrum_csv;
 pub use wave_header::{WAVE_ENCODINGS, WaveEncoding};
 pub use whole::{

@@ -2,7 +2,7 @@
 
 use super::overlay::Subject;
 use crate::basis::Planner;
-use crate::error::{Finding, Result};
+use crate::error::{Error, Finding, Result};
 use crate::report::{DensityReport, DensitySeries, Ratio, SegmentsReport, SumCheck, Trace, WindowReport};
 use crate::settings::{Method, Settings};
 use crate::spectrum::{self, Correlation, Density, Limits, Segments, ratio_limits};
@@ -54,6 +54,11 @@ pub fn density(
             spectrum::welch(samples, rate, cut, options.window, options.detrend, planner)?
         }
     };
+    if found.values.iter().any(|value| !value.is_finite()) {
+        return Err(
+            Error::unsupported("the density is too large for a double").remedy("scale the channel with --calibrate")
+        );
+    }
     let mut limits = Limits::new(options.confidence)?;
     let extent =
         |values: &[f64]| values.iter().fold([f64::INFINITY, f64::NEG_INFINITY], |[a, b], &v| [a.min(v), b.max(v)]);

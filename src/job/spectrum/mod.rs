@@ -39,7 +39,7 @@ pub fn spectrum(first: Input, second: Option<Input>, settings: &Settings) -> Res
         None => vec![None; first.intake.record.channel_count()],
     };
     let channels: Vec<Channel<'_>> = first.intake.record.channels().collect();
-    let spectra: Vec<ChannelSpectrum> = channels
+    let mut spectra: Vec<ChannelSpectrum> = channels
         .par_iter()
         .zip(&pairs)
         .filter(|(_, pair)| second.is_none() || pair.is_some())
@@ -54,6 +54,8 @@ pub fn spectrum(first: Input, second: Option<Input>, settings: &Settings) -> Res
         let place = Place::file(&second.intake.outline.source.path);
         notes.extend(second.notes.iter().map(|note| note.clone().at(place.clone())));
     }
+    notes.extend(shared_notes(&mut spectra));
+    intake::refuse_notes(settings, &notes)?;
     intake::refuse_notes(settings, &spectra.iter().flat_map(|s| s.notes.clone()).collect::<Vec<_>>())?;
     Ok(SpectrumReport {
         schema: SCHEMA,
@@ -68,6 +70,21 @@ pub fn spectrum(first: Input, second: Option<Input>, settings: &Settings) -> Res
         outputs: Vec::new(),
         caution: SPECTRUM_CAUTION,
     })
+}
+
+/// Takes out the remarks that every channel of several has in common: they are told once.
+fn shared_notes(spectra: &mut [ChannelSpectrum]) -> Vec<Finding> {
+    let [first, others @ ..] = spectra else { return Vec::new() };
+    if others.is_empty() {
+        return Vec::new();
+    }
+    let same = |a: &Finding, b: &Finding| a.code == b.code && a.text == b.text;
+    let is_shared = |note: &&Finding| others.iter().all(|other| other.notes.iter().any(|n| same(n, note)));
+    let shared: Vec<Finding> = first.notes.iter().filter(is_shared).cloned().collect();
+    for channel in spectra {
+        channel.notes.retain(|note| !shared.iter().any(|other| same(other, note)));
+    }
+    shared.into_iter().map(|note| Finding::new(note.code, format!("every channel: {}", note.text))).collect()
 }
 
 /// A record ready for its spectrum.

@@ -151,7 +151,6 @@ fn road(subject: &Subject<'_>, density: &Density, limits: &mut Limits, notes: &m
         );
         notes.push(Finding::new("road_range", text));
     }
-    // The normal quantile of the confidence, from the chi-square of one degree of freedom: (1/factor) at the level itself.
     let quantile = normal_quantile(limits.level());
     let spread = (quantile * found.relative_error).exp();
     let ends = [found.density_at_reference / spread, found.density_at_reference * spread];
@@ -189,6 +188,11 @@ const ORTHONORMAL: &str = "c_k = sum w_n x_n phi_k(x_n) with orthonormal phi_k =
 pub fn coefficients(subject: &Subject<'_>, planner: &Planner) -> Result<CoefficientsReport> {
     let (ends, baseline) = &subject.basis;
     let found = Coefficients::of(&subject.samples, *ends, baseline, planner)?;
+    if !found.energy.is_finite() {
+        return Err(
+            Error::unsupported("the energy is too large for a double").remedy("scale the channel with --calibrate")
+        );
+    }
     let (len, rate) = (found.values.len(), subject.axis.rate_base());
     let report = |c: Coefficient| CoefficientReport {
         index: c.index,

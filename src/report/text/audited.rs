@@ -63,7 +63,7 @@ pub fn audit_text(report: &AuditReport) -> String {
         ]);
     }
     text.push_str(&indented(&rows));
-    text.push_str(&format!("a run will take about {} MiB\n", report.audit.estimate.bytes.div_ceil(1 << 20)));
+    text.push_str(&format!("{}\n", report.audit.estimate.sentence()));
     text.push_str(&notes_text(&report.audit.findings));
     if let Some(refusal) = &report.refusal {
         text.push_str(&format!("a run would be refused: {}\n", escape(refusal)));

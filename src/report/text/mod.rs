@@ -1,5 +1,6 @@
 //! Results for people: short lines and tables, units everywhere, nothing that a file could use to command a terminal.
 
+mod archived;
 mod audited;
 mod compared;
 mod conditioned;
@@ -17,6 +18,7 @@ use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
 use crate::unit::counted;
 
+pub use archived::{archive_text, listing_text, restore_text};
 pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;

@@ -88,6 +88,9 @@ fn density_text(density: &DensityReport) -> String {
         figure(high, 3),
     ));
     text.push_str(&format!("one-sided: {}\n", density.formula));
+    text.push_str(
+        "limits hold for noise that is the same throughout; of tones the line and its error below tell more\n",
+    );
     text
 }
 
@@ -138,13 +141,17 @@ fn channel_text(channel: &ChannelSpectrum) -> String {
 
 fn sum_text(density: &DensityReport, unit: &Unit) -> String {
     let check = &density.sum_check;
-    let square = if unit.is_unknown() { String::new() } else { format!(" ({unit})2") };
+    let square = match unit.to_string() {
+        label if label.is_empty() => label,
+        label if label.chars().all(char::is_alphabetic) => format!(" {label}2"),
+        label => format!(" ({label})2"),
+    };
     let difference = match check.difference {
         Some(share) => format!(" ({:+.2} %)", 100.0 * share),
         None => String::new(),
     };
     let identity = match check.rounding {
-        Some(rounding) => format!("; equal to the weighted mean square to {}", figure(rounding, 1)),
+        Some(rounding) => format!("; weighted mean square equal to {}", figure(rounding, 1)),
         None => String::new(),
     };
     format!(
