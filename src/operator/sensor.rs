@@ -60,7 +60,7 @@ impl Setting for Correct {
         let points = [(low, "lowest of the table"), (top, "highest of the table")];
         let corners = points
             .into_iter()
-            .filter(|&(hz, _)| hz < nyquist_hz && (hz < top || hz == top))
+            .filter(|&(hz, _)| hz < nyquist_hz && hz <= top)
             .map(|(hz, text)| CornerPoint { text: text.to_owned(), cycles: hz / rate_hz })
             .collect();
         let part = Part {
