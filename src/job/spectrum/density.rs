@@ -207,7 +207,7 @@ mod tests {
     #[test]
     fn lines_stand_on_round_frequencies_where_the_rate_allows() {
         for (samples, rate, segment) in [
-            (2400, 200.0, 200),        // 1 Hz; 0.667 Hz would be exact
+            (2400, 200.0, 400),        // 0.5 Hz, a ratio of 1.33 from the exact 0.667 Hz; 1 Hz is one of 1.5
             (100_000, 1000.0, 10_000), // 0.1 Hz
             (48_000, 48_000.0, 4800),  // 10 Hz
             (800, 2000.0, 100),        // 20 / m
