@@ -217,6 +217,7 @@ fn both_parts_of_a_split_add_up_digit_by_digit() {
             assert_eq!(cells[2] + cells[3], cells[1], "{more:?}: {line}");
         }
     }
+    assert!(run.folder().join("parts.csv.json").exists());
     let result = sidecar(&run, "parts.csv");
     assert_eq!(result["channels"][0]["split"]["corner"], "8mm");
     // Even is the standard's line symmetrical reflection, odd about the end values its point symmetrical one.

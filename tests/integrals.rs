@@ -284,3 +284,18 @@ fn noise_scatters_as_the_band_says() {
         }
     }
 }
+
+#[test]
+fn integrals_are_linear() {
+    let mut random = Random(3);
+    for conditions in ["start-rest", "rest", "pinned", "steady", "zero-mean"] {
+        let bench = Bench::new(200, 2.0, 2, conditions, &[], "m/s2");
+        let factor = random.logarithmic(0.1, 10.0);
+        let x: Vec<f64> = (0..200).map(|_| random.normal()).collect();
+        let scaled: Vec<f64> = x.iter().map(|v| factor * v).collect();
+        let (once, again) = (bench.run(&x).output, bench.run(&scaled).output);
+        for (a, b) in once.iter().zip(&again) {
+            assert!((factor * a - b).abs() < 1e-10 * factor, "{conditions}: {a} {b}"); // metres, some roundings
+        }
+    }
+}
