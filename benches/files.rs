@@ -33,7 +33,7 @@ fn written(record: &Record, format: usize, digits: Digits, encoding: WaveEncodin
 
 fn files(c: &mut Criterion) {
     let csv = text();
-    let (record, _) = regularise::regularise(taken(&csv), &RegulariseOptions::default()).expect("an even record");
+    let record = regularise::regularise(taken(&csv), &RegulariseOptions::default()).expect("an even record").record;
     let mut group = c.benchmark_group("read");
     group.sample_size(10);
     group.throughput(Throughput::Bytes(csv.len() as u64));

@@ -18,7 +18,7 @@ fn main() -> Result<(), Box<dyn Error>> {
     match arguments.iter().map(String::as_str).collect::<Vec<_>>()[1..] {
         ["read", file] => timed(|| taken(file), |raw, path| std::fs::write(path, doubles(raw))),
         ["write", file, output] => {
-            let (record, _) = regularise::regularise(taken(file)?, &RegulariseOptions::default())?;
+            let record = regularise::regularise(taken(file)?, &RegulariseOptions::default())?.record;
             let content = Content { digits: Digits::Shortest, ..Content::new(&record) };
             let run = || -> endgrain::error::Result<()> {
                 let sink = Pending::stream(output, File::create(output)?);

@@ -163,5 +163,10 @@ pub fn settings(matches: &ArgMatches, groups: &[Group], input: Option<&str>) -> 
     let recipe = recipe_of(matches)?;
     let overrides = input.map(|path| recipe.overrides_of(Path::new(path))).unwrap_or_default();
     let own = |key: &str| find(key).is_some_and(|row| groups.contains(&row.group));
-    layer(matches, groups)?.over(&recipe.layer(&overrides).only(own)).settings()
+    let settings = layer(matches, groups)?.over(&recipe.layer(&overrides).only(own)).settings()?;
+    if settings.fitness.is_some() && groups.contains(&Group::Judgement) {
+        return Err(Error::usage("--require: \"clean\" is asked of an audit")
+            .remedy("use within or borderline here, and audit FILE --require clean before"));
+    }
+    Ok(settings)
 }

@@ -129,12 +129,15 @@ impl Extended<'_> {
         let len = self.samples.len() as i64;
         let inside = |n: i64| n.clamp(0, len);
         let (from, to) = (inside(first), inside(first + block.len() as i64));
-        let within = (from - first) as usize..(to - first).max(from - first) as usize;
+        // A block may lie wholly past either end.
+        let size = block.len() as i64;
+        let start = (from - first).clamp(0, size);
+        let within = start as usize..(to - first).clamp(start, size) as usize;
         for (place, value) in block[..within.start].iter_mut().enumerate() {
             *value = self.outside(first + place as i64);
         }
         for (place, value) in block[within.end..].iter_mut().enumerate() {
-            *value = self.outside(to + place as i64);
+            *value = self.outside(first + (within.end + place) as i64);
         }
         let values = &mut block[within];
         values.copy_from_slice(&self.samples[from as usize..][..values.len()]);

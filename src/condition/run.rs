@@ -81,7 +81,7 @@ pub(super) fn passes(scene: &Scene<'_>, samples: &[f64], ends: Ends, baseline: &
         let (mut outliers, mut integral) = (None, None);
         let mut passed = match pass.robust() {
             Some(strength) => {
-                let (passed, count) = robust(input, ends, &baseline, strength, scene.planner)?;
+                let (passed, count) = robust(input, ends, &baseline, strength, scene)?;
                 outliers = Some(count);
                 passed
             }
@@ -161,7 +161,7 @@ pub(super) fn corrected(
         let (ends, baseline) = stage(scene, pass, &output, ends, baseline, index == 0)?;
         let plain = pass.with_turns(0);
         if let Some(strength) = pass.robust() {
-            output = robust(&output, ends, &baseline, strength, scene.planner)?.0.output;
+            output = robust(&output, ends, &baseline, strength, scene)?.0.output;
         } else if !plain.is_identity() {
             output = apply(&output, ends, &baseline, &plain, span, scene.planner)?.output;
         }
@@ -181,13 +181,14 @@ fn robust(
     ends: Ends,
     baseline: &Baseline,
     strength: f64,
-    planner: &Planner,
+    scene: &Scene<'_>,
 ) -> Result<(Passed, usize)> {
+    let order = scene.chain.treatments().smoothing.map_or(2, |smoothing| smoothing.order);
     let first = ends.first_position();
     let at = |n: usize| baseline.polynomial().at(n as f64 + first);
     let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
     let Robust { values, weights, .. } =
-        Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
+        Smoother::new(scene.planner, ends, samples.len(), order)?.robust(&rest, None, Some(strength));
     let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
     let passed = Passed { output, parseval: 0.0, first, spacing: 1.0, arrival: Arrival::default() };
     Ok((passed, weights.iter().filter(|w| **w == 0.0).count()))

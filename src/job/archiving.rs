@@ -238,7 +238,8 @@ fn layout_of(raw: &RawRecord, settings: &Settings, notes: &mut Vec<Finding>) -> 
             let columns = table.columns.iter().filter_map(|role| match role {
                 ColumnRole::Stamps => Some(0),
                 ColumnRole::Channel(channel) => Some(*channel as u64 + 1),
-                ColumnRole::Untouched => None,
+                // The dates are part of the stamps, which come back as seconds.
+                ColumnRole::Dates | ColumnRole::Untouched => None,
             });
             // A header whose columns or units no longer hold would say what is not so.
             let kept = dropped == 0 && settings.read.units.is_empty() && settings.read.calibrate.is_empty();

@@ -15,6 +15,7 @@ use crate::job::intake;
 use crate::job::judgement::{Judged, trusted_report};
 use crate::job::picture::{Scene, draw};
 use crate::job::preparation::{self, prepare};
+use crate::job::repairs;
 use crate::job::requirement;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
@@ -31,7 +32,8 @@ use crate::verdict::{CANDIDATES, EVEN, ODD_ZERO, PERIODIC};
 pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Comparison, Vec<Picture>)> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
-    let (chain, remarks) = chain::of(record, settings)?;
+    let (chain, mut remarks) = chain::of(record, settings)?;
+    remarks.extend(repairs::near_ends_of(&intake, &chain));
     intake::refuse_notes(settings, &remarks)?;
     refuse_beyond_memory(record, &chain, settings)?;
     preparation::check(&chain, settings)?;

@@ -15,6 +15,7 @@ mod origin;
 mod passage;
 mod picture;
 mod preparation;
+mod repairs;
 mod requirement;
 mod restoration;
 mod running;
@@ -25,7 +26,7 @@ mod work;
 
 pub use archiving::compress;
 pub use comparison::compare;
-pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
+pub use conditioning::{Audited, Bench, Prepared, condition, condition_parts, plan, prepare};
 pub use examination::{Examined, audit, examine};
 pub use restoration::{Damage, restore};
 pub use spectrum::spectrum;

@@ -349,6 +349,8 @@ fn report(
         integral: None,
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
+        repaired: 0,
+        repairs: Vec::new(),
         parseval: outcome.parseval,
     }
 }

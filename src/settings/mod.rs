@@ -20,6 +20,7 @@ use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
 pub use layer::Layer;
+pub use parse::bytes;
 pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
@@ -56,6 +57,8 @@ pub struct Settings {
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
     pub require: Option<Adequacy>,
+    /// What an audited record must be, or the audit counts as insufficient.
+    pub fitness: Option<Fitness>,
     /// What happens to output outside the trusted span.
     pub edges: Edges,
     /// Format of the output; that of the input when `None`.
@@ -66,6 +69,8 @@ pub struct Settings {
     pub decimals: Option<u8>,
     /// What an archive may lose.
     pub archive: Wanted,
+    /// Columns tell which samples were mended.
+    pub mark_repairs: bool,
     /// Notes are errors.
     pub strict: bool,
     /// What was set, as written.
@@ -79,6 +84,13 @@ pub enum Beside {
     Sigma,
     /// The record as corrected: filtered, less offset and drift, high-passed; the result is its integral.
     Corrected,
+}
+
+/// What an audit can be required to find.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Fitness {
+    /// Nothing at all: no note, no fault.
+    Clean,
 }
 
 /// What happens to output outside the trusted span.

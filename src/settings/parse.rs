@@ -11,7 +11,7 @@ use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::{Beside, Edges, Settings, spectral};
+use crate::settings::{Beside, Edges, Fitness, Settings, spectral};
 use crate::unit::Unit;
 use crate::verdict::Adequacy;
 
@@ -20,6 +20,8 @@ type Words<T> = &'static [(&'static str, T)];
 
 const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
 const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline", Adequacy::Borderline)];
+/// What `--require` can ask of an audit.
+const CLEAN: &str = "clean";
 const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
 const BESIDES: Words<Beside> = &[("sigma", Beside::Sigma), ("corrected", Beside::Corrected)];
@@ -61,6 +63,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
         "regrid" if text == REGRID_BY_ITSELF => settings.regularise.regrid = None,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
+        "mark-repairs" => settings.mark_repairs = switch(key, text)?,
         "strict" => settings.strict = switch(key, text)?,
         "max-error" => bound(settings, archive::Request::Max(context(key, text.parse())?))?,
         "rms-error" => bound(settings, archive::Request::Rms(context(key, text.parse())?))?,
@@ -73,6 +76,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "extension" => settings.stage.extension = context(key, text.parse())?,
         "assert" => context(key, settings.assertion.add(text))?,
         "tolerance" => settings.tolerance = context(key, text.parse())?,
+        "require" if text == CLEAN => settings.fitness = Some(Fitness::Clean),
         "require" => settings.require = Some(one_of(key, text, REQUIRES)?),
         "edges" => settings.edges = one_of(key, text, EDGES)?,
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
@@ -186,8 +190,11 @@ fn decimals(text: &str) -> Result<u8> {
     Ok(count)
 }
 
-/// `500MB`, `4GiB`: at least a number of bytes.
-fn bytes(text: &str) -> Result<u64> {
+/// Bytes from text such as `500MB` or `4GiB`.
+///
+/// # Errors
+/// `Usage` for anything else.
+pub fn bytes(text: &str) -> Result<u64> {
     const SIZES: [(&str, u64); 8] = [
         ("kB", 1_000),
         ("MB", 1_000_000),

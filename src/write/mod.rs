@@ -133,6 +133,14 @@ pub fn save(writer: &Writer, content: &Content<'_>, mut output: Pending<'_>) -> 
     output.finish().map(|written| (written, findings))
 }
 
+/// Writes content that has been checked into `output`, which is not finished yet.
+///
+/// # Errors
+/// Those of the writer, with the output's name.
+pub fn put(writer: &Writer, content: &Content<'_>, output: &mut Pending<'_>) -> Result<()> {
+    (writer.write)(content, output).map_err(|error| output.placed(error))
+}
+
 /// The writer of a format.
 pub fn writer(format: Format) -> &'static Writer {
     match format {

@@ -214,8 +214,8 @@ impl<'a> Plan<'a> {
             }
             match (replaced, layout.columns.get(column), self.origin.stamps) {
                 (Some(channel), ..) => self.value(*channel, sample, false, out),
-                (None, Some(ColumnRole::Stamps), Some(stamps)) => {
-                    super::field::push_field(out, &stamps(sample), layout.delimiter);
+                (None, Some(role @ (ColumnRole::Stamps | ColumnRole::Dates)), Some(stamps)) => {
+                    super::field::push_field(out, &stamps(sample, *role), layout.delimiter);
                 }
                 _ => self.blank(out),
             }

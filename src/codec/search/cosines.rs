@@ -12,7 +12,7 @@ pub fn in_the_mean(task: Task<'_>, goal: f64) -> Result<Vec<Coded>> {
     let energy = goal * goal * task.samples.len() as f64;
     let whole = segments::whole(task.samples, goal, task.planner)?;
     let plain = Prepared::new(Vec::new(), whole.lengths.clone(), whole.coefficients.clone());
-    let (rounds, close) = if task.effort == Effort::Long { (24, 4e-3) } else { (10, 2e-2) };
+    let (rounds, close) = if task.effort == Effort::Long { (24, 1e-3) } else { (12, 3e-3) };
     let find = |prepared: &Prepared, quantiser: Quantiser, start: f64| {
         // The error is squared and summed: its square root grows with the step.
         root::largest(start, energy.sqrt(), close, rounds, |step| {

@@ -190,6 +190,10 @@ fn run(
 
 /// The one reading among `runs`, or an error that shows two.
 fn choose(beginning: Beginning<'_>, mut runs: Vec<Found>) -> Result<Option<Found>> {
+    // Where tabs part the fields of many lines, a tab too many on one of them is a fault, not a blank.
+    if runs.iter().any(|run| run.dialect.delimiter == b'\t' && run.fields > 1 && run.looks.len() >= RUN) {
+        runs.retain(|run| run.dialect.delimiter != b' ');
+    }
     let longest = runs.iter().map(|run| run.looks.len()).max().unwrap_or(0);
     runs.retain(|run| run.looks.len() == longest);
     // Blanks separate only where nothing else does: a date and a clock time have one between them.

@@ -60,6 +60,11 @@ pub fn summary(report: &Report) -> String {
             text.push_str(&integral_text(&channel.name, integral, &channel.unit, &report.input.axis));
         }
     }
+    for channel in report.channels.iter().filter(|channel| channel.repaired > 0) {
+        let (name, count, gaps) = (escape(&channel.name), channel.repaired, channel.repairs.len());
+        let places = if gaps == 1 { "one place".to_owned() } else { format!("{gaps} places") };
+        text.push_str(&format!("{name}: {count} samples in {places} are not measured but filled in\n"));
+    }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {
         text.push_str(&notes_text(&channel.notes));

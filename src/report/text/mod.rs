@@ -49,7 +49,8 @@ fn indented(table: &Table) -> String {
 
 /// `hoist.csv: 2400 samples, 200 Hz (from the stamps, between ...), 0 s to 11.995 s`.
 fn input_line(input: &InputReport) -> String {
-    format!("{}: {}\n", crate::place::escape(&input.path), axis_text(&input.axis, input.samples))
+    let part = input.part.map(|part| format!(", part {} of {}", part.number, part.count)).unwrap_or_default();
+    format!("{}{part}: {}\n", crate::place::escape(&input.path), axis_text(&input.axis, input.samples))
 }
 
 fn axis_text(axis: &AxisReport, samples: usize) -> String {
