@@ -120,7 +120,7 @@ def weightings(program, folder, rng, tally):
 
 
 def sensor(program, folder, rng, tally):
-    f = np.logspace(-1, np.log10(150), 60)
+    f = np.logspace(np.log10(0.5), np.log10(150), 60)
     h = 1 / (1 - (f / 120) ** 2 + 1.2j * f / 120) * (1j * f / 0.05) / (1 + 1j * f / 0.05)
     gain_db, phase = 20 * np.log10(np.abs(h)), np.degrees(np.unwrap(np.angle(h)))
     wrapped = (phase + 180) % 360 - 180
