@@ -250,7 +250,7 @@ fn one(batch: &Batch, earlier: &Earlier, bench: &Bench, number: u64, planned: &P
         Ok(ready) => ready,
         Err(failure) => {
             let input = fingerprint_of_file(&planned.path).ok().map(|bytes| hex(&bytes));
-            failed(number, planned, input, failure)
+            failed(number, planned, input, *failure)
         }
     }
 }
@@ -263,13 +263,13 @@ fn failed(number: u64, planned: &Planned, input_sha256: Option<String>, failure:
 }
 
 /// What a record does to itself stays with it: an error, or a fault of the program.
-fn guarded<T>(work: impl FnOnce() -> Result<T>) -> std::result::Result<T, Failure> {
+fn guarded<T>(work: impl FnOnce() -> Result<T>) -> std::result::Result<T, Box<Failure>> {
     match catch_unwind(AssertUnwindSafe(work)) {
         Ok(Ok(value)) => Ok(value),
-        Ok(Err(error)) => Err(Failure::of(&error)),
+        Ok(Err(error)) => Err(Box::new(Failure::of(&error))),
         Err(payload) => {
             let text = payload.downcast_ref::<String>().map(String::as_str);
-            Err(Failure::panic(text.or(payload.downcast_ref::<&str>().copied()).unwrap_or("no message")))
+            Err(Box::new(Failure::panic(text.or(payload.downcast_ref::<&str>().copied()).unwrap_or("no message"))))
         }
     }
 }

@@ -88,7 +88,7 @@ fn fault_in_json(error: &serde_json::Error) -> Error {
 
 fn from_toml(text: &str) -> Result<Recipe> {
     let place = |byte: usize| {
-        let before = &text[..text.floor_char_boundary(byte)];
+        let before = text.get(..byte).unwrap_or(text);
         let start = before.rfind('\n').map_or(0, |at| at + 1);
         Place::field(before.matches('\n').count() as u64 + 1, before[start..].chars().count() as u64 + 1)
     };
