@@ -114,6 +114,11 @@ impl std::error::Error for Error {}
 
 impl From<std::io::Error> for Error {
     fn from(error: std::io::Error) -> Self {
+        // A stream of ours that tells what is wrong with its contents.
+        let error = match error.downcast::<Error>() {
+            Ok(own) => return own,
+            Err(error) => error,
+        };
         let kind = if error.kind() == std::io::ErrorKind::BrokenPipe { Kind::Closed } else { Kind::Io };
         Self::new(kind, error.to_string())
     }

@@ -42,6 +42,7 @@ pub mod condition;
 pub mod metric;
 pub mod verdict;
 pub mod compare;
+pub mod codec;
 pub mod settings;
 pub mod report;
 pub mod write;

@@ -54,7 +54,7 @@ fn each_hostile_name_gets_a_clear_line_and_the_rest_is_done() {
         list.extend(name);
         list.push(0);
     }
-    let ended = scene.fed(&list, &batch("out", &["--null", "--files-from", "-", "--memory", "1G"]));
+    let ended = scene.fed(&list, &batch("out", &["--null", "--files-from", "-", "--memory", "1GB"]));
     assert_eq!(ended.code, Some(5), "{}", ended.told);
     assert!(ended.told.contains("13 records: 5 done, 2 repeated names, 6 failed"), "{}", ended.told);
     scene.ends(5, &["merge", "out"]);
@@ -80,7 +80,7 @@ fn each_hostile_name_gets_a_clear_line_and_the_rest_is_done() {
     assert_eq!(of(&merged, "c\u{fffd}.csv")["path_bytes"], "63ff2e637376");
     assert!(scene.path("out").join(raw).is_file() && scene.path("out/a\nb.csv").is_file());
     // Again: what is done is kept, what failed is tried again.
-    let again = scene.fed(&list, &batch("out", &["--null", "--files-from", "-", "--memory", "1G"]));
+    let again = scene.fed(&list, &batch("out", &["--null", "--files-from", "-", "--memory", "1GB"]));
     assert!(again.told.contains("0 done, 5 kept"), "{}", again.told);
 }
 
@@ -207,8 +207,9 @@ fn wait_for(what: &str, ready: impl Fn() -> bool) {
 }
 
 fn temporaries(scene: &Scene) -> Vec<String> {
-    fs::read_dir(scene.path("out"))
-        .expect("a folder")
+    ["out", "out/results"]
+        .iter()
+        .flat_map(|folder| fs::read_dir(scene.path(folder)).expect("a folder"))
         .map(|entry| entry.expect("an entry").file_name().to_string_lossy().into_owned())
         .filter(|name| name.starts_with('.'))
         .collect()
@@ -244,6 +245,8 @@ fn killed_at_any_instant_nothing_is_lost_doubled_or_partial() {
                 }
             }
         }
+        // What a kill leaves of a plan is stale like what it leaves of an output.
+        scene.file("out/results/.plan.jsonl.abcdefgh.part", "half");
         // An orphan runs on beside the retry.
         let orphan = scene.start(&arguments);
         scene.ends(0, &arguments);

@@ -374,3 +374,33 @@ fn help_of_every_command_starts_with_examples() {
         assert!(text.starts_with("Examples:\n"), "{command}: {text}");
     }
 }
+
+#[test]
+fn a_bound_on_memory_is_kept_before_working() {
+    let run = Run::new();
+    for name in ["hoist.csv", "hoist.wav"] {
+        let input = fixture(name).display().to_string();
+        let with = |memory: &'static str| {
+            vec!["condition", &*input, "--lowpass", "12Hz", "-o", "out.csv", "--memory", memory]
+                .into_iter()
+                .map(str::to_owned)
+                .collect::<Vec<String>>()
+        };
+        let refused = |code: i32, memory: &'static str| {
+            let arguments = with(memory);
+            run.fails(code, &arguments.iter().map(String::as_str).collect::<Vec<_>>())
+        };
+        // 2400 rows of stamps and three axes; one channel of 2400 samples in the WAV file.
+        assert!(refused(4, "15kB").contains("kB of memory, --memory allows 15 kB"), "{name}");
+        let told = refused(4, "20MB");
+        assert!(told.contains("the run takes 33 MiB of memory, --memory allows 20 MiB"), "{name}: {told}");
+        assert!(told.contains("raise --memory"), "{name}: {told}");
+        assert!(refused(2, "much").contains("not a size"), "{name}");
+        assert!(run.files().is_empty(), "{name}: {:?}", run.files());
+        let arguments = with("64MiB");
+        run.ok(&arguments.iter().map(String::as_str).collect::<Vec<_>>());
+        for left in run.files() {
+            fs::remove_file(run.path(&left)).expect("an output");
+        }
+    }
+}

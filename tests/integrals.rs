@@ -41,7 +41,13 @@ impl Bench {
 }
 
 /// Integrates midpoint samples of `record` over `length` seconds under conditions, in m/s2.
-fn integrated(record: impl Fn(f64) -> f64, length: f64, count: usize, times: u8, conditions: &str) -> (Vec<f64>, Outcome) {
+fn integrated(
+    record: impl Fn(f64) -> f64,
+    length: f64,
+    count: usize,
+    times: u8,
+    conditions: &str,
+) -> (Vec<f64>, Outcome) {
     let samples: Vec<f64> = (0..count).map(|n| record((n as f64 + 0.5) * length / count as f64)).collect();
     let outcome = Bench::new(count, length, times, conditions, &[], "m/s2").run(&samples);
     (outcome.output.clone(), outcome)
@@ -127,7 +133,9 @@ fn at_the_calibrators_frequency_one_unit_is_one_unit() {
 #[test]
 fn harmonic_motion_follows_its_relations() {
     // a = (2 pi f)^2 d, v = 2 pi f d (ISO 2041; IEC 60068-2-6): amplitude, frequency, acceleration, velocity.
-    for (mm, f, a, v) in [(1.0, 10.0, 3.947842, 62.83185), (0.1, 50.0, 9.869604, 31.41593), (10.0, 5.0, 9.869604, 314.1593)] {
+    for (mm, f, a, v) in
+        [(1.0, 10.0, 3.947842, 62.83185), (0.1, 50.0, 9.869604, 31.41593), (10.0, 5.0, 9.869604, 314.1593)]
+    {
         let (length, count) = (8.0 / f, 2000);
         let peak = |x: &[f64]| x.iter().fold(0.0_f64, |m, v| m.max(v.abs()));
         let (velocity, _) = integrated(|t| a * (TAU * f * t).cos(), length, count, 1, "zero-mean");
@@ -174,10 +182,8 @@ fn polynomials_exponentials_and_cubics_integrate_exactly() {
     // Largest error over the record for smooth records without end slopes taken off would be 6.6e-5 for N = 200 over 4 s,
     // and 1.0e-7 with estimated slopes; a cumulative trapezoid twice 2.2e-4.
     type Pair = (fn(f64) -> f64, fn(f64) -> f64);
-    let cases: [Pair; 2] = [
-        (|t| t.powi(3), |t| t.powi(5) / 20.0),
-        (|t| (0.7 * t).exp(), |t| ((0.7 * t).exp() - 1.0 - 0.7 * t) / 0.49),
-    ];
+    let cases: [Pair; 2] =
+        [(|t| t.powi(3), |t| t.powi(5) / 20.0), (|t| (0.7 * t).exp(), |t| ((0.7 * t).exp() - 1.0 - 0.7 * t) / 0.49)];
     for (record, exact) in cases {
         let mut last = f64::INFINITY;
         for count in [50, 200, 800] {
@@ -201,9 +207,7 @@ fn a_half_cycle_too_many_does_not_hurt_the_end_line() {
     // a = A sin(2 pi f t) over m + 1/2 cycles from rest: v = A/(2 pi f) (1 - cos(2 pi f t)), mean A/(2 pi f).
     let w = TAU * 1.25;
     let (v, _) = integrated(|t| (w * t).sin(), 2.0, 1000, 1, "start-rest");
-    let worst = (0..1000)
-        .map(|n| (v[n] - (1.0 - (w * (n as f64 + 0.5) / 500.0).cos()) / w).abs())
-        .fold(0.0, f64::max);
+    let worst = (0..1000).map(|n| (v[n] - (1.0 - (w * (n as f64 + 0.5) / 500.0).cos()) / w).abs()).fold(0.0, f64::max);
     assert!(worst < 1e-8, "{worst}");
 }
 
@@ -257,7 +261,8 @@ fn noise_scatters_as_the_band_says() {
         let bench = Bench::new(count, length, 2, conditions, more, "m/s2");
         let high_gain = |f: f64| if f == 0.0 { 0.0 } else { 1.0 / (1.0 + (CORNER / f).powi(8)) };
         let high = (!more.is_empty()).then_some(HighPass { gain: &high_gain, corner: CORNER });
-        let trial = Trial { solver: &solver, turns: -2, gain: &|_| 1.0, high, length: count as f64, offset_samples: None };
+        let trial =
+            Trial { solver: &solver, turns: -2, gain: &|_| 1.0, high, length: count as f64, offset_samples: None };
         let band = Band::of(&trial).expect("a band");
         let mut random = Random(99);
         let places = [6, 32, 64, 96, 126];
@@ -271,7 +276,11 @@ fn noise_scatters_as_the_band_says() {
         }
         for (square, &n) in squares.iter().zip(&places) {
             let predicted = band.deviation(n as f64 + 0.5) * step * step;
-            assert!((square.sqrt() / predicted - 1.0).abs() < 0.1, "{conditions} {more:?} {n}: {} {predicted}", square.sqrt());
+            assert!(
+                (square.sqrt() / predicted - 1.0).abs() < 0.1,
+                "{conditions} {more:?} {n}: {} {predicted}",
+                square.sqrt()
+            );
         }
     }
 }

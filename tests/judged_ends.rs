@@ -126,13 +126,19 @@ fn nothing_that_was_asked_for_gives_way_in_silence() {
             &["--assert", "--extension symmetric"],
         ),
         (&["--lowpass", "3Hz", "--extension", "odd", "--assert", "closed"], &["--assert", "--extension odd"]),
-        (&["--integrate", "1", "--conditions", "steady", "--insist", "--extension", "forecast"], &["--extension forecast", "high-pass", "--highpass"]),
+        (
+            &["--integrate", "1", "--conditions", "steady", "--insist", "--extension", "forecast"],
+            &["--extension forecast", "high-pass", "--highpass"],
+        ),
         (
             &["--integrate", "1", "--conditions", "steady", "--insist", "--lowpass", "3Hz", "--extension", "symmetric"],
             &["--extension symmetric", "high-pass"],
         ),
         (&["--differentiate", "1", "--extension", "forecast"], &["--extension forecast", "no corner"]),
-        (&["--integrate", "1", "--conditions", "steady", "--insist", "--assert", "left:zero-slope"], &["--assert left:zero-slope", "high-pass"]),
+        (
+            &["--integrate", "1", "--conditions", "steady", "--insist", "--assert", "left:zero-slope"],
+            &["--assert left:zero-slope", "high-pass"],
+        ),
         (&["--lowpass", "3Hz", "--assert", "left:zero-slope", "--baseline", "mean"], &["--baseline mean", "--assert"]),
         (&["--lowpass", "3Hz", "--baseline", "line"], &["--baseline line", "--extension auto"]),
     ];
@@ -239,7 +245,10 @@ fn a_plot_shows_every_channel_judged_or_not() {
     assert!(picture.contains("a: condition would take forecast"), "the judged channel is missing");
     assert!(picture.contains("b: not judged: the record is constant"), "the dead channel is missing");
     // Nothing to judge is no reason to print nothing.
-    let output = endgrain(run.folder(), &["compare", "two.csv", "--integrate", "1", "--conditions", "steady", "--insist", "--plot", "none.svg"]);
+    let output = endgrain(
+        run.folder(),
+        &["compare", "two.csv", "--integrate", "1", "--conditions", "steady", "--insist", "--plot", "none.svg"],
+    );
     let told = String::from_utf8_lossy(&output.stdout).into_owned();
     assert_eq!(output.status.code(), Some(0), "{}", String::from_utf8_lossy(&output.stderr));
     assert!(told.contains("nothing to judge: an integral without a high-pass"), "{told}");
@@ -277,7 +286,19 @@ fn assertions_stand_end_by_end() {
     );
     assert_eq!(channel["notes"][0]["text"], "the record speaks against --assert right:zero-value");
     // Followed without a corner too, and checked all the same.
-    let told = run.ok(&["condition", "in.csv", "--integrate", "1", "--conditions", "steady", "--insist", "--assert", "zero-value", "-o", "i.csv"]);
+    let told = run.ok(&[
+        "condition",
+        "in.csv",
+        "--integrate",
+        "1",
+        "--conditions",
+        "steady",
+        "--insist",
+        "--assert",
+        "zero-value",
+        "-o",
+        "i.csv",
+    ]);
     assert!(told.contains("asserted zero-value: contradicted"), "{told}");
 }
 

@@ -245,7 +245,7 @@ fn doubtful_tables_are_told_and_wrong_ones_refused() {
         let told = String::from_utf8_lossy(&output.stderr).into_owned();
         assert!(!output.status.success() && told.contains(part), "{text}: {told}");
     }
-    assert!(run.fails(74, &["--response", "missing.csv"]).contains("missing.csv"));
+    assert!(run.fails(3, &["--response", "missing.csv"]).contains("missing.csv"));
     run.file("sensor.csv", "\u{0}\u{1}garbage\n\n,,,\n");
     assert!(!run.start(&["condition", "in.csv", "-o", "o.csv", "--response", "sensor.csv"]).status.success());
 }
@@ -405,6 +405,8 @@ fn a_new_rate_has_new_stamps_and_the_same_wave() {
         assert!((grid["shift"].as_f64().unwrap_or(f64::NAN) - shift / rate).abs() < 1e-15, "{grid}");
         assert_eq!(grid["samples"], count);
         assert!(told.contains(&format!("{count} samples at")), "{told}");
+        // Going down there is an anti-alias corner, whose edges are judged.
+        assert!(ratio < 2.0 || json["channels"][0]["verdict"].is_object(), "{options:?}: {told}");
         let trusted = &json["channels"][0]["trusted"];
         if let Some(last) = trusted["last"].as_u64() {
             assert!((last as usize) < count);
@@ -466,8 +468,20 @@ fn several_operators_run_in_one_order_with_one_reach_and_one_verdict() {
         run.ok(&[&forwards[..], &["--extension", extension]].concat());
         assert_eq!(run.column(1).len(), 500, "{extension}");
     }
-    let robust =
-        ["--lowpass", "20Hz", "--smooth", "auto:robust", "--decimate", "4", "--integrate", "1", "--highpass", "1Hz", "--conditions", "steady"];
+    let robust = [
+        "--lowpass",
+        "20Hz",
+        "--smooth",
+        "auto:robust",
+        "--decimate",
+        "4",
+        "--integrate",
+        "1",
+        "--highpass",
+        "1Hz",
+        "--conditions",
+        "steady",
+    ];
     run.ok(&robust);
     assert_eq!(run.column(1).len(), 500);
     assert!(Path::new(&run.path("out.csv.json")).exists());

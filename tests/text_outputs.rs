@@ -161,7 +161,7 @@ fn inserted_rows_are_blank_but_for_stamp_and_values() {
     let table = Table { text: "t,a,b\n0,1,x\n3,1,w\n4,1,v\n", ..PLAIN };
     let record = record(&[("g", &[1.0, 2.0, 3.0, 4.0, 5.0])]);
     let rows = [Some(0), None, None, Some(1), None];
-    let stamp = |n: usize| format!("{n}");
+    let stamp = |n: usize, _| format!("{n}");
     let origin = Origin::new(&table.raw(), &[Some(0)], Rows::Each(&rows)).unwrap().with_stamps(&stamp);
     let text = write(&Content { origin: Some(&origin), ..Content::new(&record) }).unwrap();
     assert_eq!(text, "t,a,b\n0,1,x\n1,2,\n2,3,\n3,4,w\n4,5,\n");

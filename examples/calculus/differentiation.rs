@@ -36,10 +36,19 @@ struct Way {
 static WAYS: [Way; 7] = [
     Way { name: "periodic", form: |x, times, noisy| library(x, times, noisy, Ends::Periodic, BaselineKind::None) },
     Way { name: "even", form: |x, times, noisy| library(x, times, noisy, Ends::EVEN, BaselineKind::None) },
-    Way { name: "periodic, line off", form: |x, times, noisy| library(x, times, noisy, Ends::Periodic, BaselineKind::Line) },
+    Way {
+        name: "periodic, line off",
+        form: |x, times, noisy| library(x, times, noisy, Ends::Periodic, BaselineKind::Line),
+    },
     Way { name: "odd, line off", form: |x, times, noisy| library(x, times, noisy, Ends::ODD, BaselineKind::Line) },
-    Way { name: "even, slopes off", form: |x, times, noisy| library(x, times, noisy, Ends::EVEN, BaselineKind::Slopes) },
-    Way { name: "even, tangents off", form: |x, times, noisy| library(x, times, noisy, Ends::EVEN, BaselineKind::Tangents) },
+    Way {
+        name: "even, slopes off",
+        form: |x, times, noisy| library(x, times, noisy, Ends::EVEN, BaselineKind::Slopes),
+    },
+    Way {
+        name: "even, tangents off",
+        form: |x, times, noisy| library(x, times, noisy, Ends::EVEN, BaselineKind::Tangents),
+    },
     Way {
         name: "script: zero-phase low-pass, gradient",
         form: |x, times, noisy| {
@@ -63,7 +72,9 @@ fn library(samples: &[f64], times: u8, noisy: bool, ends: Ends, baseline: Baseli
 }
 
 pub fn table() {
-    println!("Slope and curvature, % of their RMS: largest within 3 % of the ends | inner RMS; {COUNT} samples, noise of the RMS value");
+    println!(
+        "Slope and curvature, % of their RMS: largest within 3 % of the ends | inner RMS; {COUNT} samples, noise of the RMS value"
+    );
     print!("{:<40}", "");
     for noise in ["0", ".002", ".02"] {
         print!("{:>20}{:>20}", format!("slope, {noise}"), format!("curvature, {noise}"));
@@ -96,8 +107,7 @@ fn trial(way: &Way, times: u8, noise: f64, seed: u64) -> Option<[f64; 2]> {
     let whole = rms(&mut wanted.iter().copied());
     let edge = COUNT * 3 / 100;
     let apart: Vec<f64> = found.iter().zip(&wanted).map(|(f, w)| f - w).collect();
-    let largest =
-        apart[..edge].iter().chain(&apart[COUNT - edge..]).fold(0.0_f64, |m, v| m.max(v.abs()));
+    let largest = apart[..edge].iter().chain(&apart[COUNT - edge..]).fold(0.0_f64, |m, v| m.max(v.abs()));
     let inner = rms(&mut apart[COUNT / 10..COUNT - COUNT / 10].iter().copied());
     Some([100.0 * largest / whole, 100.0 * inner / whole])
 }

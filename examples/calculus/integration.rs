@@ -163,7 +163,9 @@ fn errors(found: &[f64], wanted: &[f64], place_known: bool) -> [f64; 3] {
 }
 
 pub fn table() {
-    println!("Displacement, % of the peak: largest | end | inner RMS; {RATE} Hz, noise {NOISE}, offset {OFFSET}, drift {DRIFT}/s");
+    println!(
+        "Displacement, % of the peak: largest | end | inner RMS; {RATE} Hz, noise {NOISE}, offset {OFFSET}, drift {DRIFT}/s"
+    );
     print!("{:<38}", "");
     TRUTHS.iter().for_each(|truth| print!("{:>26}", truth.name));
     println!();

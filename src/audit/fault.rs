@@ -74,7 +74,8 @@ pub fn stamp_fault(stamps: &Stamps, reading: &StampReading, place_of: &dyn Fn(us
         Spacing::Slipped => {
             let row = reading.slip?;
             let what = "the clock jumps by a part of a step near here";
-            fault("slipped", Some(row), Error::unsupported(what), "--from and --to cut on one side of it".to_owned())
+            let remedy = "--gaps split works on both sides of it, --from and --to cut beside it";
+            fault("slipped", Some(row), Error::unsupported(what), remedy.to_owned())
         }
         Spacing::Irregular => {
             let what = match &reading.scatter {
@@ -103,7 +104,7 @@ pub fn stamp_fault(stamps: &Stamps, reading: &StampReading, place_of: &dyn Fn(us
             if reading.gaps.len() > 1 {
                 what += &format!(", the first of {} gaps, {} in all", reading.gaps.len(), samples(reading.missing));
             }
-            let remedy = "--gaps fill interpolates, --from and --to cut beside it";
+            let remedy = "--gaps fill interpolates, --gaps split works on the stretches between gaps, --from and --to cut beside it";
             fault("gap", Some(gap.row), Error::malformed(what), remedy.to_owned())
         }
     }

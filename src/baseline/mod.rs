@@ -192,7 +192,9 @@ mod tests {
 
     #[test]
     fn every_spelling_round_trips() {
-        for text in ["none", "mean", "level", "level:left", "level:right", "line", "slopes", "tangents", "trend:0", "trend:3"] {
+        for text in
+            ["none", "mean", "level", "level:left", "level:right", "line", "slopes", "tangents", "trend:0", "trend:3"]
+        {
             assert_eq!(text.parse::<BaselineKind>().expect("known").to_string(), text);
         }
         assert!("trend:4".parse::<BaselineKind>().is_err());

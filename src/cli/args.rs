@@ -10,7 +10,7 @@ use endgrain::place::Place;
 use endgrain::settings::{Arity, Group, Layer, Settings, find, rows};
 use endgrain::write::Overwrite;
 
-use crate::cli::{audit, batch, compare, condition, exit, generate, merge, spectrum};
+use crate::cli::{audit, batch, compare, compress, condition, exit, generate, merge, restore, spectrum};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -27,6 +27,8 @@ pub fn command() -> Command {
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
   endgrain spectrum log.csv --segment 0.5Hz --plot spectrum.svg
   endgrain condition log.wav --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.wav
+  endgrain compress log.csv --max-error 0.001g -o log.grain
+  endgrain restore log.grain -o log2.csv
   endgrain batch --recipe clean.toml --into cleaned logs/*.csv
 ",
         ))
@@ -39,6 +41,8 @@ pub fn command() -> Command {
         .subcommand(compare::command())
         .subcommand(spectrum::command())
         .subcommand(audit::command())
+        .subcommand(compress::command())
+        .subcommand(restore::command())
         .subcommand(batch::command())
         .subcommand(merge::command())
         .subcommand(generate::command())
@@ -159,5 +163,10 @@ pub fn settings(matches: &ArgMatches, groups: &[Group], input: Option<&str>) -> 
     let recipe = recipe_of(matches)?;
     let overrides = input.map(|path| recipe.overrides_of(Path::new(path))).unwrap_or_default();
     let own = |key: &str| find(key).is_some_and(|row| groups.contains(&row.group));
-    layer(matches, groups)?.over(&recipe.layer(&overrides).only(own)).settings()
+    let settings = layer(matches, groups)?.over(&recipe.layer(&overrides).only(own)).settings()?;
+    if settings.fitness.is_some() && groups.contains(&Group::Judgement) {
+        return Err(Error::usage("--require: \"clean\" is asked of an audit")
+            .remedy("use within or borderline here, and audit FILE --require clean before"));
+    }
+    Ok(settings)
 }

@@ -4,8 +4,10 @@ use std::io::Write;
 use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
+use clap::builder::PossibleValuesParser;
 use clap::{Arg, ArgMatches, Command};
 use endgrain::error::{Error, Result};
+use endgrain::job::Examined;
 use endgrain::place::Place;
 use endgrain::settings::Group;
 use endgrain::write::Pending;
@@ -20,6 +22,8 @@ Examples:
   endgrain audit log.csv
   endgrain audit log.wav --json
   endgrain audit log.csv --channel ax --rate 200
+  endgrain audit log.grain
+  endgrain audit *.csv --require clean --quiet || echo 'look at them first'
 ";
 
 /// The subcommand.
@@ -30,7 +34,15 @@ pub fn command() -> Command {
                 .value_name("FILE")
                 .required(true)
                 .num_args(1..)
-                .help("Records: CSV or WAV, '-' for standard input"),
+                .help("Records: CSV, WAV (packed by gzip or Zstandard or not) or archives, '-' for standard input"),
+        )
+        .arg(
+            Arg::new("require")
+                .long("require")
+                .value_name("WHAT")
+                .value_parser(PossibleValuesParser::new(["clean"]))
+                .help_heading(Group::Judgement.heading())
+                .help("Exit with 1 unless nothing at all was noted: no gap, guess, clipping, spike or dead channel"),
         )
         .arg(args::json())
         .arg(args::force("Report"))
@@ -50,14 +62,24 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         Some(path) if !stream::is_stdout(path) => Some(Pending::create(path, &inputs, args::overwrite(matches))?),
         _ => None,
     };
-    let (mut reports, mut outcome) = (Vec::new(), ExitCode::SUCCESS);
+    let (mut reports, mut outcome, mut met) = (Vec::new(), ExitCode::SUCCESS, true);
     for file in files {
-        let settings = args::settings(matches, GROUPS, Some(file))?;
-        match stream::input(file).and_then(|input| job::audit(input, &settings)) {
+        let mut settings = args::settings(matches, GROUPS, Some(file))?;
+        if let Some(what) = matches.get_one::<String>("require") {
+            settings.set("require", what)?;
+        }
+        match stream::input(file).and_then(|input| job::examine(input, &settings)) {
             Ok(report) => {
                 if json.is_none() && !matches.get_flag("quiet") {
-                    stream::print(&report::audit_text(&report))?;
+                    stream::print(&match &report {
+                        Examined::Record(report) => report::audit_text(report),
+                        Examined::Archive(listing) => report::listing_text(listing),
+                    })?;
                 }
+                met &= match &report {
+                    Examined::Record(report) => report.requirement_met,
+                    Examined::Archive(listing) => listing.notes.is_empty(),
+                };
                 reports.push(report);
             }
             Err(error) => {
@@ -77,5 +99,5 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         None if json.is_some() => stream::print(&report::to_json(&reports)?)?,
         None => {}
     }
-    Ok(outcome)
+    Ok(if met || outcome != ExitCode::SUCCESS { outcome } else { ExitCode::from(exit::NOT_MET) })
 }

@@ -4,12 +4,14 @@ mod args;
 mod audit;
 mod batch;
 mod compare;
+mod compress;
 mod condition;
 mod exit;
 mod generate;
 mod machine;
 mod merge;
 mod progress;
+mod restore;
 mod spectrum;
 mod stream;
 
@@ -26,6 +28,8 @@ pub fn run() -> ExitCode {
         Some(("compare", matches)) => compare::run(matches),
         Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
+        Some(("compress", matches)) => compress::run(matches),
+        Some(("restore", matches)) => restore::run(matches),
         Some(("batch", matches)) => batch::run(matches),
         Some(("merge", matches)) => merge::run(matches),
         Some(("generate", matches)) => generate::run(matches),

@@ -111,7 +111,7 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
         outputs.push(filled(series, &write::spectrum_csv(&found))?);
     }
     found.outputs.extend(
-        outputs.iter().map(|output| OutputReport { path: output.label().to_owned(), sha256: output.fingerprint() }),
+        outputs.iter_mut().map(|output| OutputReport { path: output.label().to_owned(), sha256: output.fingerprint() }),
     );
     if let Some(json) = json_file {
         outputs.push(filled(json, report::to_json(&found)?.as_bytes())?);

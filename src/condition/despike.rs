@@ -14,7 +14,7 @@ pub struct Despiked {
     /// Which samples were replaced, ascending.
     pub spikes: Vec<usize>,
     /// What replaced them: `cubic spline`, `autoregressive model` or both.
-    pub how: &'static str,
+    pub how: String,
     /// Largest change of a sample.
     pub largest: f64,
 }

@@ -1,5 +1,6 @@
 //! The main job: a channel, its assumed continuation and a chain of operators make a conditioned channel.
 
+mod blocks;
 mod choice;
 mod despike;
 mod pass;
@@ -14,9 +15,10 @@ use crate::operator::Chain;
 use crate::record::Channel;
 use crate::unit::Unit;
 
+pub use blocks::Layout;
 pub use choice::{ExtensionChoice, Stage};
 pub use despike::{Despiked, despike};
-pub use pass::{Passed, Span, apply};
+pub use pass::{Passed, Span, apply, apply_whole};
 pub use run::Integral;
 pub use smoother::{Robust, Smoother, Validated, bridged, freedom};
 

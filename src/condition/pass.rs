@@ -2,6 +2,7 @@
 
 use realfft::num_complex::Complex;
 
+use super::blocks::{self, Layout};
 use crate::baseline::Baseline;
 use crate::basis::grid::{self, Grid};
 use crate::basis::{Planner, series};
@@ -58,6 +59,25 @@ impl Span {
 /// # Errors
 /// `Unsupported` for a record of no samples.
 pub fn apply(
+    samples: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    pass: &Pass,
+    span: Span,
+    planner: &Planner,
+) -> Result<Passed> {
+    let len = samples.len();
+    if let Some(layout) = Layout::of(pass, len) {
+        return blocks::apply(samples, ends, baseline, pass, layout, planner);
+    }
+    apply_whole(samples, ends, baseline, pass, span, planner)
+}
+
+/// As `apply`, by the transform of the record's own length whatever that costs: what the way in blocks is held against.
+///
+/// # Errors
+/// As `apply`.
+pub fn apply_whole(
     samples: &[f64],
     ends: Ends,
     baseline: &Baseline,
@@ -179,7 +199,7 @@ fn is_cosine(ends: Ends, k: usize) -> bool {
 /// A derivative takes a cosine to -omega sine and a sine to +omega cosine; an integral takes a cosine to +1/omega sine
 /// and a sine to -1/omega cosine; two of either multiply by -omega^2 or -1/omega^2. A response R + i I takes a cosine to
 /// R cosine - I sine and a sine to R sine + I cosine: `turned` gets the second terms. Only passes without turns have one.
-fn multiply(coefficients: &mut [f64], mut turned: Option<&mut [f64]>, ends: Ends, pass: &Pass) {
+pub(super) fn multiply(coefficients: &mut [f64], mut turned: Option<&mut [f64]>, ends: Ends, pass: &Pass) {
     let len = coefficients.len();
     let turns = pass.turns();
     let (mut last_frequency, mut last_gain) = (f64::NAN, Complex::default());
@@ -245,7 +265,7 @@ fn from_rest(
 }
 
 /// The polynomial after `turns` derivatives (positive) or integrals from x = 0 (negative).
-fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
+pub(super) fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
     for _ in 0..turns.abs() {
         polynomial = if turns > 0 { polynomial.derivative() } else { polynomial.integral() };
     }

@@ -73,13 +73,7 @@ impl<'a> Scene<'a> {
 }
 
 /// Runs them over `samples`, of which `span` is the channel proper.
-pub(super) fn passes(
-    scene: &Scene<'_>,
-    samples: &[f64],
-    ends: Ends,
-    baseline: &Baseline,
-    span: Span,
-) -> Result<Ran> {
+pub(super) fn passes(scene: &Scene<'_>, samples: &[f64], ends: Ends, baseline: &Baseline, span: Span) -> Result<Ran> {
     let mut so_far: Option<Ran> = None;
     for pass in scene.chain.passes().iter().filter(|pass| !pass.is_identity()) {
         let input = so_far.as_ref().map_or(samples, |ran| ran.output.as_slice());
@@ -87,15 +81,14 @@ pub(super) fn passes(
         let (mut outliers, mut integral) = (None, None);
         let mut passed = match pass.robust() {
             Some(strength) => {
-                let (passed, count) = robust(input, ends, &baseline, strength, scene.planner)?;
+                let (passed, count) = robust(input, ends, &baseline, strength, scene)?;
                 outliers = Some(count);
                 passed
             }
             None => apply(input, ends, &baseline, pass, span, scene.planner)?,
         };
         if let Some(resolved) = scene.resolved.as_ref().filter(|_| pass.turns() < 0) {
-            let velocity =
-                || Ok(apply(input, ends, &baseline, &pass.with_turns(-1), span, scene.planner)?.output);
+            let velocity = || Ok(apply(input, ends, &baseline, &pass.with_turns(-1), span, scene.planner)?.output);
             integral = Some(settled(resolved, &mut passed, pass.turns(), span.mirrors(ends), velocity)?);
         }
         if pass.turns() != 0 && scene.factor != 1.0 {
@@ -168,7 +161,7 @@ pub(super) fn corrected(
         let (ends, baseline) = stage(scene, pass, &output, ends, baseline, index == 0)?;
         let plain = pass.with_turns(0);
         if let Some(strength) = pass.robust() {
-            output = robust(&output, ends, &baseline, strength, scene.planner)?.0.output;
+            output = robust(&output, ends, &baseline, strength, scene)?.0.output;
         } else if !plain.is_identity() {
             output = apply(&output, ends, &baseline, &plain, span, scene.planner)?.output;
         }
@@ -188,12 +181,14 @@ fn robust(
     ends: Ends,
     baseline: &Baseline,
     strength: f64,
-    planner: &Planner,
+    scene: &Scene<'_>,
 ) -> Result<(Passed, usize)> {
+    let order = scene.chain.treatments().smoothing.map_or(2, |smoothing| smoothing.order);
     let first = ends.first_position();
     let at = |n: usize| baseline.polynomial().at(n as f64 + first);
     let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
-    let Robust { values, weights, .. } = Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, None, Some(strength));
+    let Robust { values, weights, .. } =
+        Smoother::new(scene.planner, ends, samples.len(), order)?.robust(&rest, None, Some(strength));
     let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
     let passed = Passed { output, parseval: 0.0, first, spacing: 1.0, arrival: Arrival::default() };
     Ok((passed, weights.iter().filter(|w| **w == 0.0).count()))

@@ -274,11 +274,11 @@ impl Smoother {
     }
 }
 
-/// Degrees of freedom of a second-order fit of `len` samples between `ends`, without a plan.
-pub fn freedom(ends: Ends, len: usize, strength: f64) -> f64 {
+/// Degrees of freedom of a fit of an order of `len` samples between `ends`, without a plan.
+pub fn freedom(ends: Ends, len: usize, strength: f64, order: i32) -> f64 {
     let kept = |k: usize| {
         let half = (TAU * ends.frequency(len, k) / 2.0).sin();
-        1.0 / (1.0 + strength * (4.0 * half * half).powi(2))
+        1.0 / (1.0 + strength * (4.0 * half * half).powi(order))
     };
     (0..len).map(kept).sum()
 }

@@ -8,7 +8,6 @@ use rayon::prelude::*;
 use crate::error::{Error, Result};
 use crate::fleet::attempt::{self, Span};
 use crate::fleet::line::Status;
-use crate::fleet::name::RESULTS;
 use crate::fleet::plan::{Fingerprint, PlanLine, fingerprint, results_of, stored};
 use crate::fleet::resume::fingerprint_of_file;
 use crate::place::Place;
@@ -95,7 +94,7 @@ pub fn gather(into: &Path) -> Result<Gathering> {
         (plan.par_iter().zip(&candidates)).map(|(planned, candidates)| standing(planned, candidates, into)).collect();
     let told = candidates.iter().filter(|candidates| !candidates.is_empty()).count() as u64;
     let mut temporaries = Vec::new();
-    find_temporaries(into, true, &mut temporaries)?;
+    find_temporaries(into, &mut temporaries)?;
     temporaries.sort();
     Ok(Gathering { plan, files, standings, superseded: lines - told, extra, torn, other_plans, temporaries })
 }
@@ -120,14 +119,14 @@ fn standing(planned: &PlanLine, candidates: &[Candidate], into: &Path) -> Standi
     }
 }
 
-/// Temporary files of outputs, which begin with a dot and end in `.part`; links to folders are not followed.
-fn find_temporaries(folder: &Path, top: bool, found: &mut Vec<PathBuf>) -> Result<()> {
+/// Temporary files of outputs and plans, which begin with a dot and end in `.part`; links to folders are not followed.
+fn find_temporaries(folder: &Path, found: &mut Vec<PathBuf>) -> Result<()> {
     let fault = |error: std::io::Error| Error::from(error).at(Place::file(folder.display().to_string()));
     for entry in fs::read_dir(folder).map_err(fault)? {
         let entry = entry.map_err(fault)?;
         let (name, kind) = (entry.file_name(), entry.file_type().map_err(fault)?);
-        if kind.is_dir() && !(top && name == RESULTS) {
-            find_temporaries(&entry.path(), false, found)?;
+        if kind.is_dir() {
+            find_temporaries(&entry.path(), found)?;
         }
         let bytes = name.as_encoded_bytes();
         if kind.is_file() && bytes.starts_with(b".") && bytes.ends_with(b".part") {

@@ -92,6 +92,17 @@ impl Constants {
 }
 
 impl Solver {
+    /// The same conditions with nothing displaced: what an error of the record, such as its noise, meets.
+    #[must_use]
+    pub fn homogeneous(&self) -> Solver {
+        match self {
+            Solver::RestTo(_) => Solver::RestTo(0.0),
+            Solver::StartRestTo(_) => Solver::StartRestTo(0.0),
+            Solver::Pinned(_) => Solver::Pinned(0.0),
+            other => other.clone(),
+        }
+    }
+
     /// Solves the constants. `offset` is a given one, for the conditions that do not solve it; `velocity` forms the first
     /// integral at the samples, which only `Still` needs beside a second one.
     ///
@@ -251,11 +262,8 @@ mod tests {
         for (turns, drift, degree) in [(-2, true, 3), (-2, false, 2), (-1, true, 2), (-1, false, 1)] {
             let (_, output, _) = solved(&Solver::Steady { drift }, turns, 0.0);
             for power in 0..=degree {
-                let moment: f64 = output
-                    .iter()
-                    .enumerate()
-                    .map(|(n, v)| v * ((n as f64 + 0.5) / 200.0 - 1.0).powi(power))
-                    .sum();
+                let moment: f64 =
+                    output.iter().enumerate().map(|(n, v)| v * ((n as f64 + 0.5) / 200.0 - 1.0).powi(power)).sum();
                 // 400 values up to 100, cancelling.
                 assert!(moment.abs() < 1e-9, "{turns} {drift} {power}: {moment}");
             }

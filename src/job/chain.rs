@@ -2,7 +2,7 @@
 
 use crate::audit::endstate::EndState;
 use crate::error::{Error, Finding, Result};
-use crate::operator::{Chain, Conditions, Needs};
+use crate::operator::{Chain, Conditions, Needs, Request};
 use crate::place::Place;
 use crate::record::{Channel, Record};
 use crate::settings::Settings;
@@ -12,12 +12,28 @@ const AT_REST: f64 = 0.15;
 /// Above this it is moving: steady records measured 0.57 to 1.9.
 const MOVING: f64 = 0.3;
 
-/// Resolves the operators for a record.
+/// Resolves the operators for a record. A derivative without a corner or `--smooth` is smoothed by cross-validation: that of
+/// the bare record is mostly noise.
 ///
 /// # Errors
 /// As `Chain::resolve`; `Usage` for an integral without end conditions, and for those without an integral; `Unsupported`
 /// for end conditions that the motion at the record's ends speaks against, unless they are insisted on.
 pub fn of(record: &Record, settings: &Settings) -> Result<(Chain, Vec<Finding>)> {
+    let (chain, findings) = plain(record, settings)?;
+    let smooths = settings.requests.iter().any(|request| request.step().key == "smooth");
+    if chain.turns() <= 0 || smooths || chain.shortest_wavelength_samples().is_some() {
+        return Ok((chain, findings));
+    }
+    let mut requests = settings.requests.clone();
+    requests.push(Request::parse("smooth", "auto")?);
+    Chain::resolve(&requests, &settings.shape, record.axis(), record.len())
+}
+
+/// As `of`, without the smoothing that a derivative without a corner has by default.
+///
+/// # Errors
+/// As `of`.
+pub fn plain(record: &Record, settings: &Settings) -> Result<(Chain, Vec<Finding>)> {
     let (chain, findings) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
     if chain.turns() != 0 && settings.requests.iter().any(|request| request.step().key == "split") {
         return Err(Error::usage("--split parts the record itself, not its derivative or integral")
@@ -105,7 +121,10 @@ fn missing(chain: &Chain, record: &Record) -> Error {
     } else if ratio > MOVING {
         ("moving", "steady, or pinned=D or still=A..B where they are known")
     } else {
-        ("neither clearly at rest nor moving", "steady, rest, start-rest, pinned=D or still=A..B, as you know the motion to be")
+        (
+            "neither clearly at rest nor moving",
+            "steady, rest, start-rest, pinned=D or still=A..B, as you know the motion to be",
+        )
     };
     Error::usage(what)
         .at(Place::channel(channel.name))

@@ -1,5 +1,6 @@
 //! The main job: read, regularise, condition every channel, write the record back, and report.
 
+use std::ffi::OsStr;
 use std::io::Write;
 use std::path::Path;
 
@@ -8,10 +9,11 @@ use crate::basis::Planner;
 use crate::error::{Error, Finding, Result};
 use crate::job::chain;
 use crate::job::edges;
-use crate::job::intake;
+use crate::job::intake::{self, Intake};
 use crate::job::judgement::{self, Judged, Page};
-use crate::job::origin::{SourceRows, origin_of};
+use crate::job::origin::{self, SourceRows, origin_of};
 use crate::job::preparation;
+use crate::job::repairs;
 use crate::job::requirement;
 use crate::job::running::{self, Running};
 use crate::job::split;
@@ -19,22 +21,27 @@ use crate::job::target::{Opened, Target};
 use crate::job::work::{self, Worked};
 use crate::place::Place;
 use crate::read::Input;
-use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord, Source};
+use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord, Repair, Source};
 use crate::regularise::RowMap;
 use crate::report::page::{self, Passage};
 use crate::report::{self, InputReport, OutputReport, Plan, PlannedChannel, Report, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::write::{self, Content, Digits, Pending, WaveEncoding};
 
-/// Resolves what would be done.
+/// Resolves what would be done, for each part of the record where gaps split it.
 ///
 /// # Errors
 /// Whatever stops reading or resolving.
-pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
-    let intake = intake::take(input, settings)?;
+pub fn plan(input: Input, settings: &Settings) -> Result<Vec<Plan>> {
+    intake::take_parts(input, settings)?.iter().map(|intake| plan_one(intake, settings)).collect()
+}
+
+fn plan_one(intake: &Intake, settings: &Settings) -> Result<Plan> {
     let record = &intake.record;
     let axis = record.axis();
-    let (chain, remarks) = chain::of(record, settings)?;
+    let (chain, mut remarks) = chain::of(record, settings)?;
+    remarks.extend(repairs::near_ends_of(intake, &chain));
+    intake::refuse_notes(settings, &remarks)?;
     preparation::check(&chain, settings)?;
     let planner = Planner::new();
     let channels = record.channels().enumerate().map(|(index, channel)| {
@@ -59,7 +66,7 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     });
     Ok(Plan {
         channels: channels.collect::<Result<_>>()?,
-        input: InputReport::new(&intake.outline.source, axis),
+        input: InputReport::new(&intake.outline.source, axis).with_part(intake.segment),
         notes: record.findings().iter().cloned().chain(remarks).collect(),
         chain: chain.describe(axis),
         gains: chain.check_points(axis),
@@ -112,7 +119,15 @@ impl<'a> Prepared<'a> {
     /// # Errors
     /// `Io` where one of them cannot be written.
     pub fn finish(self) -> Result<Report> {
-        let Opened { record, sidecar, json, page, durability } = self.outputs;
+        let durability = self.outputs.durability;
+        let (report, outputs) = self.written()?;
+        write::finish_together(outputs, durability)?;
+        Ok(report)
+    }
+
+    /// The report, and all outputs with their content, still to be finished.
+    fn written(self) -> Result<(Report, Vec<Pending<'a>>)> {
+        let Opened { record, sidecar, json, page, .. } = self.outputs;
         let text = report::to_json(&self.report)?;
         let mut outputs = vec![record];
         for mut pending in [sidecar, json].into_iter().flatten() {
@@ -122,8 +137,7 @@ impl<'a> Prepared<'a> {
         if let Some(files) = page {
             outputs.extend(files.fill(&self.report, &page::condition_page(&self.report, &self.passages))?);
         }
-        write::finish_together(outputs, durability)?;
-        Ok(self.report)
+        Ok((self.report, outputs))
     }
 
     /// The report, the audit, and the record still to be finished.
@@ -132,53 +146,115 @@ impl<'a> Prepared<'a> {
     }
 }
 
+/// Conditions every part of a record between its gaps, where `Gaps::Split` is set and there are any: part k of `clean.csv`
+/// goes to `clean-k.csv`, each with its own sidecar. A record without gaps goes to `clean.csv` as ever. Where a further JSON is
+/// asked for it holds a list of the reports. All outputs appear, or none.
+///
+/// # Errors
+/// As `condition`; `Usage` where several parts would go to one stream or page.
+pub fn condition_parts(input: Input, target: Target<'_>, settings: &Settings) -> Result<Vec<Report>> {
+    let bench = Bench::new(Audited::No);
+    let input_path = intake::path_of(&input);
+    let named = target.path().map(Path::to_owned);
+    let sequel = target.sequel();
+    // Opened first all the same: what cannot be written is known before the work.
+    let mut outputs = target.open(input_path.as_deref())?;
+    let (mut json, durability) = (outputs.json.take(), outputs.durability);
+    let parts = intake::take_parts(input, settings)?;
+    let opened = match parts.len() {
+        1 => vec![outputs],
+        count => {
+            drop(outputs);
+            sequel.open(count, input_path.as_deref())?
+        }
+    };
+    let mut reports = Vec::with_capacity(parts.len());
+    let mut pending = Vec::new();
+    for (intake, outputs) in parts.into_iter().zip(opened) {
+        let prepared = work_on(intake, None, outputs, named.as_deref(), settings, &bench)?;
+        let (report, outputs) = prepared.written()?;
+        reports.push(report);
+        pending.extend(outputs);
+    }
+    if let Some(mut file) = json.take() {
+        file.write_all(report::to_json(&reports)?.as_bytes())
+            .map_err(|error| Error::from(error).at(Place::file(file.label())))?;
+        pending.push(file);
+    }
+    write::finish_together(pending, durability)?;
+    Ok(reports)
+}
+
 /// Conditions a record into outputs that are not yet visible.
 ///
 /// # Errors
 /// Whatever stops it; nothing is left behind.
 pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench: &Bench) -> Result<Prepared<'a>> {
-    let encoding = encoding_of(settings)?;
     let input_path = intake::path_of(&input);
     let named = target.path().map(Path::to_owned);
-    let mut outputs = target.open(input_path.as_deref())?;
-
+    let outputs = target.open(input_path.as_deref())?;
     let (intake, audit) = match bench.audited {
         Audited::Yes => intake::take_audited(input, settings).map(|(intake, audit)| (intake, Some(audit)))?,
         Audited::No => (intake::take(input, settings)?, None),
     };
-    let format = format_of(settings, named.as_deref(), &intake.outline.source)?;
+    work_on(intake, audit, outputs, named.as_deref(), settings, bench)
+}
+
+/// Conditions one record and writes it into `outputs`, which stay invisible.
+fn work_on<'a>(
+    intake: Intake,
+    audit: Option<Audit>,
+    mut outputs: Opened<'a>,
+    named: Option<&Path>,
+    settings: &Settings,
+    bench: &Bench,
+) -> Result<Prepared<'a>> {
+    let encoding = encoding_of(settings)?;
+    let Intake { record, rows, repairs, segment, outline } = intake;
+    let format = format_of(settings, named, &outline.source)?;
     refuse_unread(settings, format)?;
-    let (chain, remarks) = chain::of(&intake.record, settings)?;
+    let (chain, remarks) = chain::of(&record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
     preparation::check(&chain, settings)?;
-    let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
-    let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
-    let chain_report = chain.describe(intake.record.axis());
-    refuse_columns(settings, format, intake.record.axis())?;
+    let mut notes: Vec<_> = record.findings().iter().cloned().chain(remarks).collect();
+    let input_report = InputReport::new(&outline.source, record.axis()).with_part(segment);
+    let chain_report = chain.describe(record.axis());
+    refuse_columns(settings, format, record.axis())?;
     let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
-    let Worked { record, channels, columns, passages } = work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
-    for channel in &channels {
-        intake::refuse_notes(settings, &channel.notes)?;
-    }
+    let len = record.len();
+    let Worked { record, mut channels, columns, passages } =
+        work::run(record, &chain, settings, &bench.planner, wanted)?;
 
+    let mut repairs = repairs::with_spikes(repairs, &channels);
+    let names = channels.iter().map(|channel| channel.name.as_str());
+    let mut remarks = repairs::near_ends(names.zip(&repairs), len, &chain, &outline.source.path);
+    for (channel, own) in channels.iter_mut().zip(&repairs) {
+        intake::refuse_notes(settings, &channel.notes)?;
+        channel.repaired = own.iter().map(Repair::count).sum();
+        channel.repairs.clone_from(own);
+    }
     let rows = match chain.treatments().resampling {
-        None => intake.rows,
+        None => rows,
         Some(grid) => {
-            notes.extend(untouched(&intake.outline));
+            remarks.extend(untouched(&outline));
+            repairs.clear(); // they have no place on the new grid
             RowMap::Regridded { count: grid.count }
         }
     };
     let kept = edges::kept(&channels, record.len(), settings)?;
     let beside = edges::beside(&columns, &kept);
-    let (record, rows) = edges::trimmed(record, rows, &kept)?;
-    let rows = SourceRows::of(&rows);
-    let origin = origin_of(&intake.outline, &record, format, rows.as_ref())?;
-    let marks = edges::marks(&channels, record.len(), settings);
+    let (record, rows, repairs) = edges::trimmed(record, rows, repairs, &kept)?;
+    let source_rows = SourceRows::of(&rows);
+    let stamps = origin::stamps_of(&outline, &record, format, &rows)?;
+    let origin = origin_of(&outline, &record, format, source_rows.as_ref(), stamps.as_deref())?;
+    let trusted = edges::marks(&channels, record.len(), settings);
+    let mended = repairs::marks(&record, &repairs, settings);
     let running = running::columns(&record, settings);
     let extra: Vec<_> = beside
         .iter()
         .map(edges::Beside::column)
-        .chain(marks.iter().map(edges::Mark::column))
+        .chain(trusted.iter().map(edges::Mark::column))
+        .chain(mended.iter().map(repairs::Mark::column))
         .chain(running.iter().map(Running::column))
         .collect();
     let shown = edges::shown(&channels, settings);
@@ -190,7 +266,7 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         digits: settings.decimals.map_or(Digits::Shortest, Digits::Fixed),
         encoding,
     };
-    let remarks = write::fill(write::writer(format), &content, &mut outputs.record)?;
+    remarks.extend(write::fill(write::writer(format), &content, &mut outputs.record)?);
     intake::refuse_notes(settings, &remarks)?;
     notes.extend(remarks);
     let unmet = requirement::unmet(settings, &channels);
@@ -238,7 +314,7 @@ fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()
     Ok(())
 }
 
-fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
+pub(super) fn encoding_of(settings: &Settings) -> Result<WaveEncoding> {
     let Some(name) = &settings.encoding else { return Ok(WaveEncoding::Float32) };
     write::WAVE_ENCODINGS.iter().find(|(known, _)| known == name).map(|(_, encoding)| *encoding).ok_or_else(|| {
         let known: Vec<&str> = write::WAVE_ENCODINGS.iter().map(|(name, _)| *name).collect();
@@ -261,6 +337,12 @@ fn refuse_unread(settings: &Settings, format: Format) -> Result<()> {
 
 /// `--format`, else what the output's name says, else the input's own; a name that says something else is refused.
 fn format_of(settings: &Settings, output: Option<&Path>, input: &Source) -> Result<Format> {
+    let packed = |extension: &OsStr| ["gz", "gzip", "zst", "zstd"].iter().any(|p| extension.eq_ignore_ascii_case(p));
+    if output.and_then(Path::extension).is_some_and(packed) {
+        return Err(
+            Error::usage("outputs are not packed").remedy("leave .gz or .zst away, and pack the file afterwards")
+        );
+    }
     if let Some(format) = settings.format {
         return Ok(format);
     }

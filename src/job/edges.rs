@@ -6,7 +6,8 @@ use ndarray::s;
 
 use crate::error::{Error, Result};
 use crate::job::integral::Column;
-use crate::record::Record;
+use crate::job::repairs;
+use crate::record::{Record, Repair};
 use crate::regularise::RowMap;
 use crate::report::ChannelReport;
 use crate::settings::{Edges, Settings};
@@ -30,18 +31,23 @@ pub fn kept(channels: &[ChannelReport], len: usize, settings: &Settings) -> Resu
     Ok(first..end)
 }
 
-/// The record cut to `kept`, with the rows it keeps.
+/// The record cut to `kept`, with the rows and repairs it keeps.
 ///
 /// # Errors
 /// Those of `Record::new`.
-pub fn trimmed(record: Record, rows: RowMap, kept: &Range<usize>) -> Result<(Record, RowMap)> {
+pub fn trimmed(
+    record: Record,
+    rows: RowMap,
+    repairs: Vec<Vec<Repair>>,
+    kept: &Range<usize>,
+) -> Result<(Record, RowMap, Vec<Vec<Repair>>)> {
     if *kept == (0..record.len()) {
-        return Ok((record, rows));
+        return Ok((record, rows, repairs));
     }
     let (axis, names, units, samples, findings) = record.into_parts();
     let cut = samples.slice(s![.., kept.clone()]).to_owned();
     let record = Record::new(axis.cut(kept.start, kept.len()), names, units, cut)?.with_findings(findings);
-    Ok((record, rows.cut(kept.start, kept.len())))
+    Ok((record, rows.cut(kept.start, kept.len()), repairs::cut(&repairs, kept.start, kept.len())))
 }
 
 /// A column of numbers beside the channels.

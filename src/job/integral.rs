@@ -217,14 +217,8 @@ struct Warnings<'a> {
 
 impl Warnings<'_> {
     fn all(&self) -> Vec<Finding> {
-        let found = [
-            self.noise(),
-            self.end_state(),
-            self.least_squares(),
-            self.drift(),
-            self.slow(),
-            self.net_displacement(),
-        ];
+        let found =
+            [self.noise(), self.end_state(), self.least_squares(), self.drift(), self.slow(), self.net_displacement()];
         let place = || Place::channel(self.channel.name);
         found.into_iter().flatten().map(|(code, text)| Finding::new(code, text).at(place())).collect()
     }

@@ -1,5 +1,7 @@
 //! A whole job on one file: read, audit, condition, report, write. The program and a batch run the same functions.
 
+mod archiving;
+mod bound;
 mod chain;
 mod comparison;
 mod conditioning;
@@ -13,15 +15,19 @@ mod origin;
 mod passage;
 mod picture;
 mod preparation;
+mod repairs;
 mod requirement;
+mod restoration;
 mod running;
 mod spectrum;
 mod split;
 mod target;
 mod work;
 
+pub use archiving::compress;
 pub use comparison::compare;
-pub use conditioning::{Audited, Bench, Prepared, condition, plan, prepare};
-pub use examination::audit;
+pub use conditioning::{Audited, Bench, Prepared, condition, condition_parts, plan, prepare};
+pub use examination::{Examined, audit, examine};
+pub use restoration::{Damage, restore};
 pub use spectrum::spectrum;
 pub use target::{PageFiles, Target};

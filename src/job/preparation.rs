@@ -26,8 +26,6 @@ pub struct Prepared<'a> {
 
 /// Residuals of neighbours correlated more than this are no white noise.
 const CORRELATED: f64 = 0.3;
-/// Spikes listed by place.
-const LISTED: usize = 1000;
 
 /// Gaps that are left to smoothing need some.
 ///
@@ -54,6 +52,7 @@ pub fn prepare<'a>(
 ) -> Result<Prepared<'a>> {
     let kind = match settings.stage.baseline {
         // Level at the odd end: these are even ends.
+        None | Some(BaselineKind::Level(_)) if chain.turns() > 0 => BaselineKind::Tangents,
         None | Some(BaselineKind::Level(_)) => BaselineKind::Slopes,
         Some(kind) => kind,
     };
@@ -77,7 +76,7 @@ pub fn prepare<'a>(
     } else if let Some(strength) = given {
         strength
     } else {
-        validated(channel, smoothing.robust, kind, &mut prepared, planner)?
+        validated(channel, smoothing, kind, &mut prepared, planner)?
     };
     let how = if given.is_some() { StrengthSource::Given } else { StrengthSource::CrossValidation };
     if given.is_none() {
@@ -86,9 +85,9 @@ pub fn prepare<'a>(
     prepared.smoothing = Some(SmoothReport {
         strength,
         how,
-        cut_off: cut_off(strength).map(|cycles| cycles * channel.axis.rate_base()),
-        cut_off_samples: cut_off(strength).map(f64::recip),
-        degrees_of_freedom: condition::freedom(Ends::EVEN, channel.samples.len(), strength),
+        cut_off: cut_off(strength, smoothing.order).map(|cycles| cycles * channel.axis.rate_base()),
+        cut_off_samples: cut_off(strength, smoothing.order).map(f64::recip),
+        degrees_of_freedom: condition::freedom(Ends::EVEN, channel.samples.len(), strength, smoothing.order),
         robust: smoothing.robust,
         outliers: None,
     });
@@ -106,7 +105,7 @@ fn despike(channel: Channel<'_>, prepared: &mut Prepared<'_>) -> Result<()> {
             prepared.samples = Cow::Owned(found.samples);
             DespikeReport {
                 count: found.spikes.len(),
-                samples: found.spikes.into_iter().take(LISTED).collect(),
+                samples: found.spikes,
                 largest: Some(found.largest),
                 how: Some(found.how),
             }
@@ -127,7 +126,7 @@ fn bridge(
     planner: &Planner,
 ) -> Result<f64> {
     let len = prepared.samples.len();
-    let (smoother, split, rest) = levelled(&prepared.samples, kind, planner)?;
+    let (smoother, split, rest) = levelled(&prepared.samples, kind, smoothing.order, planner)?;
     let mut weights = vec![1.0; len];
     missing.iter().for_each(|&n| weights[n] = 0.0);
     let (strength, fit) = match given {
@@ -161,6 +160,7 @@ fn bridge(
 fn levelled(
     samples: &[f64],
     kind: BaselineKind,
+    order: i32,
     planner: &Planner,
 ) -> Result<(Smoother, impl Fn(usize) -> f64 + use<>, Vec<f64>)> {
     let ends = Ends::EVEN;
@@ -168,18 +168,20 @@ fn levelled(
     let split = baseline.polynomial().clone();
     let at = move |n: usize| split.at(n as f64 + ends.first_position());
     let rest = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
-    Ok((Smoother::new(planner, ends, samples.len(), 2)?, at, rest))
+    Ok((Smoother::new(planner, ends, samples.len(), order)?, at, rest))
 }
 
 /// The strength by cross-validation of what the chain makes of the channel before smoothing, between even ends.
 fn validated(
     channel: Channel<'_>,
-    robust: bool,
+    smoothing: Smoothing,
     kind: BaselineKind,
     prepared: &mut Prepared<'_>,
     planner: &Planner,
 ) -> Result<f64> {
-    let before = prepared.chain.before_smoothing();
+    // The noise of a derivative is not white: its strength is found on the record itself.
+    let whole = prepared.chain.before_smoothing();
+    let before = if whole.turns() > 0 { whole.without_turns() } else { whole };
     let channel = Channel { samples: &prepared.samples, ..channel };
     let before_kind = condition::default_baseline(Ends::EVEN, &before);
     let output = if before.is_identity() {
@@ -187,9 +189,9 @@ fn validated(
     } else {
         condition::condition(channel, &before, Ends::EVEN, before_kind, planner)?.output
     };
-    let (smoother, _, rest) = levelled(&output, kind, planner)?;
+    let (smoother, _, rest) = levelled(&output, kind, smoothing.order, planner)?;
     let place = || Place::channel(channel.name);
-    if robust {
+    if smoothing.robust {
         return Ok(smoother.robust(&rest, None, None).strength);
     }
     let found = smoother.validated(&rest);

@@ -38,8 +38,10 @@ pub fn primary(chain: &Chain, settings: &Settings, axis: &Axis, len: usize) -> R
         return Ok(None);
     }
     if chain.treatments().resampling.is_some() || chain.treatments().smoothing.is_some() || !chain.is_real() {
-        return Err(Error::usage("--split goes with filters alone, not with smoothing, resampling or a sensor's response")
-            .remedy("run it on their result"));
+        return Err(Error::usage(
+            "--split goes with filters alone, not with smoothing, resampling or a sensor's response",
+        )
+        .remedy("run it on their result"));
     }
     let others: Vec<Request> =
         settings.requests.iter().filter(|request| request.step().key != "split").cloned().collect();

@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 
 use serde::Serialize;
 
-use crate::error::Result;
+use crate::error::{Error, Result};
 use crate::report::page::{self, Page};
 use crate::write::{self, Durability, Overwrite, Pending};
 
@@ -68,6 +68,17 @@ impl<'a> Target<'a> {
         Target { durability, ..self }
     }
 
+    /// Where the parts of a record would go.
+    pub(super) fn sequel(&self) -> Sequel {
+        Sequel {
+            path: self.path().map(Path::to_owned),
+            sidecars: self.sidecar.is_some(),
+            paged: self.page.is_some(),
+            overwrite: self.overwrite,
+            durability: self.durability,
+        }
+    }
+
     /// The record's file name, where it goes to a file.
     pub(super) fn path(&self) -> Option<&Path> {
         match &self.record {
@@ -91,6 +102,42 @@ impl<'a> Target<'a> {
         };
         Ok(Opened { record, sidecar, json, page, durability: self.durability })
     }
+}
+
+/// The outputs of a record that gaps split: one record and its sidecar for each part.
+pub(super) struct Sequel {
+    path: Option<PathBuf>,
+    sidecars: bool,
+    paged: bool,
+    overwrite: Overwrite,
+    durability: Durability,
+}
+
+impl Sequel {
+    /// Opens the outputs of `count` parts: `clean-01.csv` to `clean-12.csv`.
+    pub fn open<'a>(&self, count: usize, input: Option<&Path>) -> Result<Vec<Opened<'a>>> {
+        let split = |rest: &str| Error::usage(format!("gaps split the record into {count} parts, which {rest}"));
+        let Some(path) = &self.path else {
+            return Err(split("one stream cannot hold").remedy("name a file with -o: the parts are numbered after it"));
+        };
+        if self.paged {
+            return Err(split("one page cannot show").remedy("cut with --from and --to, or leave --html out"));
+        }
+        let open = |number: usize| {
+            let part = Target::alone(&part_of(path, number, count), self.overwrite).durable(self.durability);
+            let sidecar = self.sidecars.then(|| part.path().map(|path| beside(path, ".json"))).flatten();
+            Target { sidecar, ..part }.open(input)
+        };
+        (1..=count).map(open).collect()
+    }
+}
+
+/// `clean.csv` has the parts `clean-1.csv`, `clean-2.csv`; numbers are as wide as the last of them.
+fn part_of(path: &Path, number: usize, count: usize) -> PathBuf {
+    let width = count.to_string().len();
+    let stem = path.file_stem().unwrap_or_default().to_string_lossy();
+    let extension = path.extension().map(|e| format!(".{}", e.to_string_lossy())).unwrap_or_default();
+    path.with_file_name(format!("{stem}-{number:0width$}{extension}"))
 }
 
 /// A report page and what stands beside it, opened before any work.

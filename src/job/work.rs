@@ -10,6 +10,7 @@ use crate::compare::{Chosen, Continuation, How, Judgement};
 use crate::condition::{self, Outcome};
 use crate::ends::{Ends, Parity, Seat};
 use crate::error::{Error, Finding, Result};
+use crate::job::bound::refuse_beyond_memory;
 use crate::job::integral::{self, Column};
 use crate::job::judgement::{self, Judged, Page, trusted_report};
 use crate::job::passage::passage;
@@ -40,6 +41,7 @@ pub struct Worked {
 
 /// Conditions all channels; rows of the sample array are replaced one by one, or written anew on another grid.
 pub fn run(record: Record, chain: &Chain, settings: &Settings, planner: &Planner, page: Page) -> Result<Worked> {
+    refuse_beyond_memory(&record, chain, settings)?;
     let missing: Vec<Vec<usize>> = (0..record.channel_count()).map(|index| record.missing(index).to_vec()).collect();
     let (axis, names, units, mut samples, findings) = record.into_parts();
     let len = axis.len();
@@ -178,7 +180,9 @@ fn one(channel: Channel<'_>, missing: &[usize], bench: &Bench<'_>) -> Result<Fin
 fn formed(channel: Channel<'_>, chain: &Chain, chosen: &Chosen, seat: Seat, planner: &Planner) -> Result<Outcome> {
     match &chosen.continuation {
         Continuation::Symmetric(ends, baseline) => condition::condition(channel, chain, *ends, *baseline, planner),
-        Continuation::Given([left, right]) => condition::condition_continued(channel, chain, left, right, seat, planner),
+        Continuation::Given([left, right]) => {
+            condition::condition_continued(channel, chain, left, right, seat, planner)
+        }
     }
 }
 
@@ -263,7 +267,10 @@ pub fn stage_reports(chosen: &Chosen, chain: &Chain, settings: &Settings) -> (Ex
         Seat::Half => "half-sample",
         Seat::Whole => "whole-sample",
     };
-    (ExtensionReport { kind: chosen.name.clone(), seat, transform, end_treatment, how: chosen.how }, baseline.to_string())
+    (
+        ExtensionReport { kind: chosen.name.clone(), seat, transform, end_treatment, how: chosen.how },
+        baseline.to_string(),
+    )
 }
 
 /// The methods that ISO 16610-28:2016 names for the ends of a profile (terms from memory), as far as they are these.
@@ -296,7 +303,7 @@ fn report(
     judged: &Judged,
     outcome: &Outcome,
 ) -> ChannelReport {
-    let (before, after) = (Level::of(raw.samples), Level::of(&outcome.output));
+    let (before, after) = rayon::join(|| Level::of(raw.samples), || Level::of(&outcome.output));
     let polynomial = outcome.baseline.polynomial();
     let reaches = chain.reaches();
     let (extension, _) = stage_reports(&judged.chosen, chain, settings);
@@ -342,6 +349,8 @@ fn report(
         integral: None,
         rms: InOut { before: before.map(|l| l.rms), after: after.map(|l| l.rms) },
         level: InOut { before, after },
+        repaired: 0,
+        repairs: Vec::new(),
         parseval: outcome.parseval,
     }
 }

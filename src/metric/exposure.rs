@@ -134,7 +134,9 @@ mod tests {
             wave.iter().enumerate().map(|(n, v)| if (3000..4000).contains(&n) { *v } else { 0.0 }).collect();
         let found = Exposure::of(&burst, &Unit::parse("g"), &axis, "Wf", 1.0);
         let g = crate::unit::STANDARD_GRAVITY;
-        assert!((found.mtvv.unwrap() - g * 2.0_f64.sqrt()).abs() < 1e-10 && found.mtvv_at == Some(3.999));
+        // The burst begins with a zero: with and without it the window holds the same.
+        assert!((found.mtvv.unwrap() - g * 2.0_f64.sqrt()).abs() < 1e-10);
+        assert!(found.mtvv_at.is_some_and(|at| (3.999..=4.0).contains(&at)), "{found:?}");
         assert!((found.rms - g * 0.2_f64.sqrt()).abs() < 1e-10);
         assert!((found.msdv.unwrap() - g * 2.0_f64.sqrt()).abs() < 1e-10);
         assert!((found.mtvv_ratio.unwrap() - 10.0_f64.sqrt()).abs() < 1e-10);

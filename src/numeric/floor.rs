@@ -27,8 +27,7 @@ pub fn sigma(samples: &[f64]) -> f64 {
     let last = len - segment;
     let half_steps = last / (segment / 2);
     let count = (half_steps + 1).min(SEGMENTS);
-    let window: Vec<f64> =
-        (0..segment).map(|n| 0.5 - 0.5 * (TAU * n as f64 / segment as f64).cos()).collect();
+    let window: Vec<f64> = (0..segment).map(|n| 0.5 - 0.5 * (TAU * n as f64 / segment as f64).cos()).collect();
     let weight = sum::sum_of_squares(&window) / segment as f64;
     let mut mean = vec![0.0; segment / 2 + 1];
     for index in 0..count {

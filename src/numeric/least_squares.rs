@@ -7,12 +7,7 @@ use crate::numeric::polynomial::Polynomial;
 ///
 /// Fitted in Legendre polynomials of the interval, whose Gram matrix is nearly diagonal for even points, and once more to
 /// the residual: the second round removes the rounding of the first. Without points it is zero.
-pub fn polynomial(
-    points: impl Iterator<Item = (f64, f64)> + Clone,
-    low: f64,
-    high: f64,
-    degree: u8,
-) -> Polynomial {
+pub fn polynomial(points: impl Iterator<Item = (f64, f64)> + Clone, low: f64, high: f64, degree: u8) -> Polynomial {
     let terms = usize::from(degree.min(3)).min(points.clone().take(4).count().saturating_sub(1)) + 1;
     let centre = (low + high) / 2.0;
     let half_width = if high > low { (high - low) / 2.0 } else { 0.5 };

@@ -93,7 +93,7 @@ impl Calibration {
         let coarsest = coarsest(&hz, &size, phase.as_deref());
         let limit = -BOOST.ln();
         let weak = || hz.iter().zip(&size).filter(|(_, v)| **v < limit).map(|(f, _)| *f);
-        let limited_hz = weak().next().zip(weak().last()).map(|(from, to)| [from, to]);
+        let limited_hz = weak().next().zip(weak().next_back()).map(|(from, to)| [from, to]);
         let axis: Vec<f64> = hz.iter().map(|f| f.ln()).collect();
         let curve = |y: Vec<f64>| {
             Monotone::through(axis.clone(), y).ok_or_else(|| Error::malformed("frequencies too close to be told apart"))

@@ -65,12 +65,14 @@ impl Chain {
     /// operators of which a run takes one; `Unsupported` for corners, notches and transitions that do not fit below the
     /// Nyquist frequency.
     pub fn resolve(requests: &[Request], shape: &Shape, axis: &Axis, len: usize) -> Result<(Chain, Vec<Finding>)> {
+        // A derivative of degree m weighs noise by w^m: its smoothing penalises one order more.
+        let order = if requests.iter().any(|request| request.step().key == "differentiate") { 3 } else { 2 };
         let mut turning = None;
         let mut parts = Vec::new();
         let mut treatments = Treatments::default();
         let mut findings = Vec::new();
         for request in requests {
-            let frame = Frame { option: request.step().option(), shape, axis, len };
+            let frame = Frame { option: request.step().option(), shape, axis, len, order };
             let effect = request.resolve(&frame)?;
             turning = turned(turning, request, effect.turns)?;
             treatments = treatments.joined(effect.treatments)?;
@@ -83,8 +85,8 @@ impl Chain {
                 .remedy("weight the acceleration itself"));
         }
         findings.extend(empty_band(&parts, axis));
-        if let Some(Smoothing { strength: Strength::Given(strength), .. }) = treatments.smoothing {
-            parts.push(smoothing::part(strength));
+        if let Some(Smoothing { strength: Strength::Given(strength), order, .. }) = treatments.smoothing {
+            parts.push(smoothing::part(strength, order));
         }
         let chain = Chain::of(parts, turns, shape.clone(), treatments);
         findings.extend(long_reach(chain.reaches.reach, turns, len));
@@ -99,7 +101,7 @@ impl Chain {
         });
         let all = parts.clone();
         let robust = match treatments.smoothing {
-            Some(Smoothing { strength: Strength::Given(strength), robust: true }) => Some(strength),
+            Some(Smoothing { strength: Strength::Given(strength), robust: true, .. }) => Some(strength),
             _ => None,
         };
         let mut passes: Vec<Pass> = Vec::new();
@@ -161,40 +163,52 @@ impl Chain {
     pub fn with_strength(&self, strength: f64) -> Chain {
         let Some(smoothing) = self.treatments.smoothing else { return self.clone() };
         let strength = Strength::Given(strength);
-        self.rebuilt(Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments })
+        self.rebuilt(
+            self.parts().cloned().collect(),
+            Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments },
+        )
     }
 
     /// The chain as its edges are judged: outliers keep their weight, and the rate stays.
     #[must_use]
     pub fn on_own_grid(&self) -> Chain {
         let smoothing = self.treatments.smoothing.map(|smoothing| Smoothing { robust: false, ..smoothing });
-        self.rebuilt(Treatments { smoothing, resampling: None, ..self.treatments })
+        let treatments = Treatments { smoothing, resampling: None, ..self.treatments };
+        // Reaches are costly: nothing is measured twice.
+        if treatments == self.treatments {
+            self.clone()
+        } else {
+            self.rebuilt(self.parts().cloned().collect(), treatments)
+        }
     }
 
     /// The chain up to its smoothing.
     #[must_use]
     pub fn before_smoothing(&self) -> Chain {
-        self.rebuilt(Treatments { smoothing: None, resampling: None, ..self.treatments })
+        // Without it neither the low-pass that goes with a lower rate is wanted.
+        let parts = self.parts().filter(|part| part.stage != Stage::Resample).cloned().collect();
+        self.rebuilt(parts, Treatments { smoothing: None, resampling: None, ..self.treatments })
     }
 
-    fn rebuilt(&self, treatments: Treatments) -> Chain {
-        // Reaches are costly: nothing is measured twice.
-        if treatments == self.treatments {
-            return self.clone();
+    /// The chain without its derivatives or integrals: what is done to the record itself.
+    #[must_use]
+    pub fn without_turns(&self) -> Chain {
+        let mut chain = self.clone();
+        chain.turns = 0;
+        for pass in &mut chain.passes {
+            *pass = pass.with_turns(0);
         }
-        let smooths = treatments.smoothing.is_some();
-        let mut parts: Vec<Part> = self
-            .passes
-            .iter()
-            .flat_map(|pass| &pass.parts)
-            .filter(|part| part.stage != Stage::Smooth)
-            .cloned()
-            .collect();
-        if !smooths {
-            parts.retain(|part| part.stage != Stage::Resample);
-        }
-        if let Some(Smoothing { strength: Strength::Given(strength), .. }) = treatments.smoothing {
-            parts.push(smoothing::part(strength));
+        chain
+    }
+
+    fn parts(&self) -> impl Iterator<Item = &Part> {
+        self.passes.iter().flat_map(|pass| &pass.parts)
+    }
+
+    fn rebuilt(&self, mut parts: Vec<Part>, treatments: Treatments) -> Chain {
+        parts.retain(|part| part.stage != Stage::Smooth);
+        if let Some(Smoothing { strength: Strength::Given(strength), order, .. }) = treatments.smoothing {
+            parts.push(smoothing::part(strength, order));
         }
         Chain::of(parts, self.turns, self.shape.clone(), treatments)
             .with_conditions(self.conditions.clone(), self.offset.clone())

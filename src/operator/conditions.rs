@@ -222,9 +222,14 @@ impl FromStr for Offset {
     type Err = Error;
 
     fn from_str(text: &str) -> Result<Offset> {
-        let read = if text.contains("..") { stretch(text).map(Offset::Stretch) } else { Quantity::parse(text).map(Offset::Value) };
+        let read = if text.contains("..") {
+            stretch(text).map(Offset::Stretch)
+        } else {
+            Quantity::parse(text).map(Offset::Value)
+        };
         read.map_err(|error| {
-            Error::usage(error.what()).remedy("write a value with its unit, or a quiet stretch, as in 0.02m/s2 or 0s..1.5s")
+            Error::usage(error.what())
+                .remedy("write a value with its unit, or a quiet stretch, as in 0.02m/s2 or 0s..1.5s")
         })
     }
 }
@@ -287,7 +292,9 @@ mod tests {
         ] {
             assert_eq!(text.parse::<Conditions>().expect_err(text).to_string(), message);
         }
-        assert!("settled".parse::<Conditions>().expect_err("unknown").to_string().contains("use one of start-rest, rest,"));
+        assert!(
+            "settled".parse::<Conditions>().expect_err("unknown").to_string().contains("use one of start-rest, rest,")
+        );
         for text in ["0.1g", "0s..2s"] {
             assert_eq!(text.parse::<Offset>().expect(text).to_string(), text);
         }

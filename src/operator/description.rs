@@ -64,6 +64,8 @@ pub struct OperatorDescription {
     pub option: &'static str,
     /// The option's argument as written.
     pub value: String,
+    /// SHA-256 of the table that it came from; null without one.
+    pub sha256: Option<String>,
     /// Its corners, lowest frequency first; of a notch the centre.
     pub corners: Vec<CornerDescription>,
     /// Reaches of this gain alone, in samples.
@@ -145,17 +147,25 @@ fn describe_pass(pass: &Pass, axis: &Axis) -> PassDescription {
         turns: pass.turns,
         robust: pass.robust.is_some(),
         resamples: pass.resampling.is_some(),
-        operators: pass.parts.iter().map(|part| describe_part(part, axis)).collect(),
+        operators: pass.parts.iter().map(|part| describe_part(part, alone(pass, part), axis)).collect(),
         reaches: pass.reaches,
     }
 }
 
-fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
-    let alone = std::slice::from_ref(part);
+/// The reaches of one part without the others; those of the pass where it is all there is.
+fn alone(pass: &Pass, part: &Part) -> Reaches {
+    if pass.parts.len() == 1 && pass.turns == 0 {
+        return pass.reaches;
+    }
+    reaches(std::slice::from_ref(part), 0)
+}
+
+fn describe_part(part: &Part, reaches: Reaches, axis: &Axis) -> OperatorDescription {
     OperatorDescription {
         kind: part.kind,
         option: part.key,
         value: part.value.clone(),
+        sha256: part.gain.fingerprint().map(str::to_owned),
         corners: part
             .corners
             .iter()
@@ -167,6 +177,6 @@ fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
                 gain: part.gain.at(corner.cycles),
             })
             .collect(),
-        reaches: reaches(alone, 0),
+        reaches,
     }
 }

@@ -23,6 +23,11 @@ pub trait Gain: std::fmt::Debug + Send + Sync {
     /// Taylor series of the gain at zero frequency.
     fn series(&self) -> Series;
 
+    /// SHA-256 of the file that the gain was read from, where it was.
+    fn fingerprint(&self) -> Option<&str> {
+        None
+    }
+
     /// About how far the impulse response extends to each side, in samples: at least the 99.9 % reach, at most about
     /// twice that; infinite where the gain jumps. It sizes the grids on which reaches are measured.
     fn extent_samples(&self) -> f64;

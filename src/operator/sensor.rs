@@ -17,6 +17,7 @@ use super::step::{CornerPoint, Effect, Frame, Part, Setting, Stage};
 #[derive(Debug)]
 struct Correct {
     path: String,
+    sha256: String,
     table: Arc<Calibration>,
 }
 
@@ -31,7 +32,7 @@ pub(super) fn response(text: &str) -> Result<Box<dyn Setting>> {
     let raw = read::read(Input::Path(PathBuf::from(path)), &options).map_err(|error| error.at(place()))?;
     let columns: Vec<_> = raw.channels.iter().map(|c| (c.name.as_str(), c.unit.label(), c.values.as_slice())).collect();
     let table = Calibration::from_columns(&columns).map_err(|error| error.at(place()))?;
-    Ok(Box::new(Correct { path: path.to_owned(), table: Arc::new(table) }))
+    Ok(Box::new(Correct { path: path.to_owned(), sha256: raw.source.sha256, table: Arc::new(table) }))
 }
 
 impl Setting for Correct {
@@ -59,7 +60,7 @@ impl Setting for Correct {
         let points = [(low, "lowest of the table"), (top, "highest of the table")];
         let corners = points
             .into_iter()
-            .filter(|&(hz, _)| hz < nyquist_hz && (hz < top || hz == top))
+            .filter(|&(hz, _)| hz < nyquist_hz && hz <= top)
             .map(|(hz, text)| CornerPoint { text: text.to_owned(), cycles: hz / rate_hz })
             .collect();
         let part = Part {
@@ -68,7 +69,7 @@ impl Setting for Correct {
             value: self.path.clone(),
             stage: Stage::Response,
             corners,
-            gain: Arc::new(Inverse { table: table.clone(), rate_hz }),
+            gain: Arc::new(Inverse { table: table.clone(), sha256: self.sha256.clone(), rate_hz }),
         };
         Ok(Effect { parts: vec![part], findings, ..Effect::default() })
     }
@@ -118,6 +119,7 @@ impl Correct {
 #[derive(Debug)]
 struct Inverse {
     table: Arc<Calibration>,
+    sha256: String,
     rate_hz: f64,
 }
 
@@ -144,6 +146,9 @@ impl Gain for Inverse {
             })
             .collect();
         Series::of_quotient(&terms, &[1.0])
+    }
+    fn fingerprint(&self) -> Option<&str> {
+        Some(&self.sha256)
     }
     fn extent_samples(&self) -> f64 {
         4.0 * self.rate_hz / self.table.span_hz()[0]

@@ -47,6 +47,8 @@ pub(super) struct Frame<'a> {
     pub axis: &'a Axis,
     /// Samples of the record.
     pub len: usize,
+    /// Order of the differences that smoothing penalises.
+    pub order: i32,
 }
 
 /// What an operator does to one record.

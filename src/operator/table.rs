@@ -79,7 +79,7 @@ pub static STEPS: &[Step] = &[
         key: "differentiate",
         value: "1|2",
         example: "1",
-        help: "differentiate once or twice",
+        help: "differentiate once or twice; without a corner or --smooth it is smoothed by cross-validation (--smooth none leaves it)",
         read: turn::differentiate,
     },
     Step {

@@ -20,13 +20,15 @@ pub struct Treatments {
 }
 
 /// Penalised smoothing (Garcia 2010): the least sum of squared residuals plus the strength times that of the second
-/// differences.
+/// (for a derivative third) differences.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Smoothing {
     /// How strongly.
     pub strength: Strength,
     /// Outliers lose their weight (bisquare).
     pub robust: bool,
+    /// Order of the differences that are penalised: 2, and 3 where a derivative is formed.
+    pub order: i32,
 }
 
 /// The strength of smoothing.
@@ -34,7 +36,7 @@ pub struct Smoothing {
 pub enum Strength {
     /// By generalised cross-validation, channel by channel.
     Auto,
-    /// In steps^4.
+    /// In steps^(2 order).
     Given(f64),
 }
 

@@ -6,6 +6,7 @@
 mod csv;
 mod fingerprint;
 mod options;
+mod packed;
 mod selection;
 mod wav;
 
@@ -14,13 +15,16 @@ use std::io::{self, Cursor, ErrorKind, Read};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use crate::error::{Error, Kind, Result};
+use crate::error::{Error, Finding, Kind, Result};
 use crate::place::{Place, escape};
 use crate::record::{ColumnRole, Format, Layout, RawRecord, Source, TableLayout, TextSource};
 use fingerprint::{Fingerprinted, Unchanged};
+use packed::{Packing, Unpacked};
 use selection::Candidate;
 
-pub use options::{Calibration, ReadOptions};
+pub use csv::StampText;
+pub use fingerprint::Fingerprint;
+pub use options::{Calibration, ReadOptions, refuse_beyond};
 
 /// What to read from.
 pub enum Input {
@@ -56,16 +60,11 @@ static READERS: &[Reader] = &[
 
 /// Files that are no records but are often handed in as one: first bytes, name, what to do.
 static FOREIGN: &[(&[u8], &str, &str)] = &[
-    (b"\x1f\x8b", "gzip-compressed data", "unpack it first and read from standard input: gunzip -c FILE | ... -"),
     (b"\xfd7zXZ\0", "xz-compressed data", "unpack it first and read from standard input: xz -dc FILE | ... -"),
-    (
-        b"\x28\xb5\x2f\xfd",
-        "zstd-compressed data",
-        "unpack it first and read from standard input: zstd -dc FILE | ... -",
-    ),
     (b"BZh", "bzip2-compressed data", "unpack it first and read from standard input: bzip2 -dc FILE | ... -"),
     (b"PK\x03\x04", "a zip archive or a spreadsheet workbook", "unpack it, or save the sheet as delimited text"),
     (b"\xd0\xcf\x11\xe0", "a spreadsheet workbook", "save the sheet as delimited text"),
+    (b"\x89GRN", "an archive of this program", "restore it first: endgrain restore FILE -o -"),
     (b"\x89HDF\r\n", "an HDF5 file", "export the wanted channels as delimited text or WAV"),
     (b"%PDF", "a PDF document", "export the data as delimited text"),
 ];
@@ -100,8 +99,16 @@ pub fn reopen(source: &Source, layout: &TableLayout) -> Result<Box<dyn Read + Se
         TextSource::Held(text) => Ok(Box::new(Cursor::new(Shared(Arc::clone(text))))),
         TextSource::File(path) => {
             let file = File::open(path).map_err(|error| refusal(&error).at(Place::file(path.display().to_string())))?;
-            let stream = Unchanged::new(file, source.sha256.clone());
-            Ok(Box::new(csv::Decoded::new(stream, layout.encoding)?))
+            let mut stream = Unchanged::new(file, source.sha256.clone());
+            let mut first = Vec::new();
+            stream.by_ref().take(4).read_to_end(&mut first)?;
+            let packing = Packing::of(&first);
+            let stored = Cursor::new(first).chain(stream);
+            Ok(match packing {
+                // Whether its end may be missing was settled when it was first read.
+                Some(packing) => Box::new(csv::Decoded::new(Unpacked::new(stored, packing, true), layout.encoding)?),
+                None => Box::new(csv::Decoded::new(stored, layout.encoding)?),
+            })
         }
     }
 }
@@ -112,6 +119,7 @@ fn read_wave(intake: &mut Intake<'_>, options: &ReadOptions) -> Result<RawRecord
         allow_truncated: options.allow_truncated,
         channels: options.channels.as_deref(),
         rate_hz: options.rate.as_ref().filter(|rate| rate.unit.is_time()).map(|rate| rate.rate_base),
+        memory: options.memory,
     };
     wav::read(intake.stream, intake.name, &wanted)
 }
@@ -147,22 +155,27 @@ fn read_stream(
     options: &ReadOptions,
 ) -> Result<(RawRecord, u64)> {
     let mut stream = Fingerprinted::new(stream);
-    let mut first = Vec::new();
-    stream.by_ref().take(SNIFFED).read_to_end(&mut first)?;
-    if first.is_empty() {
-        return Err(Error::malformed("the file is empty (0 bytes)"));
-    }
-    if let Some((_, what, remedy)) = FOREIGN.iter().find(|(magic, ..)| first.starts_with(magic)) {
-        return Err(Error::malformed(format!("this is {what}")).remedy(*remedy));
-    }
-    let extension = Path::new(name).extension().map(|e| e.to_string_lossy().to_lowercase()).unwrap_or_default();
-    let Some(reader) = READERS.iter().find(|reader| (reader.sniff)(&first, &extension)) else {
-        return Err(Error::malformed("no known format"));
+    let first = sniff(&mut stream)?;
+    let mut truncated = false;
+    let (mut record, format) = match Packing::of(&first) {
+        Some(packing) => {
+            let stored = Cursor::new(first).chain(&mut stream);
+            let mut unpacked = Unpacked::new(stored, packing, options.allow_truncated);
+            let first = sniff(&mut unpacked)?;
+            let read = dispatch(first, &mut unpacked, name, path, options)?;
+            // What no format reader asked for is checked all the same.
+            io::copy(&mut unpacked, &mut io::sink())?;
+            truncated = unpacked.is_truncated();
+            read
+        }
+        None => dispatch(first, &mut stream, name, path, options)?,
     };
-    let mut whole = Cursor::new(first).chain(&mut stream);
-    let mut record = (reader.read)(&mut Intake { stream: &mut whole, name, path }, options)?;
     let (sha256, bytes) = stream.finish()?;
-    record.source = Source { path: name.to_owned(), sha256, bytes, format: reader.format };
+    if truncated {
+        let text = "the packed data end too early: what was there is read";
+        record.findings.push(Finding::new("truncated", text).at(Place::byte(bytes, None)));
+    }
+    record.source = Source { path: name.to_owned(), sha256, bytes, format };
     if let Some(rate) = &options.rate {
         record.stated_rate = Some(rate.clone());
     }
@@ -171,6 +184,48 @@ fn read_stream(
         *finding = finding.clone().at(Place::file(name));
     }
     Ok((record, bytes))
+}
+
+/// The first bytes of a stream, up to as many as a format is known by.
+fn sniff(stream: &mut dyn Read) -> Result<Vec<u8>> {
+    let mut first = Vec::new();
+    stream.take(SNIFFED).read_to_end(&mut first)?;
+    Ok(first)
+}
+
+/// Hands a stream whose `first` bytes have been taken to the reader of its format.
+fn dispatch(
+    first: Vec<u8>,
+    rest: &mut dyn Read,
+    name: &str,
+    path: Option<&Path>,
+    options: &ReadOptions,
+) -> Result<(RawRecord, Format)> {
+    if first.is_empty() {
+        return Err(Error::malformed("the file is empty (0 bytes)"));
+    }
+    if let Some((_, what, remedy)) = FOREIGN.iter().find(|(magic, ..)| first.starts_with(magic)) {
+        return Err(Error::malformed(format!("this is {what}")).remedy(*remedy));
+    }
+    let extension = extension_of(name);
+    let Some(reader) = READERS.iter().find(|reader| (reader.sniff)(&first, &extension)) else {
+        return Err(Error::malformed("no known format"));
+    };
+    let mut whole = Cursor::new(first).chain(rest);
+    let record = (reader.read)(&mut Intake { stream: &mut whole, name, path }, options)?;
+    Ok((record, reader.format))
+}
+
+/// The extension that tells the format, in lower case: `csv` of `log.csv.gz`.
+fn extension_of(name: &str) -> String {
+    let mut path = Path::new(name);
+    let lower = |path: &Path| path.extension().map(|e| e.to_string_lossy().to_lowercase()).unwrap_or_default();
+    if Packing::is_extension(&lower(path))
+        && let Some(stem) = path.file_stem()
+    {
+        path = Path::new(stem);
+    }
+    lower(path)
 }
 
 /// Applies the user's units and factors.

@@ -3,6 +3,7 @@
 mod axis;
 mod lines;
 mod raw;
+mod repair;
 mod source;
 
 use ndarray::{Array2, ArrayView1};
@@ -14,6 +15,7 @@ use crate::unit::Unit;
 pub use axis::{Axis, RateSource, Spacing};
 pub use lines::RowLines;
 pub use raw::{RawChannel, RawRecord, Stamps, StatedRate};
+pub use repair::{Mending, Repair};
 pub use source::{ColumnRole, Encoding, Format, Layout, SampleType, Source, TableLayout, TextSource, WaveLayout};
 
 /// Channels over one axis. Every sample is finite, every channel has the axis' length, and there is at least one of each.

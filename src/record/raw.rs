@@ -25,6 +25,35 @@ pub struct RawRecord {
 }
 
 impl RawRecord {
+    /// Everything but the numbers, which are large: source, names, units, metadata, layout, and what the stamps are.
+    #[must_use]
+    pub fn outline(&self) -> RawRecord {
+        let channels = self.channels.iter().map(|channel| RawChannel {
+            name: channel.name.clone(),
+            unit: channel.unit.clone(),
+            values: Vec::new(),
+            missing: Vec::new(),
+            missing_spelling: None,
+            full_scale: channel.full_scale,
+        });
+        let stamps = self.stamps.as_ref().map(|stamps| Stamps {
+            name: stamps.name.clone(),
+            unit: stamps.unit.clone(),
+            ticks: Vec::new(),
+            civil: stamps.civil.clone(),
+            ..*stamps
+        });
+        RawRecord {
+            source: self.source.clone(),
+            channels: channels.collect(),
+            stamps,
+            stated_rate: self.stated_rate.clone(),
+            metadata: self.metadata.clone(),
+            findings: Vec::new(),
+            layout: self.layout.clone(),
+        }
+    }
+
     /// Where sample `row` (from 0) of channel `channel` stands: file, line and column of a text file, channel, sample.
     pub fn place(&self, channel: usize, row: usize) -> Place {
         let name = self.channels.get(channel).map(|channel| channel.name.clone());

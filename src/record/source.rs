@@ -96,11 +96,25 @@ pub enum Encoding {
     Windows1252,
 }
 
+impl Encoding {
+    /// Where decoded text holds what the encoding cannot: bytes that are no UTF-8, or the mark that stands for halves of
+    /// characters in UTF-16.
+    pub(crate) fn odd_byte(self, text: &[u8]) -> Option<usize> {
+        match self {
+            Encoding::Utf8 | Encoding::Utf8Marked => std::str::from_utf8(text).err().map(|error| error.valid_up_to()),
+            Encoding::Utf16Le | Encoding::Utf16Be => memchr::memmem::find(text, "\u{fffd}".as_bytes()),
+            Encoding::Windows1252 => None,
+        }
+    }
+}
+
 /// What a column of a table is.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum ColumnRole {
     /// The time or position column.
     Stamps,
+    /// The dates of the stamps, whose clock times stand in the column of stamps.
+    Dates,
     /// Channel of that index in the raw record.
     Channel(usize),
     /// Copied through: text, or a channel that was not asked for.

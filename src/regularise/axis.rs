@@ -55,7 +55,7 @@ pub fn decide(table: &Table, reading: Option<&StampReading>) -> Result<(Axis, Ve
 }
 
 fn from_stamps(table: &Table, reading: &StampReading, step: f64, len: usize) -> Result<Axis> {
-    let mut axis = Axis::new(reading.unit.clone(), start(table, reading), step, len, RateSource::Stamps)?;
+    let mut axis = Axis::new(reading.unit.clone(), start_of(table, reading), step, len, RateSource::Stamps)?;
     if let Some(rate) = reading.rate {
         axis = axis.with_rate(rate);
     }
@@ -74,7 +74,7 @@ fn from_rate(
 ) -> Result<Axis> {
     let base = if rate.unit.is_length() { "m" } else { "s" };
     let (unit, start) = match reading {
-        Some(reading) if reading.unit.is_time() == (base == "s") => (reading.unit.clone(), start(table, reading)),
+        Some(reading) if reading.unit.is_time() == (base == "s") => (reading.unit.clone(), start_of(table, reading)),
         _ => (Unit::parse(base), 0.0),
     };
     let scale = unit.meaning().map_or(1.0, |m| m.scale);
@@ -108,10 +108,11 @@ fn row_rate(table: &Table, rate: &StatedRate) -> f64 {
 }
 
 /// The first stamp; civil stamps count from the first row of the file, whose date the axis carries.
-fn start(table: &Table, reading: &StampReading) -> f64 {
+pub fn start_of(table: &Table, reading: &StampReading) -> f64 {
     match &table.raw.stamps {
         Some(stamps) if stamps.civil.is_some() => stamps.ticks.first().map_or(0.0, |&t| t as f64 * stamps.tick),
-        _ => reading.first,
+        Some(stamps) => stamps.first + stamps.ticks.first().map_or(0.0, |&t| t as f64 * stamps.tick),
+        None => reading.first,
     }
 }
 

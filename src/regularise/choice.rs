@@ -15,6 +15,8 @@ pub enum Gaps {
     Fill,
     /// Smoothing finds what belongs there: until then straight lines hold their places, and the record lists them.
     Smooth,
+    /// The record falls into the stretches between them, each a record of its own.
+    Split,
 }
 
 /// What happens to rows that repeat the stamp of the row before.
@@ -32,14 +34,18 @@ pub enum Duplicates {
 pub enum Regrid {
     /// The samples are interpolated onto an even grid by a cubic spline.
     Cubic,
+    /// The cosine series that fits the samples best is read off on an even grid: for content near the end of the band.
+    LeastSquares,
     /// The samples are taken as even: right where the stamps scatter and the sampling does not.
     Off,
 }
 
 /// The words of each choice, first the one that results show.
-const GAPS: &[(&str, Gaps)] = &[("reject", Gaps::Reject), ("fill", Gaps::Fill), ("smooth", Gaps::Smooth)];
+const GAPS: &[(&str, Gaps)] =
+    &[("reject", Gaps::Reject), ("fill", Gaps::Fill), ("smooth", Gaps::Smooth), ("split", Gaps::Split)];
 const DUPLICATES: &[(&str, Duplicates)] = &[("reject", Duplicates::Reject), ("drop", Duplicates::Drop)];
-const REGRIDS: &[(&str, Regrid)] = &[("cubic", Regrid::Cubic), ("off", Regrid::Off)];
+const REGRIDS: &[(&str, Regrid)] =
+    &[("cubic", Regrid::Cubic), ("least-squares", Regrid::LeastSquares), ("off", Regrid::Off)];
 
 fn chosen<T: Copy>(rows: &[(&str, T)], text: &str) -> Result<T, Error> {
     rows.iter().find(|(word, _)| *word == text).map(|(_, value)| *value).ok_or_else(|| {
@@ -109,6 +115,6 @@ mod tests {
         for (text, value) in REGRIDS {
             assert_eq!((text.parse(), value.to_string().as_str()), (Ok(*value), *text));
         }
-        assert!("split".parse::<Gaps>().is_err_and(|e| e.to_string().contains("choose reject or fill")));
+        assert!("cut".parse::<Gaps>().is_err_and(|e| e.to_string().contains("choose reject or fill or split")));
     }
 }

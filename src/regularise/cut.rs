@@ -35,7 +35,10 @@ impl Bound {
     }
 
     /// The number in another unit of the same dimension.
-    fn in_unit(&self, unit: &Unit) -> Result<f64> {
+    ///
+    /// # Errors
+    /// `Usage` for a unit of another dimension.
+    pub fn in_unit(&self, unit: &Unit) -> Result<f64> {
         let wrong = || {
             Error::usage(format!("{} {} is no place on an axis in {unit}", self.value, self.unit))
                 .remedy(format!("give --from and --to in {unit}"))

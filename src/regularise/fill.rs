@@ -7,13 +7,15 @@ use crate::audit::stamps::StampReading;
 use crate::error::{Error, Finding, Result};
 use crate::numeric::autoregressive_gap::{burg_of_segments, interpolate};
 use crate::numeric::noise;
+use crate::numeric::smoother;
 use crate::numeric::spline::cubic_spline;
 use crate::numeric::sum::{mean, standard_deviation};
 use crate::place::Place;
-use crate::record::{Axis, Record};
+use crate::record::{Axis, Mending, Record, Repair};
 use crate::unit::counted;
 
 use super::band::edge_frequency;
+use super::regular::Regular;
 use super::table::Table;
 use super::{Gaps, RowMap};
 
@@ -25,27 +27,24 @@ const MODEL_CYCLES: f64 = 1.0;
 const CUBIC_NOISE: f64 = 0.03;
 /// Samples on each side of a gap that the cubic spline passes through.
 const CUBIC_REACH: usize = 24;
+/// Samples on each side of a gap that the smoother looks at, at least.
+const SMOOTHER_REACH: usize = 256;
 /// Highest order of the model.
 const ORDER: usize = 32;
 
 /// The record of a table whose rows are all there.
-pub fn complete(mut table: Table, axis: Axis, findings: &mut Vec<Finding>) -> Result<(Record, RowMap)> {
-    fill_table(&mut table, findings)?;
+pub fn complete(mut table: Table, axis: Axis, findings: &mut Vec<Finding>) -> Result<Regular> {
+    let repairs = fill_table(&mut table, findings)?;
     let rows = table.rows.clone();
-    Ok((build(table, axis)?, rows))
+    Ok(Regular { record: build(table, axis)?, rows, repairs, first_row: None, segment: None })
 }
 
 /// The record of a table with rows missing: they are put in, then filled.
-pub fn expand(
-    mut table: Table,
-    reading: &StampReading,
-    axis: Axis,
-    findings: &mut Vec<Finding>,
-) -> Result<(Record, RowMap)> {
+pub fn expand(mut table: Table, reading: &StampReading, axis: Axis, findings: &mut Vec<Finding>) -> Result<Regular> {
     let len = axis.len();
     if reading.missing > table.len() as u64 {
         let what = format!("{} of {} rows are missing", reading.missing, len);
-        let remedy = "--from and --to cut out a stretch that is there";
+        let remedy = "--gaps split works on the stretches that are there, --from and --to cut one out";
         return Err(Error::unsupported(what).at(Place::file(&table.raw.source.path)).remedy(remedy));
     }
     let mut rows = vec![None; len];
@@ -72,46 +71,58 @@ pub fn expand(
 ///
 /// # Errors
 /// `Unsupported` for a gap at an end, too long for the content, or with too few samples around it.
-pub fn fill_gaps(values: Vec<f64>) -> std::result::Result<(Vec<f64>, &'static str), (usize, Error)> {
+pub fn fill_gaps(values: Vec<f64>) -> std::result::Result<(Vec<f64>, String), (usize, Error)> {
     match fill(values) {
-        Ok(filled) => {
-            let how = filled.how();
-            Ok((filled.values, how))
-        }
+        Ok((values, repairs)) => Ok((values, how(&repairs))),
         Err(Unfillable { sample, what }) => Err((sample, Error::unsupported(what))),
     }
 }
 
-/// Fills all missing values of all channels.
-pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> {
+/// Fills all missing values of all channels, and tells which.
+pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<Vec<Vec<Repair>>> {
     if table.gaps == Gaps::Smooth {
-        return hold(table);
+        hold(table)?;
+        return Ok(vec![Vec::new(); table.raw.channels.len()]);
     }
+    let mut all = Vec::with_capacity(table.raw.channels.len());
     for index in 0..table.raw.channels.len() {
         let values = std::mem::take(&mut table.raw.channels[index].values);
-        let filled = fill(values).map_err(|Unfillable { sample, what }| {
+        let (values, repairs) = fill(values).map_err(|Unfillable { sample, what }| {
             let place = match table.rows.row(sample) {
                 Some(_) => table.value_place(index, sample),
                 // A row that was never there: the row before it is where to look.
                 None => Place { sample: Some(sample as u64), ..table.value_place(index, sample.saturating_sub(1)) },
             };
-            Error::unsupported(what).at(place).remedy("--from and --to cut beside it")
+            let remedy = "--gaps split works on the stretches beside it, --from and --to cut";
+            Error::unsupported(what).at(place).remedy(remedy)
         })?;
-        let how = filled.how();
         let channel = &mut table.raw.channels[index];
-        channel.values = filled.values;
-        if filled.count > 0 {
-            let share = filled.count as f64 / channel.values.len() as f64;
-            let mut text =
-                format!("{} filled in {} ({how})", counted(filled.count, "sample"), counted(filled.gaps, "gap"));
+        channel.values = values;
+        let count: usize = repairs.iter().map(Repair::count).sum();
+        if count > 0 {
+            let share = count as f64 / channel.values.len() as f64;
+            let gaps = counted(repairs.len(), "gap");
+            let mut text = format!("{} filled in {gaps} ({})", counted(count, "sample"), how(&repairs));
             if share > 0.05 {
                 text += &format!(": {} % of the record is interpolated", figure((share * 1000.0).round() / 10.0));
             }
             let place = Place::channel(&channel.name).within(&Place::file(&table.raw.source.path));
             findings.push(Finding::new(if share > 0.05 { "much_filled" } else { "filled" }, text).at(place));
         }
+        all.push(repairs);
     }
-    Ok(())
+    Ok(all)
+}
+
+/// The ways of mending in words, each once.
+fn how(repairs: &[Repair]) -> String {
+    let mut labels: Vec<&str> = Vec::new();
+    for repair in repairs {
+        if !labels.contains(&repair.how.label()) {
+            labels.push(repair.how.label());
+        }
+    }
+    labels.join(" and ")
 }
 
 /// Lists the missing values of all channels and lets straight lines hold their places.
@@ -179,31 +190,10 @@ struct Unfillable {
     what: String,
 }
 
-/// A channel without gaps.
-struct Filled {
-    values: Vec<f64>,
-    count: usize,
-    gaps: usize,
-    by_cubic: usize,
-}
-
-impl Filled {
-    fn how(&self) -> &'static str {
-        match (self.by_cubic, self.gaps - self.by_cubic) {
-            (_, 0) => "cubic spline",
-            (0, _) => "autoregressive model",
-            _ => "cubic spline and autoregressive model",
-        }
-    }
-}
-
-fn fill(mut values: Vec<f64>) -> std::result::Result<Filled, Unfillable> {
+fn fill(mut values: Vec<f64>) -> std::result::Result<(Vec<f64>, Vec<Repair>), Unfillable> {
     let gaps = gaps(&values);
-    let count = gaps.iter().map(|(from, to)| to - from).sum();
-    let mut filled = Filled { values: Vec::new(), count, gaps: gaps.len(), by_cubic: 0 };
     if gaps.is_empty() {
-        filled.values = values;
-        return Ok(filled);
+        return Ok((values, Vec::new()));
     }
     if let Some(&(from, _)) = gaps.iter().find(|&&(from, to)| from == 0 || to == values.len()) {
         return Err(Unfillable { sample: from, what: "values are missing at an end of the record".to_owned() });
@@ -213,7 +203,7 @@ fn fill(mut values: Vec<f64>) -> std::result::Result<Filled, Unfillable> {
     let noisy = noise::sigma(&known) > CUBIC_NOISE * standard_deviation(&known);
     let centre = mean(&known);
     drop(known);
-    let mut unknown = Vec::new();
+    let (mut unknown, mut repairs) = (Vec::new(), Vec::new());
     let original = values.clone();
     for &(from, to) in &gaps {
         let cycles = (to - from) as f64 * edge;
@@ -225,12 +215,18 @@ fn fill(mut values: Vec<f64>) -> std::result::Result<Filled, Unfillable> {
             );
             return Err(Unfillable { sample: from, what });
         }
-        if cycles <= CUBIC_CYCLES && !noisy {
-            cross(&original, &mut values, from, to);
-            filled.by_cubic += 1;
-        } else {
-            unknown.extend(from..to);
-        }
+        let how = match (cycles <= CUBIC_CYCLES, noisy) {
+            (true, false) => {
+                cross(&original, &mut values, from, to);
+                Mending::CubicSpline
+            }
+            (true, true) if smooth(&original, &mut values, from, to) => Mending::Smoother,
+            _ => {
+                unknown.extend(from..to);
+                Mending::AutoregressiveModel
+            }
+        };
+        repairs.push(Repair { first: from, last: to - 1, how });
     }
     if !unknown.is_empty() {
         for value in &mut values {
@@ -247,8 +243,7 @@ fn fill(mut values: Vec<f64>) -> std::result::Result<Filled, Unfillable> {
             *value += centre;
         }
     }
-    filled.values = values;
-    Ok(filled)
+    Ok((values, repairs))
 }
 
 /// Runs without a value, as (first, one past the last).
@@ -276,4 +271,16 @@ fn cross(original: &[f64], values: &mut [f64], from: usize, to: usize) {
     let y: Vec<f64> = places.iter().map(|&n| original[n]).collect();
     let crossed = cubic_spline(&x, &y, (0..to - from).map(|n| n as f64));
     values[from..to].copy_from_slice(&crossed);
+}
+
+/// Crosses one gap by the smoothest curve that the samples around it allow. False when there are too few.
+fn smooth(original: &[f64], values: &mut [f64], from: usize, to: usize) -> bool {
+    let reach = SMOOTHER_REACH.max(10 * (to - from));
+    let (start, end) = (from.saturating_sub(reach), (to + reach).min(original.len()));
+    let mut window = original[start..end].to_vec();
+    let filled = smoother::fill(&mut window);
+    if filled {
+        values[from..to].copy_from_slice(&window[from - start..to - start]);
+    }
+    filled
 }

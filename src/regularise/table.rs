@@ -6,7 +6,7 @@ use crate::audit::sparse::Sparse;
 use crate::audit::stamps::StampReading;
 use crate::error::{Error, Finding, Result};
 use crate::place::Place;
-use crate::record::{ColumnRole, Layout, RawChannel, RawRecord};
+use crate::record::{ColumnRole, Layout, RawChannel, RawRecord, Stamps};
 
 use super::{Gaps, Pattern, RowMap};
 
@@ -88,6 +88,11 @@ impl Table {
         row_place(&self.raw, self.rows.row(row).unwrap_or(row))
     }
 
+    /// Where a row of the file stands in it.
+    pub fn file_place(&self, row: usize) -> Place {
+        row_place(&self.raw, row)
+    }
+
     /// Where a value stands in the file.
     pub fn value_place(&self, channel: usize, row: usize) -> Place {
         let name = self.raw.channels.get(channel).map(|channel| channel.name.clone());
@@ -107,6 +112,36 @@ impl Table {
             stamps.ticks.drain(..first);
         }
         self.rows = self.rows.cut(first, last - first);
+    }
+
+    /// Takes the rows from `first` on away, as a table of their own.
+    pub fn split_off(&mut self, first: usize) -> Table {
+        let len = self.len();
+        let channels = self.raw.channels.iter_mut().map(|channel| RawChannel {
+            name: channel.name.clone(),
+            unit: channel.unit.clone(),
+            values: channel.values.split_off(first),
+            missing: Vec::new(),
+            missing_spelling: channel.missing_spelling.clone(),
+            full_scale: channel.full_scale,
+        });
+        let channels = channels.collect();
+        let stamps = self.raw.stamps.as_mut().map(|stamps| {
+            let ticks = stamps.ticks.split_off(first);
+            Stamps { ticks, ..stamps.clone() }
+        });
+        let raw = RawRecord {
+            source: self.raw.source.clone(),
+            channels,
+            stamps,
+            stated_rate: self.raw.stated_rate.clone(),
+            metadata: Vec::new(),
+            findings: self.raw.findings.clone(),
+            layout: self.raw.layout.clone(),
+        };
+        let rows = self.rows.cut(first, len - first);
+        self.rows = self.rows.cut(0, first);
+        Table { raw, rows, columns: self.columns.clone(), gaps: self.gaps }
     }
 
     /// Leaves out repeated rows.
@@ -157,7 +192,9 @@ impl Table {
         let spelling = self.raw.channels[index].missing_spelling.as_deref().unwrap_or_default();
         let which = if count == 1 { "the only one".to_owned() } else { format!("the first of {count}") };
         let what = format!("no value ({spelling:?}), {which}");
-        Err(Error::malformed(what).at(self.value_place(index, row)).remedy("--gaps fill interpolates missing values"))
+        Err(Error::malformed(what)
+            .at(self.value_place(index, row))
+            .remedy("--gaps fill interpolates missing values, --gaps split works on the stretches between them"))
     }
 
     fn thin(&mut self, sparse: Sparse) {

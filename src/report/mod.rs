@@ -1,5 +1,6 @@
 //! Results as plain data: what the JSON and the summaries show. Holds no samples.
 
+mod archive;
 mod comparison;
 mod examination;
 mod integral;
@@ -21,12 +22,14 @@ use crate::compare::{EndStanding, How, Standing};
 use crate::error::Finding;
 use crate::metric::exposure::Exposure;
 use crate::operator::{Chain, ChainDescription};
-use crate::record::{Axis, RateSource, Source};
+use crate::record::{Axis, RateSource, Repair, Source};
+use crate::regularise::Segment;
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
+pub use archive::{ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
 pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
-pub use examination::AuditReport;
+pub use examination::{AuditReport, RecordReport};
 pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
@@ -37,7 +40,9 @@ pub use spectral::{
     SumCheck, Trace, WindowReport,
 };
 pub use spectral_plot::spectrum_svg;
-pub use text::{audit_text, comparison_text, figure, plan_text, spectrum_text, summary};
+pub use text::{
+    archive_text, audit_text, comparison_text, figure, listing_text, plan_text, restore_text, spectrum_text, summary,
+};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
@@ -114,6 +119,8 @@ pub struct InputReport {
     pub format: crate::record::Format,
     /// Samples a channel after cutting and repair.
     pub samples: usize,
+    /// Which part of the file it is, where gaps split that.
+    pub part: Option<PartReport>,
     /// The axis.
     pub axis: AxisReport,
 }
@@ -127,9 +134,26 @@ impl InputReport {
             bytes: source.bytes,
             format: source.format,
             samples: axis.len(),
+            part: None,
             axis: AxisReport::new(axis),
         }
     }
+
+    /// The same, of a part of the file.
+    #[must_use]
+    pub fn with_part(self, segment: Option<Segment>) -> InputReport {
+        let part = segment.map(|segment| PartReport { number: segment.number, count: segment.count });
+        InputReport { part, ..self }
+    }
+}
+
+/// A part of a file between gaps.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+pub struct PartReport {
+    /// Number of the part, from 1.
+    pub number: usize,
+    /// Number of parts.
+    pub count: usize,
 }
 
 /// The axis of a record.
@@ -213,6 +237,10 @@ pub struct ChannelReport {
     pub split: Option<SplitReport>,
     /// Constants and uncertainty of an integral; null without one.
     pub integral: Option<IntegralReport>,
+    /// Samples of the input that are not as they were read.
+    pub repaired: usize,
+    /// Which they are, and what they were made from.
+    pub repairs: Vec<Repair>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }

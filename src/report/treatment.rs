@@ -12,7 +12,7 @@ pub struct DespikeReport {
     /// Largest change of a sample, in the unit of the input.
     pub largest: Option<f64>,
     /// What replaced them.
-    pub how: Option<&'static str>,
+    pub how: Option<String>,
 }
 
 /// The smoothing of a channel.

@@ -9,6 +9,7 @@ use std::collections::BTreeMap;
 
 use serde_json::{Map, Value};
 
+use crate::codec::Wanted;
 use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
@@ -19,6 +20,7 @@ use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
 pub use layer::Layer;
+pub use parse::bytes;
 pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
@@ -55,7 +57,9 @@ pub struct Settings {
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
     pub require: Option<Adequacy>,
-/// What happens to output outside the trusted span.
+    /// What an audited record must be, or the audit counts as insufficient.
+    pub fitness: Option<Fitness>,
+    /// What happens to output outside the trusted span.
     pub edges: Edges,
     /// Format of the output; that of the input when `None`.
     pub format: Option<Format>,
@@ -63,6 +67,10 @@ pub struct Settings {
     pub encoding: Option<String>,
     /// Fixed decimals of CSV output; shortest digits when `None`.
     pub decimals: Option<u8>,
+    /// What an archive may lose.
+    pub archive: Wanted,
+    /// Columns tell which samples were mended.
+    pub mark_repairs: bool,
     /// Notes are errors.
     pub strict: bool,
     /// What was set, as written.
@@ -76,6 +84,13 @@ pub enum Beside {
     Sigma,
     /// The record as corrected: filtered, less offset and drift, high-passed; the result is its integral.
     Corrected,
+}
+
+/// What an audit can be required to find.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Fitness {
+    /// Nothing at all: no note, no fault.
+    Clean,
 }
 
 /// What happens to output outside the trusted span.
@@ -118,6 +133,8 @@ impl Settings {
     pub fn to_map(&self) -> Map<String, Value> {
         rows()
             .into_iter()
+            // An archive's options say nothing of other results.
+            .filter(|row| row.group != Group::Archive || self.texts.contains_key(row.key))
             .map(|row| {
                 let texts = self.texts.get(row.key);
                 let value = match row.arity {

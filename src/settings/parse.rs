@@ -2,6 +2,7 @@
 
 use std::str::FromStr;
 
+use crate::codec as archive;
 use crate::ends::Seat;
 use crate::error::{Error, Result};
 use crate::numeric::leading_number;
@@ -10,7 +11,7 @@ use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::{Beside, Edges, Settings, spectral};
+use crate::settings::{Beside, Edges, Fitness, Settings, spectral};
 use crate::unit::Unit;
 use crate::verdict::Adequacy;
 
@@ -19,9 +20,13 @@ type Words<T> = &'static [(&'static str, T)];
 
 const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat::Whole)];
 const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline", Adequacy::Borderline)];
+/// What `--require` can ask of an audit.
+const CLEAN: &str = "clean";
 const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
 const BESIDES: Words<Beside> = &[("sigma", Beside::Sigma), ("corrected", Beside::Corrected)];
+const EFFORTS: Words<archive::Effort> =
+    &[("2", archive::Effort::Usual), ("1", archive::Effort::Quick), ("3", archive::Effort::Long)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
 
 /// The word for regridding where the stamps ask for it.
@@ -50,6 +55,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
             settings.read.units.push((name.to_owned(), Unit::parse(unit)));
         }
         "calibrate" => settings.read.calibrate.push(calibration(text)?),
+        "memory" => settings.read.memory = Some(bytes(text)?),
         "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
         "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
         "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
@@ -57,10 +63,20 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "duplicates" => settings.regularise.duplicates = context(key, text.parse())?,
         "regrid" if text == REGRID_BY_ITSELF => settings.regularise.regrid = None,
         "regrid" => settings.regularise.regrid = Some(context(key, text.parse())?),
+        "mark-repairs" => settings.mark_repairs = switch(key, text)?,
         "strict" => settings.strict = switch(key, text)?,
+        "max-error" => bound(settings, archive::Request::Max(context(key, text.parse())?))?,
+        "rms-error" => bound(settings, archive::Request::Rms(context(key, text.parse())?))?,
+        "lossless" if switch(key, text)? => bound(settings, archive::Request::Lossless)?,
+        "lossless" => {}
+        "keep" => bound(settings, archive::Request::Keep(named(key, text, "a number of coefficients")?))?,
+        "corner" => bound(settings, archive::Request::Corner(context(key, Corner::parse(text))?))?,
+        "effort" => settings.archive.effort = one_of(key, text, EFFORTS)?,
+        "bare" => settings.archive.bare = switch(key, text)?,
         "extension" => settings.stage.extension = context(key, text.parse())?,
         "assert" => context(key, settings.assertion.add(text))?,
         "tolerance" => settings.tolerance = context(key, text.parse())?,
+        "require" if text == CLEAN => settings.fitness = Some(Fitness::Clean),
         "require" => settings.require = Some(one_of(key, text, REQUIRES)?),
         "edges" => settings.edges = one_of(key, text, EDGES)?,
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
@@ -123,6 +139,16 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
     }
 }
 
+/// One bound and no other.
+fn bound(settings: &mut Settings, request: archive::Request) -> Result<()> {
+    if settings.archive.request.is_some() {
+        return Err(Error::usage("more than one bound on the error")
+            .remedy("give one of --max-error, --rms-error, --lossless, --keep, --corner"));
+    }
+    settings.archive.request = Some(request);
+    Ok(())
+}
+
 fn one_of<T: Copy>(key: &str, text: &str, words: Words<T>) -> Result<T> {
     words.iter().find(|(word, _)| *word == text).map(|(_, value)| *value).ok_or_else(|| {
         let known: Vec<&str> = words.iter().map(|(word, _)| *word).collect();
@@ -162,6 +188,31 @@ fn decimals(text: &str) -> Result<u8> {
         );
     }
     Ok(count)
+}
+
+/// Bytes from text such as `500MB` or `4GiB`.
+///
+/// # Errors
+/// `Usage` for anything else.
+pub fn bytes(text: &str) -> Result<u64> {
+    const SIZES: [(&str, u64); 8] = [
+        ("kB", 1_000),
+        ("MB", 1_000_000),
+        ("GB", 1_000_000_000),
+        ("TB", 1_000_000_000_000),
+        ("KiB", 1 << 10),
+        ("MiB", 1 << 20),
+        ("GiB", 1 << 30),
+        ("TiB", 1 << 40),
+    ];
+    let size = SIZES.iter().find_map(|(unit, size)| Some((text.strip_suffix(unit)?.trim(), *size)));
+    let bytes = size.and_then(|(count, size)| {
+        let count = count.parse::<f64>().ok().filter(|count| count.is_finite() && *count > 0.0)?;
+        Some((count * size as f64) as u64) // saturates
+    });
+    bytes.ok_or_else(|| {
+        Error::usage(format!("--memory: not a size: \"{}\"", escape(text))).remedy("write it as 500MB or 4GiB")
+    })
 }
 
 fn running(text: &str) -> Result<f64> {

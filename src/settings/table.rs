@@ -19,6 +19,8 @@ pub enum Group {
     Judgement,
     /// How the result is written.
     Output,
+    /// What an archive may lose.
+    Archive,
 }
 
 impl Group {
@@ -33,6 +35,7 @@ impl Group {
             Group::Spectrum => "Spectrum",
             Group::Judgement => "Judgement",
             Group::Output => "Output",
+            Group::Archive => "Archive",
         }
     }
 }
@@ -70,7 +73,7 @@ const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group,
 use crate::error::{Error, Result};
 use crate::operator::STEPS;
 use Arity::{Many, Once, Switch};
-use Group::{Cut, Input, Judgement, Operators, Output, Repair, Spectrum, Stage};
+use Group::{Archive, Cut, Input, Judgement, Operators, Output, Repair, Spectrum, Stage};
 
 /// The options that are not operators; `rows` gives all.
 #[rustfmt::skip]
@@ -86,12 +89,13 @@ static OPTIONS: &[OptionRow] = &[
     row("missing", "TEXT", Many, Input, "A further spelling that stands for a missing value, such as -9999; may be repeated"),
     row("unit", "NAME=UNIT", Many, Input, "Unit of a channel where the header tells none or a wrong one, such as ax=g; may be repeated"),
     row("calibrate", "NAME=FACTOR[UNIT]", Many, Input, "Factor from the numbers in the file to a unit, such as ch1=98.1m/s2; may be repeated"),
+    row("memory", "SIZE", Once, Input, "Refuse, before working, what would take more memory than this: 500MB, 4GiB. Default: no bound. For batch: of all jobs together, by default half of what is free"),
     row("allow-truncated", "", Switch, Input, "Accept a file whose end is missing, with a note"),
     row("from", "STAMP", Once, Cut, "First stamp to use, with its unit: 2.5s, 30mm"),
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
-    row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default), fill (interpolated as far as the content allows), or smooth (left to --smooth, which bridges them)"),
+    row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default), fill (interpolates gaps of up to one cycle of the content), smooth (left to --smooth, which bridges them) or split (works on each stretch between gaps; part k of OUT.csv goes to OUT-k.csv)"),
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
-    row("regrid", "HOW", Once, Repair, "What to do with uneven stamps: auto (default) interpolates jittered or drifting ones onto an even grid by a cubic spline, cubic also those that are nearly even, off takes the samples as even"),
+    row("regrid", "HOW", Once, Repair, "What to do with uneven stamps: auto (default) interpolates jittered or drifting ones onto an even grid, by a cubic spline or, for content above a fifth of the rate, by the least-squares series; cubic and least-squares also those that are nearly even; off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
     row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast, and even where nothing can be judged (no operator, no corner, an integral without high-pass, a constant or under 16 samples); symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
     row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension or both ends asserted: none, mean, level[:left|:right], line, slopes, tangents (slopes of cubic fits), trend[:DEGREE]. Default: none; level with mixed ends; tangents for integrals and derivatives with even"),
@@ -118,9 +122,17 @@ static OPTIONS: &[OptionRow] = &[
     row("tolerance", "ERROR", Once, Judgement, "Edge error that is tolerable: a share of the output's standard deviation (10%, the default) or a value with its unit (0.02m/s)"),
     row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. What no assumption can spoil (no operator, a constant) counts as met. The output is written all the same"),
     row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted', which is no channel when it is read back), blank (empty cells) or trim (cut off, with the new start stamp)"),
+    row("mark-repairs", "", Switch, Output, "Add a column 'repaired' that tells which samples were filled in or replaced"),
     row("format", "NAME", Once, Output, "Format of the output: csv or wav. Default: what the output's name says, else that of the input"),
     row("encoding", "NAME", Once, Output, "Sample type of WAV output: pcm16, pcm24, pcm32, float32 (default), float64"),
     row("decimals", "COUNT", Once, Output, "Fixed decimals in CSV output. Default: the shortest digits that give the same number again"),
+    row("max-error", "ERROR", Once, Archive, "No sample is off by more: in the channel's unit (0.01 or 0.01g), as a share of its range (0.1%) or as a multiple of its noise (0.5x)"),
+    row("rms-error", "ERROR", Once, Archive, "The root of the mean squared error is at most this; written as for --max-error"),
+    row("lossless", "", Switch, Archive, "Every sample comes back as it was"),
+    row("keep", "COUNT", Once, Archive, "The plain truncated cosine basis: the first COUNT coefficients of each channel, with no bound on the error"),
+    row("corner", "CORNER", Once, Archive, "The same for coefficients below a corner: 40Hz, 2.5s, 0.8mm"),
+    row("effort", "LEVEL", Once, Archive, "How long to look for the smallest archive: 1 one mode, 2 (default) all modes tried on stretches, 3 all modes in full"),
+    row("bare", "", Switch, Archive, "Leave out the source's layout, notes and provenance: for very short records"),
 ];
 
 /// Every option that changes a result, in the order of help texts: operators follow from their own table.

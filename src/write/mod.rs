@@ -6,6 +6,7 @@ mod field;
 mod header;
 mod number;
 mod origin;
+mod restored;
 mod series;
 mod stamp;
 mod table;
@@ -21,6 +22,7 @@ use crate::error::{Error, Finding, Result};
 use crate::record::{Format, Record};
 pub use number::Digits;
 pub use origin::{Origin, Rows};
+pub use restored::RestoredTable;
 pub use series::spectrum_csv;
 pub use wave_header::{WAVE_ENCODINGS, WaveEncoding};
 pub use whole::{
@@ -129,6 +131,14 @@ pub fn fill(writer: &Writer, content: &Content<'_>, output: &mut Pending<'_>) ->
 pub fn save(writer: &Writer, content: &Content<'_>, mut output: Pending<'_>) -> Result<(Written, Vec<Finding>)> {
     let findings = fill(writer, content, &mut output)?;
     output.finish().map(|written| (written, findings))
+}
+
+/// Writes content that has been checked into `output`, which is not finished yet.
+///
+/// # Errors
+/// Those of the writer, with the output's name.
+pub fn put(writer: &Writer, content: &Content<'_>, output: &mut Pending<'_>) -> Result<()> {
+    (writer.write)(content, output).map_err(|error| output.placed(error))
 }
 
 /// The writer of a format.

@@ -13,7 +13,7 @@ pub struct Origin<'a> {
     /// Unit of each channel as the table has it.
     pub(super) units: Vec<Unit>,
     pub(super) rows: Rows<'a>,
-    pub(super) stamps: Option<&'a (dyn Fn(usize) -> String + Sync)>,
+    pub(super) stamps: Option<&'a (dyn Fn(usize, ColumnRole) -> String + Sync)>,
     pub(super) source: Source,
 }
 
@@ -99,9 +99,10 @@ impl<'a> Origin<'a> {
         Ok(Origin { layout: layout.clone(), columns, units, rows, stamps: None, source: raw.source.clone() })
     }
 
-    /// Gives the text in the time column for samples that were inserted, by sample; without it that field stays blank.
+    /// Gives the text in the columns of stamps and dates for samples that were inserted, by sample and column; without it these
+    /// fields stay blank.
     #[must_use]
-    pub fn with_stamps(mut self, stamps: &'a (dyn Fn(usize) -> String + Sync)) -> Origin<'a> {
+    pub fn with_stamps(mut self, stamps: &'a (dyn Fn(usize, ColumnRole) -> String + Sync)) -> Origin<'a> {
         self.stamps = Some(stamps);
         self
     }

@@ -131,6 +131,22 @@ impl StampReading {
         stamps.ticks.iter().enumerate().map(at).collect()
     }
 
+    /// What it says of rows `first..last`, between which none is missing, by the step of the whole column.
+    #[must_use]
+    pub fn stretch(&self, first: usize, last: usize) -> StampReading {
+        let inside = |row: usize| (first + 1..last).contains(&row);
+        StampReading {
+            rows: last - first,
+            missing: 0,
+            gaps: Vec::new(),
+            slip: self.slip.filter(|&row| inside(row)).map(|row| row - first),
+            wraps: (self.wraps.iter().filter(|wrap| inside(wrap.row)))
+                .map(|wrap| Wrap { row: wrap.row - first, ..wrap.clone() })
+                .collect(),
+            ..self.clone()
+        }
+    }
+
     fn blank(stamps: &Stamps) -> StampReading {
         StampReading {
             spacing: Spacing::Single,

@@ -62,7 +62,7 @@ pub fn judge(clock: &Clock<'_>, track: &Track) -> (Spacing, Scatter, Option<usiz
         && let Some((row, size)) = largest_step(&rest)
         && size > (0.1 * h).max(5.0 * deviation) + q
     {
-        return (Spacing::Slipped, scatter, Some(row));
+        return (Spacing::Slipped, scatter, Some(jump_near(&rest, row)));
     }
     if calm {
         return (Spacing::Drifting, scatter, None);
@@ -86,6 +86,13 @@ fn largest_step(rest: &[f64]) -> Option<(usize, f64)> {
         Some((row, (middle(after) - middle(&rest[row - SLIP_ROWS..row])).abs()))
     };
     rows.filter_map(size).max_by(|a, b| a.1.total_cmp(&b.1))
+}
+
+/// The row near `row` at which the deviation changes most from one row to the next: the medians of both sides agree over
+/// many rows where there is no jitter.
+fn jump_near(rest: &[f64], row: usize) -> usize {
+    let near = row.saturating_sub(SLIP_ROWS).max(1)..(row + SLIP_ROWS).min(rest.len());
+    near.max_by(|&a, &b| (rest[a] - rest[a - 1]).abs().total_cmp(&(rest[b] - rest[b - 1]).abs())).unwrap_or(row)
 }
 
 fn middle(rows: &[f64]) -> f64 {

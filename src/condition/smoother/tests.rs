@@ -76,7 +76,7 @@ fn a_short_record_is_smoothed_to_the_published_figures() {
         [(0.1, 5.978076, 1.805691), (1.0, 3.575937, 1.121794), (10.0, 2.151574, 0.848924), (100.0, 1.341577, 1.114301)]
     {
         assert!((smoother.freedom(strength) - trace).abs() < 1e-6, "{strength}");
-        assert!((freedom(Ends::EVEN, 8, strength) - trace).abs() < 1e-6, "{strength}");
+        assert!((freedom(Ends::EVEN, 8, strength, 2) - trace).abs() < 1e-6, "{strength}");
         assert!((smoother.score(&SHORT, strength) - score).abs() < 1e-6, "{strength}");
     }
     let found = smoother.validated(&SHORT);
@@ -89,7 +89,7 @@ fn leverage_tends_to_its_closed_form() {
     for (strength, leverage) in [(0.1, 0.708798), (1.0, 0.388175), (10.0, 0.206182), (100.0, 0.113174)] {
         let n = 1_000_000;
         // The end terms add half a sample's freedom each.
-        assert!((freedom(Ends::EVEN, n, strength) / n as f64 - leverage).abs() < 2e-6, "{strength}");
+        assert!((freedom(Ends::EVEN, n, strength, 2) / n as f64 - leverage).abs() < 2e-6, "{strength}");
     }
 }
 

@@ -98,7 +98,7 @@ impl Taken {
     fn of(input: Input, settings: &Settings) -> Result<Taken> {
         let intake = intake::take(input, settings)?;
         let record = &intake.record;
-        let (chain, remarks) = chain::of(record, settings)?;
+        let (chain, remarks) = chain::plain(record, settings)?;
         intake::refuse_notes(settings, &remarks)?;
         if chain.treatments().resampling.is_some() {
             return Err(Error::usage("--resample and --decimate: a spectrum is formed on the record's own grid")

@@ -18,6 +18,8 @@ pub(super) struct Civil {
     pub(super) decimals: u8,
     /// True when an offset from UTC (or `Z`) is printed.
     pub(super) zoned: bool,
+    /// True when the year has two digits.
+    pub(super) short_year: bool,
 }
 
 /// Order of day and month in a date.
@@ -39,11 +41,13 @@ pub(super) fn parse(text: &[u8]) -> Option<Civil> {
     if !text.first()?.is_ascii_digit() || text.len() > 48 {
         return None;
     }
-    let mut civil = Civil { days: None, order: Order::Sure, seconds: 0, fraction: 0, decimals: 0, zoned: false };
+    let mut civil =
+        Civil { days: None, order: Order::Sure, seconds: 0, fraction: 0, decimals: 0, zoned: false, short_year: false };
     let mut rest = text;
-    if let Some((days, order, after)) = date(text) {
+    if let Some((days, order, short_year, after)) = date(text) {
         civil.days = Some(days);
         civil.order = order;
+        civil.short_year = short_year;
         rest = match after.first() {
             None => return Some(civil),
             Some(b'T' | b't') => &after[1..],
@@ -60,6 +64,12 @@ pub(super) fn parse(text: &[u8]) -> Option<Civil> {
 pub(super) fn exchanged(days: i64) -> Option<i64> {
     let date = date_of(days)?;
     days_of(date.year(), date.day(), date.month())
+}
+
+/// Year, month and day.
+pub(super) fn parts(days: i64) -> Option<(i16, i8, i8)> {
+    let date = date_of(days)?;
+    Some((date.year(), date.month(), date.day()))
 }
 
 /// `2026-03-01T10:00:00.25` for `seconds` since 1970 and a printed fraction.
@@ -95,7 +105,8 @@ fn digits(text: &[u8], most: usize) -> (i64, usize) {
     (text[..count].iter().fold(0, |value, byte| value * 10 + i64::from(byte - b'0')), count)
 }
 
-fn date(text: &[u8]) -> Option<(i64, Order, &[u8])> {
+/// Days since 1970, the order of day and month, whether the year has two digits, and what follows.
+fn date(text: &[u8]) -> Option<(i64, Order, bool, &[u8])> {
     let (a, a_len) = digits(text, 4);
     let mark = *text.get(a_len)?;
     if !matches!(mark, b'-' | b'/' | b'.') {
@@ -112,16 +123,24 @@ fn date(text: &[u8]) -> Option<(i64, Order, &[u8])> {
     if after.first().is_some_and(u8::is_ascii_digit) {
         return None;
     }
-    let (day_first, order) = match (a_len, c_len) {
-        (4, 1..=2) => return Some((days_of(a as i16, b as i8, c as i8)?, Order::Sure, after)),
-        (1..=2, 4) if mark == b'.' => (true, Order::Sure),
-        (1..=2, 4) if a > 12 => (true, Order::DayFirst),
-        (1..=2, 4) if b > 12 => (false, Order::MonthFirst),
-        (1..=2, 4) => (true, Order::Open),
+    // Two digits each, or a clock time behind them: `1.2.34` alone may be anything.
+    let short_year = c_len == 2 && a_len <= 2 && (a_len == 2 && b_len == 2 || !after.is_empty());
+    // POSIX, strptime %y: 69 to 99 are of the last century.
+    let year = if short_year { c + if c < 69 { 2000 } else { 1900 } } else { c };
+    match (a_len, c_len) {
+        (4, 1..=2) => return Some((days_of(a as i16, b as i8, c as i8)?, Order::Sure, false, after)),
+        (1..=2, 4) => {}
+        (1..=2, 2) if short_year => {}
         _ => return None,
+    }
+    let (day_first, order) = match (a, b) {
+        _ if mark == b'.' => (true, Order::Sure),
+        (13.., _) => (true, Order::DayFirst),
+        (_, 13..) => (false, Order::MonthFirst),
+        _ => (true, Order::Open),
     };
     let (day, month) = if day_first { (a, b) } else { (b, a) };
-    Some((days_of(c as i16, month as i8, day as i8)?, order, after))
+    Some((days_of(year as i16, month as i8, day as i8)?, order, short_year, after))
 }
 
 /// `10:00`, `10:00:00`, `10:00:00.25`, with AM or PM.
@@ -212,12 +231,26 @@ mod tests {
         assert_eq!(seconds("09.09.2001 01:46:40,5"), Some((1_000_000_000, 5, 1)));
         assert_eq!(seconds("9/9/2001 1:46:40 AM"), Some((1_000_000_000, 0, 0)));
         assert_eq!(seconds("2001/9/9 13:46:40"), Some((1_000_043_200, 0, 0)));
+        for text in ["09.09.01 01:46:40", "9.9.01 01:46:40", "9/9/01 1:46:40 AM", "09-09-01 01:46:40"] {
+            assert_eq!(seconds(text), Some((1_000_000_000, 0, 0)), "{text}");
+        }
+        assert_eq!(seconds("01.01.70"), Some((0, 0, 0)));
         assert_eq!(seconds("1985-04-12T23:20:50.52Z"), Some((482_196_050, 52, 2)));
         assert_eq!(seconds("1996-12-19T16:39:57-08:00"), seconds("1996-12-20T00:39:57Z"));
         assert_eq!(seconds("10:00:00.123456789123"), Some((36_000, 123_456_789, 9)));
-        for text in
-            ["10", "10:00", "2026-13-01", "2026-02-30", "31/31/2026", "25:00:00", "1.2.3", "10:00:00x", "2026-03-01T"]
-        {
+        for text in [
+            "10",
+            "10:00",
+            "2026-13-01",
+            "2026-02-30",
+            "31/31/2026",
+            "25:00:00",
+            "1.2.3",
+            "1.2.34",
+            "12.34.56",
+            "10:00:00x",
+            "2026-03-01T",
+        ] {
             assert_eq!(seconds(text), None, "{text}");
         }
     }

@@ -25,6 +25,10 @@ pub(super) fn stamps(
     let mut resolution = 10_f64.powi(-i32::from(column.decimals.coarsest()));
     let (form, zoned) = (column.form, column.zoned);
     let ambiguous = form == Form::Date && settle_order(&mut column, name, &mut findings)?;
+    if column.short_year {
+        let text = format!("years of two digits in column \"{}\" are read as 1969 to 2068", escape(name));
+        findings.push(Finding::new("short_year", text));
+    }
     let (mut ticks, tick, scale) = match column.floats.take() {
         Some(values) => {
             let (ticks, tick) = float_ticks(&values);

@@ -79,6 +79,8 @@ pub(super) type Rows<'a> = [Vec<field::Field<'a>>];
 pub(super) struct Roles {
     /// Field (from 0) of the stamps, and what they are.
     pub(super) stamps: Option<(usize, Form)>,
+    /// Field of the dates, where the stamps are clock times in a field of their own.
+    pub(super) dates: Option<usize>,
     /// Unit of the stamps where header or user state one.
     pub(super) stamps_unit: Option<Unit>,
     /// Fields of the wanted channels, ascending.
@@ -139,6 +141,7 @@ pub(super) fn roles(
         None => find(columns, named, &contents, &tracks, options, &mut findings)
             .map_err(|error| error.at(at_header.clone()))?,
     };
+    let (stamps, dates) = halves(stamps, &contents, rows);
     let stamps_unit = stamps.and_then(|field| {
         let header = &columns[field].unit;
         options.time_unit.clone().or_else(|| (header.is_time() || header.is_length()).then(|| header.clone()))
@@ -194,7 +197,26 @@ pub(super) fn roles(
         Content::Stamp(form) => (field, form),
         _ => (field, Form::Number),
     });
-    Ok(Roles { stamps, stamps_unit, channels, findings })
+    Ok(Roles { stamps, dates, stamps_unit, channels, findings })
+}
+
+/// The column of clock times and that of dates, where the stamps are in two halves and it is plain which belong together.
+fn halves(stamps: Option<usize>, contents: &[Content], rows: &Rows<'_>) -> (Option<usize>, Option<usize>) {
+    let dates_alone = |field: usize| {
+        let mut cells = rows.iter().filter_map(|row| civil::parse(&row.get(field)?.text));
+        contents[field] == Content::Stamp(Form::Date) && cells.all(|c| c.seconds == 0 && c.decimals == 0 && !c.zoned)
+    };
+    let only = |mut fields: Vec<usize>| if fields.len() == 1 { fields.pop() } else { None };
+    let all = || 0..contents.len();
+    let Some(chosen) = stamps else { return (None, None) };
+    if contents[chosen] == Content::Stamp(Form::Clock) {
+        return (stamps, only(all().filter(|&field| dates_alone(field)).collect()));
+    }
+    let clocks = all().filter(|&field| contents[field] == Content::Stamp(Form::Clock)).collect();
+    match only(clocks) {
+        Some(clock) if dates_alone(chosen) => (Some(clock), stamps),
+        _ => (stamps, None),
+    }
 }
 
 /// What most of the cells hold that are not missing, in the first rows or else in `later` ones.

@@ -74,7 +74,7 @@ pub(super) fn split<'a>(
         }
         let start = at;
         at += text[at..].iter().position(|&b| b == newline || separates(b, delimiter)).unwrap_or(text.len() - at);
-        let rest = text[start..at].trim_ascii();
+        let rest = bare(&text[start..at], text.get(at).is_none_or(|&byte| byte == newline));
         if !quoted {
             content = Cow::Borrowed(rest);
         } else if !rest.is_empty() {
@@ -112,16 +112,23 @@ pub(super) fn record_end(text: &[u8], from: usize, delimiter: u8, newline: u8) -
 /// The fields of one whole line; a quote left open runs to the line's end.
 pub(super) fn fields(line: &[u8], delimiter: u8) -> Vec<Field<'_>> {
     let mut fields = Vec::new();
-    // A line holds no line end, so any byte that cannot occur in it will do; an open quote is then text.
-    if split(line, 0, delimiter, b'\n', &mut fields).is_none() {
-        let plain = line.split(|&byte| separates(byte, delimiter)).map(<[u8]>::trim_ascii);
-        fields = plain
-            .filter(|text| delimiter != b' ' || !text.is_empty())
-            .take(MOST + 1)
-            .map(|text| Field { text: Cow::Borrowed(text), quoted: false })
-            .collect();
-    }
+    fields_into(line, delimiter, &mut fields);
     fields
+}
+
+/// As `fields`, into a vector that is lent.
+pub(super) fn fields_into<'a>(line: &'a [u8], delimiter: u8, fields: &mut Vec<Field<'a>>) {
+    // A line holds no line end, so any byte that cannot occur in it will do; an open quote is then text.
+    if split(line, 0, delimiter, b'\n', fields).is_none() {
+        let plain = line.split(|&byte| separates(byte, delimiter)).map(<[u8]>::trim_ascii);
+        fields.clear();
+        fields.extend(
+            plain
+                .filter(|text| delimiter != b' ' || !text.is_empty())
+                .take(MOST + 1)
+                .map(|text| Field { text: Cow::Borrowed(text), quoted: false }),
+        );
+    }
 }
 
 /// Longest text that is looked at as a number, in bytes.
@@ -159,6 +166,12 @@ pub(super) fn number(text: &[u8], dialect: Dialect) -> Option<f64> {
 
 /// True for `1.200,50`, `1,200,300.5`, `1'200.5`: groups of three, then the decimal mark or several groups.
 pub(super) fn grouped(text: &[u8], decimal: u8) -> bool {
+    // The first group has three digits at most, and a mark follows it.
+    let signed = usize::from(matches!(text.first(), Some(b'-' | b'+')));
+    let digits = text[signed..].iter().take(4).take_while(|byte| byte.is_ascii_digit()).count();
+    if !(1..=3).contains(&digits) || !matches!(text.get(signed + digits), Some(b'.' | b',' | b'\'' | b' ')) {
+        return false;
+    }
     [b'.', b',', b'\'', b' ']
         .iter()
         .filter(|&&mark| mark != decimal && text.contains(&mark))
@@ -171,10 +184,23 @@ fn grouped_by(text: &[u8], mark: u8, decimal: u8) -> bool {
     let whole = unsigned.split(|&byte| byte == decimal || byte == b'e' || byte == b'E').next().unwrap_or_default();
     let mut groups = whole.split(|&byte| byte == mark);
     let digits = |group: &[u8]| !group.is_empty() && group.iter().all(u8::is_ascii_digit);
+    let rest = &unsigned[whole.len()..];
     mark != decimal
+        && whole.contains(&mark)
         && groups.next().is_some_and(|first| digits(first) && first.len() <= 3)
         && groups.all(|group| digits(group) && group.len() == 3)
-        && number::scan(&unsigned[whole.len()..], decimal).is_none_or(|rest| rest.len == unsigned.len() - whole.len())
+        && (rest.is_empty() || rest == [decimal] || number::scan(rest, decimal).is_some_and(|n| n.len == rest.len()))
+}
+
+/// A field without the blanks around it, and without the first half of a line end where one `ends` it. A carriage return
+/// anywhere else is no blank: it may stand where a digit or a sign was.
+#[inline]
+pub(super) fn bare(field: &[u8], ends: bool) -> &[u8] {
+    let field = if ends { field.strip_suffix(b"\r").unwrap_or(field) } else { field };
+    let blank = |byte: &u8| matches!(byte, b' ' | b'\t');
+    let start = field.iter().position(|byte| !blank(byte)).unwrap_or(field.len());
+    let end = field.iter().rposition(|byte| !blank(byte)).map_or(start, |last| last + 1);
+    &field[start..end]
 }
 
 /// True for a byte that ends a field.
@@ -201,7 +227,7 @@ fn quotation(text: &[u8], from: usize) -> Option<(Cow<'_, [u8]>, usize)> {
     let end = quotation_end(text, from)?;
     let inner = &text[from..end - 1];
     if !inner.contains(&b'"') {
-        return Some((Cow::Borrowed(inner.trim_ascii()), end));
+        return Some((Cow::Borrowed(bare(inner, false)), end));
     }
     let mut plain = Vec::with_capacity(inner.len());
     let mut at = 0;
@@ -209,7 +235,7 @@ fn quotation(text: &[u8], from: usize) -> Option<(Cow<'_, [u8]>, usize)> {
         plain.push(inner[at]);
         at += if inner[at] == b'"' { 2 } else { 1 };
     }
-    Some((Cow::Owned(plain.trim_ascii().to_vec()), end))
+    Some((Cow::Owned(bare(&plain, false).to_vec()), end))
 }
 
 fn quotation_end(text: &[u8], from: usize) -> Option<usize> {
@@ -234,9 +260,45 @@ mod tests {
     }
 
     #[test]
+    fn the_files_of_csv_spectrum_hold_what_their_authors_say() {
+        // npm csv-spectrum 2.0.0: CSV beside JSON, field for field; see fixtures/csv-spectrum/SOURCE.md.
+        let folder = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures/csv-spectrum");
+        let mut compared = 0;
+        for entry in std::fs::read_dir(&folder).expect("the folder") {
+            let path = entry.expect("an entry").path();
+            if path.extension().is_none_or(|extension| extension != "csv") {
+                continue;
+            }
+            let text = std::fs::read(&path).expect("a file");
+            let (mut rows, mut at): (Vec<Vec<String>>, _) = (Vec::new(), 0);
+            while at < text.len() {
+                let mut fields = Vec::new();
+                at = split(&text, at, b',', b'\n', &mut fields).expect("no quote stays open");
+                rows.push(fields.iter().map(Field::string).collect());
+            }
+            let json = std::fs::read_to_string(path.with_extension("json")).expect("its JSON");
+            let expected: serde_json::Value = serde_json::from_str(&json).expect("JSON");
+            let Some(expected) = expected.as_array() else {
+                assert!(path.ends_with("location_coordinates.csv"));
+                continue;
+            };
+            assert_eq!(rows.len(), expected.len() + 1, "{}", path.display());
+            for (row, object) in rows[1..].iter().zip(expected) {
+                for (name, field) in rows[0].iter().zip(row) {
+                    assert_eq!(object[name].as_str(), Some(field.as_str()), "{}", path.display());
+                }
+            }
+            compared += 1;
+        }
+        assert_eq!(compared, 11);
+    }
+
+    #[test]
     fn fields_are_trimmed_and_quotes_removed() {
         assert_eq!(strings("0.1, \"1,5\" ,x\r", b','), ["0.1", "1,5", "x"]);
         assert_eq!(strings("  1   2\t3  ", b' '), ["1", "2", "3"]);
+        // A minus turned into a carriage return must not vanish.
+        assert_eq!(strings("0.1,\r2.5,3\r", b','), ["0.1", "\r2.5", "3"]);
         assert_eq!(strings("a,,", b','), ["a", "", ""]);
         assert_eq!(strings("\"say \"\"x\"\"\",5\" pipe", b','), ["say \"x\"", "5\" pipe"]);
         assert_eq!(strings("\"open,1", b','), ["\"open", "1"]);
@@ -255,6 +317,9 @@ mod tests {
         assert_eq!(look_of("1.200,50", comma), Look::Grouped);
         assert_eq!(look_of("1,200.50", point), Look::Grouped);
         assert_eq!(look_of("1.20,50", comma), Look::Text);
+        for no_number in ["260,-0.5,kept", "260,5x.5", "1.200,5,7"] {
+            assert_eq!(look_of(no_number, comma), Look::Text, "{no_number}");
+        }
         assert_eq!(look_of("10:00:00", point), Look::Stamp);
         assert_eq!(look_of("n/a", point), Look::Missing);
         assert_eq!(number(b"1.200,50", Dialect { thousands: Some(b'.'), ..comma }), Some(1200.5));
@@ -280,7 +345,7 @@ mod tests {
                 let end = split(&text, at, delimiter, b'\n', &mut found).expect("all quotes are closed");
                 prop_assert_eq!(record_end(&text, at, delimiter, b'\n'), Some(end));
                 let own: Vec<Vec<u8>> = found.iter().map(|field| field.text.to_vec()).collect();
-                let theirs: Vec<Vec<u8>> = record.iter().map(|field| field.trim_ascii().to_vec()).collect();
+                let theirs: Vec<Vec<u8>> = record.iter().map(<[u8]>::to_vec).collect();
                 prop_assert_eq!(own, theirs);
                 at = end;
             }

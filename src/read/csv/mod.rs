@@ -19,6 +19,7 @@ mod missing;
 mod name;
 mod number;
 mod opening;
+mod reprint;
 mod rows;
 mod table;
 mod ticks;
@@ -36,8 +37,10 @@ use blocks::{Blocks, Held};
 use missing::Missing;
 use opening::Opening;
 use rows::{Plan, Rows, Task};
+use ticks::Form;
 
 pub(in crate::read) use encoding::Decoded;
+pub use reprint::StampText;
 
 /// Bytes of a block: fits the cache of one core together with its numbers.
 const BLOCK: usize = 1 << 20;
@@ -61,9 +64,9 @@ fn read_in_blocks(intake: &mut Intake<'_>, options: &ReadOptions, block_bytes: u
     let opening = opening::open(&mut blocks, options)?;
     blocks.skip(opening.data_start);
 
-    let plan = plan(&opening, blocks.newline, options);
+    let plan = plan(&opening, blocks.newline, encoding, options);
     let first_line = opening.found.first as u64 + 1;
-    let mut table = table::read(&mut blocks, &plan, first_line, opening.quoted, options.allow_truncated)?;
+    let mut table = table::read(&mut blocks, &plan, first_line, opening.quoted, options)?;
     let text = match (blocks.held, intake.path) {
         (Held::Text(text, _), _) => TextSource::Held(Arc::new(text)),
         (Held::No, Some(path)) => TextSource::File(path.to_owned()),
@@ -79,7 +82,7 @@ fn read_in_blocks(intake: &mut Intake<'_>, options: &ReadOptions, block_bytes: u
 }
 
 /// What to do with each field.
-fn plan(opening: &Opening, newline: u8, options: &ReadOptions) -> Plan {
+fn plan(opening: &Opening, newline: u8, encoding: Encoding, options: &ReadOptions) -> Plan {
     let mut tasks = vec![Task::Skip; opening.header.columns.len()];
     tasks.resize(opening.found.fields, Task::Empty);
     for (channel, &field) in opening.roles.channels.iter().enumerate() {
@@ -88,13 +91,17 @@ fn plan(opening: &Opening, newline: u8, options: &ReadOptions) -> Plan {
     if let Some((field, _)) = opening.roles.stamps {
         tasks[field] = Task::Stamp;
     }
+    if let Some(field) = opening.roles.dates {
+        tasks[field] = Task::Date;
+    }
     Plan {
         dialect: opening.found.dialect,
         newline,
         tasks,
         channels: opening.roles.channels.len(),
         missing: Missing::new(&options.missing, opening.found.dialect.decimal),
-        form: opening.roles.stamps.map(|(_, form)| form),
+        encoding,
+        form: opening.roles.stamps.map(|(_, form)| if opening.roles.dates.is_some() { Form::Date } else { form }),
     }
 }
 
@@ -117,6 +124,9 @@ fn assemble(
         let text = format!("{} lines of NUL bytes are left out as lost", rows.nul_lines.len());
         findings.push(Finding::new("lost_rows", text).at(Place::line(first_line + line)));
     }
+    if let Some(line) = rows.odd_text {
+        findings.push(odd_text(encoding).at(Place::line(first_line + line)));
+    }
     let mut stamps = None;
     if let (Some(ticks), Some((field, _))) = (rows.ticks.take(), roles.stamps) {
         let (found, remarks) = clock::stamps(ticks, &header.columns[field].name, roles.stamps_unit, &lines)?;
@@ -128,6 +138,9 @@ fn assemble(
     roles.channels.iter().enumerate().for_each(|(channel, &field)| columns[field] = ColumnRole::Channel(channel));
     if let Some((field, _)) = roles.stamps {
         columns[field] = ColumnRole::Stamps;
+    }
+    if let Some(field) = roles.dates {
+        columns[field] = ColumnRole::Dates;
     }
     let mut channels = Vec::with_capacity(roles.channels.len());
     for ((&field, values), (missing, missing_spelling)) in roles.channels.iter().zip(rows.values).zip(rows.missing) {
@@ -171,6 +184,17 @@ fn sparse(channel: &RawChannel) -> Option<Finding> {
         format!("channel \"{name}\" has a value on {} of {rows} rows only", present.len())
     };
     Some(Finding::new("sparse_channel", text))
+}
+
+/// A remark on text that is not what the beginning of the file shows. No number is among it.
+fn odd_text(encoding: Encoding) -> Finding {
+    let text = match encoding {
+        Encoding::Utf8 | Encoding::Utf8Marked => {
+            "from here on some text is no UTF-8, as the text above is: it is copied byte for byte"
+        }
+        _ => "from here on some UTF-16 is no text: it is written as U+FFFD",
+    };
+    Finding::new("encoding_changes", text)
 }
 
 fn guess(encoding: Encoding) -> Finding {

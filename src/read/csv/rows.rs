@@ -4,7 +4,7 @@ use super::field::{self, Dialect, Field, grouped};
 use super::missing::Missing;
 use super::ticks::{Form, Ticks};
 use super::{number, shown};
-use crate::record::RowLines;
+use crate::record::{Encoding, RowLines};
 
 /// What to do with one field of every row.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -15,6 +15,8 @@ pub(super) enum Task {
     Value(usize),
     /// Read it as the stamp.
     Stamp,
+    /// Read it as the date of the stamp, whose clock time stands in a field of its own.
+    Date,
     /// It must be empty: the field after a trailing separator.
     Empty,
 }
@@ -29,6 +31,7 @@ pub(super) struct Plan {
     /// Number of channels.
     pub(super) channels: usize,
     pub(super) missing: Missing,
+    pub(super) encoding: Encoding,
     /// What the stamps are, where there are any.
     pub(super) form: Option<Form>,
 }
@@ -47,6 +50,8 @@ pub(super) struct Rows {
     pub(super) line_count: u64,
     /// Lines of NUL bytes passed over.
     pub(super) nul_lines: Vec<u64>,
+    /// First line whose text is not of the encoding that the beginning of the file shows.
+    pub(super) odd_text: Option<u64>,
 }
 
 /// Where reading stopped.
@@ -85,9 +90,11 @@ pub(super) enum Cause {
 type Outcome = std::result::Result<(), (Option<usize>, Cause)>;
 
 impl Plan {
-    /// Reads a block of whole lines up to the first fault. With `quoted`, fields may be quoted and hold line ends.
-    pub(super) fn read(&self, block: &[u8], quoted: bool) -> (Rows, Option<Fault>) {
-        let mut rows = Rows::new(self);
+    /// Reads a block of whole lines up to the first fault into `rows`, which are empty. With `quoted`, fields may be quoted
+    /// and hold line ends.
+    pub(super) fn read(&self, block: &[u8], quoted: bool, mut rows: Rows) -> (Rows, Option<Fault>) {
+        rows.odd_text =
+            self.encoding.odd_byte(block).map(|at| memchr::memchr_iter(self.newline, &block[..at]).count() as u64);
         let fault = match (quoted, self.dialect.delimiter) {
             (true, _) => self.read_quoted(block, &mut rows),
             (false, b' ') => self.read_plain::<true>(block, &mut rows),
@@ -191,7 +198,7 @@ impl Plan {
                 Some(length) => length,
                 None => {
                     let length = rest.iter().position(|&byte| separates(byte) || byte == newline).unwrap_or(rest.len());
-                    let text = rest[..length].trim_ascii();
+                    let text = field::bare(&rest[..length], rest.get(length).is_none_or(|&byte| byte == newline));
                     self.take_text(task, text, row, rows).map_err(|cause| (Some(index), cause))?;
                     length
                 }
@@ -319,6 +326,11 @@ impl Plan {
             Task::Skip => Ok(()),
             Task::Empty if text.is_empty() => Ok(()),
             Task::Empty => Err(Cause::NotEmpty(shown(text))),
+            Task::Date | Task::Stamp if self.joined() => {
+                let pushed = rows.ticks.as_mut().and_then(|ticks| ticks.push_half(text));
+                pushed.ok_or_else(|| Cause::NotAStamp(shown(text)))
+            }
+            Task::Date => Ok(()),
             Task::Stamp => {
                 let pushed = rows.ticks.as_mut().and_then(|ticks| match ticks.form {
                     Form::Number => {
@@ -343,6 +355,11 @@ impl Plan {
                 None => Err(Cause::NotANumber(shown(text))),
             },
         }
+    }
+
+    /// True when date and clock time stand in two fields.
+    fn joined(&self) -> bool {
+        self.tasks.contains(&Task::Date)
     }
 
     /// The text without declared marks between groups of digits.
@@ -376,7 +393,22 @@ impl Rows {
             lines: RowLines::new(),
             line_count: 0,
             nul_lines: Vec::new(),
+            odd_text: None,
         }
+    }
+
+    /// No rows, in the memory of these.
+    pub(super) fn cleared(self, plan: &Plan) -> Rows {
+        let mut empty = Rows::new(plan);
+        for (slot, mut values) in empty.values.iter_mut().zip(self.values) {
+            values.clear();
+            *slot = values;
+        }
+        if let (Some(empty), Some(mut ticks)) = (&mut empty.ticks, self.ticks) {
+            ticks.ticks.clear();
+            empty.ticks = ticks.ticks;
+        }
+        empty
     }
 
     /// Joins the next rows.
@@ -394,6 +426,7 @@ impl Rows {
         if let (Some(ticks), Some(more)) = (&mut self.ticks, &next.ticks) {
             ticks.append(more);
         }
+        self.odd_text = self.odd_text.or(next.odd_text.map(|line| line + self.line_count));
         self.nul_lines.extend(next.nul_lines.iter().map(|line| line + self.line_count));
         self.lines.append(&next.lines, self.line_count);
         self.line_count += next.line_count;

@@ -1,6 +1,6 @@
 //! A column of stamps while it is read: integer ticks of a power of ten, or floats where the text has too many digits.
 
-use super::civil::{self, Order};
+use super::civil::{self, Civil, Order};
 use super::decimals::Decimals;
 use super::number::{self, Printed};
 
@@ -38,6 +38,10 @@ pub(super) struct Ticks {
     pub(super) month_first: bool,
     /// True when the first stamp tells its offset from UTC.
     pub(super) zoned: bool,
+    /// True when some year has two digits.
+    pub(super) short_year: bool,
+    /// The date or the clock time of a row whose other half is still to come.
+    half: Option<Civil>,
 }
 
 impl Ticks {
@@ -53,6 +57,8 @@ impl Ticks {
             day_first: false,
             month_first: false,
             zoned: false,
+            short_year: false,
+            half: None,
         }
     }
 
@@ -84,6 +90,26 @@ impl Ticks {
     /// Adds the date or clock time that `text` is.
     pub(super) fn push_civil(&mut self, text: &[u8]) -> Option<()> {
         let civil = civil::parse(text).filter(|civil| civil.days.is_some() == (self.form == Form::Date))?;
+        self.push_parsed(&civil);
+        Some(())
+    }
+
+    /// Takes the date or the clock time of a row, in any order, and adds the stamp once both are there.
+    pub(super) fn push_half(&mut self, text: &[u8]) -> Option<()> {
+        let civil = civil::parse(text)?;
+        let Some(other) = self.half.take() else {
+            self.half = Some(civil);
+            return Some(());
+        };
+        let (date, clock) = if civil.days.is_some() { (civil, other) } else { (other, civil) };
+        if date.days.is_none() || clock.days.is_some() {
+            return None;
+        }
+        self.push_parsed(&Civil { days: date.days, order: date.order, short_year: date.short_year, ..clock });
+        Some(())
+    }
+
+    fn push_parsed(&mut self, civil: &Civil) {
         if self.len() == 0 {
             self.zoned = civil.zoned;
         }
@@ -93,15 +119,16 @@ impl Ticks {
             Order::DayFirst => self.day_first = true,
             Order::MonthFirst => self.month_first = true,
         }
+        self.short_year |= civil.short_year;
         let seconds = civil.days.unwrap_or(0) * 86_400 + civil.seconds;
         self.decimals.note(1, i16::from(civil.decimals));
         let size = 10_i128.pow(u32::from(civil.decimals));
         self.push_exact(i128::from(seconds) * size + i128::from(civil.fraction), civil.decimals);
-        Some(())
     }
 
     /// Removes the last stamp of a row that turned out faulty.
     pub(super) fn truncate(&mut self, rows: usize) {
+        self.half = None;
         self.ticks.truncate(rows);
         if let Some(floats) = &mut self.floats {
             floats.truncate(rows);
@@ -117,6 +144,7 @@ impl Ticks {
         self.open |= other.open;
         self.day_first |= other.day_first;
         self.month_first |= other.month_first;
+        self.short_year |= other.short_year;
         if let Some(values) = &other.floats {
             self.turn_to_floats();
             self.floats.get_or_insert_default().extend_from_slice(values);

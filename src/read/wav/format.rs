@@ -96,7 +96,17 @@ fn parse(content: &[u8], order: Order, findings: &mut Vec<Finding>) -> Result<Wa
         );
         findings.push(Finding::new("block_align", text));
     }
-    Ok(WaveFormat { order, channels, rate_hz: order.u32(content, 4), sample_type, container, container_guessed })
+    let (rate_hz, bytes_a_second) = (order.u32(content, 4), order.u32(content, 8));
+    // The one other trace of the rate in the file. 0 is what some writers leave there.
+    let fits = [block_align, channels * container].map(|frame| u64::from(rate_hz) * frame as u64);
+    if bytes_a_second != 0 && !fits.contains(&u64::from(bytes_a_second)) {
+        let text = format!(
+            "the header states {bytes_a_second} bytes a second, but {rate_hz} Hz makes that {}: one of them is wrong",
+            fits[1]
+        );
+        findings.push(Finding::new("byte_rate", text));
+    }
+    Ok(WaveFormat { order, channels, rate_hz, sample_type, container, container_guessed })
 }
 
 /// Format tag and valid bits of a WAVEFORMATEXTENSIBLE header.

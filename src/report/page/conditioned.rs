@@ -177,7 +177,8 @@ fn stacked(channel: &ChannelReport, passage: &Passage, stack: &Stack, report: &R
         bands,
         spans: Vec::new(),
     };
-    let line = |name: &str, style: usize, points: Vec<[f64; 2]>| Line { name: name.to_owned(), style, option: None, points };
+    let line =
+        |name: &str, style: usize, points: Vec<[f64; 2]>| Line { name: name.to_owned(), style, option: None, points };
     let corrected = line("less offset and drift", 8, thin(&stack.corrected));
     let result = line("result", 4, thin(&passage.after));
     let bands = vec![Band { name: "± 2 standard deviations, from noise alone".to_owned(), style: 4, points: band }];
@@ -195,7 +196,8 @@ fn constants(integral: &IntegralReport, unit: &str) -> Table {
     let amount = |name: &str, amount: &Amount| {
         vec![Cell::text(name), Cell::Number(Some(amount.value), 5), Cell::text(amount.unit.to_string())]
     };
-    let plain = |name: &str, value: f64, unit: &str| vec![Cell::text(name), Cell::Number(Some(value), 4), Cell::text(unit)];
+    let plain =
+        |name: &str, value: f64, unit: &str| vec![Cell::text(name), Cell::Number(Some(value), 4), Cell::text(unit)];
     let mut rows = vec![amount("first integral at the start", &integral.initial_first)];
     rows.extend(integral.initial_second.as_ref().map(|found| amount("second integral at the start", found)));
     rows.push(amount("offset taken off", &integral.offset));
@@ -210,7 +212,11 @@ fn constants(integral: &IntegralReport, unit: &str) -> Table {
         rows.push(plain("its corner", corner.frequency, corner.unit));
     }
     Table {
-        caption: format!("Integrated {} under {}", if integral.times == 1 { "once" } else { "twice" }, integral.conditions),
+        caption: format!(
+            "Integrated {} under {}",
+            if integral.times == 1 { "once" } else { "twice" },
+            integral.conditions
+        ),
         head: ["what", "value", "unit"].map(str::to_owned).into(),
         rows,
     }

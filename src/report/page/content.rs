@@ -51,7 +51,9 @@ impl Stack {
     /// Of an integral on the record's own grid.
     pub fn of(axis: &Axis, corrected: &[f64], result: &[f64], deviations: &[f64]) -> Stack {
         let every = result.len().div_ceil(KEPT / 2).max(1);
-        let limits = |n: usize| Some([axis.stamp(n), result.get(n)? - 2.0 * deviations.get(n)?, result[n] + 2.0 * deviations[n]]);
+        let limits = |n: usize| {
+            Some([axis.stamp(n), result.get(n)? - 2.0 * deviations.get(n)?, result[n] + 2.0 * deviations[n]])
+        };
         Stack {
             corrected: thinned(corrected, axis.start(), axis.step(), KEPT),
             band: (0..result.len()).step_by(every).chain(result.len().checked_sub(1)).filter_map(limits).collect(),

@@ -14,11 +14,7 @@ pub fn audit_text(report: &AuditReport) -> String {
         Format::Csv => "CSV",
         Format::Wav => "WAV",
     };
-    let mut text = format!("{}: {format}, {} bytes, ", escape(&report.path), report.bytes);
-    match &report.axis {
-        Some(axis) => text.push_str(&format!("{}\n", axis_text(axis, report.audit.rows))),
-        None => text.push_str(&format!("{}\n", counted(report.audit.rows, "row"))),
-    }
+    let mut text = format!("{}: {format}, {} bytes, {} rows\n", escape(&report.path), report.bytes, report.audit.rows);
     if let Some(stamps) = &report.audit.stamps {
         let gaps = if stamps.missing > 0 {
             format!(", {} missing in {}", counted(stamps.missing, "row"), counted(stamps.gaps.len(), "gap"))
@@ -32,11 +28,47 @@ pub fn audit_text(report: &AuditReport) -> String {
             stamps.unit
         ));
     }
+    for (index, record) in report.records.iter().enumerate() {
+        let name = if report.records.len() > 1 { format!("record {}: ", index + 1) } else { String::new() };
+        match (&record.axis, record.parts) {
+            (Some(axis), 0 | 1) => text.push_str(&format!("{name}{}\n", axis_text(axis, record.samples))),
+            (Some(axis), parts) => text.push_str(&format!(
+                "{name}{} samples in {parts} parts between gaps, {} {}\n",
+                record.samples,
+                figure(axis.rate, 8),
+                if axis.kind == "time" { "Hz" } else { "samples/m" }
+            )),
+            (None, _) => text.push_str(&format!("{name}no regular record\n")),
+        }
+        if record.repaired > 0 {
+            text.push_str(&format!("{} samples would be filled in\n", record.repaired));
+        }
+        text.push_str(&channels_text(report, &record.channels));
+        if let Some(refusal) = &record.refusal {
+            text.push_str(&format!("a run would be refused: {}\n", escape(refusal)));
+        }
+    }
+    let estimate = &report.audit.estimate;
+    text.push_str(&format!(
+        "a run will take about {} MiB and {} s\n",
+        estimate.bytes.div_ceil(1 << 20),
+        figure(estimate.seconds, 1)
+    ));
+    text.push_str(&notes_text(&report.audit.findings));
+    if !report.requirement_met {
+        text.push_str("not clean: --require is not met\n");
+    }
+    text
+}
+
+/// The channels of one record.
+fn channels_text(report: &AuditReport, names: &[String]) -> String {
     let mut rows = table(&[
-        "channel", "unit", "mean", "RMS", "peak", "crest", "kurtosis", "noise", "step", "bits", "clipped", "spikes",
-        "missing", "ends",
+        "channel", "unit", "from", "mean", "RMS", "peak", "crest", "kurtosis", "noise", "step", "bits", "clipped",
+        "spikes", "missing", "ends",
     ]);
-    for channel in &report.audit.channels {
+    let chosen = report.audit.channels.iter().zip(&report.unit_sources).filter(|(c, _)| names.contains(&c.name));
+    for (channel, source) in chosen {
         let level = channel.level.as_ref();
         let shown = |value: Option<f64>| value.map_or_else(|| "-".to_owned(), |v| figure(v, 4));
         let ends = match channel.end.as_ref().map(|end| end.motion) {
@@ -47,7 +79,8 @@ pub fn audit_text(report: &AuditReport) -> String {
         };
         rows.add_row(vec![
             escape(&channel.name),
-            if channel.unit.is_unknown() { "-".to_owned() } else { channel.unit.to_string() },
+            if channel.unit.is_unknown() { "-".to_owned() } else { escape(channel.unit.label()) },
+            source.unwrap_or("-").to_owned(),
             shown(level.map(|l| l.mean)),
             shown(level.map(|l| l.rms)),
             shown(level.map(|l| l.peak)),
@@ -62,13 +95,7 @@ pub fn audit_text(report: &AuditReport) -> String {
             ends.to_owned(),
         ]);
     }
-    text.push_str(&indented(&rows));
-    text.push_str(&format!("a run will take about {} MiB\n", report.audit.estimate.bytes.div_ceil(1 << 20)));
-    text.push_str(&notes_text(&report.audit.findings));
-    if let Some(refusal) = &report.refusal {
-        text.push_str(&format!("a run would be refused: {}\n", escape(refusal)));
-    }
-    text
+    indented(&rows)
 }
 
 fn clipped_text(clipping: &Clipping) -> String {

@@ -5,8 +5,8 @@ use std::collections::BTreeSet;
 use crate::compare::standings_text;
 use crate::place::escape;
 use crate::report::text::integrated::integral_text;
-use crate::report::{ChannelReport, Report, SplitReport};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table, unmet_text};
+use crate::report::{ChannelReport, Report, SplitReport};
 
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
 pub fn summary(report: &Report) -> String {
@@ -59,6 +59,11 @@ pub fn summary(report: &Report) -> String {
         if let Some(integral) = &channel.integral {
             text.push_str(&integral_text(&channel.name, integral, &channel.unit, &report.input.axis));
         }
+    }
+    for channel in report.channels.iter().filter(|channel| channel.repaired > 0) {
+        let (name, count, gaps) = (escape(&channel.name), channel.repaired, channel.repairs.len());
+        let places = if gaps == 1 { "one place".to_owned() } else { format!("{gaps} places") };
+        text.push_str(&format!("{name}: {count} samples in {places} are not measured but filled in\n"));
     }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {

@@ -10,22 +10,19 @@ pub fn integral_text(name: &str, integral: &IntegralReport, unit: &Unit, axis: &
     let name = escape(name);
     let shown = |value: f64| with_unit(value, unit);
     let amount = |amount: &Amount| with_unit(amount.value, &amount.unit);
-    let solved: Vec<String> = [
-        ("offset", &integral.offset),
-        ("drift", &integral.drift),
-        ("initial first integral", &integral.initial_first),
-    ]
-    .into_iter()
-    .filter(|(_, found)| found.value != 0.0)
-    .map(|(what, found)| format!("{what} {}", amount(found)))
-    .chain(
-        integral
-            .initial_second
-            .as_ref()
-            .filter(|found| found.value != 0.0)
-            .map(|found| format!("initial second integral {}", amount(found))),
-    )
-    .collect();
+    let solved: Vec<String> =
+        [("offset", &integral.offset), ("drift", &integral.drift), ("initial first integral", &integral.initial_first)]
+            .into_iter()
+            .filter(|(_, found)| found.value != 0.0)
+            .map(|(what, found)| format!("{what} {}", amount(found)))
+            .chain(
+                integral
+                    .initial_second
+                    .as_ref()
+                    .filter(|found| found.value != 0.0)
+                    .map(|found| format!("initial second integral {}", amount(found))),
+            )
+            .collect();
     let solved = if solved.is_empty() { "nothing solved".to_owned() } else { solved.join(", ") };
     let mut text = format!("{name}: end conditions {}: {solved}\n", integral.conditions);
     let sigma = &integral.sigma;

@@ -1,5 +1,6 @@
 //! Results for people: short lines and tables, units everywhere, nothing that a file could use to command a terminal.
 
+mod archived;
 mod audited;
 mod compared;
 mod conditioned;
@@ -17,6 +18,7 @@ use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
 use crate::unit::counted;
 
+pub use archived::{archive_text, listing_text, restore_text};
 pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
@@ -47,7 +49,8 @@ fn indented(table: &Table) -> String {
 
 /// `hoist.csv: 2400 samples, 200 Hz (from the stamps, between ...), 0 s to 11.995 s`.
 fn input_line(input: &InputReport) -> String {
-    format!("{}: {}\n", crate::place::escape(&input.path), axis_text(&input.axis, input.samples))
+    let part = input.part.map(|part| format!(", part {} of {}", part.number, part.count)).unwrap_or_default();
+    format!("{}{part}: {}\n", crate::place::escape(&input.path), axis_text(&input.axis, input.samples))
 }
 
 fn axis_text(axis: &AxisReport, samples: usize) -> String {

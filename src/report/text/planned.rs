@@ -166,12 +166,19 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
         return text;
     }
     match chain.reaches.reach {
-        Reach::Samples(samples) => text.push_str(&format!(
-            "reach {} ({} {}): so far from each end the result depends on what is assumed past it\n",
-            counted(figure(samples, 4), "sample"),
-            figure(samples * axis.step, 4),
-            axis.unit
-        )),
+        Reach::Samples(samples) => {
+            text.push_str(&format!(
+                "reach {} ({} {}): so far from each end the result depends on what is assumed past it",
+                counted(figure(samples, 4), "sample"),
+                figure(samples * axis.step, 4),
+                axis.unit
+            ));
+            // Beyond it lies 1e-13 of the response: nothing that a double could show.
+            if let Some(numeric) = chain.reaches.numeric.filter(|numeric| *numeric > 0.0) {
+                text.push_str(&format!("; to the last digit, {}", counted(figure(numeric, 4), "sample")));
+            }
+            text.push('\n');
+        }
         Reach::Unbounded => {
             text.push_str("reach unbounded: the whole result depends on what is assumed past the ends\n")
         }

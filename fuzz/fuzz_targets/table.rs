@@ -1,0 +1,7 @@
+//! Feeds random bytes to the check of the same name.
+#![no_main]
+
+#[path = "../checks.rs"]
+mod checks;
+
+libfuzzer_sys::fuzz_target!(|data: &[u8]| checks::table(data));
