@@ -390,8 +390,8 @@ fn a_bound_on_memory_is_kept_before_working() {
             let arguments = with(memory);
             run.fails(code, &arguments.iter().map(String::as_str).collect::<Vec<_>>())
         };
-        // 2400 rows of stamps and three axes; one channel of 2400 samples in the WAV file.
-        assert!(refused(4, "15kB").contains("kB of memory, --memory allows 15 kB"), "{name}");
+        // 2400 rows of stamps and three axes; one channel in the WAV file.
+        assert!(refused(4, "5kB").contains("kB of memory, --memory allows 5 kB"), "{name}");
         let told = refused(4, "20MB");
         assert!(told.contains("the run takes 33 MiB of memory, --memory allows 20 MiB"), "{name}: {told}");
         assert!(told.contains("raise --memory"), "{name}: {told}");

@@ -127,20 +127,20 @@ impl Extended<'_> {
     /// Fills `block` from sample `first` on, which may lie outside the record.
     fn lay(&self, first: i64, block: &mut [f64]) {
         let len = self.samples.len() as i64;
-        let inside = |n: i64| n.clamp(0, len);
-        let (from, to) = (inside(first), inside(first + block.len() as i64));
-        // A block may lie wholly past either end.
-        let size = block.len() as i64;
-        let start = (from - first).clamp(0, size);
-        let within = start as usize..(to - first).clamp(start, size) as usize;
+        let place = |n: i64| (n - first).clamp(0, block.len() as i64) as usize;
+        let within = place(0)..place(len);
+        let from = (first + within.start as i64) as usize;
         for (place, value) in block[..within.start].iter_mut().enumerate() {
             *value = self.outside(first + place as i64);
         }
+        let beyond = first + within.end as i64;
         for (place, value) in block[within.end..].iter_mut().enumerate() {
-            *value = self.outside(first + (within.end + place) as i64);
+            *value = self.outside(beyond + place as i64);
         }
         let values = &mut block[within];
-        values.copy_from_slice(&self.samples[from as usize..][..values.len()]);
+        if !values.is_empty() {
+            values.copy_from_slice(&self.samples[from..][..values.len()]);
+        }
         if let Some(split) = self.split {
             let start = from as f64 + self.ends.first_position();
             values.iter_mut().enumerate().for_each(|(n, value)| *value -= split.at(start + n as f64));
