@@ -10,7 +10,7 @@ use endgrain::basis::Plan;
 use endgrain::ends::Ends;
 use endgrain::forecast::{Evidence, Forecast, Response, Shape};
 use endgrain::numeric::{noise, quantum};
-use endgrain::verdict::{self, Case, Extension, FlatEnds, Formed, Tolerance, Verdict};
+use endgrain::verdict::{self, Case, Extension, FlatEnds, Formed, Past, Tolerance, Unjudged, Verdict};
 
 const LEN: usize = 1_000_000;
 
@@ -80,7 +80,10 @@ fn judged(samples: &[f64], shape: Shape, output: &dyn Fn(Extension) -> Vec<f64>)
     let estimates = verdict::estimates(samples, &response, noise::sigma(samples));
     let tolerance = Tolerance::Share(0.1);
     let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
+    let foretold = output(Extension::Continued { left: &[], right: &[] });
     let past = evidence.as_ref().zip(forecast.as_ref());
+    let past =
+        past.map(|(evidence, forecast)| Past { evidence, forecast, foretold: &foretold }).ok_or(Unjudged::FewBlocks);
     let formed = Formed::InOnePass;
     let case = Case { samples, past, structure, estimates, response: &response, output, formed, tolerance };
     Verdict::of(&case, FlatEnds::Ignored)

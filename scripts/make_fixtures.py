@@ -9,6 +9,8 @@ stops at arbitrary places. The stick between hoist and guide rail rocks the fram
 The profile. A planed floor plank from the same mill, measured with a stylus over 400 mm: a tilt from the fixture, a bow,
 planer waves of 2.6 mm and roughness.
 
+The calibration. The logger's pickup on a shaker: coupled through 0.01 Hz, rolling off as a second-order system at 90 Hz.
+
 Usage: scripts/make_fixtures.py [FOLDER]   (default: fixtures beside this script's folder)
 """
 
@@ -53,6 +55,17 @@ def plank():
     return rows
 
 
+def pickup():
+    """Rows frequency, gain, phase in Hz, 1 and degrees, ten a decade."""
+    rows = []
+    for n in range(21):
+        hz = 10 ** (n / 10)
+        r = hz / 90
+        response = 1 / complex(1 - r * r, 1.4 * r) * complex(0, hz / 0.01) / complex(1, hz / 0.01)
+        rows.append((hz, abs(response), math.degrees(math.atan2(response.imag, response.real))))
+    return rows
+
+
 def write_wav(path, rate_hz, samples):
     """One channel of 16-bit integers."""
     data = struct.pack(f"<{len(samples)}h", *(round(s * 32767) for s in samples))
@@ -69,6 +82,8 @@ def main():
     (folder / "hoist.csv").write_text("\n".join(lines) + "\n", newline="\n")
     lines = ["x [mm];z [um]"] + [f"{x:.1f};{z:.3f}".replace(".", ",") for x, z in plank()]
     (folder / "plank.csv").write_text("\n".join(lines) + "\n", newline="\n")
+    lines = ["frequency [Hz],gain,phase [deg]"] + [f"{f:.4g},{g:.4f},{p:.2f}" for f, g, p in pickup()]
+    (folder / "pickup.csv").write_text("\n".join(lines) + "\n", newline="\n")
     write_wav(folder / "hoist.wav", RATE_HZ, [0.8 * ax / 0.2 for _, ax, _, _ in rows[:1000]])
 
 

@@ -41,6 +41,13 @@ const SPELLINGS: &[(&str, f64, i8, i8)] = &[
     ("m2", 1.0, 2, 0), ("mm2", 1e-6, 2, 0), ("1/m", 1.0, -1, 0), ("1/mm", 1e3, -1, 0), ("1/s", 1.0, 0, -1),
 ];
 
+/// A count with its noun: `1 sample`, `2 samples`.
+pub fn counted(count: impl std::fmt::Display, noun: &str) -> String {
+    let count = count.to_string();
+    let plural = if count == "1" { "" } else { "s" };
+    format!("{count} {noun}{plural}")
+}
+
 impl Unit {
     /// A unit as a file or a person spells it. Common variants (`m/s^2`, `m/s²`, `µm`, `mm/s/s`, `sec`) are understood;
     /// anything else is kept as it is, without a meaning.
@@ -205,6 +212,7 @@ mod tests {
             assert_eq!(Unit::parse(spelling).label(), label, "{spelling}");
             assert!(Unit::parse(spelling).meaning().is_some());
         }
+        assert_eq!((counted(1, "sample"), counted("1.5", "sample")), ("1 sample".to_owned(), "1.5 samples".to_owned()));
         assert_eq!(Unit::parse("bar").label(), "bar");
         assert!(Unit::parse("bar").meaning().is_none());
     }

@@ -1,67 +1,13 @@
 //! Real runs of the program: outputs, sidecars, exit codes, refusals, pipes.
 
+mod runs;
+
 use std::fs;
 use std::io::{Read, Write};
-use std::path::{Path, PathBuf};
-use std::process::{Command, Output, Stdio};
+use std::process::{Command, Stdio};
 
+use runs::{Run, endgrain, fixture};
 use serde_json::Value;
-
-fn fixture(name: &str) -> PathBuf {
-    Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures").join(name)
-}
-
-fn endgrain(folder: &Path, arguments: &[&str]) -> Output {
-    Command::new(env!("CARGO_BIN_EXE_endgrain")).args(arguments).current_dir(folder).output().expect("the program runs")
-}
-
-struct Run {
-    folder: tempfile::TempDir,
-}
-
-impl Run {
-    fn new() -> Run {
-        Run { folder: tempfile::tempdir().expect("a temporary folder") }
-    }
-
-    fn path(&self, name: &str) -> PathBuf {
-        self.folder.path().join(name)
-    }
-
-    fn file(&self, name: &str, text: &str) -> &Run {
-        fs::write(self.path(name), text).expect("a file");
-        self
-    }
-
-    fn text(&self, name: &str) -> String {
-        fs::read_to_string(self.path(name)).expect("an output")
-    }
-
-    /// Runs, expecting success; returns standard error.
-    fn ok(&self, arguments: &[&str]) -> String {
-        let output = endgrain(self.folder.path(), arguments);
-        let told = String::from_utf8_lossy(&output.stderr).into_owned();
-        assert!(output.status.success(), "{arguments:?}: {told}");
-        told
-    }
-
-    /// Runs, expecting an exit code; returns standard error.
-    fn fails(&self, code: i32, arguments: &[&str]) -> String {
-        let output = endgrain(self.folder.path(), arguments);
-        let told = String::from_utf8_lossy(&output.stderr).into_owned();
-        assert_eq!(output.status.code(), Some(code), "{arguments:?}: {told}");
-        told
-    }
-
-    fn files(&self) -> Vec<String> {
-        let mut names: Vec<String> = fs::read_dir(self.folder.path())
-            .expect("a folder")
-            .map(|entry| entry.expect("an entry").file_name().to_string_lossy().into_owned())
-            .collect();
-        names.sort();
-        names
-    }
-}
 
 /// A ramp in three axes at 100 Hz: whatever a low-pass does to it under odd + line, it stays a ramp.
 fn ramp() -> String {
@@ -280,7 +226,7 @@ fn standard_streams_work_both_ways() {
     let run = Run::new();
     let mut child = Command::new(env!("CARGO_BIN_EXE_endgrain"))
         .args(["condition", "-", "--lowpass", "10Hz", "-o", "-"])
-        .current_dir(run.folder.path())
+        .current_dir(run.folder())
         .stdin(Stdio::piped())
         .stdout(Stdio::piped())
         .stderr(Stdio::piped())
@@ -301,7 +247,7 @@ fn a_closed_pipe_ends_quietly() {
     run.file("long.csv", &format!("t [s],a [g]\n{rows}"));
     let mut child = Command::new(env!("CARGO_BIN_EXE_endgrain"))
         .args(["condition", "long.csv", "--lowpass", "10Hz", "-o", "-", "--quiet"])
-        .current_dir(run.folder.path())
+        .current_dir(run.folder())
         .stdout(Stdio::piped())
         .stderr(Stdio::piped())
         .spawn()
@@ -323,7 +269,7 @@ fn an_interrupt_leaves_no_partial_file() {
     assert!(made.success());
     let mut child = Command::new(env!("CARGO_BIN_EXE_endgrain"))
         .args(["condition", "pipe.csv", "--rate", "100", "--lowpass", "10Hz", "-o", "out.csv"])
-        .current_dir(run.folder.path())
+        .current_dir(run.folder())
         .stderr(Stdio::piped())
         .spawn()
         .expect("the program runs");
@@ -358,7 +304,7 @@ fn the_cut_keeps_the_stamps() {
 fn a_changed_unit_changes_the_header() {
     let run = Run::new();
     run.file("in.csv", &ramp());
-    run.ok(&["condition", "in.csv", "--channel", "ax", "--integrate", "1", "-o", "v.csv"]);
+    run.ok(&["condition", "in.csv", "--channel", "ax", "--integrate", "1", "--conditions", "steady", "-o", "v.csv"]);
     assert_eq!(run.text("v.csv").lines().next(), Some("time (s),ax (m/s),ay (m/s^2),remark"));
 }
 
@@ -366,7 +312,7 @@ fn a_changed_unit_changes_the_header() {
 fn a_dry_run_writes_nothing_and_tells_the_gain() {
     let run = Run::new();
     run.file("in.csv", &ramp());
-    let output = endgrain(run.folder.path(), &["condition", "in.csv", "--lowpass", "10Hz", "--dry-run"]);
+    let output = endgrain(run.folder(), &["condition", "in.csv", "--lowpass", "10Hz", "--dry-run"]);
     let text = String::from_utf8_lossy(&output.stdout).into_owned();
     assert!(output.status.success() && text.contains("nothing was written"), "{text}");
     // Squared Butterworth of order 4: 1/(1 + 2^-8), 1/2, 1/(1 + 2^8).
@@ -396,7 +342,7 @@ fn the_same_settings_give_the_same_bytes() {
             .args(["condition", "in.csv", "-q", "-o", name])
             .args(arguments)
             .env("RAYON_NUM_THREADS", threads)
-            .current_dir(run.folder.path())
+            .current_dir(run.folder())
             .status()
             .expect("the program runs");
         assert!(status.success());
@@ -409,7 +355,7 @@ fn audit_tells_rate_units_and_what_a_run_would_refuse() {
     let run = Run::new();
     run.file("in.csv", &ramp())
         .file("gap.csv", "t [s],a [g]\n0.0,1\n0.1,2\n0.2,3\n0.3,1\n0.4,2\n0.9,3\n1.0,1\n1.1,2\n1.2,4\n1.3,2\n");
-    let output = endgrain(run.folder.path(), &["audit", "in.csv", "gap.csv", "--json"]);
+    let output = endgrain(run.folder(), &["audit", "in.csv", "gap.csv", "--json"]);
     assert!(output.status.success());
     let found: Value = serde_json::from_slice(&output.stdout).expect("JSON");
     assert_eq!(found[0]["axis"]["rate"], 100.0);
@@ -423,8 +369,38 @@ fn help_of_every_command_starts_with_examples() {
     let run = Run::new();
     for command in ["", "condition", "audit"] {
         let arguments: Vec<&str> = [command, "--help"].into_iter().filter(|a| !a.is_empty()).collect();
-        let output = endgrain(run.folder.path(), &arguments);
+        let output = endgrain(run.folder(), &arguments);
         let text = String::from_utf8_lossy(&output.stdout).into_owned();
         assert!(text.starts_with("Examples:\n"), "{command}: {text}");
+    }
+}
+
+#[test]
+fn a_bound_on_memory_is_kept_before_working() {
+    let run = Run::new();
+    for name in ["hoist.csv", "hoist.wav"] {
+        let input = fixture(name).display().to_string();
+        let with = |memory: &'static str| {
+            vec!["condition", &*input, "--lowpass", "12Hz", "-o", "out.csv", "--memory", memory]
+                .into_iter()
+                .map(str::to_owned)
+                .collect::<Vec<String>>()
+        };
+        let refused = |code: i32, memory: &'static str| {
+            let arguments = with(memory);
+            run.fails(code, &arguments.iter().map(String::as_str).collect::<Vec<_>>())
+        };
+        // 2400 rows of stamps and three axes; one channel of 2400 samples in the WAV file.
+        assert!(refused(4, "15kB").contains("kB of memory, --memory allows 15 kB"), "{name}");
+        let told = refused(4, "20MB");
+        assert!(told.contains("the run takes 33 MiB of memory, --memory allows 20 MiB"), "{name}: {told}");
+        assert!(told.contains("raise --memory"), "{name}: {told}");
+        assert!(refused(2, "much").contains("not a size"), "{name}");
+        assert!(run.files().is_empty(), "{name}: {:?}", run.files());
+        let arguments = with("64MiB");
+        run.ok(&arguments.iter().map(String::as_str).collect::<Vec<_>>());
+        for left in run.files() {
+            fs::remove_file(run.path(&left)).expect("an output");
+        }
     }
 }

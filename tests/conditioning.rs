@@ -369,3 +369,46 @@ fn start_constant(samples: &[f64], ends: Ends, len: usize) -> f64 {
     }
     -endgrain::basis::series::turned_value_at(ends, len, &c, 0.0)
 }
+
+#[test]
+fn weighting_smoothing_and_resampling_are_linear() {
+    let bench =
+        Bench::new(400, &[("weighting", "Wk"), ("lowpass", "20Hz"), ("smooth", "50"), ("decimate", "3")], "gaussian");
+    let (a, b) = (wavy(400), (0..400).map(|n| (n as f64 * 0.037).cos() - 0.002 * n as f64).collect::<Vec<_>>());
+    let both: Vec<f64> = a.iter().zip(&b).map(|(a, b)| 2.0 * a - 3.0 * b).collect();
+    for ends in Ends::all() {
+        let [a, b, both] = [&a, &b, &both].map(|x| bench.run(x, ends, BaselineKind::Trend(1)));
+        let apart: Vec<f64> = a.iter().zip(&b).map(|(a, b)| 2.0 * a - 3.0 * b).collect();
+        assert_eq!(both.len(), 133);
+        // Outputs of size 5; three transforms of at most 12 stages each.
+        assert!(difference(&both, &apart) < 1e-12, "{ends:?}: {}", difference(&both, &apart));
+    }
+}
+
+#[test]
+fn a_finer_grid_keeps_the_samples_and_a_coarse_one_returns() {
+    // Three times the rate: sample 3n + 1 stands where sample n stood. Whole-sample seat: sample 3n, both ends kept.
+    let x = wavy(60);
+    let centred = Bench::new(60, &[("resample", "300Hz")], "gaussian");
+    let kept = Bench::new(60, &[("resample", "300Hz:start")], "gaussian");
+    for ends in Ends::all() {
+        let fine = centred.run(&x, ends, BaselineKind::None);
+        let same: Vec<f64> = (0..60).map(|n| fine[3 * n + 1]).collect();
+        assert!(fine.len() == 180 && difference(&same, &x) < 1e-13, "{ends:?}: {}", difference(&same, &x));
+        let fine = kept.run(&x, ends, BaselineKind::None);
+        let same: Vec<f64> = (0..60).map(|n| fine[3 * n]).collect();
+        assert!(fine.len() == 178 && difference(&same, &x) < 1e-13, "{ends:?}: {}", difference(&same, &x));
+    }
+    // Half-cycles over the record below 0.8 of its Nyquist frequency: up by 8/5 and down again.
+    let wave: Vec<f64> = (0..60)
+        .map(|n| [3.0, 11.0, 46.0].iter().map(|k| (std::f64::consts::PI * k * (n as f64 + 0.5) / 60.0).cos()).sum())
+        .collect();
+    let up = Bench::new(60, &[("resample", "160Hz")], "gaussian").run(&wave, Ends::EVEN, BaselineKind::None);
+    let axis = Axis::from_rate_hz(160.0, 96, RateSource::Given).expect("an axis");
+    let request = Request::parse("resample", "100Hz").expect("a request");
+    let (chain, _) = Chain::resolve(&[request], &Shape::default(), &axis, 96).expect("a chain");
+    let unit = Unit::parse("g");
+    let channel = Channel { name: "a", unit: &unit, axis: &axis, samples: &up };
+    let back = condition(channel, &chain, Ends::EVEN, BaselineKind::None, &Planner::new()).expect("a result").output;
+    assert!(back.len() == 60 && difference(&back, &wave) < 1e-12, "{}", difference(&back, &wave));
+}

@@ -8,7 +8,8 @@ use endgrain::forecast::{Evidence, Forecast, Response, Shape};
 use endgrain::numeric::polynomial::Polynomial;
 use endgrain::numeric::{noise, sum};
 use endgrain::verdict::{
-    self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Formed, Level, Structure, Tolerance, Verdict,
+    self, Adequacy, CANDIDATES, Case, Edge, Extension, FlatEnds, Formed, Level, Past, Structure, Tolerance, Unjudged,
+    Verdict,
 };
 use rayon::prelude::*;
 
@@ -115,9 +116,15 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>, struc
     };
     let tolerance = Tolerance::Share(TOLERANCE);
     let forecast = evidence.map(|evidence| Forecast::combine(evidence, &response));
+    let foretold =
+        forecast.as_ref().map(|f| padded(trial, x, &f.continuation(Side::Left), &f.continuation(Side::Right)));
+    let past = match (evidence, &forecast, &foretold) {
+        (Some(evidence), Some(forecast), Some(foretold)) => Ok(Past { evidence, forecast, foretold }),
+        _ => Err(Unjudged::FewBlocks),
+    };
     let case = Case {
         samples: x,
-        past: evidence.zip(forecast.as_ref()),
+        past,
         structure,
         estimates,
         response: &response,
@@ -126,14 +133,12 @@ fn score_case(window: &Window, trial: &Trial, evidence: Option<&Evidence>, struc
         tolerance,
     };
     let verdict = Verdict::of(&case, FlatEnds::Ignored);
-    let foretold =
-        forecast.as_ref().map(|f| padded(trial, x, &f.continuation(Side::Left), &f.continuation(Side::Right)));
     outputs.push(("forecast", foretold.unwrap_or_else(|| vec![f64::NAN; n])));
 
     let chosen = |name: &'static str| {
         let y = outputs.iter().find(|(other, _)| *other == name).map_or(&outputs[0].1, |(_, y)| y);
         let edge = verdict.edge(name).cloned().unwrap_or(Edge {
-            name,
+            name: name.into(),
             predicted_error: f64::NAN,
             relative_error: f64::NAN,
             bound: f64::INFINITY,

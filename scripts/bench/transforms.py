@@ -13,7 +13,6 @@ import argparse
 import ctypes
 import ctypes.util
 import json
-import os
 import pathlib
 import statistics
 import subprocess
@@ -21,24 +20,13 @@ import sys
 import tempfile
 import time
 
-ROOT = pathlib.Path(__file__).resolve().parents[2]
-VENV = ROOT / "target" / "bench-env"
-PYTHON = VENV / "bin" / "python"
+import environment
+
 KINDS = ("dct2", "dct3", "dct4", "dst2", "dst3", "dst4", "dct1", "dst1")
 LENGTHS = (65_536, 1_000_000, 1 << 20, 1 << 22, 1_234_567, 999_983)
 MEASURE, ESTIMATE = 0, 1 << 6
 # enum fftw_r2r_kind in fftw3.h of FFTW 3.3.10.
 FFTW = {"dct1": 3, "dct3": 4, "dct2": 5, "dct4": 6, "dst1": 7, "dst3": 8, "dst2": 9, "dst4": 10}
-
-
-def enter_environment():
-    if pathlib.Path(sys.prefix).resolve() == VENV.resolve():
-        return
-    if not PYTHON.exists():
-        subprocess.run([sys.executable, "-m", "venv", str(VENV)], check=True)
-        requirements = pathlib.Path(__file__).with_name("requirements.txt")
-        subprocess.run([str(PYTHON), "-m", "pip", "install", "--quiet", "-r", str(requirements)], check=True)
-    os.execv(PYTHON, [str(PYTHON), *sys.argv])
 
 
 class Ours:
@@ -80,7 +68,7 @@ def fftw_library():
     return library
 
 
-def measure(binary, library, kind, length, options):
+def measure(binary, library, kind, length, runs, plan_seconds):
     import ducc0
     import numpy
     import scipy.fft
@@ -101,7 +89,7 @@ def measure(binary, library, kind, length, options):
 
         a[:] = x
         one_shot = timed(once)
-        library.fftw_set_timelimit(options.plan_seconds)
+        library.fftw_set_timelimit(plan_seconds)
         plan = library.fftw_plan_r2r_1d(length, a.ctypes.data, b.ctypes.data, FFTW[kind], MEASURE)
         a[:] = x
         peers["fftw"] = lambda: library.fftw_execute(plan)
@@ -119,7 +107,7 @@ def measure(binary, library, kind, length, options):
         got = numpy.fromfile(ours.output)
         error = float(numpy.linalg.norm(got - expected) / numpy.linalg.norm(expected))
         times = {"ours": [], **{name: [] for name in peers}}
-        for run in range(options.runs + 1):
+        for run in range(runs + 1):
             row = {"ours": ours.run(), **{name: timed(work) for name, work in peers.items()}}
             if run > 0:
                 for name, value in row.items():
@@ -155,23 +143,26 @@ def main():
     parser.add_argument("--json", type=pathlib.Path)
     parser.add_argument("--binary", type=pathlib.Path, help="built already")
     options = parser.parse_args()
-    enter_environment()
+    environment.enter()
 
-    binary = options.binary
-    if binary is None:
-        subprocess.run(["cargo", "build", "--release", "--example", "transform_timing"], cwd=ROOT, check=True)
-        binary = ROOT / "target" / "release" / "examples" / "transform_timing"
+    results = list(table(options.kinds.split(","), map(int, options.lengths.split(",")), options.runs, options))
+    if options.json:
+        options.json.write_text(json.dumps(results, indent=1) + "\n")
+
+
+def table(kinds, lengths, runs, options=None):
+    """Measures and prints every kind at every length."""
+    binary = (options and options.binary) or environment.built("transform_timing")
+    plan_seconds = options.plan_seconds if options else 10.0
     library = fftw_library()
     if library is None:
         print("FFTW 3 not found: left out", file=sys.stderr)
-
-    results = []
     print("| transform | N | ours ms | spread | FFTW | SciPy | ducc0 | ratio to best | plan ms | one-shot / FFTW ESTIMATE | difference |")
     print("|-|-|-|-|-|-|-|-|-|-|-|")
-    for length in map(int, options.lengths.split(",")):
-        for kind in options.kinds.split(","):
-            result = measure(binary, library, kind, length, options)
-            results.append(result)
+    for length in lengths:
+        for kind in kinds:
+            result = measure(binary, library, kind, length, runs, plan_seconds)
+            yield result
             times = result["milliseconds"]
             cell = lambda name: f"{times[name]:.3g}" if name in times else "-"
             one_shot = "-" if result["one_shot_ratio"] is None else f"{result['one_shot_ratio']:.2f}"
@@ -183,8 +174,6 @@ def main():
             )
             if not result["difference_from_scipy"] < 1e-13:
                 sys.exit(f"{kind} of {length}: the outputs disagree")
-    if options.json:
-        options.json.write_text(json.dumps(results, indent=1) + "\n")
 
 
 if __name__ == "__main__":

@@ -315,7 +315,7 @@ def main():
                     n = int(rng.choice([64, 97, 150]))
                     t = np.arange(n) / RATE
                     axes = [rng.normal(0, 0.3, n) + 2 * np.sin(2 * np.pi * rng.uniform(1, 20) * t + 1) + 3 * t for _ in range(3)]
-                    option = ["--differentiate", str(turns)] if turns > 0 else ["--integrate", str(-turns)]
+                    option = ["--differentiate", str(turns)] if turns > 0 else ["--integrate", str(-turns), "--conditions", "start-rest", "--insist"]
                     op = ("lowpass", "30Hz")
                     out, sidecar = run(program, folder, np.column_stack([t, *axes]), ["--extension", ext, "--seat", seat, "--baseline", kind, "--lowpass", "30Hz", *option])
                     lam, zone = fit_widths(sidecar, [op], n)

@@ -115,7 +115,7 @@ pub fn audit(raw: &RawRecord) -> Audit {
         findings.append(&mut sheet.findings);
         channels.push(sheet.audit);
     }
-    let estimate = Estimate::of(raw.channels.len(), rows as u64);
+    let estimate = Estimate::of(raw.channels.len(), rows as u64, raw.source.bytes);
     Audit { rows, stamps, stated_rate: raw.stated_rate.as_ref().map(|r| r.rate_base), channels, estimate, findings }
 }
 

@@ -1,6 +1,7 @@
 //! The baseline: a polynomial split off first, so that only the remainder meets the extension.
 
 mod estimate;
+mod tangent;
 mod trend;
 
 use std::fmt;
@@ -9,9 +10,10 @@ use std::str::FromStr;
 use crate::ends::{Ends, Parity};
 use crate::error::{Error, Result};
 use crate::numeric::polynomial::Polynomial;
-use crate::numeric::sum;
+use crate::numeric::{noise, sum};
 
 pub use estimate::{EndEstimate, EndEstimates, Scale};
+pub use tangent::Tangent;
 
 /// What is split off before the transform.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -26,6 +28,8 @@ pub enum BaselineKind {
     Line,
     /// The quadratic with the end slopes.
     Slopes,
+    /// The same with end slopes of cubic fits as wide as they agree: for derivatives and integrals of the record itself.
+    Tangents,
     /// The least-squares polynomial of that degree, 0 to 3.
     Trend(u8),
 }
@@ -43,7 +47,7 @@ pub enum Side {
 impl BaselineKind {
     /// Every spelling that `from_str` takes, for help texts.
     pub const SPELLINGS: &'static str =
-        "none, mean, level, level:left, level:right, line, slopes, trend, trend:0 to trend:3";
+        "none, mean, level, level:left, level:right, line, slopes, tangents, trend, trend:0 to trend:3";
 }
 
 impl FromStr for BaselineKind {
@@ -58,6 +62,7 @@ impl FromStr for BaselineKind {
             "level:right" => Ok(Self::Level(Some(Side::Right))),
             "line" => Ok(Self::Line),
             "slopes" => Ok(Self::Slopes),
+            "tangents" => Ok(Self::Tangents),
             "trend" | "trend:1" => Ok(Self::Trend(1)),
             "trend:0" => Ok(Self::Trend(0)),
             "trend:2" => Ok(Self::Trend(2)),
@@ -80,6 +85,7 @@ impl fmt::Display for BaselineKind {
             Self::Level(Some(Side::Right)) => f.write_str("level:right"),
             Self::Line => f.write_str("line"),
             Self::Slopes => f.write_str("slopes"),
+            Self::Tangents => f.write_str("tangents"),
             Self::Trend(degree) => write!(f, "trend:{degree}"),
         }
     }
@@ -119,6 +125,10 @@ impl Baseline {
             BaselineKind::Slopes => {
                 let found = estimates();
                 Self::slopes(found.left.slope, found.right.slope, length)
+            }
+            BaselineKind::Tangents => {
+                let [left, right] = Tangent::both(samples, ends, noise::sigma(samples));
+                Self::slopes(left.slope, right.slope, length)
             }
             BaselineKind::Trend(degree) => trend::fit(samples, first, length, degree),
         };
@@ -182,7 +192,9 @@ mod tests {
 
     #[test]
     fn every_spelling_round_trips() {
-        for text in ["none", "mean", "level", "level:left", "level:right", "line", "slopes", "trend:0", "trend:3"] {
+        for text in
+            ["none", "mean", "level", "level:left", "level:right", "line", "slopes", "tangents", "trend:0", "trend:3"]
+        {
             assert_eq!(text.parse::<BaselineKind>().expect("known").to_string(), text);
         }
         assert!("trend:4".parse::<BaselineKind>().is_err());

@@ -159,15 +159,24 @@ mod tests {
                 if vanishing {
                     turned_used[len - 1] = 0.0;
                 }
-                for (first, step, parts, count) in [(1, 2, 2, len), (-3, 6, 4, 9), (17, 2 * 441, 2 * 480, 50), (5, 14, 2, 3)] {
+                for (first, step, parts, count) in
+                    [(1, 2, 2, len), (-3, 6, 4, 9), (17, 2 * 441, 2 * 480, 50), (5, 14, 2, 3)]
+                {
                     let grid = Grid { first, step, parts, count };
                     let found = on_grid(ends, len, &straight, Some(&turned), grid);
                     for (m, value) in found.iter().enumerate() {
                         let x = (first as f64 + m as f64 * step as f64) / parts as f64;
                         let exact = series::value_at(ends, len, &straight, x)
-                            + if ends.length(len) > 0.0 { series::turned_value_at(ends, len, &turned_used, x) } else { 0.0 };
+                            + if ends.length(len) > 0.0 {
+                                series::turned_value_at(ends, len, &turned_used, x)
+                            } else {
+                                0.0
+                            };
                         // About log2(256) butterfly stages and the reference's own rounding, on a norm of about sqrt(len).
-                        assert!((value - exact).abs() < 2e-14 * (len as f64).sqrt(), "{ends:?} {len} {grid:?} {m}: {value} {exact}");
+                        assert!(
+                            (value - exact).abs() < 2e-14 * (len as f64).sqrt(),
+                            "{ends:?} {len} {grid:?} {m}: {value} {exact}"
+                        );
                     }
                 }
             }

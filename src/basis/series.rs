@@ -29,7 +29,8 @@ fn sum(ends: Ends, len: usize, c: &[f64], x: f64, pick: impl Fn(f64, f64) -> (f6
     for (k, &c) in c.iter().enumerate() {
         let (cosine, sine) = match ends {
             Ends::Periodic => angle::at_position(2.0 * k.div_ceil(2) as f64, x - ends.first_position(), length),
-            Ends::Mirror { .. } if length == 0.0 => (1.0, 0.0),
+            // On the left mirror no angle need be formed.
+            Ends::Mirror { .. } if length == 0.0 || x == 0.0 => (1.0, 0.0),
             Ends::Mirror { left, right, .. } => angle::at_position(half_cycles(left, right, k), x, length),
         };
         let (of_cosine, of_sine) = pick(cosine, sine);

@@ -10,7 +10,7 @@ use endgrain::place::Place;
 use endgrain::settings::{Arity, Group, Layer, Settings, find, rows};
 use endgrain::write::Overwrite;
 
-use crate::cli::{audit, batch, compare, compress, condition, exit, restore};
+use crate::cli::{audit, batch, compare, compress, condition, exit, generate, merge, restore, spectrum};
 
 /// Lays a help page out with the examples first.
 const TEMPLATE: &str = "{before-help}{about-with-newline}\n{usage-heading} {usage}\n\n{all-args}{after-help}";
@@ -25,6 +25,7 @@ pub fn command() -> Command {
   endgrain audit log.csv
   endgrain compare log.csv --lowpass 40Hz --plot ends.svg
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
+  endgrain spectrum log.csv --segment 0.5Hz --plot spectrum.svg
   endgrain condition log.wav --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.wav
   endgrain compress log.csv --max-error 0.001g -o log.grain
   endgrain restore log.grain -o log2.csv
@@ -38,15 +39,23 @@ pub fn command() -> Command {
         .disable_help_subcommand(true)
         .subcommand(condition::command())
         .subcommand(compare::command())
+        .subcommand(spectrum::command())
         .subcommand(audit::command())
         .subcommand(compress::command())
         .subcommand(restore::command())
         .subcommand(batch::command())
+        .subcommand(merge::command())
+        .subcommand(generate::command())
+}
+
+/// A subcommand with its examples and nothing else.
+pub fn bare(name: &'static str, about: &'static str, examples: &'static str) -> Command {
+    Command::new(name).about(about).before_help(examples).help_template(TEMPLATE)
 }
 
 /// A subcommand with its examples, the options of the given groups, and what every command has.
 pub fn subcommand(name: &'static str, about: &'static str, examples: &'static str, groups: &[Group]) -> Command {
-    let mut command = Command::new(name).about(about).before_help(examples).help_template(TEMPLATE);
+    let mut command = bare(name, about, examples);
     for row in rows().into_iter().filter(|row| groups.contains(&row.group)) {
         let arg = Arg::new(row.key).long(row.key).help(row.help).help_heading(row.group.heading());
         command = command.arg(match row.arity {

@@ -9,7 +9,7 @@ use clap::{Arg, ArgAction, ArgMatches, Command, value_parser};
 use endgrain::error::{Error, Result};
 use endgrain::fleet::{self, Batch, End, Item, Plan, Separator, Shard, Tally, Template};
 use endgrain::place::Place;
-use endgrain::settings::Group;
+use endgrain::settings::{self, Group};
 
 use crate::cli::progress::Progress;
 use crate::cli::{args, exit, machine, stream};
@@ -64,10 +64,6 @@ pub fn command() -> Command {
         "Records worked on at once. Default: the processors that this process may use, limits of a container included. \
          Results do not depend on it",
     ))
-    .arg(arg("memory").value_name("BYTES").help(
-        "Memory that all jobs together may take, such as 800M or 4G. Default: half of what is free. A record that alone \
-         would take more fails",
-    ))
     .arg(arg("shard").value_name("K/N").help("Only records K, K+N, K+2N, ... of the list, with K from 0 to N-1; merge joins the shards"))
     .arg(arg("max-failures").value_name("COUNT").value_parser(value_parser!(u64).range(1..)).help("Begin no further record after that many have failed"))
     .arg(arg("fail-fast").action(ArgAction::SetTrue).conflicts_with("max-failures").help("The same as --max-failures 1"))
@@ -91,7 +87,7 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let text = |name: &str| matches.get_one::<String>(name).map(String::as_str);
     let shard = text("shard").map_or(Ok(Shard::WHOLE), str::parse)?;
     let memory =
-        text("memory").map_or_else(|| Ok(machine::half_of_free_memory()), |text| machine::bytes("memory", text))?;
+        text("memory").map_or_else(|| Ok(machine::half_of_free_memory()), settings::bytes)?;
     let jobs = matches.get_one::<NonZeroUsize>("jobs").copied();
     let recipe = args::recipe_of(matches)?;
     let template = text("name").map(Template::parse).transpose()?.or_else(|| recipe.name.clone()).unwrap_or_default();

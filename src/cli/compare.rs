@@ -70,11 +70,15 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     if let Some(page) = page {
         outputs.extend(page.fill(&comparison, &report::page::comparison_page(&comparison, &pictures))?);
     }
-    for (output, text) in [(plot, report::svg(&pictures)), (json_file, report::to_json(&comparison))] {
-        if let Some(mut output) = output {
-            output.write_all(text?.as_bytes()).map_err(|error| Error::from(error).at(Place::file(output.label())))?;
-            outputs.push(output);
-        }
+    if let Some(mut plot) = plot {
+        plot.write_all(report::svg(&pictures)?.as_bytes())
+            .map_err(|error| Error::from(error).at(Place::file(plot.label())))?;
+        outputs.push(plot);
+    }
+    if let Some(mut json) = json_file {
+        json.write_all(report::to_json(&comparison)?.as_bytes())
+            .map_err(|error| Error::from(error).at(Place::file(json.label())))?;
+        outputs.push(json);
     }
     finish_together(outputs, Durability::Handed)?;
     if json.as_deref().is_some_and(stream::is_stdout) {

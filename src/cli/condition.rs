@@ -19,11 +19,17 @@ const EXAMPLES: &str = "\
 Examples:
   endgrain condition log.csv --lowpass 40Hz -o clean.csv
   endgrain condition log.csv --bandpass 2Hz..40Hz --extension odd --baseline line -o clean.csv
-  endgrain condition log.csv --channel ax --integrate 1 --highpass 0.5Hz -o velocity.csv
+  endgrain condition log.csv --channel ax --integrate 1 --conditions steady --highpass 0.5Hz -o velocity.csv
+  endgrain condition lift.csv --integrate 2 --conditions rest-to=0.25m --beside sigma -o travel.csv
+  endgrain condition profile.csv --split 0.8mm --extension odd --baseline line -o parts.csv
   endgrain condition profile.csv --lowpass 0.8mm --shape gaussian -o waviness.csv
   endgrain condition log.wav --notch 50Hz:2Hz --encoding pcm24 -o clean.wav
   logger | endgrain condition - --rate 200 --lowpass 40Hz -o - > clean.csv
   endgrain condition log.csv --lowpass 40Hz -o clean.csv --html report.html
+  endgrain condition seat.csv --channel az --weighting Wk --running-rms 1s -o weighted.csv
+  endgrain condition log.csv --response pickup.csv --notch 50Hz:2Hz:all --despike fill -o corrected.csv
+  endgrain condition profile.csv --gaps smooth --smooth auto:robust -o smooth.csv
+  endgrain condition log.csv --decimate 4 -o slow.csv
   endgrain condition log.csv --lowpass 40Hz --dry-run
   endgrain condition log.csv --recipe clean.csv.json -o again.csv
 ";

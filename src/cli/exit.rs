@@ -10,6 +10,9 @@ pub const NOT_MET: u8 = 1;
 /// A batch is complete, but some records failed.
 pub const SOME_FAILED: u8 = 5;
 
+/// A merge lacks results, or has some that do not fit.
+pub const INCOMPLETE: u8 = 6;
+
 /// Interrupted: run it again.
 pub const INTERRUPTED: u8 = 75;
 
@@ -34,5 +37,6 @@ Exit codes:
   3   the input is unreadable or malformed
   4   the data cannot support the request
   5   a batch is complete, but some records failed
+  6   a merge is incomplete: missing, mismatched or extra results
   74  input/output: disk full, permission, a file in the way
   75  interrupted or temporary: run it again";

@@ -40,24 +40,3 @@ pub fn die_with_parent() -> Result<()> {
 pub fn die_with_parent() -> Result<()> {
     Err(Error::usage("--die-with-parent: this system cannot do that").remedy("leave it out"))
 }
-
-/// Bytes from text such as `800M`, `4G` or `4GiB`; K, M, G and T count in steps of 1024.
-///
-/// # Errors
-/// `Usage` for anything else.
-pub fn bytes(option: &str, text: &str) -> Result<u64> {
-    let wrong =
-        || Error::usage(format!("--{option}: not an amount of memory: {text:?}")).remedy("write it as 800M or 4G");
-    let text = text.trim();
-    let digits = text.find(|c: char| !c.is_ascii_digit()).unwrap_or(text.len());
-    let shift = match text[digits..].trim().trim_end_matches("iB").trim_end_matches('B') {
-        "" => 0,
-        "k" | "K" => 10,
-        "M" => 20,
-        "G" => 30,
-        "T" => 40,
-        _ => return Err(wrong()),
-    };
-    let value: u64 = text[..digits].parse().map_err(|_| wrong())?;
-    value.checked_mul(1 << shift).filter(|bytes| *bytes > 0).ok_or_else(wrong)
-}

@@ -7,9 +7,12 @@ mod compare;
 mod compress;
 mod condition;
 mod exit;
+mod generate;
 mod machine;
+mod merge;
 mod progress;
 mod restore;
+mod spectrum;
 mod stream;
 
 use std::process::ExitCode;
@@ -23,10 +26,13 @@ pub fn run() -> ExitCode {
     let outcome = match matches.subcommand() {
         Some(("condition", matches)) => condition::run(matches),
         Some(("compare", matches)) => compare::run(matches),
+        Some(("spectrum", matches)) => spectrum::run(matches),
         Some(("audit", matches)) => audit::run(matches),
         Some(("compress", matches)) => compress::run(matches),
         Some(("restore", matches)) => restore::run(matches),
         Some(("batch", matches)) => batch::run(matches),
+        Some(("merge", matches)) => merge::run(matches),
+        Some(("generate", matches)) => generate::run(matches),
         _ => unreachable!("the parser requires a known command"),
     };
     match outcome {

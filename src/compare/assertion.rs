@@ -83,6 +83,12 @@ impl Assertion {
     }
 }
 
+impl fmt::Display for Property {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(self.word())
+    }
+}
+
 impl FromStr for Property {
     type Err = Error;
 
@@ -120,15 +126,60 @@ fn side_word(side: Side) -> &'static str {
 }
 
 /// How an assertion stands against the record. Nothing stronger than "not contradicted" can be said.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Serialize)]
 #[serde(rename_all = "snake_case")]
 pub enum Standing {
     /// The record does not speak against it.
     NotContradicted,
-    /// The record speaks against it.
-    Contradicted,
     /// The record is too short or too plain to speak.
     Untested,
+    /// The record speaks against it.
+    Contradicted,
+}
+
+impl Standing {
+    /// In words.
+    pub fn word(self) -> &'static str {
+        match self {
+            Standing::NotContradicted => "not contradicted",
+            Standing::Untested => "untested",
+            Standing::Contradicted => "contradicted",
+        }
+    }
+}
+
+/// How the assertion about one end stands. A closed record is asserted of both ends and tested by their one join.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+pub struct EndStanding {
+    /// Which end.
+    pub end: Side,
+    /// What is asserted of it.
+    pub property: Property,
+    /// How that stands.
+    pub standing: Standing,
+}
+
+impl fmt::Display for EndStanding {
+    /// As the option is written: `left:zero-slope`, or `closed`.
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        match self.property {
+            Property::Closed => f.write_str(self.property.word()),
+            property => write!(f, "{}:{}", side_word(self.end), property.word()),
+        }
+    }
+}
+
+/// `zero-slope: not contradicted`, or end by end where the ends differ.
+pub fn standings_text(standings: &[EndStanding]) -> String {
+    match standings {
+        [left, right] if (left.property, left.standing) == (right.property, right.standing) => {
+            format!("{}: {}", left.property, left.standing.word())
+        }
+        ends => {
+            let words: Vec<String> = ends.iter().map(|found| format!("{found}: {}", found.standing.word())).collect();
+            words.join(", ")
+        }
+    }
 }
 
 /// A join this much rougher than the interior contradicts a smooth one (T > 4 refuted no true case among the trials).
@@ -139,35 +190,32 @@ const FAR_VALUE: f64 = 4.0;
 const VISIBLE: f64 = 0.05;
 
 impl Assertion {
-    /// Checks every asserted end against a judgement of the record with standard deviation `deviation`.
-    pub fn standing(&self, judgement: &Judgement, deviation: f64) -> Standing {
+    /// Checks every asserted end against a judgement of the record with standard deviation `deviation`, left end first.
+    pub fn standings(&self, judgement: &Judgement, deviation: f64) -> Vec<EndStanding> {
         let joins = &judgement.structure;
         let by_join = |join: Option<f64>| match join {
             Some(ratio) if ratio > ROUGH_JOIN => Standing::Contradicted,
             Some(_) => Standing::NotContradicted,
             None => Standing::Untested,
         };
-        let end = |property: Option<Property>, side: Side| match property? {
-            Property::Closed => Some(by_join(joins.periodic.map(|join| join.ratio))),
+        let of = |property: Property, end: Side| match property {
+            Property::Closed => by_join(joins.periodic.map(|join| join.ratio)),
             Property::ZeroSlope => {
-                let join = if side == Side::Left { joins.even_left } else { joins.even_right };
-                Some(by_join(join.map(|join| join.ratio)))
+                let join = if end == Side::Left { joins.even_left } else { joins.even_right };
+                by_join(join.map(|join| join.ratio))
             }
             Property::ZeroValue => {
-                let found = judgement.estimates.at(side);
+                let found = judgement.estimates.at(end);
                 let far = found.value.abs() > FAR_VALUE * found.value_error && found.value.abs() > VISIBLE * deviation;
-                Some(if far { Standing::Contradicted } else { Standing::NotContradicted })
+                if far { Standing::Contradicted } else { Standing::NotContradicted }
             }
         };
-        let ends = [end(self.left, Side::Left), end(self.right, Side::Right)];
-        let any = |wanted: Standing| ends.iter().flatten().any(|standing| *standing == wanted);
-        if any(Standing::Contradicted) {
-            Standing::Contradicted
-        } else if any(Standing::NotContradicted) {
-            Standing::NotContradicted
-        } else {
-            Standing::Untested
-        }
+        [(Side::Left, self.left), (Side::Right, self.right)]
+            .into_iter()
+            .filter_map(|(end, property)| {
+                property.map(|property| EndStanding { end, property, standing: of(property, end) })
+            })
+            .collect()
     }
 }
 

@@ -2,23 +2,24 @@
 
 mod assertion;
 mod choice;
+mod cost;
 mod tolerance;
 
 use realfft::num_complex::Complex;
 
 use crate::baseline::{EndEstimates, Side};
 use crate::basis::Planner;
-use crate::condition::{condition, condition_continued, scaling};
+use crate::condition::{Outcome, condition, condition_continued, scale_of, scaling};
 use crate::ends::{Ends, Seat};
 use crate::error::Result;
 use crate::forecast::{Evidence, Forecast, Response, Shape, turned};
 use crate::numeric::noise;
 use crate::operator::Chain;
 use crate::record::Channel;
-use crate::verdict::{self, Case, Extension, FlatEnds, Formed, Verdict};
+use crate::verdict::{self, Case, Extension, FlatEnds, Formed, Past, Unjudged, Verdict};
 
-pub use assertion::{Assertion, Property, Standing};
-pub use choice::{Chosen, Continuation, How, choose};
+pub use assertion::{Assertion, EndStanding, Property, Standing, standings_text};
+pub use choice::{Chosen, Continuation, How, choose, refuse_contradictions};
 pub use tolerance::ToleranceRequest;
 
 /// What is known about the ends of one channel under one chain.
@@ -26,10 +27,14 @@ pub use tolerance::ToleranceRequest;
 pub struct Judgement {
     /// The verdict; `None` where the chain has nothing to judge: no corner, or an integral that keeps zero frequency.
     pub verdict: Option<Verdict>,
+    /// Why nothing was judged; `None` where it was.
+    pub unjudged: Option<Unjudged>,
     /// Values, slopes and levels at the half-sample mirrors, with standard errors.
     pub estimates: EndEstimates,
     /// The forecast past the left and the right end, counted outwards; `None` where nothing could be judged.
     pub forecast: Option<[Vec<f64>; 2]>,
+    /// What the chain makes of the channel under the forecast; `None` where nothing could be judged.
+    pub foretold: Option<Outcome>,
     /// Standard deviation that the forecast gives the output, by distance from the left and the right end.
     pub deviation: [Vec<f64>; 2],
     /// Joins of the ends, where the record is long enough.
@@ -52,16 +57,13 @@ pub fn judge(
     let samples = channel.samples;
     let len = samples.len();
     let output_unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
-    let tolerance = tolerance.resolve(&output_unit)?;
+    let tolerance = tolerance.resolve("--tolerance", &output_unit)?;
     let noise = noise::sigma(samples);
+    let Some(shortest_wavelength) = chain.shortest_wavelength_samples().filter(|_| !keeps_offset(chain)) else {
+        return Ok(Judgement::without_verdict(samples, chain, noise));
+    };
     let (_, factor) = scaling(channel, chain);
     let gain = |f: f64| factor * turned(chain.gain(f), f, chain.turns());
-    let integrates_offset = chain.turns() < 0 && chain.gain(0.0) != 0.0;
-    let Some(shortest_wavelength) = chain.shortest_wavelength_samples().filter(|_| !integrates_offset) else {
-        let estimates = EndEstimates::with_noise(samples, Ends::EVEN, crate::condition::scale_of(chain, len), noise);
-        let structure = verdict::Structure::default();
-        return Ok(Judgement { verdict: None, estimates, forecast: None, deviation: Default::default(), structure });
-    };
     let shape = Shape { gain: &gain, turns: chain.turns(), shortest_wavelength };
     let response = if chain.is_real() {
         Response::of(shape, len)
@@ -76,7 +78,19 @@ pub fn judge(
     let block = Evidence::block_length(shortest_wavelength);
     let evidence = Evidence::gather(samples, block);
     let structure = evidence.as_ref().map(verdict::structure).unwrap_or_default();
+    let unjudged = Unjudged::of(samples, &response).map_or(Ok(()), Err);
+    let past = unjudged.and_then(|()| evidence.as_ref().ok_or(Unjudged::FewBlocks));
+    let past = past.map(|evidence| (evidence, Forecast::combine(evidence, &response)));
+    let sides = [Side::Left, Side::Right];
+    let ahead = past.as_ref().ok().map(|(_, forecast)| sides.map(|side| forecast.continuation(side)));
     // An output that cannot be formed is not judged: the run itself will tell why.
+    let foretold =
+        ahead.as_ref().and_then(|[left, right]| condition_continued(channel, chain, left, right, seat, planner).ok());
+    let past = match (&past, &foretold) {
+        (Ok((evidence, forecast)), Some(outcome)) => Ok(Past { evidence, forecast, foretold: &outcome.output }),
+        (Ok(_), None) => Err(Unjudged::Unformed),
+        (Err(reason), _) => Err(*reason),
+    };
     let output = |extension: Extension<'_>| {
         let outcome = match extension {
             Extension::Symmetric(candidate) => {
@@ -86,26 +100,65 @@ pub fn judge(
         };
         outcome.map_or_else(|_| vec![f64::NAN; len], |outcome| outcome.output)
     };
-    let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
+    let blocks_tell = chain.passes().len() == 1 && chain.is_real() && seat == Seat::Half;
     let case = Case {
         samples,
-        past: evidence.as_ref().zip(forecast.as_ref()),
+        past,
         structure,
         estimates,
         response: &response,
         output: &output,
-        formed: if chain.passes().len() > 1 || !chain.is_real() { Formed::InSeveral } else { Formed::InOnePass },
+        formed: if blocks_tell { Formed::InOnePass } else { Formed::Otherwise },
         tolerance,
     };
     let verdict = Verdict::of(&case, FlatEnds::Ignored);
-    let judged = !verdict.edges.is_empty();
-    let forecast = forecast.filter(|_| judged);
-    let sides = [Side::Left, Side::Right];
-    let deviation = sides.map(|side| {
-        forecast.as_ref().map_or_else(Vec::new, |f| f.profile(side).iter().map(|variance| variance.sqrt()).collect())
-    });
-    let forecast = forecast.map(|forecast| sides.map(|side| forecast.continuation(side)));
-    Ok(Judgement { verdict: Some(verdict), estimates, forecast, deviation, structure })
+    let deviation = verdict.scene.as_ref().map(|scene| scene.deviations().clone()).unwrap_or_default();
+    let judged = verdict.unjudged.is_none();
+    Ok(Judgement {
+        unjudged: verdict.unjudged,
+        verdict: Some(verdict),
+        estimates,
+        forecast: ahead.filter(|_| judged),
+        foretold: foretold.filter(|_| judged),
+        deviation,
+        structure,
+    })
+}
+
+/// True for a chain whose output depends on everything outside: an integral that keeps zero frequency.
+fn keeps_offset(chain: &Chain) -> bool {
+    chain.turns() < 0 && chain.gain(0.0) != 0.0
+}
+
+/// Why no record can be judged under a chain.
+fn unjudged_chain(chain: &Chain) -> Option<Unjudged> {
+    if chain.is_identity() {
+        Some(Unjudged::NoOperator)
+    } else if keeps_offset(chain) {
+        Some(Unjudged::KeepsOffset)
+    } else if chain.shortest_wavelength_samples().is_none() {
+        Some(Unjudged::NoCorner)
+    } else {
+        None
+    }
+}
+
+impl Judgement {
+    /// What can be told without a corner: the ends themselves and how they join.
+    fn without_verdict(samples: &[f64], chain: &Chain, noise: f64) -> Judgement {
+        let scale = scale_of(chain, samples.len());
+        let block = Evidence::block_length(scale.shortest_wavelength);
+        let [left, right] = Evidence::histories(samples, block);
+        Judgement {
+            verdict: None,
+            unjudged: unjudged_chain(chain),
+            estimates: EndEstimates::with_noise(samples, Ends::EVEN, scale, noise),
+            forecast: None,
+            foretold: None,
+            deviation: Default::default(),
+            structure: verdict::structure_of([&left, &right]),
+        }
+    }
 }
 
 #[cfg(test)]

@@ -4,7 +4,7 @@ use super::*;
 use crate::operator::{Request, Shape as Rolloff};
 use crate::record::{Axis, RateSource};
 use crate::unit::Unit;
-use crate::verdict::{Formed, Tolerance};
+use crate::verdict::{Formed, Past, Tolerance};
 
 const LEN: usize = 4000;
 
@@ -75,10 +75,12 @@ fn a_derivative_has_the_same_edges_from_blocks_and_from_whole_outputs() {
             };
             outcome.expect("an output").output
         };
-        let [near, whole] = [Formed::InOnePass, Formed::InSeveral].map(|formed| {
+        let [left, right] = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
+        let foretold = output(Extension::Continued { left: &left, right: &right });
+        let [near, whole] = [Formed::InOnePass, Formed::Otherwise].map(|formed| {
             let case = Case {
                 samples: &samples,
-                past: Some((&evidence, &forecast)),
+                past: Ok(Past { evidence: &evidence, forecast: &forecast, foretold: &foretold }),
                 structure: verdict::Structure::default(),
                 estimates,
                 response: &response,

@@ -51,11 +51,11 @@ impl fmt::Display for ToleranceRequest {
 }
 
 impl ToleranceRequest {
-    /// In the unit of the output.
+    /// In the unit of the output; `option` is named in errors.
     ///
     /// # Errors
     /// `Usage` when the units cannot be converted.
-    pub(super) fn resolve(&self, output: &Unit) -> Result<Tolerance> {
+    pub fn resolve(&self, option: &str, output: &Unit) -> Result<Tolerance> {
         let (value, unit) = match self {
             Self::Share(share) => return Ok(Tolerance::Share(*share)),
             Self::Value(value, unit) => (*value, unit),
@@ -67,8 +67,8 @@ impl ToleranceRequest {
             (Some(own), Some(wanted)) if (own.length, own.time) == (wanted.length, wanted.time) => {
                 Ok(Tolerance::Absolute(value * own.scale / wanted.scale))
             }
-            _ => Err(Error::usage(format!("--tolerance {self}: the output is in \"{output}\""))
-                .remedy("give the tolerance in that unit or in %")),
+            _ => Err(Error::usage(format!("{option} {self}: the output is in \"{output}\""))
+                .remedy(format!("give {option} in that unit or in %"))),
         }
     }
 }
@@ -82,9 +82,9 @@ mod tests {
         let parse = |text: &str| text.parse::<ToleranceRequest>();
         assert_eq!(parse("10%"), Ok(ToleranceRequest::Share(0.1)));
         let mm = parse("2 mm/s").expect("a tolerance");
-        let Ok(Tolerance::Absolute(value)) = mm.resolve(&Unit::parse("m/s")) else { panic!("absolute") };
+        let Ok(Tolerance::Absolute(value)) = mm.resolve("--tolerance", &Unit::parse("m/s")) else { panic!("absolute") };
         assert!((value - 0.002).abs() < 1e-15);
-        assert!(mm.resolve(&Unit::parse("V")).is_err());
+        assert!(mm.resolve("--tolerance", &Unit::parse("V")).is_err());
         for text in ["", "10", "-5%", "nan%", "x", "%", "1e400%", "1e400m/s", "5 5%"] {
             assert!(parse(text).is_err(), "{text}");
         }

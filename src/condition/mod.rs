@@ -1,22 +1,28 @@
 //! The main job: a channel, its assumed continuation and a chain of operators make a conditioned channel.
 
+mod blocks;
 mod choice;
 mod despike;
 mod pass;
+mod run;
 mod smoother;
 
 use crate::baseline::{Baseline, BaselineKind, Scale};
 use crate::basis::Planner;
 use crate::ends::{Ends, Parity, Seat};
 use crate::error::Result;
-use crate::operator::{Chain, PassEnds};
+use crate::operator::Chain;
 use crate::record::Channel;
 use crate::unit::Unit;
 
+pub use blocks::Layout;
 pub use choice::{ExtensionChoice, Stage};
 pub use despike::{Despiked, despike};
-pub use pass::{Passed, apply};
+pub use pass::{Passed, Span, apply, apply_whole};
+pub use run::Integral;
 pub use smoother::{Robust, Smoother, Validated, bridged, freedom};
+
+use run::Scene;
 
 /// What conditioning made of one channel: the only input of metrics and reports.
 #[derive(Debug, Clone)]
@@ -35,6 +41,8 @@ pub struct Outcome {
     pub parseval: f64,
     /// Samples that robust smoothing gave no weight, continuation included; `None` without it.
     pub outliers: Option<usize>,
+    /// What the end conditions made of an integral; `None` without one.
+    pub integral: Option<Integral>,
 }
 
 /// The fit widths for a record of `len` samples under a chain.
@@ -48,14 +56,14 @@ pub fn scale_of(chain: &Chain, len: usize) -> Scale {
     }
 }
 
-/// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `slopes` for
-/// integrals, derivatives and resampling with even ends (their kink is what an even extension adds), otherwise none.
+/// The baseline that goes with ends and chain when none is asked for: `level` at the odd end of mixed ends, `tangents` for
+/// integrals and derivatives with even ends and `slopes` for resampling (their kink is what an even extension adds),
+/// otherwise none.
 pub fn default_baseline(ends: Ends, chain: &Chain) -> BaselineKind {
     match ends {
         Ends::Mirror { left, right, .. } if left != right => BaselineKind::Level(None),
-        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 || chain.treatments().resampling.is_some() => {
-            BaselineKind::Slopes
-        }
+        Ends::Mirror { left: Parity::Even, .. } if chain.turns() != 0 => BaselineKind::Tangents,
+        Ends::Mirror { left: Parity::Even, .. } if chain.treatments().resampling.is_some() => BaselineKind::Slopes,
         _ => BaselineKind::None,
     }
 }
@@ -95,7 +103,9 @@ fn fitted(
         return Baseline::fit(kind, samples, ends, scale);
     }
     let nothing = Baseline::fit(BaselineKind::None, samples, ends, scale)?;
-    let (kept, _) = run(samples, &chain.on_own_grid(), ends, &nothing, scale, 0, 1.0, planner)?;
+    let own = chain.on_own_grid();
+    let scene = Scene { chain: &own, unit: Unit::unknown(), factor: 1.0, resolved: None, scale, planner };
+    let kept = run::passes(&scene, samples, ends, &nothing, Span::whole(samples))?;
     let found = Baseline::fit(kind, &kept.output, ends, scale)?;
     Ok(Baseline::exact(kind, found.polynomial().clone()))
 }
@@ -112,16 +122,21 @@ pub fn condition_with(
     scale: Scale,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let (unit, factor) = scaling(channel, chain);
-    let (Passed { output, parseval }, outliers) =
-        run(channel.samples, chain, ends, &baseline, scale, 0, factor, planner)?;
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval, outliers })
+    let scene = Scene::of(channel, chain, ends, scale, planner)?;
+    let ran = run::passes(&scene, channel.samples, ends, &baseline, Span::whole(channel.samples))?;
+    Ok(ran.outcome(scene.unit, ends, baseline, scale))
+}
+
+/// What a continued record itself is conditioned under: even reflection, with the baseline that goes with it.
+pub fn beyond(seat: Seat, chain: &Chain) -> (Ends, BaselineKind) {
+    let ends = Ends::EVEN.seated(seat);
+    (ends, default_baseline(ends, chain))
 }
 
 /// Conditions a channel that is continued past both ends by given samples, counted outwards, and evenly beyond them.
 ///
-/// The continued record runs through the whole chain under even reflection, with the baseline that goes with it, and the
-/// channel's own samples are cut out again. Integrals start at rest at the channel's own left end.
+/// The continued record runs through the whole chain as `beyond` says, and the channel's own samples are cut out again. End
+/// conditions of an integral hold at the channel's own ends.
 ///
 /// # Errors
 /// As `condition`.
@@ -133,19 +148,46 @@ pub fn condition_continued(
     seat: Seat,
     planner: &Planner,
 ) -> Result<Outcome> {
-    let ends = Ends::EVEN.seated(seat);
+    let (ends, kind) = beyond(seat, chain);
     let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
     let scale = scale_of(chain, continued.len());
-    let baseline = fitted(default_baseline(ends, chain), &continued, chain, ends, scale, planner)?;
-    let (unit, factor) = scaling(channel, chain);
-    let lead = left.len();
-    let (Passed { mut output, parseval }, outliers) =
-        run(&continued, chain, ends, &baseline, scale, lead, factor, planner)?;
+    let baseline = fitted(kind, &continued, chain, ends, scale, planner)?;
+    let scene = Scene::of(channel, chain, ends, scale, planner)?;
+    let span = Span { lead: left.len(), len: channel.samples.len() };
+    let mut ran = run::passes(&scene, &continued, ends, &baseline, span)?;
     if chain.treatments().resampling.is_none() {
-        output.truncate(lead + channel.samples.len());
-        output.drain(..lead);
+        ran.output = own(ran.output, span);
     }
-    Ok(Outcome { output, unit, ends, baseline, scale, parseval, outliers })
+    Ok(ran.outcome(scene.unit, ends, baseline, scale))
+}
+
+/// The record that the integral of `outcome` is the integral of, in the record's unit: filtered, less the offset and drift
+/// that the end conditions found, high-passed under even reflection. `past` is the continuation that was used, if any.
+/// For chains that keep the record's own rate.
+///
+/// # Errors
+/// As `condition`.
+pub fn corrected(
+    channel: Channel<'_>,
+    chain: &Chain,
+    outcome: &Outcome,
+    past: Option<[&[f64]; 2]>,
+    planner: &Planner,
+) -> Result<Vec<f64>> {
+    let constants = outcome.integral.as_ref().map(|integral| integral.constants).unwrap_or_default();
+    let [left, right] = past.unwrap_or([&[], &[]]);
+    let continued: Vec<f64> = left.iter().rev().chain(channel.samples).chain(right).copied().collect();
+    let span = Span { lead: left.len(), len: channel.samples.len() };
+    let scene = Scene::of(channel, chain, outcome.ends, outcome.scale, planner)?;
+    let all = run::corrected(&scene, &continued, outcome.ends, &outcome.baseline, span, constants)?;
+    Ok(own(all, span))
+}
+
+/// The channel's own samples.
+fn own(mut all: Vec<f64>, span: Span) -> Vec<f64> {
+    all.truncate(span.lead + span.len);
+    all.drain(..span.lead);
+    all
 }
 
 /// Unit of the output, and the factor that brings numbers formed in steps into it.
@@ -153,62 +195,4 @@ pub fn scaling(channel: Channel<'_>, chain: &Chain) -> (Unit, f64) {
     let turns = chain.turns();
     let (unit, factor) = channel.unit.turned(turns, channel.axis.unit());
     (unit, channel.axis.step_base().powi(-turns) * factor)
-}
-
-/// All passes of a chain: the output with the Parseval check of the first, and the samples that robust smoothing gave no
-/// weight.
-#[expect(clippy::too_many_arguments, reason = "what a run is made of, in one place")]
-fn run(
-    samples: &[f64],
-    chain: &Chain,
-    ends: Ends,
-    baseline: &Baseline,
-    scale: Scale,
-    lead: usize,
-    factor: f64,
-    planner: &Planner,
-) -> Result<(Passed, Option<usize>)> {
-    let mut so_far: Option<Passed> = None;
-    let mut outliers = None;
-    for pass in chain.passes().iter().filter(|pass| !pass.is_identity()) {
-        let input = so_far.as_ref().map_or(samples, |passed| passed.output.as_slice());
-        let (ends, baseline) = match pass.ends() {
-            PassEnds::Chosen if so_far.is_none() => (ends, baseline.clone()),
-            PassEnds::Chosen => (ends, Baseline::fit(baseline.kind(), input, ends, scale)?),
-            PassEnds::EvenWithoutBaseline => {
-                let even = Ends::EVEN.seated(ends.seat());
-                (even, Baseline::fit(BaselineKind::None, input, even, Scale::assumed(input.len()))?)
-            }
-        };
-        let mut passed = match pass.robust() {
-            Some(strength) => {
-                let (passed, count) = robust(input, ends, &baseline, strength, planner)?;
-                outliers = Some(count);
-                passed
-            }
-            None => apply(input, ends, &baseline, pass, lead, planner)?,
-        };
-        if pass.turns() != 0 && factor != 1.0 {
-            passed.output.iter_mut().for_each(|v| *v *= factor);
-        }
-        passed.parseval = so_far.map_or(passed.parseval, |first| first.parseval);
-        so_far = Some(passed);
-    }
-    let unchanged = || Passed { output: samples.to_vec(), parseval: 0.0 };
-    Ok((so_far.unwrap_or_else(unchanged), outliers))
-}
-
-/// Robust smoothing of what a baseline leaves.
-fn robust(
-    samples: &[f64],
-    ends: Ends,
-    baseline: &Baseline,
-    strength: f64,
-    planner: &Planner,
-) -> Result<(Passed, usize)> {
-    let at = |n: usize| baseline.polynomial().at(n as f64 + ends.first_position());
-    let rest: Vec<f64> = samples.iter().enumerate().map(|(n, v)| v - at(n)).collect();
-    let Robust { values, weights, .. } = Smoother::new(planner, ends, samples.len(), 2)?.robust(&rest, Some(strength));
-    let output = values.iter().enumerate().map(|(n, v)| v + at(n)).collect();
-    Ok((Passed { output, parseval: 0.0 }, weights.iter().filter(|w| **w == 0.0).count()))
 }

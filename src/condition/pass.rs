@@ -2,11 +2,13 @@
 
 use realfft::num_complex::Complex;
 
+use super::blocks::{self, Layout};
 use crate::baseline::Baseline;
 use crate::basis::grid::{self, Grid};
 use crate::basis::{Planner, series};
 use crate::ends::{Ends, Parity};
 use crate::error::Result;
+use crate::integral::Arrival;
 use crate::numeric::polynomial::Polynomial;
 use crate::numeric::sum;
 use crate::operator::{Pass, Resampling, Start};
@@ -18,13 +20,40 @@ pub struct Passed {
     pub output: Vec<f64>,
     /// Relative difference between the energy of the remainder and that of its coefficients: rounding only.
     pub parseval: f64,
+    /// Where the first sample of the output stands, in steps from the left mirror.
+    pub first: f64,
+    /// Distance of the output's samples, in steps.
+    pub spacing: f64,
+    /// Where integrals arrive at the end of the span, in steps; zero without integrals.
+    pub arrival: Arrival,
 }
 
-/// Applies `pass` to `samples` under `ends` after splitting `baseline` off. The channel proper begins `lead` samples in:
-/// what stands before continues it.
+/// The channel proper within a record that continues it.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Span {
+    /// Samples before it.
+    pub lead: usize,
+    /// Its own samples.
+    pub len: usize,
+}
+
+impl Span {
+    /// A record that nothing continues.
+    pub fn whole(samples: &[f64]) -> Span {
+        Span { lead: 0, len: samples.len() }
+    }
+
+    /// Its own mirrors, in steps from the left mirror of the continued record.
+    pub fn mirrors(self, ends: Ends) -> [f64; 2] {
+        [self.lead as f64, self.lead as f64 + ends.length(self.len)]
+    }
+}
+
+/// Applies `pass` to `samples` under `ends` after splitting `baseline` off. The channel proper is `span`, `len` samples of it
+/// from sample `lead` on: what stands before and after continues it.
 ///
 /// Derivatives are per step and integrals in steps: the caller multiplies by step^(-turns). Integrals start at rest: the
-/// first is zero `lead` steps from the left mirror, and so is the second. A pass that resamples gives the values of the
+/// first is zero at the start of the span, and so is the second. A pass that resamples gives the values of the
 /// channel's new grid alone.
 ///
 /// # Errors
@@ -34,7 +63,26 @@ pub fn apply(
     ends: Ends,
     baseline: &Baseline,
     pass: &Pass,
-    lead: usize,
+    span: Span,
+    planner: &Planner,
+) -> Result<Passed> {
+    let len = samples.len();
+    if let Some(layout) = Layout::of(pass, len) {
+        return blocks::apply(samples, ends, baseline, pass, layout, planner);
+    }
+    apply_whole(samples, ends, baseline, pass, span, planner)
+}
+
+/// As `apply`, by the transform of the record's own length whatever that costs: what the way in blocks is held against.
+///
+/// # Errors
+/// As `apply`.
+pub fn apply_whole(
+    samples: &[f64],
+    ends: Ends,
+    baseline: &Baseline,
+    pass: &Pass,
+    span: Span,
     planner: &Planner,
 ) -> Result<Passed> {
     let len = samples.len();
@@ -64,12 +112,13 @@ pub fn apply(
     let mut turned_work = (!pass.is_real()).then(|| work.clone());
     multiply(&mut work, turned_work.as_deref_mut(), ends, pass);
     let mut polynomial = turned(pass.carry(&carried), turns);
+    let mut arrival = Arrival::default();
     if turns < 0 {
-        polynomial = from_rest(polynomial, &work, ends, turns, lead as f64);
+        (polynomial, arrival) = from_rest(polynomial, &work, ends, turns, span.mirrors(ends));
     }
     let odd = turns.rem_euclid(2) == 1;
     if let Some(resampling) = pass.resampling() {
-        let places = places(ends, resampling, lead);
+        let places = places(ends, resampling, span.lead);
         let nothing = vec![0.0; if odd { len } else { 0 }];
         let (straight, turned) = match (odd, &turned_work) {
             (true, _) => (nothing.as_slice(), Some(work.as_slice())),
@@ -82,7 +131,9 @@ pub fn apply(
                 *value += polynomial.at(numerator as f64 / places.parts as f64);
             }
         }
-        return Ok(Passed { output, parseval });
+        let parts = places.parts as f64;
+        let (first, spacing) = (places.first as f64 / parts, places.step as f64 / parts);
+        return Ok(Passed { output, parseval, first, spacing, arrival });
     }
     if odd {
         plan.inverse_turned(&mut work, &mut scratch);
@@ -98,7 +149,7 @@ pub fn apply(
             *value += polynomial.at(position(n));
         }
     }
-    Ok(Passed { output: work, parseval })
+    Ok(Passed { output: work, parseval, first, spacing: 1.0, arrival })
 }
 
 /// Where the samples of a new grid stand, counted from the left mirror of a record that begins `lead` samples earlier.
@@ -148,7 +199,7 @@ fn is_cosine(ends: Ends, k: usize) -> bool {
 /// A derivative takes a cosine to -omega sine and a sine to +omega cosine; an integral takes a cosine to +1/omega sine
 /// and a sine to -1/omega cosine; two of either multiply by -omega^2 or -1/omega^2. A response R + i I takes a cosine to
 /// R cosine - I sine and a sine to R sine + I cosine: `turned` gets the second terms. Only passes without turns have one.
-fn multiply(coefficients: &mut [f64], mut turned: Option<&mut [f64]>, ends: Ends, pass: &Pass) {
+pub(super) fn multiply(coefficients: &mut [f64], mut turned: Option<&mut [f64]>, ends: Ends, pass: &Pass) {
     let len = coefficients.len();
     let turns = pass.turns();
     let (mut last_frequency, mut last_gain) = (f64::NAN, Complex::default());
@@ -180,12 +231,20 @@ fn multiply(coefficients: &mut [f64], mut turned: Option<&mut [f64]>, ends: Ends
 }
 
 /// The integrated polynomial with the constant, and after a second integral the slope, that make it and the integrated
-/// series together zero at `rest`.
-fn from_rest(polynomial: Polynomial, coefficients: &[f64], ends: Ends, turns: i32, rest: f64) -> Polynomial {
+/// series together zero at the start of the span; and where both integrals then arrive at its end.
+fn from_rest(
+    polynomial: Polynomial,
+    coefficients: &[f64],
+    ends: Ends,
+    turns: i32,
+    [start, end]: [f64; 2],
+) -> (Polynomial, Arrival) {
     let len = coefficients.len();
     if turns == -1 {
-        let start = series::turned_value_at(ends, len, coefficients, rest) + polynomial.at(rest);
-        return polynomial.plus_constant(-start);
+        let first = |p: &Polynomial, x: f64| series::turned_value_at(ends, len, coefficients, x) + p.at(x);
+        let polynomial = polynomial.clone().plus_constant(-first(&polynomial, start));
+        let arrival = Arrival { first: first(&polynomial, end), second: 0.0 };
+        return (polynomial, arrival);
     }
     // The slope of the second integral is the first: a sine becomes omega times a cosine, a cosine minus omega a sine.
     let slopes: Vec<f64> = coefficients
@@ -196,13 +255,17 @@ fn from_rest(polynomial: Polynomial, coefficients: &[f64], ends: Ends, turns: i3
             if is_cosine(ends, k) { -omega * c } else { omega * c }
         })
         .collect();
-    let slope = series::turned_value_at(ends, len, &slopes, rest) + polynomial.derivative().at(rest);
-    let start = series::value_at(ends, len, coefficients, rest) + polynomial.at(rest);
-    polynomial.plus_constant(slope * rest - start).plus_slope(-slope)
+    let first = |p: &Polynomial, x: f64| series::turned_value_at(ends, len, &slopes, x) + p.derivative().at(x);
+    let second = |p: &Polynomial, x: f64| series::value_at(ends, len, coefficients, x) + p.at(x);
+    let slope = first(&polynomial, start);
+    let at_start = second(&polynomial, start);
+    let polynomial = polynomial.plus_constant(slope * start - at_start).plus_slope(-slope);
+    let arrival = Arrival { first: first(&polynomial, end), second: second(&polynomial, end) };
+    (polynomial, arrival)
 }
 
 /// The polynomial after `turns` derivatives (positive) or integrals from x = 0 (negative).
-fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
+pub(super) fn turned(mut polynomial: Polynomial, turns: i32) -> Polynomial {
     for _ in 0..turns.abs() {
         polynomial = if turns > 0 { polynomial.derivative() } else { polynomial.integral() };
     }

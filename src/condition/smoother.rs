@@ -102,7 +102,8 @@ impl Smoother {
             return guess.to_vec();
         }
         // In the basis: (C W C^T + s Lambda) z = C W y, preconditioned by mean(W) + s Lambda.
-        let mut right: Vec<f64> = samples.iter().zip(weights).map(|(y, w)| if *w > 0.0 { y * w } else { 0.0 }).collect();
+        let mut right: Vec<f64> =
+            samples.iter().zip(weights).map(|(y, w)| if *w > 0.0 { y * w } else { 0.0 }).collect();
         let mut scratch = vec![0.0; self.plan.scratch_len()];
         self.plan.forward(&mut right, &mut scratch);
         let mut z = guess.to_vec();
@@ -157,22 +158,36 @@ impl Smoother {
         let mut fit = bridged(samples, weights);
         let found = self.least(range, |strength| {
             fit = self.weighted(samples, weights, strength, &fit);
-            let rss: f64 = fit.iter().zip(samples).zip(weights).map(|((z, y), w)| if *w > 0.0 { w * (y - z).powi(2) } else { 0.0 }).sum();
+            let rss: f64 = fit
+                .iter()
+                .zip(samples)
+                .zip(weights)
+                .map(|((z, y), w)| if *w > 0.0 { w * (y - z).powi(2) } else { 0.0 })
+                .sum();
             (rss / known) / (1.0 - self.freedom(strength) / samples.len() as f64).powi(2)
         });
         let values = self.weighted(samples, weights, found.strength, &fit);
         (found, values)
     }
 
-    /// The fit from which outliers are kept away: bisquare weights from the residuals, three times over. Without a strength
-    /// the least score under the weights of each turn gives it.
-    pub fn robust(&self, samples: &[f64], strength: Option<f64>) -> Robust {
-        let mut strength_now = strength.unwrap_or_else(|| self.validated(samples).strength);
-        let mut values = self.smooth(samples, strength_now);
-        let mut weights = vec![1.0; samples.len()];
+    /// The fit from which outliers are kept away: bisquare weights from the residuals, three times over, on top of `base`
+    /// weights (0 for a missing sample). Without a strength the least score under the weights of each turn gives it.
+    pub fn robust(&self, samples: &[f64], base: Option<&[f64]>, strength: Option<f64>) -> Robust {
+        let mut weights = base.map_or_else(|| vec![1.0; samples.len()], <[f64]>::to_vec);
+        let (mut strength_now, mut values) = match (base, strength) {
+            (None, strength) => {
+                let found = strength.unwrap_or_else(|| self.validated(samples).strength);
+                (found, self.smooth(samples, found))
+            }
+            (Some(base), Some(strength)) => (strength, self.weighted(samples, base, strength, &bridged(samples, base))),
+            (Some(base), None) => {
+                let (found, fit) = self.weighted_validated(samples, base, None);
+                (found.strength, fit)
+            }
+        };
         for _ in 0..REWEIGHTINGS {
             let leverage = self.freedom(strength_now) / samples.len() as f64;
-            weights = bisquare(samples, &values, leverage);
+            weights = bisquare(samples, &values, base, leverage);
             if strength.is_none() {
                 let (found, fit) = self.weighted_validated(samples, &weights, Some(strength_now));
                 (strength_now, values) = (found.strength, fit);
@@ -270,20 +285,21 @@ pub fn freedom(ends: Ends, len: usize, strength: f64) -> f64 {
 
 /// (1 - (u/4.685)^2)^2 below 4.685 robust deviations of the residuals, 0 beyond; the deviation is that of a residual at a
 /// sample of this leverage.
-fn bisquare(samples: &[f64], fit: &[f64], leverage: f64) -> Vec<f64> {
-    let residuals: Vec<f64> = samples.iter().zip(fit).map(|(y, z)| y - z).collect();
-    let mut scratch = residuals.clone();
+fn bisquare(samples: &[f64], fit: &[f64], base: Option<&[f64]>, leverage: f64) -> Vec<f64> {
+    let base = |n: usize| base.map_or(1.0, |base| base[n]);
+    let mut scratch: Vec<f64> = (0..samples.len()).filter(|&n| base(n) > 0.0).map(|n| samples[n] - fit[n]).collect();
     let centre = median(&mut scratch).unwrap_or(0.0);
     scratch.iter_mut().for_each(|r| *r = (*r - centre).abs());
     let deviation = HAMPEL_SCALE * median(&mut scratch).unwrap_or(0.0) * (1.0 - leverage).max(0.0).sqrt();
-    if deviation <= 0.0 {
-        return vec![1.0; samples.len()];
-    }
-    let weight = |r: &f64| {
-        let u = r / (BISQUARE * deviation);
-        if u.abs() < 1.0 { (1.0 - u * u).powi(2) } else { 0.0 }
+    let weight = |n: usize| {
+        let u = (samples[n] - fit[n]) / (BISQUARE * deviation);
+        match deviation > 0.0 {
+            true if u.abs() < 1.0 => base(n) * (1.0 - u * u).powi(2),
+            true => 0.0,
+            false => base(n),
+        }
     };
-    residuals.iter().map(weight).collect()
+    (0..samples.len()).map(weight).collect()
 }
 
 /// The samples with those of no weight joined by straight lines: a first guess.

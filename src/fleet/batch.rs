@@ -230,7 +230,7 @@ fn one(batch: &Batch, earlier: &Earlier, bench: &Bench, number: u64, planned: &P
     if let Some(same_as) = planned.same_as {
         return match Line::repeated(number, planned, same_as).bytes() {
             Ok(line) => Outcome::Repeated(line),
-            Err(error) => failed(number, planned, Failure::of(&error)),
+            Err(error) => failed(number, planned, None, Failure::of(&error)),
         };
     }
     match earlier.standing(number, planned, &batch.into) {
@@ -242,18 +242,22 @@ fn one(batch: &Batch, earlier: &Earlier, bench: &Bench, number: u64, planned: &P
         let what =
             format!("about {} MiB of memory would be needed, {} MiB are allowed", bytes >> 20, batch.memory >> 20);
         let error = Error::unsupported(what).remedy("raise --memory, or cut the record with --from and --to");
-        return failed(number, planned, Failure::of(&error.at(Place::file(planned.path.display().to_string()))));
+        let place = Place::file(planned.path.display().to_string());
+        // Its bytes are not read for a fingerprint either: there may be no end of them.
+        return failed(number, planned, None, Failure::of(&error.at(place)));
     }
     match guarded(|| condition(batch, bench, number, planned)) {
         Ok(ready) => ready,
-        Err(failure) => failed(number, planned, failure),
+        Err(failure) => {
+            let input = fingerprint_of_file(&planned.path).ok().map(|bytes| hex(&bytes));
+            failed(number, planned, input, failure)
+        }
     }
 }
 
-fn failed(number: u64, planned: &Planned, failure: Failure) -> Outcome {
+fn failed(number: u64, planned: &Planned, input_sha256: Option<String>, failure: Failure) -> Outcome {
     let settings = planned.settings().ok();
-    let input = fingerprint_of_file(&planned.path).ok().map(|bytes| hex(&bytes));
-    let line = Line::failed(number, planned, settings.as_deref(), input, failure);
+    let line = Line::failed(number, planned, settings.as_deref(), input_sha256, failure);
     // A failure holds nothing that JSON cannot; if it did, the record would be missing and done again.
     line.bytes().map_or(Outcome::Open, Outcome::Failed)
 }

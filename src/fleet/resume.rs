@@ -48,7 +48,9 @@ impl Earlier {
         if files.is_empty() {
             return Ok(Earlier::default());
         }
-        let own = plan.records.iter().enumerate().filter(|(number, _)| shard.holds(*number as u64));
+        // A repeated name shares its output with the record that it repeats, whose line it is.
+        let own = plan.records.iter().enumerate();
+        let own = own.filter(|(number, record)| shard.holds(*number as u64) && record.same_as.is_none());
         let by_output: HashMap<&Path, u64> =
             own.map(|(number, record)| (record.output.as_path(), number as u64)).collect();
         let mut lines: HashMap<u64, Vec<Known>> = HashMap::new();

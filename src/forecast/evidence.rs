@@ -22,7 +22,7 @@ pub struct Evidence {
     block: usize,
     /// Samples of the record.
     len: usize,
-    /// Smallest gap between different values.
+    /// What the values are rounded to, as far as they show it.
     quantum: f64,
     left: EndEvidence,
     right: EndEvidence,
@@ -52,10 +52,15 @@ impl Evidence {
         Some(Evidence {
             block,
             len: samples.len(),
-            quantum: quantum::step(samples),
+            quantum: quantum::rounding(samples),
             left: end(Side::Left),
             right: end(Side::Right),
         })
+    }
+
+    /// The histories alone, in blocks towards the left and the right end, oldest first.
+    pub fn histories(samples: &[f64], block: usize) -> [Vec<f64>; 2] {
+        [Side::Left, Side::Right].map(|side| block_means(samples, side, block.max(1)))
     }
 
     /// Samples per block.
@@ -68,7 +73,7 @@ impl Evidence {
         self.len
     }
 
-    /// Smallest gap between different values, in the record's unit.
+    /// What the values are rounded to, in the record's unit; 0 where they do not show it.
     pub fn quantum(&self) -> f64 {
         self.quantum
     }

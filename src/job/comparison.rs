@@ -7,19 +7,22 @@ use crate::baseline::{Baseline, BaselineKind, EndEstimates};
 use crate::basis::Planner;
 use crate::compare::{self, Judgement};
 use crate::condition::scale_of;
-use crate::ends::Ends;
+use crate::ends::{Ends, Seat};
 use crate::error::Result;
+use crate::job::bound::refuse_beyond_memory;
+use crate::job::chain;
 use crate::job::intake;
+use crate::job::judgement::{Judged, trusted_report};
 use crate::job::picture::{Scene, draw};
-use crate::job::preparation::prepare;
-use crate::job::work;
+use crate::job::preparation::{self, prepare};
+use crate::job::requirement;
 use crate::metric::{METRICS, Subject};
 use crate::operator::Chain;
 use crate::read::Input;
 use crate::record::Channel;
-use crate::report::{self, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool};
+use crate::report::{self, ChannelComparison, Comparison, InputReport, Jump, Picture, Row, SCHEMA, Tool, Veto};
 use crate::settings::Settings;
-use crate::verdict::{CANDIDATES, ODD_ZERO};
+use crate::verdict::{CANDIDATES, EVEN, ODD_ZERO, PERIODIC};
 
 /// Compares the extensions of every channel; pictures are made where they are wanted.
 ///
@@ -28,20 +31,22 @@ use crate::verdict::{CANDIDATES, ODD_ZERO};
 pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Comparison, Vec<Picture>)> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, record.axis(), record.len())?;
+    let (chain, remarks) = chain::of(record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
+    refuse_beyond_memory(record, &chain, settings)?;
+    preparation::check(&chain, settings)?;
     let planner = Planner::new();
     let channels: Vec<Channel<'_>> = record.channels().collect();
     let compared: Vec<(ChannelComparison, Option<Picture>)> = channels
         .par_iter()
-        .map(|channel| one(*channel, &chain, settings, &planner, pictures))
+        .enumerate()
+        .map(|(index, channel)| one(*channel, record.missing(index), &chain, settings, &planner, pictures))
         .collect::<Result<_>>()?;
     let (channels, pictures): (Vec<_>, Vec<_>) = compared.into_iter().unzip();
-    let requirement_met = settings.require.is_none_or(|required| {
-        channels.iter().all(|c: &ChannelComparison| {
-            c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required)
-        })
-    });
+    for channel in &channels {
+        intake::refuse_notes(settings, &channel.notes)?;
+    }
+    let unmet = requirement::unmet(settings, &channels);
     let report = Comparison {
         schema: SCHEMA,
         tool: Tool::THIS,
@@ -51,7 +56,8 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
         notes: record.findings().iter().cloned().chain(remarks).collect(),
         chain: chain.describe(record.axis()),
         channels,
-        requirement_met,
+        requirement_met: unmet.is_empty(),
+        unmet,
         caution: report::caution(&chain),
     };
     Ok((report, pictures.into_iter().flatten().collect()))
@@ -59,48 +65,48 @@ pub fn compare(input: Input, settings: &Settings, pictures: bool) -> Result<(Com
 
 fn one(
     channel: Channel<'_>,
+    missing: &[usize],
     chain: &Chain,
     settings: &Settings,
     planner: &Planner,
     picture: bool,
 ) -> Result<(ChannelComparison, Option<Picture>)> {
-    let prepared = prepare(channel, chain, planner)?;
+    compare::refuse_contradictions(&settings.stage, &settings.assertion, chain)?;
+    let prepared = prepare(channel, missing, chain, settings, planner)?;
     let channel = Channel { samples: &prepared.samples, ..channel };
     let chain = &prepared.chain.on_own_grid();
-    let judgement = compare::judge(channel, chain, settings.stage.seat, &settings.tolerance, planner)?;
+    let seat = settings.stage.seat;
+    let judgement = compare::judge(channel, chain, seat, &settings.tolerance, planner)?;
     let chosen = compare::choose(channel.samples, chain, &settings.stage, &settings.assertion, Some(&judgement))?;
-    let edge = work::edge_of(&chosen, Some(&judgement));
+    let candidates = rows(channel, chain, seat, &judgement, planner)?;
+    let excess = |row: usize| candidates[row].metrics.get("leakage_excess_db").and_then(Value::as_f64);
+    let veto = excess(PERIODIC).zip(excess(EVEN)).and_then(|(periodic, even)| Veto::of(periodic, even));
+    let estimates = judgement.estimates;
+    let judged = Judged::of(channel, chain, settings, chosen, Some(judgement), planner)?;
     let unit = channel.unit.turned(chain.turns(), channel.axis.unit()).0;
-    let verdict = work::verdict_report(channel, &unit, settings, Some(&judgement), edge);
     let comparison = ChannelComparison {
         name: channel.name.to_owned(),
+        takes: judged.chosen.name.clone(),
+        verdict: judged.verdict(channel, &unit),
+        not_judged: judged.unjudged,
+        assertions: judged.standings.clone(),
+        notes: judged.notes(channel, settings),
+        used: judged.edge.clone(),
         unit,
         unit_in: channel.unit.clone(),
-        takes: chosen.name.clone(),
-        verdict,
-        candidates: rows(channel, chain, &judgement, planner)?,
-        edge: Some(judgement.estimates),
-        jump: Some(Jump::of(&judgement.estimates)),
-        trusted: edge
-            .and_then(|edge| edge.trusted)
-            .map(|span| work::trusted_report(span.first, span.last, channel.axis)),
+        candidates,
+        edge: Some(estimates),
+        jump: Some(Jump::of(&estimates)),
+        veto,
+        trusted: judged.trusted(channel.axis),
     };
-    let scene = Scene {
-        takes: &comparison.takes,
-        unit: &comparison.unit,
-        trusted: comparison.trusted,
-        sentence: sentence_of(&comparison),
-    };
-    let picture = picture.then(|| draw(channel, chain, settings, &judgement, &scene, planner)).transpose()?;
-    Ok((comparison, picture.flatten()))
-}
-
-fn sentence_of(comparison: &ChannelComparison) -> &str {
-    comparison.verdict.as_ref().map_or("", |verdict| verdict.sentence.as_str())
+    let scene = Scene { takes: &comparison.takes, unit: &comparison.unit, trusted: comparison.trusted };
+    let picture = picture.then(|| draw(channel, chain, seat, &judged, &scene, planner)).transpose()?;
+    Ok((comparison, picture))
 }
 
 /// One row an extension; the explanations are measured in the extension's own basis.
-fn rows(channel: Channel<'_>, chain: &Chain, judgement: &Judgement, planner: &Planner) -> Result<Vec<Row>> {
+fn rows(channel: Channel<'_>, chain: &Chain, seat: Seat, judgement: &Judgement, planner: &Planner) -> Result<Vec<Row>> {
     let edges = judgement.verdict.as_ref().map(|v| v.edges.as_slice()).unwrap_or_default();
     let blank = || METRICS.iter().map(|metric| (metric.key.to_owned(), Value::Null)).collect::<Map<_, _>>();
     let row = |name: &'static str, reference: bool, metrics: Map<String, Value>| {
@@ -112,13 +118,13 @@ fn rows(channel: Channel<'_>, chain: &Chain, judgement: &Judgement, planner: &Pl
             relative_error: edge.map(|e| e.relative_error),
             bound: edge.map(|e| e.bound),
             adequacy: edge.map(|e| e.adequacy),
-            trusted: edge.and_then(|e| e.trusted).map(|span| work::trusted_report(span.first, span.last, channel.axis)),
+            trusted: edge.and_then(|e| e.trusted).map(|span| trusted_report(span, channel.axis)),
             metrics,
         }
     };
     let mut found = Vec::new();
     for (candidate, reference) in CANDIDATES.iter().map(|c| (c, false)).chain([(&ODD_ZERO, true)]) {
-        let metrics = metrics_of(channel, candidate.ends, candidate.baseline, chain, &judgement.estimates, planner)?;
+        let metrics = metrics_of(channel, candidate.ends.seated(seat), candidate.baseline, chain, planner)?;
         found.push(row(candidate.name, reference, metrics));
     }
     found.insert(CANDIDATES.len(), row("forecast", false, blank()));
@@ -132,10 +138,12 @@ fn metrics_of(
     ends: Ends,
     kind: BaselineKind,
     chain: &Chain,
-    estimates: &EndEstimates,
     planner: &Planner,
 ) -> Result<Map<String, Value>> {
-    let baseline = Baseline::fit(kind, channel.samples, ends, scale_of(chain, channel.samples.len()))?;
-    let subject = Subject::of(channel.samples, ends, &baseline, estimates, planner)?;
+    let scale = scale_of(chain, channel.samples.len());
+    let baseline = Baseline::fit(kind, channel.samples, ends, scale)?;
+    // At the mirrors of these ends: on the whole-sample seat each parity has its own.
+    let estimates = EndEstimates::of(channel.samples, ends, scale);
+    let subject = Subject::of(channel.samples, ends, &baseline, &estimates, planner)?;
     Ok(METRICS.iter().map(|metric| (metric.key.to_owned(), Value::from((metric.measure)(&subject)))).collect())
 }

@@ -6,14 +6,17 @@ use std::path::Path;
 use crate::audit::Audit;
 use crate::basis::Planner;
 use crate::error::{Error, Finding, Result};
+use crate::job::chain;
 use crate::job::edges;
 use crate::job::intake;
+use crate::job::judgement::{self, Judged, Page};
 use crate::job::origin::{SourceRows, origin_of};
 use crate::job::preparation;
+use crate::job::requirement;
 use crate::job::running::{self, Running};
+use crate::job::split;
 use crate::job::target::{Opened, Target};
 use crate::job::work::{self, Worked};
-use crate::operator::Chain;
 use crate::place::Place;
 use crate::read::Input;
 use crate::record::{Axis, Channel, ColumnRole, Format, Layout, RawRecord, Source};
@@ -31,16 +34,18 @@ pub fn plan(input: Input, settings: &Settings) -> Result<Plan> {
     let intake = intake::take(input, settings)?;
     let record = &intake.record;
     let axis = record.axis();
-    let (chain, remarks) = Chain::resolve(&settings.requests, &settings.shape, axis, record.len())?;
+    let (chain, remarks) = chain::of(record, settings)?;
+    preparation::check(&chain, settings)?;
     let planner = Planner::new();
-    let channels = record.channels().map(|channel| {
-        let prepared = preparation::prepare(channel, &chain, &planner)?;
+    let channels = record.channels().enumerate().map(|(index, channel)| {
+        let prepared = preparation::prepare(channel, record.missing(index), &chain, settings, &planner)?;
         let channel = Channel { samples: &prepared.samples, ..channel };
-        let (chosen, judgement) = work::choose(channel, &prepared.chain, settings, &planner, work::Page::Unwanted)?;
-        let (extension, baseline) = work::stage_reports(&chosen, &prepared.chain, settings);
+        let chain = &*prepared.chain;
+        let (chosen, judgement) = judgement::choose(channel, chain, settings, &planner, Page::Unwanted)?;
+        let (extension, baseline) = work::stage_reports(&chosen, chain, settings);
         let unit = channel.unit.turned(chain.turns(), axis.unit()).0;
-        let edge = work::edge_of(&chosen, judgement.as_ref());
-        let verdict = work::verdict_report(channel, &unit, settings, judgement.as_ref(), edge);
+        let judged = Judged::of(channel, chain, settings, chosen, judgement, &planner)?;
+        let verdict = judged.verdict(channel, &unit);
         Ok(PlannedChannel {
             name: channel.name.to_owned(),
             unit,
@@ -143,15 +148,19 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
     };
     let format = format_of(settings, named.as_deref(), &intake.outline.source)?;
     refuse_unread(settings, format)?;
-    let (chain, remarks) =
-        Chain::resolve(&settings.requests, &settings.shape, intake.record.axis(), intake.record.len())?;
+    let (chain, remarks) = chain::of(&intake.record, settings)?;
     intake::refuse_notes(settings, &remarks)?;
+    preparation::check(&chain, settings)?;
     let mut notes: Vec<_> = intake.record.findings().iter().cloned().chain(remarks).collect();
     let input_report = InputReport::new(&intake.outline.source, intake.record.axis());
     let chain_report = chain.describe(intake.record.axis());
     refuse_columns(settings, format, intake.record.axis())?;
-    let wanted = if outputs.page.is_some() { work::Page::Wanted } else { work::Page::Unwanted };
-    let Worked { record, channels, passages } = work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
+    let wanted = if outputs.page.is_some() { Page::Wanted } else { Page::Unwanted };
+    let Worked { record, channels, columns, passages } =
+        work::run(intake.record, &chain, settings, &bench.planner, wanted)?;
+    for channel in &channels {
+        intake::refuse_notes(settings, &channel.notes)?;
+    }
 
     let rows = match chain.treatments().resampling {
         None => intake.rows,
@@ -160,12 +169,19 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
             RowMap::Regridded { count: grid.count }
         }
     };
-    let (record, rows) = edges::trimmed(record, rows, &channels, settings)?;
+    let kept = edges::kept(&channels, record.len(), settings)?;
+    let beside = edges::beside(&columns, &kept);
+    let (record, rows) = edges::trimmed(record, rows, &kept)?;
     let rows = SourceRows::of(&rows);
     let origin = origin_of(&intake.outline, &record, format, rows.as_ref())?;
     let marks = edges::marks(&channels, record.len(), settings);
     let running = running::columns(&record, settings);
-    let extra: Vec<_> = marks.iter().map(edges::Mark::column).chain(running.iter().map(Running::column)).collect();
+    let extra: Vec<_> = beside
+        .iter()
+        .map(edges::Beside::column)
+        .chain(marks.iter().map(edges::Mark::column))
+        .chain(running.iter().map(Running::column))
+        .collect();
     let shown = edges::shown(&channels, settings);
     let content = Content {
         record: &record,
@@ -175,10 +191,10 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         digits: settings.decimals.map_or(Digits::Shortest, Digits::Fixed),
         encoding,
     };
-    notes.extend(write::fill(write::writer(format), &content, &mut outputs.record)?);
-    let requirement_met = settings.require.is_none_or(|required| {
-        channels.iter().all(|c| c.verdict.as_ref().and_then(|v| v.adequacy).is_some_and(|found| found <= required))
-    });
+    let remarks = write::fill(write::writer(format), &content, &mut outputs.record)?;
+    intake::refuse_notes(settings, &remarks)?;
+    notes.extend(remarks);
+    let unmet = requirement::unmet(settings, &channels);
     let written = OutputReport { path: outputs.record.label().to_owned(), sha256: outputs.record.fingerprint() };
     let report = Report {
         schema: SCHEMA,
@@ -189,7 +205,8 @@ pub fn prepare<'a>(input: Input, target: Target<'a>, settings: &Settings, bench:
         notes,
         chain: chain_report,
         channels,
-        requirement_met,
+        requirement_met: unmet.is_empty(),
+        unmet,
         outputs: vec![written],
         caution: report::caution(&chain),
     };
@@ -206,13 +223,16 @@ fn untouched(outline: &RawRecord) -> Option<Finding> {
 
 /// Running RMS needs a time axis, and a form with room for columns.
 fn refuse_columns(settings: &Settings, format: Format, axis: &Axis) -> Result<()> {
-    if settings.running_rms.is_none() {
-        return Ok(());
+    let wanted = [
+        ("--running-rms", settings.running_rms.is_some()),
+        ("--split", split::is_wanted(settings)),
+        ("--beside", !settings.beside.is_empty()),
+    ];
+    if let Some((option, _)) = wanted.iter().find(|(_, wanted)| *wanted && format == Format::Wav) {
+        return Err(Error::usage(format!("{option}: a WAV file has no room for further columns"))
+            .remedy("write CSV with --format csv"));
     }
-    if format == Format::Wav {
-        return Err(Error::usage("--running-rms: a WAV file has no room for further columns").remedy("write CSV with --format csv"));
-    }
-    if !axis.is_time() {
+    if settings.running_rms.is_some() && !axis.is_time() {
         return Err(Error::usage(format!("--running-rms: the record's axis is a length in {}", axis.unit()))
             .remedy("leave it out"));
     }

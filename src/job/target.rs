@@ -36,7 +36,11 @@ pub(super) struct Opened<'a> {
 impl<'a> Target<'a> {
     /// The record at `path`, its sidecar at `path` with `.json` appended, and the JSON once more at `json`.
     pub fn file(path: &Path, json: Option<&Path>, overwrite: Overwrite) -> Target<'a> {
-        Target { sidecar: Some(beside(path, ".json")), json: json.map(Path::to_owned), ..Target::alone(path, overwrite) }
+        Target {
+            sidecar: Some(beside(path, ".json")),
+            json: json.map(Path::to_owned),
+            ..Target::alone(path, overwrite)
+        }
     }
 
     /// The record at `path` and nothing beside it: its report goes elsewhere.

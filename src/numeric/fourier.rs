@@ -78,11 +78,12 @@ pub fn two_sided_response(grid: usize, response: impl Fn(f64) -> Complex<f64>) -
     })
 }
 
-/// Mean square of the part of one period that lies above `frequency`, in cycles per sample.
-pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
+/// Mean square that each line of one period stands for, from the constant to half the period; their sum is the mean square
+/// of the period (Parseval).
+pub fn energies(period: &[f64]) -> Vec<f64> {
     let len = period.len();
     if len == 0 {
-        return 0.0;
+        return Vec::new();
     }
     with_planner(|planner| {
         let forward = planner.plan_fft_forward(len);
@@ -90,9 +91,16 @@ pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
         let _ = forward.process(&mut period.to_vec(), &mut spectrum);
         // Every line but the constant and the Nyquist line stands for a pair.
         let share = |k: usize| if k == 0 || 2 * k == len { 1.0 } else { 2.0 };
-        let lines = spectrum.iter().enumerate().filter(|(k, _)| *k as f64 > frequency * len as f64);
-        lines.map(|(k, c)| share(k) * c.norm_sqr()).sum::<f64>() / (len as f64 * len as f64)
+        let square = len as f64 * len as f64;
+        spectrum.iter().enumerate().map(|(k, c)| share(k) * c.norm_sqr() / square).collect()
     })
+}
+
+/// Mean square of the part of one period that lies above `frequency`, in cycles per sample.
+pub fn energy_above(period: &[f64], frequency: f64) -> f64 {
+    let lines = energies(period);
+    let above = |k: usize| k as f64 > frequency * period.len() as f64;
+    lines.iter().enumerate().filter(|(k, _)| above(*k)).map(|(_, energy)| energy).sum()
 }
 
 /// Constant and Nyquist are real in a real sequence; an odd number of quarter turns removes them.

@@ -8,10 +8,14 @@ use super::corner::Corner;
 use super::edge::{BandStop, Edge, HighPass, LowPass};
 use super::gain::Gain;
 use super::range::Range;
+use super::shape::Shape;
 use super::step::{CornerPoint, Effect, Frame, Part, Setting, Stage};
 
 #[derive(Debug)]
 struct Low(Corner);
+
+#[derive(Debug)]
+struct Split(Corner);
 
 #[derive(Debug)]
 struct High(Corner);
@@ -25,6 +29,11 @@ struct Stop(Range);
 /// Reads the argument of `--lowpass`.
 pub(super) fn lowpass(text: &str) -> Result<Box<dyn Setting>> {
     Ok(Box::new(Low(Corner::parse(text)?)))
+}
+
+/// Reads the argument of `--split`.
+pub(super) fn split(text: &str) -> Result<Box<dyn Setting>> {
+    Ok(Box::new(Split(Corner::parse(text)?)))
 }
 
 /// Reads the argument of `--highpass`.
@@ -46,6 +55,15 @@ impl Setting for Low {
     fn resolve(&self, frame: &Frame<'_>) -> Result<Effect> {
         let edge = edge(frame, &self.0)?;
         let part = low_part("lowpass", self.0.text(), &self.0, edge);
+        Ok(effect(frame, vec![part], &[&self.0]))
+    }
+}
+
+impl Setting for Split {
+    /// The Gaussian low-pass of ISO 16610-21, whatever the shape of the other filters: what is longer than the corner.
+    fn resolve(&self, frame: &Frame<'_>) -> Result<Effect> {
+        let edge = Shape::Gaussian.edge(&frame.option, &self.0, frame.axis)?;
+        let part = low_part("split", self.0.text(), &self.0, edge);
         Ok(effect(frame, vec![part], &[&self.0]))
     }
 }

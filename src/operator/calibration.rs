@@ -54,8 +54,9 @@ impl Calibration {
             "dB" => |decibels| decibels * std::f64::consts::LN_10 / 20.0,
             "%" => |percent| (percent / 100.0).ln(),
             other => {
-                return Err(unit_fault(gain.0, other, "a ratio, dB or %")
-                    .remedy("divide by the sensitivity at the reference frequency; sensitivities belong to --calibrate"));
+                return Err(unit_fault(gain.0, other, "a ratio, dB or %").remedy(
+                    "divide by the sensitivity at the reference frequency; sensitivities belong to --calibrate",
+                ));
             }
         };
         let phase = rest.first();

@@ -7,6 +7,7 @@ use crate::error::{Error, Finding, Result};
 use crate::numeric::polynomial::Polynomial;
 use crate::record::Axis;
 
+use super::conditions::{Conditions, Offset};
 use super::corner::figure;
 use super::gain::Series;
 use super::reach::{Reach, Reaches, Scale};
@@ -27,6 +28,8 @@ pub struct Chain {
     pub(super) passes: Vec<Pass>,
     pub(super) turns: i32,
     pub(super) reaches: Reaches,
+    pub(super) conditions: Conditions,
+    pub(super) offset: Option<Offset>,
     pub(super) treatments: Treatments,
 }
 
@@ -94,7 +97,7 @@ impl Chain {
             let corners = |part: &Part| part.corners.iter().map(|c| c.cycles.to_bits()).collect::<Vec<_>>();
             (a.stage, row(a), corners(a), &a.value).cmp(&(b.stage, row(b), corners(b), &b.value))
         });
-        let reaches = reaches(&parts, turns);
+        let all = parts.clone();
         let robust = match treatments.smoothing {
             Some(Smoothing { strength: Strength::Given(strength), robust: true }) => Some(strength),
             _ => None,
@@ -104,7 +107,8 @@ impl Chain {
             let reaches = self::reaches(&parts, turns);
             passes.push(Pass { parts, turns, ends, reaches, robust, resampling: None });
         };
-        let mut take = |wanted: &dyn Fn(&Part) -> bool| parts.extract_if(.., |part| wanted(part)).collect::<Vec<Part>>();
+        let mut take =
+            |wanted: &dyn Fn(&Part) -> bool| parts.extract_if(.., |part| wanted(part)).collect::<Vec<Part>>();
         let shifts = take(&|part| turns != 0 && !part.gain.is_real());
         let high = take(&|part| turns < 0 && part.stage == Stage::High);
         let smooth = take(&|part| robust.is_some() && part.stage == Stage::Smooth);
@@ -126,7 +130,30 @@ impl Chain {
         if let Some(last) = passes.last_mut() {
             last.resampling = treatments.resampling;
         }
-        Chain { shape, passes, turns, reaches, treatments }
+        let reaches = match passes.as_slice() {
+            [only] => only.reaches,
+            _ => reaches(&all, turns),
+        };
+        Chain { shape, passes, turns, reaches, treatments, conditions: Conditions::StartRest, offset: None }
+    }
+
+    /// The same chain with other end conditions of its integral, and the sensor's offset where they take one. As resolved,
+    /// integrals start at rest.
+    #[must_use]
+    pub fn with_conditions(mut self, conditions: Conditions, offset: Option<Offset>) -> Chain {
+        self.conditions = conditions;
+        self.offset = offset;
+        self
+    }
+
+    /// The end conditions of its integral; of no account without one.
+    pub fn conditions(&self) -> &Conditions {
+        &self.conditions
+    }
+
+    /// The sensor's offset, where one is given.
+    pub fn offset(&self) -> Option<&Offset> {
+        self.offset.as_ref()
     }
 
     /// The same chain with the strength of its smoothing found: unchanged without smoothing.
@@ -134,33 +161,44 @@ impl Chain {
     pub fn with_strength(&self, strength: f64) -> Chain {
         let Some(smoothing) = self.treatments.smoothing else { return self.clone() };
         let strength = Strength::Given(strength);
-        self.rebuilt(Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments })
+        self.rebuilt(
+            self.parts().cloned().collect(),
+            Treatments { smoothing: Some(Smoothing { strength, ..smoothing }), ..self.treatments },
+        )
     }
 
     /// The chain as its edges are judged: outliers keep their weight, and the rate stays.
     #[must_use]
     pub fn on_own_grid(&self) -> Chain {
         let smoothing = self.treatments.smoothing.map(|smoothing| Smoothing { robust: false, ..smoothing });
-        self.rebuilt(Treatments { smoothing, resampling: None, ..self.treatments })
+        let treatments = Treatments { smoothing, resampling: None, ..self.treatments };
+        // Reaches are costly: nothing is measured twice.
+        if treatments == self.treatments {
+            self.clone()
+        } else {
+            self.rebuilt(self.parts().cloned().collect(), treatments)
+        }
     }
 
     /// The chain up to its smoothing.
     #[must_use]
     pub fn before_smoothing(&self) -> Chain {
-        self.rebuilt(Treatments { smoothing: None, resampling: None, ..self.treatments })
+        // Without it neither the low-pass that goes with a lower rate is wanted.
+        let parts = self.parts().filter(|part| part.stage != Stage::Resample).cloned().collect();
+        self.rebuilt(parts, Treatments { smoothing: None, resampling: None, ..self.treatments })
     }
 
-    fn rebuilt(&self, treatments: Treatments) -> Chain {
-        let smooths = treatments.smoothing.is_some();
-        let mut parts: Vec<Part> =
-            self.passes.iter().flat_map(|pass| &pass.parts).filter(|part| part.stage != Stage::Smooth).cloned().collect();
-        if !smooths {
-            parts.retain(|part| part.stage != Stage::Resample);
-        }
+    fn parts(&self) -> impl Iterator<Item = &Part> {
+        self.passes.iter().flat_map(|pass| &pass.parts)
+    }
+
+    fn rebuilt(&self, mut parts: Vec<Part>, treatments: Treatments) -> Chain {
+        parts.retain(|part| part.stage != Stage::Smooth);
         if let Some(Smoothing { strength: Strength::Given(strength), .. }) = treatments.smoothing {
             parts.push(smoothing::part(strength));
         }
         Chain::of(parts, self.turns, self.shape.clone(), treatments)
+            .with_conditions(self.conditions.clone(), self.offset.clone())
     }
 
     /// What is done to the samples themselves.
@@ -190,6 +228,16 @@ impl Chain {
     /// The passes in the order of the run, at least one.
     pub fn passes(&self) -> &[Pass] {
         &self.passes
+    }
+
+    /// The pass that forms the integral, if there is one.
+    pub fn integral(&self) -> Option<&Pass> {
+        self.passes.iter().find(|pass| pass.turns < 0)
+    }
+
+    /// The high-pass after an integral, if there is one.
+    pub fn high_pass(&self) -> Option<&Pass> {
+        self.passes.iter().find(|pass| pass.ends == PassEnds::EvenWithoutBaseline)
     }
 
     /// Derivatives (positive) or integrals (negative) of the whole chain.
@@ -237,6 +285,17 @@ impl Pass {
     /// where the pass shifts phases.
     pub fn gain(&self, f: f64) -> f64 {
         product(&self.parts, f)
+    }
+
+    /// The same gains with other turns.
+    #[must_use]
+    pub fn with_turns(&self, turns: i32) -> Pass {
+        Pass { turns, ..self.clone() }
+    }
+
+    /// The lowest corner in cycles per sample; `None` without a corner.
+    pub fn lowest_corner(&self) -> Option<f64> {
+        self.parts.iter().flat_map(|part| &part.corners).map(|corner| corner.cycles).min_by(f64::total_cmp)
     }
 
     /// Complex response at `f` cycles per sample, without the power of frequency of integrals and derivatives.

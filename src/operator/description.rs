@@ -6,7 +6,7 @@ use crate::record::Axis;
 
 use super::chain::{Chain, Pass, PassEnds, reaches};
 use super::reach::Reaches;
-use super::resampling::Resampling;
+use super::resampling::ResamplingDescription;
 use super::step::Part;
 
 /// A chain as plain data.
@@ -16,12 +16,16 @@ pub struct ChainDescription {
     pub shape: String,
     /// Derivatives (positive) or integrals (negative).
     pub turns: i32,
+    /// End conditions of the integral, as written; null without one.
+    pub conditions: Option<String>,
+    /// The sensor's offset taken off before the integral, as written; null where none is given.
+    pub offset: Option<String>,
     /// Spikes are replaced first.
     pub despike: bool,
     /// Smoothing: `auto` where every channel finds its own strength, else the strength; null without smoothing.
     pub smooth: Option<String>,
     /// The new grid; null where the rate stays.
-    pub resampling: Option<Resampling>,
+    pub resampling: Option<ResamplingDescription>,
     /// The passes in their order.
     pub passes: Vec<PassDescription>,
     /// Reaches of all passes together, in samples.
@@ -60,6 +64,8 @@ pub struct OperatorDescription {
     pub option: &'static str,
     /// The option's argument as written.
     pub value: String,
+    /// SHA-256 of the table that it came from; null without one.
+    pub sha256: Option<String>,
     /// Its corners, lowest frequency first; of a notch the centre.
     pub corners: Vec<CornerDescription>,
     /// Reaches of this gain alone, in samples.
@@ -104,9 +110,11 @@ impl Chain {
         ChainDescription {
             shape: self.shape.to_string(),
             turns: self.turns,
+            conditions: (self.turns < 0).then(|| self.conditions.to_string()),
+            offset: self.offset.as_ref().filter(|_| self.turns < 0).map(ToString::to_string),
             despike: self.treatments.despike,
             smooth: self.treatments.smoothing.map(|smoothing| smoothing.to_string()),
-            resampling: self.treatments.resampling,
+            resampling: self.treatments.resampling.map(|resampling| resampling.describe(axis)),
             passes: self.passes.iter().map(|pass| describe_pass(pass, axis)).collect(),
             reaches: self.reaches,
             reach: self.reaches.reach.samples().map(|samples| samples * axis.step()),
@@ -139,17 +147,25 @@ fn describe_pass(pass: &Pass, axis: &Axis) -> PassDescription {
         turns: pass.turns,
         robust: pass.robust.is_some(),
         resamples: pass.resampling.is_some(),
-        operators: pass.parts.iter().map(|part| describe_part(part, axis)).collect(),
+        operators: pass.parts.iter().map(|part| describe_part(part, alone(pass, part), axis)).collect(),
         reaches: pass.reaches,
     }
 }
 
-fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
-    let alone = std::slice::from_ref(part);
+/// The reaches of one part without the others; those of the pass where it is all there is.
+fn alone(pass: &Pass, part: &Part) -> Reaches {
+    if pass.parts.len() == 1 && pass.turns == 0 {
+        return pass.reaches;
+    }
+    reaches(std::slice::from_ref(part), 0)
+}
+
+fn describe_part(part: &Part, reaches: Reaches, axis: &Axis) -> OperatorDescription {
     OperatorDescription {
         kind: part.kind,
         option: part.key,
         value: part.value.clone(),
+        sha256: part.gain.fingerprint().map(str::to_owned),
         corners: part
             .corners
             .iter()
@@ -161,6 +177,6 @@ fn describe_part(part: &Part, axis: &Axis) -> OperatorDescription {
                 gain: part.gain.at(corner.cycles),
             })
             .collect(),
-        reaches: reaches(alone, 0),
+        reaches,
     }
 }

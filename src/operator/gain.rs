@@ -23,6 +23,11 @@ pub trait Gain: std::fmt::Debug + Send + Sync {
     /// Taylor series of the gain at zero frequency.
     fn series(&self) -> Series;
 
+    /// SHA-256 of the file that the gain was read from, where it was.
+    fn fingerprint(&self) -> Option<&str> {
+        None
+    }
+
     /// About how far the impulse response extends to each side, in samples: at least the 99.9 % reach, at most about
     /// twice that; infinite where the gain jumps. It sizes the grids on which reaches are measured.
     fn extent_samples(&self) -> f64;
@@ -122,7 +127,9 @@ mod tests {
         let b = Polynomial::from_powers(20.0, &[3.0, -2.0, 0.5, 0.25, -0.02, 0.001]);
         let carried = Series::of_quotient(&mean, &[1.0]).carry(&b, 1.0);
         // A quotient with the denominator 1 + 2p undoes a product with it.
-        let product: Vec<f64> = (0..7).map(|k| mean.get(k).unwrap_or(&0.0) + 2.0 * k.checked_sub(1).and_then(|j| mean.get(j)).unwrap_or(&0.0)).collect();
+        let product: Vec<f64> = (0..7)
+            .map(|k| mean.get(k).unwrap_or(&0.0) + 2.0 * k.checked_sub(1).and_then(|j| mean.get(j)).unwrap_or(&0.0))
+            .collect();
         let again = Series::of_quotient(&product, &[1.0, 2.0]).carry(&b, 1.0);
         for n in 1..=20 {
             let n = f64::from(n);

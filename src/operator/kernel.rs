@@ -1,7 +1,10 @@
 //! The impulse response that belongs to a gain: what one sample spreads over its neighbours.
 
-use realfft::RealFftPlanner;
+use std::cell::RefCell;
+use std::sync::Arc;
+
 use realfft::num_complex::Complex;
+use realfft::{ComplexToReal, RealFftPlanner};
 
 use crate::ends::Parity;
 
@@ -52,7 +55,7 @@ pub(super) fn transformed(values: &[f64], parity: Parity) -> Vec<f64> {
         spectrum[0] = Complex::default();
         spectrum[half] = Complex::default();
     }
-    let plan = RealFftPlanner::<f64>::new().plan_fft_inverse(grid);
+    let plan = plan(grid);
     let mut response = plan.make_output_vec();
     let outcome = plan.process(&mut spectrum, &mut response);
     debug_assert!(outcome.is_ok(), "lengths follow from the plan");
@@ -60,6 +63,21 @@ pub(super) fn transformed(values: &[f64], parity: Parity) -> Vec<f64> {
     let scale = (grid as f64).recip();
     response.iter_mut().for_each(|h| *h *= scale);
     response
+}
+
+thread_local! {
+    /// Plans of short grids: making one costs as much as using it several times, and many small logs ask for the same.
+    static PLANS: RefCell<RealFftPlanner<f64>> = RefCell::new(RealFftPlanner::new());
+}
+
+/// Grids up to this size are kept.
+const KEPT: usize = 1 << 14;
+
+fn plan(grid: usize) -> Arc<dyn ComplexToReal<f64>> {
+    match grid {
+        0..=KEPT => PLANS.with_borrow_mut(|plans| plans.plan_fft_inverse(grid)),
+        _ => RealFftPlanner::new().plan_fft_inverse(grid),
+    }
 }
 
 #[cfg(test)]

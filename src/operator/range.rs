@@ -213,9 +213,18 @@ mod tests {
         let notch = CentreWidth::parse("50Hz:2Hz").unwrap();
         assert_eq!((notch.centre().frequency(), notch.width().base()), (50.0, 2.0));
         for (text, message) in [
-            ("50Hz", "\"50Hz\": no centre and width; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all"),
-            ("50Hz:2", "\"2\": a corner without a unit; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all"),
-            ("50Hz:2mm", "\"50Hz:2mm\": mixes time and length; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all"),
+            (
+                "50Hz",
+                "\"50Hz\": no centre and width; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
+            ),
+            (
+                "50Hz:2",
+                "\"2\": a corner without a unit; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
+            ),
+            (
+                "50Hz:2mm",
+                "\"50Hz:2mm\": mixes time and length; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",
+            ),
             (
                 "50Hz:2ms",
                 "\"50Hz:2ms\": the width is no difference of frequencies; write a notch as centre and full width, as in 50Hz:2Hz, 50Hz:2Hz:5 or 50Hz:2Hz:all",

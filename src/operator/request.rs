@@ -34,7 +34,7 @@ impl Request {
         };
         let setting = (step.read)(value).map_err(|e| {
             let remedy = e.advice().map_or_else(|| format!("write it as in --{key} {}", step.example), str::to_owned);
-            Error::usage(format!("{}: {}", step.option(), e.what())).remedy(remedy)
+            Error::new(e.kind(), format!("{}: {}", step.option(), e.what())).at(e.place().clone()).remedy(remedy)
         })?;
         Ok(Request { step, value: value.trim().to_owned(), setting: Arc::from(setting) })
     }
@@ -141,7 +141,7 @@ mod tests {
             (
                 "allpass",
                 "1",
-                "no operator \"allpass\"; choose one of despike, response, weighting, lowpass, highpass, bandpass, bandstop, notch, integrate, differentiate, smooth, resample, decimate",
+                "no operator \"allpass\"; choose one of despike, response, weighting, lowpass, highpass, bandpass, bandstop, notch, split, integrate, differentiate, smooth, resample, decimate",
             ),
         ] {
             assert_eq!(Request::parse(key, value).unwrap_err().to_string(), message);

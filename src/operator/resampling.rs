@@ -4,7 +4,7 @@ use std::sync::Arc;
 
 use serde::Serialize;
 
-use crate::error::{Error, Finding, Result};
+use crate::error::{Error, Result};
 use crate::numeric::rational::Rational;
 use crate::record::{Axis, StatedRate};
 
@@ -51,7 +51,8 @@ struct Decimate {
 pub(super) fn resample(text: &str) -> Result<Box<dyn Setting>> {
     let (rate, start) = parted(text);
     let rate = StatedRate::parse(rate).map_err(|_| {
-        Error::usage(format!("{}: no sampling rate", quoted(rate))).remedy("write a rate as 100Hz or 2/mm; add :start to keep the first stamp")
+        Error::usage(format!("{}: no sampling rate", quoted(rate)))
+            .remedy("write a rate as 100Hz or 2/mm; add :start to keep the first stamp")
     })?;
     Ok(Box::new(Resample { rate, start }))
 }
@@ -119,7 +120,9 @@ fn effect(frame: &Frame<'_>, ratio: Rational, start: Start) -> Result<Effect> {
     };
     if fits == 0 || fits as f64 > LONGEST {
         let text = format!("{}: {} samples would become {fits}", frame.option, frame.len);
-        return Err(Error::unsupported(text).remedy(format!("choose a rate nearer that of the record for {}", frame.option)));
+        return Err(
+            Error::unsupported(text).remedy(format!("choose a rate nearer that of the record for {}", frame.option))
+        );
     }
     let resampling = Resampling { ratio, count: fits as usize, start };
     let mut parts = Vec::new();
@@ -136,32 +139,36 @@ fn effect(frame: &Frame<'_>, ratio: Rational, start: Start) -> Result<Effect> {
             gain: Arc::new(LowPass(edge)),
         });
     }
-    let shift = resampling.shift_steps() * frame.axis.step();
-    let (unit, label) = (frame.axis.unit(), frame.axis.frequency_label());
-    let mut text = format!(
-        "resampled from {} to {} {label}: {} samples become {fits}; the first stands at {} {unit}",
-        figure(frame.axis.rate_base()),
-        figure(frame.axis.rate_base() / ratio.value()),
-        frame.len,
-        figure(frame.axis.start() + shift),
-    );
-    match start {
-        Start::Centre => text += &format!(", {} {unit} after the first of the record: half the difference of the steps", figure(shift)),
-        Start::Kept => text += ", as in the record",
-    }
-    Ok(Effect {
-        parts,
-        treatments: Treatments { resampling: Some(resampling), ..Treatments::default() },
-        findings: vec![Finding::new("resampled", text)],
-        ..Effect::default()
-    })
+    let treatments = Treatments { resampling: Some(resampling), ..Treatments::default() };
+    Ok(Effect { parts, treatments, ..Effect::default() })
+}
+
+/// A new grid as reports tell it.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct ResamplingDescription {
+    /// New step over old step, exactly.
+    pub ratio: Rational,
+    /// Rate of the record, in Hz or samples a metre.
+    pub rate_in: f64,
+    /// Rate of the output.
+    pub rate: f64,
+    /// Samples of the output.
+    pub samples: usize,
+    /// Where its first sample stands.
+    pub start: Start,
+    /// How far that is after the first sample of the record, in the unit of the axis.
+    pub shift: f64,
+    /// Its stamp, in the unit of the axis.
+    pub first_stamp: f64,
 }
 
 impl Resampling {
     /// How far the first sample stands after the first of the record, in old steps; negative before it.
     pub fn shift_steps(&self) -> f64 {
         match self.start {
-            Start::Centre => (self.ratio.numerator as f64 - self.ratio.denominator as f64) / (2.0 * self.ratio.denominator as f64),
+            Start::Centre => {
+                (self.ratio.numerator as f64 - self.ratio.denominator as f64) / (2.0 * self.ratio.denominator as f64)
+            }
             Start::Kept => 0.0,
         }
     }
@@ -169,6 +176,20 @@ impl Resampling {
     /// Where sample `m` of the new grid stands, in samples of the old one.
     pub fn place(&self, m: usize) -> f64 {
         self.shift_steps() + m as f64 * self.ratio.value()
+    }
+
+    /// As reports tell it.
+    pub(super) fn describe(&self, axis: &Axis) -> ResamplingDescription {
+        let new = self.axis(axis);
+        ResamplingDescription {
+            ratio: self.ratio,
+            rate_in: axis.rate_base(),
+            rate: new.rate_base(),
+            samples: self.count,
+            start: self.start,
+            shift: self.shift_steps() * axis.step(),
+            first_stamp: new.start(),
+        }
     }
 
     /// The axis of the new grid.

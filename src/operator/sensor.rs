@@ -17,6 +17,7 @@ use super::step::{CornerPoint, Effect, Frame, Part, Setting, Stage};
 #[derive(Debug)]
 struct Correct {
     path: String,
+    sha256: String,
     table: Arc<Calibration>,
 }
 
@@ -31,7 +32,7 @@ pub(super) fn response(text: &str) -> Result<Box<dyn Setting>> {
     let raw = read::read(Input::Path(PathBuf::from(path)), &options).map_err(|error| error.at(place()))?;
     let columns: Vec<_> = raw.channels.iter().map(|c| (c.name.as_str(), c.unit.label(), c.values.as_slice())).collect();
     let table = Calibration::from_columns(&columns).map_err(|error| error.at(place()))?;
-    Ok(Box::new(Correct { path: path.to_owned(), table: Arc::new(table) }))
+    Ok(Box::new(Correct { path: path.to_owned(), sha256: raw.source.sha256, table: Arc::new(table) }))
 }
 
 impl Setting for Correct {
@@ -53,7 +54,7 @@ impl Setting for Correct {
             ))
             .remedy("give a table of the record's own band"));
         }
-        let mut findings = self.remarks(nyquist_hz);
+        let findings = self.remarks(nyquist_hz);
         // Edges are judged by the fastest structure that four samples show.
         let top = high.min(0.25 * rate_hz);
         let points = [(low, "lowest of the table"), (top, "highest of the table")];
@@ -62,18 +63,13 @@ impl Setting for Correct {
             .filter(|&(hz, _)| hz < nyquist_hz && (hz < top || hz == top))
             .map(|(hz, text)| CornerPoint { text: text.to_owned(), cycles: hz / rate_hz })
             .collect();
-        findings.push(Finding::new(
-            "response_edges",
-            "sensor correction looks back in time: a mirrored record runs backwards, and within the reach of an end only \
-             --extension forecast or a closed record is corrected rightly; --edges mark marks what is trusted",
-        ));
         let part = Part {
             kind: "response",
             key: "response",
             value: self.path.clone(),
             stage: Stage::Response,
             corners,
-            gain: Arc::new(Inverse { table: table.clone(), rate_hz }),
+            gain: Arc::new(Inverse { table: table.clone(), sha256: self.sha256.clone(), rate_hz }),
         };
         Ok(Effect { parts: vec![part], findings, ..Effect::default() })
     }
@@ -82,11 +78,12 @@ impl Setting for Correct {
 impl Correct {
     fn remarks(&self, nyquist_hz: f64) -> Vec<Finding> {
         let (table, path) = (&self.table, &self.path);
-        let [low, high] = table.span_hz();
+        let [_, high] = table.span_hz();
         let mut findings = Vec::new();
         let mut tell = |code, text: String| findings.push(Finding::new(code, text).at(Place::file(path)));
         if !table.has_phase() {
-            let text = "the table has no phase: magnitudes are corrected and delays are not, which changes the wave form";
+            let text =
+                "the table has no phase: magnitudes are corrected and delays are not, which changes the wave form";
             tell("response_without_phase", text.to_owned());
         }
         if let Some(Coarse { from_hz, to_hz, decibels, degrees }) = table.coarsest() {
@@ -101,12 +98,9 @@ impl Correct {
             tell("response_coarse", text);
         }
         if let Some([from, to]) = table.limited_hz() {
-            let text = format!(
-                "the correction is limited to {} dB between {} and {} Hz",
-                figure(20.0 * BOOST.log10()),
-                figure(from),
-                figure(to)
-            );
+            let (from, to) = (figure(from), figure(to));
+            let span = if from == to { format!("at {to} Hz") } else { format!("between {from} and {to} Hz") };
+            let text = format!("the correction is limited to {} dB {span}", figure(20.0 * BOOST.log10()));
             tell("response_limited", text);
         }
         if high < nyquist_hz {
@@ -117,8 +111,6 @@ impl Correct {
             );
             tell("response_held", text);
         }
-        let text = format!("below {} Hz the first point's gain is held, and its phase goes to zero with the frequency", figure(low));
-        tell("response_low", text);
         findings
     }
 }
@@ -127,6 +119,7 @@ impl Correct {
 #[derive(Debug)]
 struct Inverse {
     table: Arc<Calibration>,
+    sha256: String,
     rate_hz: f64,
 }
 
@@ -153,6 +146,9 @@ impl Gain for Inverse {
             })
             .collect();
         Series::of_quotient(&terms, &[1.0])
+    }
+    fn fingerprint(&self) -> Option<&str> {
+        Some(&self.sha256)
     }
     fn extent_samples(&self) -> f64 {
         4.0 * self.rate_hz / self.table.span_hz()[0]

@@ -92,6 +92,17 @@ impl Shape {
         })
     }
 
+    /// Gain of its high-pass at `ratio` times the corner; a raised cosine, whose width is no share of the corner, counts as
+    /// a step.
+    pub fn high_pass(&self, ratio: f64) -> f64 {
+        let rolloff = match self {
+            Shape::Butterworth(order) => Rolloff::Butterworth { order: i32::from(*order) },
+            Shape::Gaussian => Rolloff::Gaussian,
+            Shape::Cosine(_) | Shape::Brickwall => Rolloff::Brickwall,
+        };
+        Edge { corner: 1.0, rolloff }.split(ratio).1
+    }
+
     /// The edge of this shape at a corner, in cycles per sample. `option` is the operator's, for errors.
     ///
     /// # Errors

@@ -47,7 +47,8 @@ pub(super) fn smooth(text: &str) -> Result<Box<dyn Setting>> {
     Ok(Box::new(Smooth { amount, robust }))
 }
 
-const EXAMPLE: &str = "write auto, a strength such as 100, or the corner of half gain such as 40Hz; add :robust against outliers";
+const EXAMPLE: &str =
+    "write auto, a strength such as 100, or the corner of half gain such as 40Hz; add :robust against outliers";
 
 /// A strength that flattens all that a record of 1e9 samples can hold: beyond it arithmetic only loses digits.
 const LARGEST: f64 = 1e36;

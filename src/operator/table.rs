@@ -62,6 +62,13 @@ pub static STEPS: &[Step] = &[
         read: notch::notch,
     },
     Step {
+        key: "split",
+        value: "CORNER",
+        example: "0.8mm",
+        help: "write what is longer than the corner (waviness) and what is left (roughness) as columns beside the record: Gaussian of ISO 16610-21",
+        read: band::split,
+    },
+    Step {
         key: "integrate",
         value: "1|2",
         example: "2",

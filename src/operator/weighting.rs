@@ -56,13 +56,7 @@ pub static WEIGHTINGS: &[Weighting] = &[
     weighting("Wc", "seat back, fore and aft", [0.4, 100.0], Some((8.0, 8.0, 0.63)), None),
     weighting("Wd", "horizontal whole-body vibration", [0.4, 100.0], Some((2.0, 2.0, 0.63)), None),
     weighting("We", "rotational whole-body vibration", [0.4, 100.0], Some((1.0, 1.0, 0.63)), None),
-    weighting(
-        "Wf",
-        "motion sickness",
-        [0.08, 0.63],
-        Some((f64::INFINITY, 0.25, 0.86)),
-        Some((0.0625, 0.8, 0.1, 0.8)),
-    ),
+    weighting("Wf", "motion sickness", [0.08, 0.63], Some((f64::INFINITY, 0.25, 0.86)), Some((0.0625, 0.8, 0.1, 0.8))),
     weighting(
         "Wh",
         "hand-arm vibration",
@@ -71,7 +65,13 @@ pub static WEIGHTINGS: &[Weighting] = &[
         Some((15.915_494_309_189_533, 15.915_494_309_189_533, 0.64)),
         None,
     ),
-    weighting("Wj", "vertical vibration of the head of a lying person", [0.4, 100.0], None, Some((3.75, 0.91, 5.32, 0.91))),
+    weighting(
+        "Wj",
+        "vertical vibration of the head of a lying person",
+        [0.4, 100.0],
+        None,
+        Some((3.75, 0.91, 5.32, 0.91)),
+    ),
     weighting(
         "Wk",
         "vertical whole-body vibration",
@@ -106,8 +106,13 @@ impl Setting for Weigh {
     fn resolve(&self, frame: &Frame<'_>) -> Result<Effect> {
         let (row, axis) = (self.0, frame.axis);
         if !axis.is_time() {
-            return Err(Error::usage(format!("{} {}: the record's axis is a length in {}", frame.option, row.name, axis.unit()))
-                .remedy("weight records in time"));
+            return Err(Error::usage(format!(
+                "{} {}: the record's axis is a length in {}",
+                frame.option,
+                row.name,
+                axis.unit()
+            ))
+            .remedy("weight records in time"));
         }
         let (rate_hz, nyquist_hz) = (axis.rate_base(), 0.5 * axis.rate_base());
         let [low, high] = [row.band[0], row.roll_off_hz()];
@@ -144,7 +149,7 @@ impl Setting for Weigh {
             value: row.name.to_owned(),
             stage: Stage::Response,
             corners: corners.collect(),
-            gain: Arc::new(Weighed { row, rate_hz }),
+            gain: Arc::new(Weighed::new(row, rate_hz)),
         };
         let treatments = Treatments { weighting: Some(row), ..Treatments::default() };
         Ok(Effect { parts: vec![part], treatments, findings, ..Effect::default() })
@@ -154,8 +159,7 @@ impl Setting for Weigh {
 impl Weighting {
     /// The complex response at a frequency in Hz.
     pub fn response(&self, hz: f64) -> Complex<f64> {
-        let s = Complex::new(0.0, TAU * hz);
-        self.sections().iter().fold(Complex::new(self.factor, 0.0), |product, section| product * section.at(s))
+        response(&self.sections(), self.factor, hz)
     }
 
     /// Where it begins to fall for good.
@@ -180,13 +184,16 @@ impl Weighting {
         }
         if let Some((zero, zero_q, pole, pole_q)) = self.step {
             let size = (zero / pole).powi(2);
-            sections.push(Section {
-                numerator: second(zero, zero_q).map(|c| c * size),
-                denominator: second(pole, pole_q),
-            });
+            sections
+                .push(Section { numerator: second(zero, zero_q).map(|c| c * size), denominator: second(pole, pole_q) });
         }
         sections
     }
+}
+
+fn response(sections: &[Section], factor: f64, hz: f64) -> Complex<f64> {
+    let s = Complex::new(0.0, TAU * hz);
+    sections.iter().fold(Complex::new(factor, 0.0), |product, section| product * section.at(s))
 }
 
 /// A quotient of polynomials in s (rad/s), lowest power first.
@@ -213,7 +220,14 @@ impl Section {
 #[derive(Debug)]
 struct Weighed {
     row: &'static Weighting,
+    sections: Vec<Section>,
     rate_hz: f64,
+}
+
+impl Weighed {
+    fn new(row: &'static Weighting, rate_hz: f64) -> Weighed {
+        Weighed { row, sections: row.sections(), rate_hz }
+    }
 }
 
 impl Gain for Weighed {
@@ -221,14 +235,14 @@ impl Gain for Weighed {
         self.response(f).norm()
     }
     fn response(&self, f: f64) -> Complex<f64> {
-        self.row.response(f * self.rate_hz)
+        response(&self.sections, self.row.factor, f * self.rate_hz)
     }
     fn is_real(&self) -> bool {
         false
     }
     fn series(&self) -> Series {
         let start = Series { s0: self.row.factor, ..Series::ZERO };
-        self.row.sections().iter().fold(start, |series, section| series.times(section.series(self.rate_hz)))
+        self.sections.iter().fold(start, |series, section| series.times(section.series(self.rate_hz)))
     }
     fn extent_samples(&self) -> f64 {
         // exp(-w t/sqrt 2), the decay of the lower band limit, falls to a thousandth in 1.55 cycles.

@@ -20,7 +20,8 @@ use crate::record::{ColumnRole, Format, Layout, RawRecord, Source, TableLayout, 
 use fingerprint::{Fingerprinted, Unchanged};
 use selection::Candidate;
 
-pub use options::{Calibration, ReadOptions};
+pub use fingerprint::Fingerprint;
+pub use options::{Calibration, ReadOptions, refuse_beyond};
 
 /// What to read from.
 pub enum Input {
@@ -113,6 +114,7 @@ fn read_wave(intake: &mut Intake<'_>, options: &ReadOptions) -> Result<RawRecord
         allow_truncated: options.allow_truncated,
         channels: options.channels.as_deref(),
         rate_hz: options.rate.as_ref().filter(|rate| rate.unit.is_time()).map(|rate| rate.rate_base),
+        memory: options.memory,
     };
     wav::read(intake.stream, intake.name, &wanted)
 }

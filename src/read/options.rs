@@ -33,6 +33,22 @@ pub struct ReadOptions {
     pub calibrate: Vec<Calibration>,
     /// Read what is there of a file that ends too early.
     pub allow_truncated: bool,
+    /// Most bytes of memory that a run may take.
+    pub memory: Option<u64>,
+}
+
+/// Refuses what needs more than a bound on memory. `bytes` are needed, for `what`.
+///
+/// # Errors
+/// `Unsupported` beyond the bound.
+pub fn refuse_beyond(bound: Option<u64>, bytes: u64, what: &str) -> Result<()> {
+    let Some(bound) = bound.filter(|bound| bytes > *bound) else { return Ok(()) };
+    let size = |bytes: u64| match bytes {
+        0..10_000_000 => format!("{} kB", bytes.div_ceil(1000)),
+        _ => format!("{} MiB", bytes.div_ceil(1 << 20)),
+    };
+    Err(Error::unsupported(format!("{what} takes {} of memory, --memory allows {}", size(bytes), size(bound)))
+        .remedy("raise --memory, or take fewer channels with --channel"))
 }
 
 /// A factor by which a channel's numbers are multiplied, and the unit they then have.

@@ -25,6 +25,8 @@ pub struct Record {
     /// Channels x samples.
     samples: Array2<f64>,
     findings: Vec<Finding>,
+    /// Samples that were missing and are held by straight lines, channel by channel; empty without any.
+    missing: Vec<Vec<usize>>,
 }
 
 /// One channel of a record, borrowed.
@@ -62,7 +64,7 @@ impl Record {
                 return Err(Error::malformed(format!("not a finite number: {}", row[n])).at(place));
             }
         }
-        Ok(Record { axis, names, units, samples, findings: Vec::new() })
+        Ok(Record { axis, names, units, samples, findings: Vec::new(), missing: Vec::new() })
     }
 
     /// Remarks that travel with the record.
@@ -75,6 +77,18 @@ impl Record {
     pub fn with_findings(mut self, findings: impl IntoIterator<Item = Finding>) -> Record {
         self.findings.extend(findings);
         self
+    }
+
+    /// Lists, channel by channel, samples that were missing: straight lines hold their places until they are smoothed.
+    #[must_use]
+    pub fn with_missing(mut self, missing: Vec<Vec<usize>>) -> Record {
+        self.missing = missing;
+        self
+    }
+
+    /// Samples of channel `index` that were missing and wait to be smoothed, ascending.
+    pub fn missing(&self, index: usize) -> &[usize] {
+        self.missing.get(index).map_or(&[], Vec::as_slice)
     }
 
     /// The common axis.

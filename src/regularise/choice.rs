@@ -13,6 +13,8 @@ pub enum Gaps {
     Reject,
     /// They are interpolated where the content allows it, and are an error where it does not.
     Fill,
+    /// Smoothing finds what belongs there: until then straight lines hold their places, and the record lists them.
+    Smooth,
 }
 
 /// What happens to rows that repeat the stamp of the row before.
@@ -35,7 +37,7 @@ pub enum Regrid {
 }
 
 /// The words of each choice, first the one that results show.
-const GAPS: &[(&str, Gaps)] = &[("reject", Gaps::Reject), ("fill", Gaps::Fill)];
+const GAPS: &[(&str, Gaps)] = &[("reject", Gaps::Reject), ("fill", Gaps::Fill), ("smooth", Gaps::Smooth)];
 const DUPLICATES: &[(&str, Duplicates)] = &[("reject", Duplicates::Reject), ("drop", Duplicates::Drop)];
 const REGRIDS: &[(&str, Regrid)] = &[("cubic", Regrid::Cubic), ("off", Regrid::Off)];
 

@@ -11,10 +11,11 @@ use crate::numeric::spline::cubic_spline;
 use crate::numeric::sum::{mean, standard_deviation};
 use crate::place::Place;
 use crate::record::{Axis, Record};
+use crate::unit::counted;
 
-use super::RowMap;
 use super::band::edge_frequency;
 use super::table::Table;
+use super::{Gaps, RowMap};
 
 /// Largest gap, in cycles of the band edge, that a cubic crosses (error 3e-4 of the RMS without noise).
 const CUBIC_CYCLES: f64 = 0.1;
@@ -83,6 +84,9 @@ pub fn fill_gaps(values: Vec<f64>) -> std::result::Result<(Vec<f64>, &'static st
 
 /// Fills all missing values of all channels.
 pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> {
+    if table.gaps == Gaps::Smooth {
+        return hold(table);
+    }
     for index in 0..table.raw.channels.len() {
         let values = std::mem::take(&mut table.raw.channels[index].values);
         let filled = fill(values).map_err(|Unfillable { sample, what }| {
@@ -98,7 +102,8 @@ pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> 
         channel.values = filled.values;
         if filled.count > 0 {
             let share = filled.count as f64 / channel.values.len() as f64;
-            let mut text = format!("{} samples filled in {} gaps ({})", filled.count, filled.gaps, how);
+            let mut text =
+                format!("{} filled in {} ({how})", counted(filled.count, "sample"), counted(filled.gaps, "gap"));
             if share > 0.05 {
                 text += &format!(": {} % of the record is interpolated", figure((share * 1000.0).round() / 10.0));
             }
@@ -109,13 +114,50 @@ pub fn fill_table(table: &mut Table, findings: &mut Vec<Finding>) -> Result<()> 
     Ok(())
 }
 
+/// Lists the missing values of all channels and lets straight lines hold their places.
+fn hold(table: &mut Table) -> Result<()> {
+    for index in 0..table.raw.channels.len() {
+        let channel = &mut table.raw.channels[index];
+        channel.missing = (0..channel.values.len()).filter(|&n| !channel.values[n].is_finite()).collect();
+        if channel.missing.len() == channel.values.len() {
+            let place = table.value_place(index, 0);
+            return Err(Error::unsupported("no value is there to smooth").at(place).remedy("leave the channel out"));
+        }
+        bridge(&mut channel.values);
+    }
+    Ok(())
+}
+
+/// Joins what is finite by straight lines, and holds the first and last value outwards.
+pub fn bridge(values: &mut [f64]) {
+    let mut before: Option<usize> = None;
+    for n in 0..values.len() {
+        if !values[n].is_finite() {
+            continue;
+        }
+        let (from, start) = before.map_or((0, values[n]), |at| (at + 1, values[at]));
+        let steps = (n + 1 - from) as f64;
+        for k in from..n {
+            let share = if before.is_some() { (k + 1 - from) as f64 / steps } else { 1.0 };
+            values[k] = start + share * (values[n] - start);
+        }
+        before = Some(n);
+    }
+    if let Some(at) = before {
+        let last = values[at];
+        values[at + 1..].fill(last);
+    }
+}
+
 /// The record of complete channels; each channel's own memory is given back as it is taken over.
 pub fn build(table: Table, axis: Axis) -> Result<Record> {
     let file = Place::file(&table.raw.source.path);
     let (count, len) = (table.raw.channels.len(), axis.len());
     let (mut names, mut units) = (Vec::new(), Vec::new());
     let mut all = Vec::new();
+    let mut missing = Vec::new();
     for channel in table.raw.channels {
+        missing.push(if table.gaps == Gaps::Smooth { channel.missing } else { Vec::new() });
         names.push(channel.name);
         units.push(channel.unit);
         if count == 1 {
@@ -127,7 +169,8 @@ pub fn build(table: Table, axis: Axis) -> Result<Record> {
     }
     let samples = Array2::from_shape_vec((count, len), all)
         .map_err(|_| Error::malformed("the columns differ in length").at(file.clone()))?;
-    Record::new(axis, names, units, samples).map_err(|error| error.at(file))
+    let record = Record::new(axis, names, units, samples).map_err(|error| error.at(file))?;
+    Ok(record.with_missing(missing))
 }
 
 /// A gap that cannot be filled, and why.

@@ -73,6 +73,7 @@ pub fn regularise_each(raw: RawRecord, options: &RegulariseOptions) -> Result<Ve
 
 fn settle(mut table: Table, options: &RegulariseOptions) -> Result<(Record, RowMap)> {
     table.check()?;
+    table.gaps = options.gaps;
     let mut findings = std::mem::take(&mut table.raw.findings);
     cut::cut(&mut table, options)?;
     let mut reading = table.read_stamps();
@@ -109,7 +110,7 @@ fn settle(mut table: Table, options: &RegulariseOptions) -> Result<(Record, RowM
 /// A fault that an option has settled: gaps that are to be filled, or doubts about the rate that a given one removes.
 fn is_settled(fault: &Fault, options: &RegulariseOptions, given: bool) -> bool {
     match fault.code {
-        "gap" => options.gaps == Gaps::Fill,
+        "gap" => options.gaps != Gaps::Reject,
         "slipped" | "irregular" | "unresolved" => given && fault.error.kind() == Kind::Unsupported,
         _ => false,
     }

@@ -8,7 +8,7 @@ use crate::error::{Error, Finding, Result};
 use crate::place::Place;
 use crate::record::{ColumnRole, Layout, RawChannel, RawRecord};
 
-use super::{Pattern, RowMap};
+use super::{Gaps, Pattern, RowMap};
 
 /// A raw record, and which rows of the file it holds.
 pub struct Table {
@@ -18,6 +18,8 @@ pub struct Table {
     pub rows: RowMap,
     /// Their columns in the file, from 1, where it is a table.
     pub columns: Vec<Option<u64>>,
+    /// What happens to missing rows and values.
+    pub gaps: Gaps,
 }
 
 /// The channels of a record grouped by the rows that hold their values: full rows first, then lower rates in file order.
@@ -38,10 +40,10 @@ pub fn by_rate(raw: RawRecord) -> Vec<Table> {
     let mut groups: Vec<Table> = patterns
         .iter()
         .skip(1)
-        .map(|_| Table { raw: shell.clone(), rows: rows.clone(), columns: Vec::new() })
+        .map(|_| Table { raw: shell.clone(), rows: rows.clone(), columns: Vec::new(), gaps: Gaps::default() })
         .collect();
     if !patterns.is_empty() {
-        groups.insert(0, Table { raw: shell, rows, columns: Vec::new() });
+        groups.insert(0, Table { raw: shell, rows, columns: Vec::new(), gaps: Gaps::default() });
     }
     for ((channel, pattern), column) in channels.into_iter().zip(own).zip(columns) {
         if let Some(group) = patterns.iter().position(|p| *p == pattern).and_then(|at| groups.get_mut(at)) {

@@ -4,11 +4,12 @@ use serde::Serialize;
 use serde_json::{Map, Value};
 
 use crate::baseline::EndEstimates;
+use crate::compare::EndStanding;
 use crate::error::Finding;
 use crate::operator::ChainDescription;
 use crate::report::{InputReport, Tool, TrustedReport, VerdictReport};
 use crate::unit::Unit;
-use crate::verdict::Adequacy;
+use crate::verdict::{Adequacy, Edge, Unjudged};
 
 /// Every extension side by side.
 #[derive(Debug, Clone, Serialize)]
@@ -31,6 +32,8 @@ pub struct Comparison {
     pub channels: Vec<ChannelComparison>,
     /// False where `--require` was not met by what `condition` would take.
     pub requirement_met: bool,
+    /// The channels that would not meet it, and why.
+    pub unmet: Vec<Finding>,
     /// What results of this kind may and may not be used for.
     pub caution: &'static str,
 }
@@ -48,14 +51,45 @@ pub struct ChannelComparison {
     pub takes: String,
     /// The verdict; null where the chain has nothing to judge.
     pub verdict: Option<VerdictReport>,
+    /// Why nothing is known about the edges of what `condition` would take; null where they were judged.
+    pub not_judged: Option<Unjudged>,
+    /// How each assertion stands against the record, end by end.
+    pub assertions: Vec<EndStanding>,
+    /// Remarks on this channel.
+    pub notes: Vec<Finding>,
+    /// Edges of what `condition` would take: one of the candidates, or a continuation of its own.
+    pub used: Option<Edge>,
     /// One row an extension: the candidates, the forecast, and the references.
     pub candidates: Vec<Row>,
     /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.
     pub edge: Option<EndEstimates>,
     /// Differences of the end values and slopes, with standard errors.
     pub jump: Option<Jump>,
+    /// Whether leakage speaks against repeating the record; null where it does not.
+    pub veto: Option<Veto>,
     /// Trusted span of what `condition` would take.
     pub trusted: Option<TrustedReport>,
+}
+
+/// Leakage against an extension: measured on many records, an excess 3 dB above that of even means that periodic is truly
+/// the worse of the two in 92 of 100 cases or more.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+pub struct Veto {
+    /// The extension that it speaks against.
+    pub extension: &'static str,
+    /// Its leakage excess above that of even, in decibels.
+    pub excess_over_even_db: f64,
+}
+
+impl Veto {
+    /// Smallest difference that tells anything.
+    const LEAST_DB: f64 = 3.0;
+
+    /// From the leakage excess of periodic and of even.
+    pub fn of(periodic_db: f64, even_db: f64) -> Option<Veto> {
+        let excess_over_even_db = periodic_db - even_db;
+        (excess_over_even_db >= Self::LEAST_DB).then_some(Veto { extension: "periodic", excess_over_even_db })
+    }
 }
 
 /// How the right end differs from the left: what a periodic extension would join.

@@ -3,10 +3,13 @@
 mod archive;
 mod comparison;
 mod examination;
+mod integral;
 mod json;
 pub mod page;
 mod plan;
 mod plot;
+mod spectral;
+mod spectral_plot;
 mod text;
 mod treatment;
 
@@ -15,24 +18,31 @@ use serde_json::{Map, Value};
 
 use crate::audit::level::Level;
 use crate::baseline::EndEstimates;
-use crate::compare::How;
-use crate::compare::Standing;
+use crate::compare::{EndStanding, How, Standing};
 use crate::error::Finding;
 use crate::metric::exposure::Exposure;
 use crate::operator::{Chain, ChainDescription};
 use crate::record::{Axis, RateSource, Source};
 use crate::unit::Unit;
-use crate::verdict::{self, Adequacy, Edge, Structure};
+use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
 pub use archive::{ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
-pub use comparison::{ChannelComparison, Comparison, Jump, Row};
+pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::AuditReport;
+pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};
 pub use json::to_json;
 pub use plan::{Plan, PlannedChannel};
 pub use plot::{Curve, Picture, svg};
+pub use spectral::{
+    BandReport, ChannelSpectrum, CoefficientReport, CoefficientSeries, CoefficientsReport, DensityReport,
+    DensitySeries, LineReport, OctaveReport, Ratio, RoadReport, SPECTRUM_CAUTION, SegmentsReport, SpectrumReport,
+    SumCheck, Trace, WindowReport,
+};
+pub use spectral_plot::spectrum_svg;
+pub use text::{
+    archive_text, audit_text, comparison_text, figure, listing_text, plan_text, restore_text, spectrum_text, summary,
+};
 pub use treatment::{DespikeReport, SmoothReport, StrengthSource};
-pub(crate) use text::figure;
-pub use text::{archive_text, audit_text, comparison_text, plan_text, summary, listing_text, restore_text};
 
 /// Version of the JSON layout. Fields are added freely; a renamed or removed one raises it.
 pub const SCHEMA: u32 = 1;
@@ -58,6 +68,8 @@ pub struct Report {
     pub channels: Vec<ChannelReport>,
     /// False where `--require` was not met.
     pub requirement_met: bool,
+    /// The channels that did not meet it, and why.
+    pub unmet: Vec<Finding>,
     /// What was written.
     pub outputs: Vec<OutputReport>,
     /// What results of this kind may and may not be used for.
@@ -181,6 +193,10 @@ pub struct ChannelReport {
     pub reach: ReachReport,
     /// What the record's ends support, and at what cost; null where the chain has nothing to judge.
     pub verdict: Option<VerdictReport>,
+    /// Why nothing is known about the edges; null where they were judged, and where nothing asked for it.
+    pub not_judged: Option<Unjudged>,
+    /// How each assertion stands against the record, end by end.
+    pub assertions: Vec<EndStanding>,
     /// Every candidate at the edges: predicted error, bound, adequacy, trusted span.
     pub candidates: Vec<Edge>,
     /// Values, slopes and levels at the half-sample mirrors (slopes per step), with standard errors and the noise sigma.
@@ -197,6 +213,10 @@ pub struct ChannelReport {
     pub rms: InOut<Option<f64>>,
     /// Mean, RMS, peak, crest factor, kurtosis before and after.
     pub level: InOut<Option<Level>>,
+    /// Both parts of a split; null without one.
+    pub split: Option<SplitReport>,
+    /// Constants and uncertainty of an integral; null without one.
+    pub integral: Option<IntegralReport>,
     /// Relative difference of energy between remainder and coefficients: rounding only.
     pub parseval: f64,
 }
@@ -228,7 +248,7 @@ pub struct VerdictReport {
     pub zone: usize,
     /// How smoothly the ends join.
     pub joins: Structure,
-    /// How an assertion stands against the record.
+    /// How the assertions stand against the record: the worst of the ends.
     pub assertion: Option<Standing>,
     /// In words.
     pub sentence: String,
@@ -286,8 +306,23 @@ pub struct ExtensionReport {
     pub seat: &'static str,
     /// The forward transform that follows.
     pub transform: String,
+    /// The same in the terms of profile filtering (ISO 16610-28).
+    pub end_treatment: String,
     /// Who chose it.
     pub how: How,
+}
+
+/// Both parts of a split, which stand in columns beside the record and add up to it.
+#[derive(Debug, Clone, Serialize)]
+pub struct SplitReport {
+    /// The corner as written.
+    pub corner: String,
+    /// What is longer than the corner.
+    pub waviness: Option<Level>,
+    /// What is left.
+    pub roughness: Option<Level>,
+    /// Decimals that both parts are rounded to, so that they add up to the record digit by digit.
+    pub decimals: i32,
 }
 
 /// How far the ends reach in.

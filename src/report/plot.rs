@@ -7,6 +7,7 @@ use crate::error::{Error, Result};
 use crate::place::escape;
 use crate::record::Axis;
 use crate::report::TrustedReport;
+use crate::verdict::Unjudged;
 
 /// What is drawn for one channel.
 #[derive(Debug, Clone)]
@@ -21,7 +22,7 @@ pub struct Picture {
     pub axis: Axis,
     /// The record.
     pub record: Vec<f64>,
-    /// The forecast first, then the candidates.
+    /// The forecast first, then the candidates; none where nothing was judged.
     pub curves: Vec<Curve>,
     /// Standard deviation of the output under the forecast, by distance from the left and the right end.
     pub deviation: [Vec<f64>; 2],
@@ -31,8 +32,8 @@ pub struct Picture {
     pub takes: String,
     /// Its trusted span.
     pub trusted: Option<TrustedReport>,
-    /// The verdict in words.
-    pub sentence: String,
+    /// Why there is nothing but the record to draw.
+    pub not_judged: Option<Unjudged>,
 }
 
 /// One extension.
@@ -47,7 +48,7 @@ pub struct Curve {
 }
 
 /// Okabe and Ito (2008), "Color Universal Design": distinct for colour-blind readers. Forecast first.
-const COLOURS: [RGBColor; 8] = [
+pub(super) const COLOURS: [RGBColor; 8] = [
     RGBColor(0, 0, 0),
     RGBColor(230, 159, 0),
     RGBColor(86, 180, 233),
@@ -59,27 +60,29 @@ const COLOURS: [RGBColor; 8] = [
 ];
 
 /// Dash and gap in pixels, the second code beside colour; no gap is a solid line.
-const DASHES: [(u32, u32); 8] = [(1, 0), (10, 4), (2, 3), (6, 3), (12, 3), (4, 4), (8, 6), (3, 6)];
+pub(super) const DASHES: [(u32, u32); 8] = [(1, 0), (10, 4), (2, 3), (6, 3), (12, 3), (4, 4), (8, 6), (3, 6)];
 
 const WIDTH: u32 = 1200;
 const HEIGHT: u32 = 760;
+/// Half the samples shown at each end of a record that was not judged.
+const ALONE: usize = 200;
 
-/// An SVG with one block of four panels a channel.
+/// An SVG with one block a channel: four panels, or the record at its two ends where nothing was judged.
 ///
 /// # Errors
-/// `Unsupported` when there is nothing to draw; `Io` when the drawing fails.
+/// `Io` when the drawing fails.
 pub fn svg(pictures: &[Picture]) -> Result<String> {
-    if pictures.is_empty() {
-        return Err(
-            Error::unsupported("nothing was judged, so there is no picture").remedy("give operators with a corner")
-        );
-    }
     let mut text = String::new();
     {
-        let area = SVGBackend::with_string(&mut text, (WIDTH, HEIGHT * pictures.len() as u32)).into_drawing_area();
+        let height = |picture: &Picture| if picture.curves.is_empty() { HEIGHT / 2 } else { HEIGHT };
+        let total = pictures.iter().map(height).sum::<u32>().max(1);
+        let area = SVGBackend::with_string(&mut text, (WIDTH, total)).into_drawing_area();
         area.fill(&WHITE).map_err(failed)?;
-        for (picture, block) in pictures.iter().zip(area.split_evenly((pictures.len(), 1))) {
+        let mut rest = area.clone();
+        for picture in pictures {
+            let (block, below) = rest.split_vertically(height(picture));
             draw(picture, &block)?;
+            rest = below;
         }
         area.present().map_err(failed)?;
     }
@@ -89,10 +92,20 @@ pub fn svg(pictures: &[Picture]) -> Result<String> {
 type Area<'a> = DrawingArea<SVGBackend<'a>, plotters::coord::Shift>;
 
 fn draw(picture: &Picture, block: &Area<'_>) -> Result<()> {
-    let title = format!("{}: condition would take {}", escape(&picture.name), picture.takes);
+    let name = escape(&picture.name);
+    let title = match picture.not_judged {
+        Some(reason) => format!("{name}: not judged: {reason}; condition would take {}", picture.takes),
+        None => format!("{name}: condition would take {}", picture.takes),
+    };
     let block = block.titled(&title, ("sans-serif", 20)).map_err(failed)?;
     let (head, panels) = block.split_vertically(26);
     legend(picture, &head)?;
+    if picture.curves.is_empty() {
+        for (side, panel) in panels.split_evenly((1, 2)).iter().enumerate() {
+            continuations(picture, side, panel)?;
+        }
+        return Ok(());
+    }
     let panels = panels.split_evenly((2, 2));
     for side in [0, 1] {
         continuations(picture, side, &panels[side])?;
@@ -105,25 +118,30 @@ fn draw(picture: &Picture, block: &Area<'_>) -> Result<()> {
 fn legend(picture: &Picture, area: &Area<'_>) -> Result<()> {
     let step = WIDTH as i32 / (picture.curves.len() as i32 + 1);
     for (index, curve) in picture.curves.iter().enumerate() {
-        let x = 20 + step * index as i32;
-        let (dash, gap) = DASHES[index % DASHES.len()];
-        let style = COLOURS[index % COLOURS.len()].stroke_width(2);
-        let mut from = x;
-        while from < x + 34 {
-            let to = if gap == 0 { x + 34 } else { (from + dash as i32).min(x + 34) };
-            area.draw(&PathElement::new(vec![(from, 12), (to, 12)], style)).map_err(failed)?;
-            from = to + gap.max(1) as i32;
-        }
-        area.draw(&Text::new(curve.name, (x + 40, 5), ("sans-serif", 14))).map_err(failed)?;
+        legend_line(area, index, 20 + step * index as i32, curve.name)?;
     }
+    Ok(())
+}
+
+/// One name of a legend in the colour and dash of its curve, from `x` on.
+pub(super) fn legend_line(area: &Area<'_>, index: usize, x: i32, name: &str) -> Result<()> {
+    let (dash, gap) = DASHES[index % DASHES.len()];
+    let style = COLOURS[index % COLOURS.len()].stroke_width(2);
+    let mut from = x;
+    while from < x + 34 {
+        let to = if gap == 0 { x + 34 } else { (from + dash as i32).min(x + 34) };
+        area.draw(&PathElement::new(vec![(from, 12), (to, 12)], style)).map_err(failed)?;
+        from = to + gap.max(1) as i32;
+    }
+    area.draw(&Text::new(name.to_owned(), (x + 40, 5), ("sans-serif", 14))).map_err(failed)?;
     Ok(())
 }
 
 /// The record near one end and every continuation past it.
 fn continuations(picture: &Picture, side: usize, area: &Area<'_>) -> Result<()> {
     let len = picture.record.len();
-    let past = picture.curves[0].past[side].len();
-    let shown = (2 * past).clamp(8, len);
+    let past = picture.curves.first().map_or(ALONE, |curve| curve.past[side].len());
+    let shown = (2 * past).clamp(8.min(len), len);
     let inside: Vec<(f64, f64)> =
         indices(side, len, shown).map(|n| (stamp(picture, n as i64), picture.record[n])).collect();
     let lines: Vec<Vec<(f64, f64)>> = picture
@@ -139,7 +157,8 @@ fn continuations(picture: &Picture, side: usize, area: &Area<'_>) -> Result<()> 
         })
         .collect();
     let end = if side == 0 { "left" } else { "right" };
-    let caption = format!("record and continuations past the {end} end");
+    let beyond = if lines.is_empty() { "at" } else { "and continuations past" };
+    let caption = format!("record {beyond} the {end} end");
     let all = lines.iter().flatten().chain(&inside);
     let mut chart = panel(picture, area, &caption, &picture.unit_in, all)?;
     for (index, line) in lines.iter().enumerate().rev() {
@@ -153,7 +172,7 @@ fn continuations(picture: &Picture, side: usize, area: &Area<'_>) -> Result<()> 
 /// The outputs over the edge zone of one end, with two standard deviations about the forecast's.
 fn outputs(picture: &Picture, side: usize, area: &Area<'_>) -> Result<()> {
     let len = picture.record.len();
-    let shown = (picture.zone + picture.zone / 2).clamp(8, len);
+    let shown = (picture.zone + picture.zone / 2).clamp(8.min(len), len);
     let point = |curve: &Curve, n: usize| (stamp(picture, n as i64), curve.output[n]);
     let lines: Vec<Vec<(f64, f64)>> =
         picture.curves.iter().map(|curve| indices(side, len, shown).map(|n| point(curve, n)).collect()).collect();
@@ -202,7 +221,18 @@ fn panel<'a, 'b, 'p>(
         x = (x.0.min(px), x.1.max(px));
         y = (y.0.min(py), y.1.max(py));
     }
-    let margin = (0.05 * (y.1 - y.0)).max(1e-9 * y.0.abs().max(y.1.abs())).max(f64::MIN_POSITIVE);
+    let largest = y.0.abs().max(y.1.abs());
+    let margin = match y.1 - y.0 {
+        // A constant stands in the middle of a range whose labels tell something.
+        0.0 => {
+            if largest > 0.0 {
+                0.1 * largest
+            } else {
+                1.0
+            }
+        }
+        height => (0.05 * height).max(1e-9 * largest),
+    };
     let mut chart = ChartBuilder::on(area)
         .caption(caption, ("sans-serif", 15))
         .margin(8)
@@ -246,6 +276,6 @@ fn stamp(picture: &Picture, n: i64) -> f64 {
     picture.axis.start() + n as f64 * picture.axis.step()
 }
 
-fn failed(error: impl std::fmt::Display) -> Error {
+pub(super) fn failed(error: impl std::fmt::Display) -> Error {
     Error::io(format!("the picture could not be drawn: {error}"))
 }

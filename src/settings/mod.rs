@@ -2,6 +2,7 @@
 
 mod layer;
 mod parse;
+mod spectral;
 mod table;
 
 use std::collections::BTreeMap;
@@ -12,13 +13,15 @@ use crate::codec::Wanted;
 use crate::compare::{Assertion, ToleranceRequest};
 use crate::condition::Stage;
 use crate::error::{Error, Result};
-use crate::operator::{Request, Shape};
+use crate::operator::{Conditions, Offset, Request, Shape};
 use crate::read::ReadOptions;
 use crate::record::Format;
 use crate::regularise::RegulariseOptions;
 use crate::verdict::Adequacy;
 
 pub use layer::Layer;
+pub use parse::bytes;
+pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
 pub use table::{Arity, Group, OptionRow, find, known, nearest, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
@@ -34,10 +37,22 @@ pub struct Settings {
     pub requests: Vec<Request>,
     /// Roll-off of all filters.
     pub shape: Shape,
+    /// End conditions of an integral; there is no default.
+    pub conditions: Option<Conditions>,
+    /// The sensor's offset, where the end conditions do not solve it.
+    pub offset: Option<Offset>,
+    /// Take end conditions that the record speaks against.
+    pub insist: bool,
+    /// Uncertainty of an integral that is aimed at: the report names the high-pass that gives it.
+    pub target_sigma: Option<ToleranceRequest>,
+    /// Columns that stand beside the result.
+    pub beside: Vec<Beside>,
     /// Integration time of the running RMS, in s.
     pub running_rms: Option<f64>,
     /// What is known about the ends.
     pub assertion: Assertion,
+    /// How a spectrum is formed and what is read from it.
+    pub spectrum: SpectrumOptions,
     /// Edge error that is tolerable.
     pub tolerance: ToleranceRequest,
     /// Edge error that must be met, or the run counts as insufficient.
@@ -56,6 +71,15 @@ pub struct Settings {
     pub strict: bool,
     /// What was set, as written.
     texts: BTreeMap<&'static str, Vec<String>>,
+}
+
+/// A column that stands beside each channel of the result.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Beside {
+    /// Standard deviation of an integral from the noise of the record.
+    Sigma,
+    /// The record as corrected: filtered, less offset and drift, high-passed; the result is its integral.
+    Corrected,
 }
 
 /// What happens to output outside the trusted span.
@@ -88,7 +112,7 @@ impl Settings {
         parse::set(self, row.key, text)
     }
 
-    /// True for a key that was set, be it to its default.
+    /// True for a key that was set, if only to its default.
     pub fn is_given(&self, key: &str) -> bool {
         self.texts.contains_key(key)
     }

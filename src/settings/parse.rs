@@ -6,12 +6,12 @@ use crate::codec as archive;
 use crate::ends::Seat;
 use crate::error::{Error, Result};
 use crate::numeric::leading_number;
-use crate::operator::{Corner, Measure, Request, STEPS, Shape};
+use crate::operator::{Corner, Measure, Range, Request, STEPS, Shape};
 use crate::place::escape;
 use crate::read::Calibration;
 use crate::record::{Format, StatedRate};
 use crate::regularise::Bound;
-use crate::settings::{Edges, Settings};
+use crate::settings::{Beside, Edges, Settings, spectral};
 use crate::unit::Unit;
 use crate::verdict::Adequacy;
 
@@ -22,6 +22,7 @@ const SEATS: Words<Seat> = &[("half-sample", Seat::Half), ("whole-sample", Seat:
 const REQUIRES: Words<Adequacy> = &[("within", Adequacy::Within), ("borderline", Adequacy::Borderline)];
 const EDGES: Words<Edges> =
     &[("keep", Edges::Keep), ("mark", Edges::Mark), ("blank", Edges::Blank), ("trim", Edges::Trim)];
+const BESIDES: Words<Beside> = &[("sigma", Beside::Sigma), ("corrected", Beside::Corrected)];
 const EFFORTS: Words<archive::Effort> =
     &[("2", archive::Effort::Usual), ("1", archive::Effort::Quick), ("3", archive::Effort::Long)];
 const FORMATS: Words<Format> = &[("csv", Format::Csv), ("wav", Format::Wav)];
@@ -52,6 +53,7 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
             settings.read.units.push((name.to_owned(), Unit::parse(unit)));
         }
         "calibrate" => settings.read.calibrate.push(calibration(text)?),
+        "memory" => settings.read.memory = Some(bytes(text)?),
         "allow-truncated" => settings.read.allow_truncated = switch(key, text)?,
         "from" => settings.regularise.from = Some(context(key, Bound::parse(text))?),
         "to" => settings.regularise.to = Some(context(key, Bound::parse(text))?),
@@ -75,8 +77,24 @@ pub fn set(settings: &mut Settings, key: &str, text: &str) -> Result<()> {
         "edges" => settings.edges = one_of(key, text, EDGES)?,
         "baseline" => settings.stage.baseline = Some(context(key, text.parse())?),
         "seat" => settings.stage.seat = one_of(key, text, SEATS)?,
+        "conditions" => settings.conditions = Some(context(key, text.parse())?),
+        "offset" => settings.offset = Some(context(key, text.parse())?),
+        "insist" => settings.insist = switch(key, text)?,
+        "target-sigma" => settings.target_sigma = Some(context(key, text.parse())?),
+        "beside" => settings.beside.push(one_of(key, text, BESIDES)?),
         "shape" => settings.shape = context(key, Shape::parse(text))?,
         "running-rms" => settings.running_rms = Some(running(text)?),
+        "method" => settings.spectrum.method = context(key, text.parse())?,
+        "segment" => settings.spectrum.segment = Some(context(key, text.parse())?),
+        "window" => settings.spectrum.window = context(key, crate::spectrum::window(text))?,
+        "overlap" => settings.spectrum.overlap = Some(context(key, spectral::share(text))?),
+        "detrend" => settings.spectrum.detrend = context(key, text.parse())?,
+        "confidence" => settings.spectrum.confidence = context(key, spectral::share(text))?,
+        "band" => settings.spectrum.bands.push(context(key, Range::parse(text))?),
+        "octaves" => settings.spectrum.octaves = context(key, spectral::fraction(text))?,
+        "lines" => settings.spectrum.lines = named(key, text, "a number of lines")?,
+        "road" => settings.spectrum.road = switch(key, text)?,
+        "against" => settings.spectrum.against = Some(context(key, text.parse())?),
         "format" => settings.format = Some(one_of(key, text, FORMATS)?),
         "encoding" => settings.encoding = Some(text.to_owned()),
         "decimals" => settings.decimals = Some(decimals(text)?),
@@ -102,7 +120,14 @@ pub fn default_of(settings: &Settings, key: &str) -> Option<String> {
         "duplicates" => Some(settings.regularise.duplicates.to_string()),
         "regrid" => Some(REGRID_BY_ITSELF.to_owned()),
         "extension" => Some(settings.stage.extension.to_string()),
+        "method" => Some(settings.spectrum.method.to_string()),
+        "window" => Some(settings.spectrum.window.name.to_owned()),
+        "detrend" => Some(settings.spectrum.detrend.to_string()),
+        "confidence" => Some(format!("{}%", 100.0 * settings.spectrum.confidence)),
+        "octaves" => Some("none".to_owned()),
+        "lines" => Some(settings.spectrum.lines.to_string()),
         "tolerance" => Some(settings.tolerance.to_string()),
+        "target-sigma" => Some(settings.target_sigma.as_ref().map_or_else(|| "5%".to_owned(), ToString::to_string)),
         "edges" => spelling(EDGES, settings.edges),
         "seat" => spelling(SEATS, settings.stage.seat),
         "shape" => Some(settings.shape.to_string()),
@@ -159,6 +184,31 @@ fn decimals(text: &str) -> Result<u8> {
         );
     }
     Ok(count)
+}
+
+/// Bytes from text such as `500MB` or `4GiB`.
+///
+/// # Errors
+/// `Usage` for anything else.
+pub fn bytes(text: &str) -> Result<u64> {
+    const SIZES: [(&str, u64); 8] = [
+        ("kB", 1_000),
+        ("MB", 1_000_000),
+        ("GB", 1_000_000_000),
+        ("TB", 1_000_000_000_000),
+        ("KiB", 1 << 10),
+        ("MiB", 1 << 20),
+        ("GiB", 1 << 30),
+        ("TiB", 1 << 40),
+    ];
+    let size = SIZES.iter().find_map(|(unit, size)| Some((text.strip_suffix(unit)?.trim(), *size)));
+    let bytes = size.and_then(|(count, size)| {
+        let count = count.parse::<f64>().ok().filter(|count| count.is_finite() && *count > 0.0)?;
+        Some((count * size as f64) as u64) // saturates
+    });
+    bytes.ok_or_else(|| {
+        Error::usage(format!("--memory: not a size: \"{}\"", escape(text))).remedy("write it as 500MB or 4GiB")
+    })
 }
 
 fn running(text: &str) -> Result<f64> {

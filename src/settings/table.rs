@@ -13,6 +13,8 @@ pub enum Group {
     Stage,
     /// What is done to the record.
     Operators,
+    /// How a spectrum is formed and what is read from it.
+    Spectrum,
     /// How the result is judged.
     Judgement,
     /// How the result is written.
@@ -30,6 +32,7 @@ impl Group {
             Group::Repair => "Repair",
             Group::Stage => "Ends",
             Group::Operators => "Operators",
+            Group::Spectrum => "Spectrum",
             Group::Judgement => "Judgement",
             Group::Output => "Output",
             Group::Archive => "Archive",
@@ -70,7 +73,7 @@ const fn row(key: &'static str, value: &'static str, arity: Arity, group: Group,
 use crate::error::{Error, Result};
 use crate::operator::STEPS;
 use Arity::{Many, Once, Switch};
-use Group::{Archive, Cut, Input, Judgement, Operators, Output, Repair, Stage};
+use Group::{Archive, Cut, Input, Judgement, Operators, Output, Repair, Spectrum, Stage};
 
 /// The options that are not operators; `rows` gives all.
 #[rustfmt::skip]
@@ -86,22 +89,39 @@ static OPTIONS: &[OptionRow] = &[
     row("missing", "TEXT", Many, Input, "A further spelling that stands for a missing value, such as -9999; may be repeated"),
     row("unit", "NAME=UNIT", Many, Input, "Unit of a channel where the header tells none or a wrong one, such as ax=g; may be repeated"),
     row("calibrate", "NAME=FACTOR[UNIT]", Many, Input, "Factor from the numbers in the file to a unit, such as ch1=98.1m/s2; may be repeated"),
+    row("memory", "SIZE", Once, Input, "Refuse, before working, what would take more memory than this: 500MB, 4GiB. Default: no bound. For batch: of all jobs together, by default half of what is free"),
     row("allow-truncated", "", Switch, Input, "Accept a file whose end is missing, with a note"),
     row("from", "STAMP", Once, Cut, "First stamp to use, with its unit: 2.5s, 30mm"),
     row("to", "STAMP", Once, Cut, "Last stamp to use, with its unit"),
-    row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default) or fill"),
+    row("gaps", "HOW", Once, Repair, "What to do with missing rows and values: reject (default), fill (interpolated as far as the content allows), or smooth (left to --smooth, which bridges them)"),
     row("duplicates", "HOW", Once, Repair, "What to do with repeated rows: reject (default) or drop (equal ones only)"),
     row("regrid", "HOW", Once, Repair, "What to do with uneven stamps: auto (default) interpolates jittered or drifting ones onto an even grid by a cubic spline, cubic also those that are nearly even, off takes the samples as even"),
     row("strict", "", Switch, Repair, "Turn every note into an error"),
-    row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast; symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
-    row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension: none, mean, level[:left|:right], line, slopes, trend[:DEGREE]. Default: none; level with mixed ends; slopes for integrals and derivatives with even"),
+    row("extension", "NAME", Once, Stage, "What is assumed past the two ends. auto (default): an asserted structure, else a closed record that proves itself, else the forecast, and even where nothing can be judged (no operator, no corner, an integral without high-pass, a constant or under 16 samples); symmetric: the verdict's pick among the bases; or by name: forecast, periodic, even, odd, even-odd, odd-even"),
+    row("baseline", "NAME", Once, Stage, "Polynomial split off first, with a named extension or both ends asserted: none, mean, level[:left|:right], line, slopes, tangents (slopes of cubic fits), trend[:DEGREE]. Default: none; level with mixed ends; tangents for integrals and derivatives with even"),
     row("seat", "NAME", Once, Stage, "Where the mirrors sit: half-sample (default) or whole-sample"),
     row("assert", "[END:]WHAT", Many, Stage, "What is known about the ends: zero-slope, zero-value or closed; with left: or right: for one end. Followed, and checked for contradiction"),
+    row("conditions", "NAME", Once, Operators, "End conditions of an integral: start-rest, rest, rest-to=D, start-rest-to=D (at rest at the start or both ends, displaced by D), pinned[=D] (displacement known at both ends), steady[:offset] (motion about a fixed place), zero-mean (whole cycles, periodic), still=A..B[,C..D] (at rest in these stretches). Needed with --integrate: there is no default"),
+    row("offset", "VALUE", Once, Operators, "Sensor offset taken off before an integral, with start-rest and pinned: a value with its unit, or the quiet stretch whose mean it is (0s..1.5s)"),
+    row("insist", "", Switch, Operators, "Take end conditions that the motion at the record's ends speaks against"),
+    row("target-sigma", "ERROR", Once, Operators, "Uncertainty that an integral should have: the report names the high-pass that gives it. A share of its peak (5%, the default) or a value with its unit"),
+    row("beside", "COLUMN", Many, Operators, "A further column for each integrated channel: sigma (standard deviation from the record's noise) or corrected (the record less offset and drift, filtered, whose integral the result is)"),
     row("shape", "NAME", Once, Operators, "Roll-off: butterworth:ORDER (zero phase, squared magnitude, gain 0.5 at the corner), gaussian, cosine:WIDTH, brickwall. Default: butterworth:4"),
     row("running-rms", "TIME", Once, Operators, "A further column a channel with its running RMS over this time, such as 1s or 0.125s; also the integration time of --weighting, 1s there by default"),
+    row("method", "NAME", Once, Spectrum, "welch (default): density from averaged segments; sine: density from sine tapers over the whole record, their number chosen line by line; sine:COUNT: so many of them; basis: coefficients in the basis of the ends"),
+    row("segment", "LENGTH", Once, Spectrum, "Length of a segment: samples (512), a duration (2s), or the spacing of its lines (0.5Hz). Default: about an eighth of the record, lines on round frequencies where the rate allows"),
+    row("window", "NAME", Once, Spectrum, "Window of the segments: hann (default), rectangular, hamming, blackman, blackman-harris, nuttall, flat-top, flat-top-hft70, flat-top-hft95, flat-top-hft90d, flat-top-5"),
+    row("overlap", "SHARE", Once, Spectrum, "Overlap of the segments: 50% or 0.5. Default: what suits the window, 50% for hann"),
+    row("detrend", "WHAT", Once, Spectrum, "Taken off before a density is formed: none, mean (default), line, quadratic or cubic by least squares through the whole record; segment-mean or segment-line through every segment"),
+    row("confidence", "SHARE", Once, Spectrum, "Confidence of the limits. Default: 95%"),
+    row("band", "RANGE", Many, Spectrum, "RMS in a band, lines at its edges counted by their share: 2Hz..40Hz; may be repeated"),
+    row("octaves", "WIDTH", Once, Spectrum, "Band levels by IEC 61260-1, base ten: third, octave or none (default). Bands of fewer than 5 lines are refused"),
+    row("lines", "COUNT", Once, Spectrum, "Spectral lines to list at most, with interpolated frequency and amplitude. Default: 5"),
+    row("road", "", Switch, Spectrum, "Class of a road profile by its displacement density, ISO 8608"),
+    row("against", "EXTENSION[+BASELINE]", Once, Spectrum, "A second extension laid over the first: odd+line. With --method basis, or with operators"),
     row("tolerance", "ERROR", Once, Judgement, "Edge error that is tolerable: a share of the output's standard deviation (10%, the default) or a value with its unit (0.02m/s)"),
-    row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. The output is written all the same"),
-    row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted'), blank (empty cells) or trim (cut off, with the new start stamp)"),
+    row("require", "WHAT", Once, Judgement, "Exit with 1 where an edge error is not within, or not at least borderline: within or borderline. What no assumption can spoil (no operator, a constant) counts as met. The output is written all the same"),
+    row("edges", "HOW", Once, Judgement, "Output outside the trusted span: keep (default), mark (a column 'trusted', which is no channel when it is read back), blank (empty cells) or trim (cut off, with the new start stamp)"),
     row("format", "NAME", Once, Output, "Format of the output: csv or wav. Default: what the output's name says, else that of the input"),
     row("encoding", "NAME", Once, Output, "Sample type of WAV output: pcm16, pcm24, pcm32, float32 (default), float64"),
     row("decimals", "COUNT", Once, Output, "Fixed decimals in CSV output. Default: the shortest digits that give the same number again"),

@@ -54,7 +54,9 @@ impl Candidate {
         let constant = |value| Polynomial::zero(length).plus_constant(value);
         match self.baseline {
             BaselineKind::Line => Baseline::line(found.left.value, found.right.value, length),
-            BaselineKind::Slopes => Baseline::slopes(found.left.slope, found.right.slope, length),
+            BaselineKind::Slopes | BaselineKind::Tangents => {
+                Baseline::slopes(found.left.slope, found.right.slope, length)
+            }
             BaselineKind::Level(side) => constant(found.at(side.unwrap_or(Side::Left)).level),
             BaselineKind::Mean => constant(mean),
             BaselineKind::None | BaselineKind::Trend(_) => Polynomial::zero(length),

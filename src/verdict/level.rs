@@ -60,8 +60,8 @@ impl Pick {
         order.sort_by(|a, b| error(*a).total_cmp(&error(*b)));
         let (best, second) = (order[0], order[1]);
         let margin = error(second) / error(best);
-        let tied: Vec<&Edge> = edges.iter().filter(|e| e.predicted_error <= TIE * error(best)).collect();
-        let ties = tied.iter().map(|e| e.name).collect();
+        let tied: Vec<usize> = (0..edges.len()).filter(|k| error(*k) <= TIE * error(best)).collect();
+        let ties = tied.iter().map(|k| CANDIDATES[*k].name).collect();
         let closed = periodic.is_some_and(|join| join.share <= 0.01 && join.ratio <= 2.0 && join.median >= POWER)
             && error(PERIODIC) <= SUPPORTED * error(best);
         let (pick, level) = if closed {
@@ -73,7 +73,8 @@ impl Pick {
         } else {
             (best, Level::NoClearWinner)
         };
-        let choice_immaterial = level == Level::NoClearWinner && tied.iter().all(|e| e.adequacy == Adequacy::Within);
-        Pick { name: edges[pick].name, level, ties, margin: Some(margin), choice_immaterial }
+        let choice_immaterial =
+            level == Level::NoClearWinner && tied.iter().all(|k| edges[*k].adequacy == Adequacy::Within);
+        Pick { name: CANDIDATES[pick].name, level, ties, margin: Some(margin), choice_immaterial }
     }
 }

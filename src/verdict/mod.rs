@@ -7,6 +7,7 @@ mod edge;
 mod level;
 mod near;
 mod sentence;
+mod unjudged;
 
 use serde::Serialize;
 
@@ -18,11 +19,11 @@ use crate::numeric::sum;
 
 pub use auto::{Auto, Structure};
 pub use candidate::{CANDIDATES, Candidate, EVEN, Extension, ODD_ZERO, PERIODIC};
-pub use edge::{Adequacy, Edge, Trusted};
+pub use edge::{Adequacy, Edge, Scene, Trusted};
 pub use level::{Level, Pick};
+pub use unjudged::Unjudged;
 
 use difference::Difference;
-use edge::Scene;
 use near::Near;
 
 /// Shorter records are not judged.
@@ -34,9 +35,8 @@ pub const SHORTEST_WAVELENGTH: f64 = 4.0;
 pub struct Case<'a> {
     /// The record.
     pub samples: &'a [f64],
-    /// Its fits, for the block length that suits the operator, and the forecast from them under the operator; `None`
-    /// where there are too few blocks.
-    pub past: Option<(&'a Evidence, &'a Forecast)>,
+    /// Its past and what that foretells; the reason where nothing can be judged.
+    pub past: Result<Past<'a>, Unjudged>,
     /// Its structure, from `structure`.
     pub structure: Structure,
     /// The end estimates, for the half-sample seat.
@@ -51,13 +51,25 @@ pub struct Case<'a> {
     pub tolerance: Tolerance,
 }
 
+/// The past of a record, and what it foretells under an operator.
+#[derive(Clone, Copy)]
+pub struct Past<'a> {
+    /// Its fits, for the block length that suits the operator.
+    pub evidence: &'a Evidence,
+    /// The forecast from them under the operator.
+    pub forecast: &'a Forecast,
+    /// The whole output under the forecast.
+    pub foretold: &'a [f64],
+}
+
 /// How an output is formed.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Formed {
-    /// By the operator's impulse response over the extended record.
+    /// By the operator's impulse response over the record, extended about half-sample mirrors: the blocks next to the ends
+    /// tell the edges.
     InOnePass,
-    /// In several passes with extensions of their own: the impulse response alone does not give the edges.
-    InSeveral,
+    /// In several passes with extensions of their own, or about whole-sample mirrors: only whole outputs tell the edges.
+    Otherwise,
 }
 
 /// A tolerable edge error.
@@ -100,6 +112,11 @@ pub struct Verdict {
     /// Root mean square distance of each row of `edges` from the forecast over both zones.
     #[serde(skip)]
     pub distances: Vec<f64>,
+    /// Why nothing was judged.
+    pub unjudged: Option<Unjudged>,
+    /// What further continuations are judged by; `None` when nothing was judged.
+    #[serde(skip)]
+    pub scene: Option<Scene>,
 }
 
 impl Verdict {
@@ -108,21 +125,21 @@ impl Verdict {
         let len = case.samples.len();
         let response = case.response;
         let zone = response.zone(len);
-        let too_small = len < SHORTEST_RECORD || response.shape().shortest_wavelength < SHORTEST_WAVELENGTH;
-        let is_constant = case.samples.windows(2).all(|w| w[0] == w[1]);
-        let (Some((evidence, forecast)), false) = (case.past, too_small || is_constant) else {
-            return Verdict::not_judged(case, zone);
+        let past = match (Unjudged::of(case.samples, response), case.past) {
+            (None, Ok(past)) => past,
+            (Some(reason), _) | (None, Err(reason)) => return Verdict::not_judged(case, zone, reason),
         };
-        let continuations = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
-        let foretold = (case.output)(Extension::Continued { left: &continuations[0], right: &continuations[1] });
-        let output_deviation = sum::standard_deviation(&foretold);
+        let output_deviation = sum::standard_deviation(past.foretold);
         if !output_deviation.is_finite() || output_deviation <= 0.0 {
-            return Verdict::not_judged(case, zone);
+            return Verdict::not_judged(case, zone, Unjudged::Unformed);
         }
-        let differences = differences(case, evidence, forecast, &foretold);
+        let differences = differences(case, past);
         let tolerance = case.tolerance.absolute(output_deviation);
         let scene = Scene {
-            forecast,
+            // At least 1e-4 of the output's standard deviation: no model is better than that.
+            forecast_error: past.forecast.predicted_error().max(1e-4 * output_deviation),
+            deviations: [Side::Left, Side::Right]
+                .map(|side| past.forecast.profile(side).iter().map(|variance| variance.sqrt()).collect()),
             len,
             zone,
             trimmable: response.trimmable(len),
@@ -133,11 +150,11 @@ impl Verdict {
         };
         let edges: Vec<Edge> = differences
             .iter()
-            .map(|(name, difference)| scene.edge(name, (*name != Auto::Forecast.name()).then_some(difference)))
+            .map(|(name, difference)| scene.edge(*name, (*name != Auto::Forecast.name()).then_some(difference)))
             .collect();
         let distances: Vec<f64> = differences.iter().map(|(_, difference)| difference.rms(zone)).collect();
         let pick = Pick::among(&edges[..CANDIDATES.len()], case.structure.periodic.as_ref());
-        let error = scene.forecast_error();
+        let error = scene.forecast_error;
         let auto = if case.structure.is_closed(distances[PERIODIC], error) {
             Auto::Periodic
         } else if flat_ends == FlatEnds::Claimed && case.structure.is_flat(distances[EVEN], error) {
@@ -145,10 +162,21 @@ impl Verdict {
         } else {
             Auto::Forecast
         };
-        Verdict { pick, auto, edges, structure: case.structure, output_deviation, tolerance, zone, distances }
+        Verdict {
+            pick,
+            auto,
+            edges,
+            structure: case.structure,
+            output_deviation,
+            tolerance,
+            zone,
+            distances,
+            unjudged: None,
+            scene: Some(scene),
+        }
     }
 
-    fn not_judged(case: &Case, zone: usize) -> Verdict {
+    fn not_judged(case: &Case, zone: usize, reason: Unjudged) -> Verdict {
         let output = (case.output)(Extension::Symmetric(&CANDIDATES[EVEN]));
         let output_deviation = sum::standard_deviation(&output);
         Verdict {
@@ -160,6 +188,8 @@ impl Verdict {
             tolerance: case.tolerance.absolute(output_deviation),
             zone,
             distances: Vec::new(),
+            unjudged: Some(reason),
+            scene: None,
         }
     }
 
@@ -180,7 +210,11 @@ impl Tolerance {
 
 /// The joins of a record with itself: one test serves all operators with the same block length.
 pub fn structure(evidence: &Evidence) -> Structure {
-    let [left, right] = [Side::Left, Side::Right].map(|side| evidence.blocks(side));
+    structure_of([Side::Left, Side::Right].map(|side| evidence.blocks(side)))
+}
+
+/// As `structure`, from the histories towards the left and the right end, oldest first.
+pub fn structure_of([left, right]: [&[f64]; 2]) -> Structure {
     Structure { periodic: join::periodic(left, right), even_left: join::even(left), even_right: join::even(right) }
 }
 
@@ -192,17 +226,12 @@ pub fn estimates(samples: &[f64], response: &Response, noise: f64) -> EndEstimat
 }
 
 /// The difference of every extension's output to the forecast's, near the ends, in the order of `Verdict::edges`.
-fn differences(
-    case: &Case,
-    evidence: &Evidence,
-    forecast: &Forecast,
-    foretold: &[f64],
-) -> Vec<(&'static str, Difference)> {
+fn differences(case: &Case, past: Past<'_>) -> Vec<(&'static str, Difference)> {
     let len = case.samples.len();
     let farthest = case.response.trimmable(len).max(case.response.zone(len));
-    match Near::new(evidence, case.response, farthest).filter(|_| case.formed == Formed::InOnePass) {
-        Some(near) => near_differences(case, forecast, &near),
-        None => whole_differences(case, foretold, farthest),
+    match Near::new(past.evidence, case.response, farthest).filter(|_| case.formed == Formed::InOnePass) {
+        Some(near) => near_differences(case, past.forecast, &near),
+        None => whole_differences(case, past.foretold, farthest),
     }
 }
 

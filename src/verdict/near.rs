@@ -45,7 +45,8 @@ impl<'a> Near<'a> {
             return None;
         }
         let places = farthest.div_ceil(block) + 1;
-        let seen = (0..blocks + places).map(|i| response.area(Side::Left, i * block + 1, (i + 1) * block + 1)).collect();
+        let seen =
+            (0..blocks + places).map(|i| response.area(Side::Left, i * block + 1, (i + 1) * block + 1)).collect();
         let mirrored = if response.shape().turns % 2 == 0 { 1.0 } else { -1.0 };
         Some(Near { evidence, blocks, places, seen, mirrored })
     }

@@ -3,7 +3,7 @@
 use crate::record::Axis;
 use crate::unit::Unit;
 
-use super::{Adequacy, Edge, Level, Pick, Trusted, Verdict};
+use super::{Edge, Level, Pick, Trusted, Verdict};
 
 impl Verdict {
     /// The pick among the symmetric extensions in one sentence.
@@ -26,7 +26,10 @@ impl Verdict {
                     pick.ties.join(", ")
                 )
             }
-            Level::NotJudged => "not judged: the record is too short, too coarse or constant; even is used".to_owned(),
+            Level::NotJudged => match self.unjudged {
+                Some(reason) => format!("not judged: {reason}"),
+                None => "not judged".to_owned(),
+            },
         }
     }
 
@@ -41,11 +44,7 @@ impl Verdict {
     pub fn edge_sentence(&self, edge: &Edge, unit: &Unit, axis: &Axis) -> String {
         let len = axis.len();
         let label = if unit.is_unknown() { String::new() } else { format!(" {unit}") };
-        let adequacy = match edge.adequacy {
-            Adequacy::Within => "within tolerance",
-            Adequacy::Borderline => "borderline",
-            Adequacy::Outside => "outside tolerance",
-        };
+        let adequacy = edge.adequacy.word();
         let span = match edge.trusted {
             Some(Trusted { first, last }) => {
                 let stamp = |n: usize| (axis.stamp(n) * 1e9).round() / 1e9;

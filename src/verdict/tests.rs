@@ -50,6 +50,12 @@ impl LowPass {
     }
 }
 
+/// The output under the forecast.
+fn foretold(forecast: &Forecast, output: &dyn Fn(Extension) -> Vec<f64>) -> Vec<f64> {
+    let [left, right] = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
+    output(Extension::Continued { left: &left, right: &right })
+}
+
 fn judged(samples: &[f64], wavelength: f64) -> Verdict {
     let pass = LowPass { wavelength };
     let gain = |f: f64| pass.gain(f);
@@ -59,9 +65,13 @@ fn judged(samples: &[f64], wavelength: f64) -> Verdict {
     let structure = evidence.as_ref().map(structure).unwrap_or_default();
     let output = |extension: Extension| pass.output(samples, extension, &estimates);
     let forecast = evidence.as_ref().map(|evidence| Forecast::combine(evidence, &response));
+    let foretold = forecast.as_ref().map(|forecast| foretold(forecast, &output)).unwrap_or_default();
+    let past = evidence.as_ref().zip(forecast.as_ref());
     let case = Case {
         samples,
-        past: evidence.as_ref().zip(forecast.as_ref()),
+        past: past
+            .map(|(evidence, forecast)| Past { evidence, forecast, foretold: &foretold })
+            .ok_or(Unjudged::FewBlocks),
         structure,
         estimates,
         response: &response,
@@ -109,9 +119,10 @@ fn blocks_next_to_the_ends_tell_the_same_as_the_whole_output() {
         let evidence = Evidence::gather(&samples, Evidence::block_length(wavelength)).expect("blocks");
         let output = |extension: Extension| pass.output(&samples, extension, &estimates);
         let forecast = Forecast::combine(&evidence, &response);
+        let foretold = foretold(&forecast, &output);
         let case = Case {
             samples: &samples,
-            past: Some((&evidence, &forecast)),
+            past: Ok(Past { evidence: &evidence, forecast: &forecast, foretold: &foretold }),
             structure: Structure::default(),
             estimates,
             response: &response,
@@ -119,8 +130,6 @@ fn blocks_next_to_the_ends_tell_the_same_as_the_whole_output() {
             formed: Formed::InOnePass,
             tolerance: Tolerance::Share(0.1),
         };
-        let [left, right] = [Side::Left, Side::Right].map(|side| forecast.continuation(side));
-        let foretold = output(Extension::Continued { left: &left, right: &right });
         let zone = response.zone(samples.len());
         let near = Near::new(&evidence, &response, zone).expect("a short reach");
         let whole = whole_differences(&case, &foretold, zone);
@@ -173,13 +182,15 @@ fn scale_and_offset_change_nothing_and_reversal_swaps_the_ends() {
         assert!((4.0 * a.predicted_error / b.predicted_error - 1.0).abs() < 1e-5, "{}", a.name);
         assert_eq!((a.adequacy, a.trusted), (b.adequacy, b.trusted));
     }
-    let swapped = |name: &'static str| match name {
-        "even-odd" => "odd-even",
-        "odd-even" => "even-odd",
-        other => other,
-    };
+    fn swapped(name: &str) -> &str {
+        match name {
+            "even-odd" => "odd-even",
+            "odd-even" => "even-odd",
+            other => other,
+        }
+    }
     for edge in &plain.edges {
-        let other = reversed.edge(swapped(edge.name)).expect("the same rows");
+        let other = reversed.edge(swapped(&edge.name)).expect("the same rows");
         assert!((edge.predicted_error / other.predicted_error - 1.0).abs() < 1e-6, "{}", edge.name);
         let mirrored = other.trusted.map(|t| Trusted { first: 699 - t.last, last: 699 - t.first });
         assert_eq!(edge.trusted, mirrored, "{}", edge.name);
@@ -199,7 +210,14 @@ fn what_cannot_be_judged_is_not() {
 }
 
 fn edge(name: &'static str, predicted_error: f64, adequacy: Adequacy) -> Edge {
-    Edge { name, predicted_error, relative_error: predicted_error, bound: predicted_error, adequacy, trusted: None }
+    Edge {
+        name: name.into(),
+        predicted_error,
+        relative_error: predicted_error,
+        bound: predicted_error,
+        adequacy,
+        trusted: None,
+    }
 }
 
 #[test]
@@ -240,10 +258,11 @@ fn a_stricter_tolerance_trims_more() {
     let evidence = Evidence::gather(&samples, 1).expect("blocks");
     let forecast = Forecast::combine(&evidence, &response);
     let output = |extension: Extension| pass.output(&samples, extension, &estimates);
+    let foretold = foretold(&forecast, &output);
     let verdict = |tolerance| {
         let case = Case {
             samples: &samples,
-            past: Some((&evidence, &forecast)),
+            past: Ok(Past { evidence: &evidence, forecast: &forecast, foretold: &foretold }),
             structure: Structure::default(),
             estimates,
             response: &response,

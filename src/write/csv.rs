@@ -4,6 +4,7 @@ use std::io::Write;
 
 use super::blocks::pump;
 use super::field::push_field;
+use super::header::free_name;
 use super::number;
 use super::stamp::StampRule;
 use super::{Cells, Content, Digits, Extra, Writer, table};
@@ -58,9 +59,10 @@ fn write_plain(content: &Content<'_>, sink: &mut (dyn Write + Send)) -> Result<(
         head.push(b',');
         push_field(&mut head, &named(channel.name, channel.unit.label()), b',');
     }
+    let mut taken: Vec<String> = channels.iter().map(|channel| channel.name.to_owned()).collect();
     for extra in content.extra {
         head.push(b',');
-        push_field(&mut head, extra.name, b',');
+        push_field(&mut head, &free_name(extra.name, &mut taken), b',');
     }
     head.push(b'\n');
     sink.write_all(&head)?;

@@ -55,12 +55,14 @@ pub(super) fn rewrite(layout: &TableLayout, changes: &[Change<'_>], added: &[(St
             out.extend_from_slice(cell.text.as_bytes());
             out.extend_from_slice(cell.after.as_bytes());
         }
+        let mut taken: Vec<String> = cells.iter().map(|cell| bare(&cell.text).to_owned()).collect();
         for (name, unit) in added {
+            let name = free_name(name, &mut taken);
             out.push(layout.delimiter);
             let units_row = layout.units_line.is_some();
             let text = match (is_units, units_row || unit.is_empty()) {
                 (true, _) => unit.clone(),
-                (false, true) => name.clone(),
+                (false, true) => name,
                 (false, false) => format!("{name} [{unit}]"),
             };
             push_field(&mut out, &text, layout.delimiter);
@@ -68,6 +70,20 @@ pub(super) fn rewrite(layout: &TableLayout, changes: &[Change<'_>], added: &[(St
         out.extend_from_slice(&whole.as_bytes()[line.len()..]);
     }
     Ok(out)
+}
+
+/// `name`, or where a column has it already, the name with the first free number from 2 on behind it; it is then taken.
+pub(super) fn free_name(name: &str, taken: &mut Vec<String>) -> String {
+    let numbered = (2..).map(|n| format!("{name} {n}"));
+    let free = std::iter::once(name.to_owned()).chain(numbered).find(|candidate| !taken.contains(candidate));
+    let free = free.unwrap_or_else(|| name.to_owned());
+    taken.push(free.clone());
+    free
+}
+
+/// A column's name without its unit.
+fn bare(name: &str) -> &str {
+    name.split(['[', '(', '{']).next().unwrap_or_default().trim()
 }
 
 /// One field of a header line and what stands around it.

@@ -7,6 +7,7 @@ mod header;
 mod number;
 mod origin;
 mod restored;
+mod series;
 mod stamp;
 mod table;
 mod wav;
@@ -22,6 +23,7 @@ use crate::record::{Format, Record};
 pub use number::Digits;
 pub use origin::{Origin, Rows};
 pub use restored::RestoredTable;
+pub use series::spectrum_csv;
 pub use wave_header::{WAVE_ENCODINGS, WaveEncoding};
 pub use whole::{
     Durability, Overwrite, Pending, Written, discard_pending, finish_all, finish_together, is_same_file, refuse_twins,

@@ -367,7 +367,14 @@ impl Source {
                 self.pull(&mut text, BLOCK_BYTES)?;
             }
             let rest = self.ended.then_some((text.len(), 1));
-            while at < text.len() {
+            // Without a quote every line end ends a row: they need only be counted.
+            let plain = memchr::memchr(b'"', &text).is_none();
+            while plain && at < text.len() {
+                let Some((end, count)) = self.plain_job(&text, at) else { break };
+                parts.push((at..end, count));
+                (at, start) = (end, end);
+            }
+            while !plain && at < text.len() {
                 let Some((end, count)) = self.marks.row_end(&text, at).or(rest) else { break };
                 lines += count;
                 at = (end + 1).min(text.len());
@@ -382,6 +389,18 @@ impl Source {
         }
         self.carried = text[at..].to_vec();
         Ok((!parts.is_empty()).then(|| (Arc::new(text), parts)))
+    }
+
+    /// The end of a job's worth of rows from `at` on in a text without quotes, and their number.
+    fn plain_job(&self, text: &[u8], at: usize) -> Option<(usize, u64)> {
+        let line_end = self.marks.line_end;
+        let goal = (at + JOB_BYTES).min(text.len());
+        let within = memchr::memrchr(line_end, &text[at..goal]).map(|found| at + found + 1);
+        let beyond = || memchr::memchr(line_end, &text[goal..]).map(|found| goal + found + 1);
+        if let Some(end) = within.or_else(beyond) {
+            return Some((end, memchr::memchr_iter(line_end, &text[at..end]).count() as u64));
+        }
+        self.ended.then_some((text.len(), 1))
     }
 
     /// Reads what is left, so that a file that has changed is noticed.

@@ -7,11 +7,11 @@ use std::path::{Path, PathBuf};
 use std::sync::{Mutex, MutexGuard, PoisonError};
 
 use rayon::prelude::*;
-use sha2::{Digest, Sha256};
 use tempfile::{NamedTempFile, TempPath};
 
 use crate::error::{Error, Result};
 use crate::place::Place;
+use crate::read::Fingerprint;
 
 /// What to do with a file that is in the way.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
@@ -38,8 +38,7 @@ pub enum Durability {
 pub struct Pending<'a> {
     label: String,
     sink: Sink<'a>,
-    hash: Sha256,
-    bytes: u64,
+    fingerprint: Fingerprint,
 }
 
 enum Sink<'a> {
@@ -69,12 +68,12 @@ impl<'a> Pending<'a> {
     pub fn create(path: &Path, inputs: &[&Path], overwrite: Overwrite) -> Result<Pending<'a>> {
         let label = path.display().to_string();
         let sink = open(path, inputs, overwrite).map_err(|error| error.at(Place::file(label.clone())))?;
-        Ok(Pending { label, sink, hash: Sha256::new(), bytes: 0 })
+        Ok(Pending { label, sink, fingerprint: Fingerprint::default() })
     }
 
     /// An output that streams into `sink`, such as standard output under the label `-`.
     pub fn stream(label: &str, sink: impl Write + Send + 'a) -> Pending<'a> {
-        Pending { label: label.to_owned(), sink: Sink::Stream(Box::new(sink)), hash: Sha256::new(), bytes: 0 }
+        Pending { label: label.to_owned(), sink: Sink::Stream(Box::new(sink)), fingerprint: Fingerprint::default() }
     }
 
     /// Makes the output appear.
@@ -88,8 +87,8 @@ impl<'a> Pending<'a> {
     }
 
     /// SHA-256 of the bytes so far, lower-case hex.
-    pub fn fingerprint(&self) -> String {
-        hex(&self.hash.clone().finalize())
+    pub fn fingerprint(&mut self) -> String {
+        self.fingerprint.so_far()
     }
 
     /// The name as the user gave it.
@@ -115,7 +114,8 @@ impl<'a> Pending<'a> {
     }
 
     fn written(self) -> Written {
-        Written { path: self.label, sha256: hex(&self.hash.finalize()), bytes: self.bytes }
+        let (sha256, bytes) = self.fingerprint.finish();
+        Written { path: self.label, sha256, bytes }
     }
 
     /// An error of this output, with its name unless it tells another place.
@@ -130,8 +130,7 @@ impl Write for Pending<'_> {
             Sink::Whole { file, .. } => file.write(buffer),
             Sink::Stream(sink) => sink.write(buffer),
         }?;
-        self.hash.update(&buffer[..count]);
-        self.bytes += count as u64;
+        self.fingerprint.update(&buffer[..count]);
         Ok(count)
     }
 
@@ -225,10 +224,6 @@ fn resolved(path: &Path) -> PathBuf {
         (Ok(folder), Some(name)) => folder.join(name),
         _ => path.to_path_buf(),
     })
-}
-
-fn hex(bytes: &[u8]) -> String {
-    bytes.iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
 /// Removes every temporary file of outputs that are not finished. For the program's interrupt handler, right before it ends

@@ -78,21 +78,6 @@ pub fn height(len: usize) -> Option<usize> {
     (height >= 2 * LANES).then_some(height)
 }
 
-/// The least length from `least` on without a prime factor above 13.
-pub fn smooth_from(least: usize) -> usize {
-    (least.max(1)..).find(|len| is_smooth(*len)).unwrap_or(least)
-}
-
-/// Whether no prime factor exceeds 13.
-pub fn is_smooth(mut len: usize) -> bool {
-    for radix in [2, 3, 5, 7, 11, 13] {
-        while len.is_multiple_of(radix) {
-            len /= radix;
-        }
-    }
-    len == 1
-}
-
 /// The prime factors of `n` in ascending order, each once.
 pub fn primes(mut n: usize) -> Vec<usize> {
     let mut found = Vec::new();
@@ -126,7 +111,5 @@ mod tests {
     #[test]
     fn factors_multiply_back() {
         assert_eq!(primes(2 * 2 * 3 * 380_623), [2, 3, 380_623]);
-        assert_eq!(smooth_from(1009), 1014);
-        assert!(is_smooth(13 * 11 * 8) && !is_smooth(17));
     }
 }

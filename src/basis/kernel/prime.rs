@@ -6,8 +6,12 @@
 //! samples P/2 exponents apart and one with their differences. Both are done without wrapping, in a smooth length.
 
 use super::convolution::Convolution;
-use super::grid::{height, primes, smooth_from};
+use super::grid::{height, primes};
 use super::roots::Roots;
+use crate::numeric::smooth::smooth_from;
+
+/// Points of a convolution from which two threads are worth it.
+const PARALLEL: usize = 1 << 17;
 
 /// A plan for P points, P an odd prime.
 pub struct PrimeTransform {
@@ -57,7 +61,7 @@ impl PrimeTransform {
 
     /// Numbers of scratch that a transform needs.
     pub fn scratch_len(&self) -> usize {
-        2 * self.convolution.len() + self.convolution.scratch_len()
+        2 * (self.convolution.len() + self.convolution.scratch_len())
     }
 
     /// X_k = sum_n x_n exp(-2 pi i k n / P), unscaled.
@@ -111,8 +115,17 @@ impl PrimeTransform {
     fn convolve(&self, one: &mut [f64], two: &mut [f64], work: &mut [f64]) {
         one[self.prime / 2..].fill(0.0);
         two[self.prime / 2..].fill(0.0);
-        self.convolution.apply(one, &self.cosines, work);
-        self.convolution.apply(two, &self.sines, work);
+        let (work, more) = work.split_at_mut(self.convolution.scratch_len());
+        // The two do not touch each other; short ones are done before another thread has taken one up.
+        if self.convolution.len() < PARALLEL {
+            self.convolution.apply(one, &self.cosines, work);
+            self.convolution.apply(two, &self.sines, more);
+        } else {
+            rayon::join(
+                || self.convolution.apply(one, &self.cosines, work),
+                || self.convolution.apply(two, &self.sines, more),
+            );
+        }
     }
 
     fn lend<'a>(&self, scratch: &'a mut [f64]) -> (&'a mut [f64], &'a mut [f64], &'a mut [f64]) {

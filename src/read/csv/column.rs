@@ -150,6 +150,11 @@ pub(super) fn roles(
             Error::usage(format!("--time-unit {unit}: no unit of time or length")).remedy("for example ms, s, mm, m")
         );
     }
+    let mark = |field: usize| {
+        let name = escape(&columns[field].name);
+        let text = format!("column \"{name}\" tells which samples are trusted: left as it is (--channel)");
+        Finding::new("mark_column", text).at(Place { column: Some(field as u64 + 1), ..Place::default() })
+    };
     let channels = match &options.channels {
         Some(wanted) => {
             let chosen = selection::select(Some(wanted), &candidates)?;
@@ -160,7 +165,11 @@ pub(super) fn roles(
         }
         None => {
             let fit = |&field: &usize| Some(field) != stamps && contents[field] == Content::Number;
-            (0..columns.len()).filter(fit).filter(|&field| !counts_rows(&columns[field], &tracks[field])).collect()
+            let measured = |&field: &usize| {
+                !counts_rows(&columns[field], &tracks[field]) && !marks_trust(&columns[field], &tracks[field])
+            };
+            findings.extend((0..columns.len()).filter(fit).filter(|&f| marks_trust(&columns[f], &tracks[f])).map(mark));
+            (0..columns.len()).filter(fit).filter(measured).collect()
         }
     };
     if options.channels.is_none() {
@@ -279,6 +288,14 @@ fn counts_rows(column: &Column, track: &[f64]) -> bool {
         && column.unit.meaning().is_none()
         && track.len() >= 3
         && track.windows(2).all(|pair| pair[1] - pair[0] == 1.0)
+}
+
+/// A column that tells which samples are trusted, as outputs have it: named so, perhaps with a channel before and a number
+/// behind, and 0 or 1 on each row.
+fn marks_trust(column: &Column, track: &[f64]) -> bool {
+    let name = column.name.trim_end_matches(|c: char| c.is_ascii_digit()).trim_end();
+    let named = name == "trusted" || name.ends_with(" trusted");
+    named && column.unit.is_unknown() && track.iter().all(|flag| *flag == 0.0 || *flag == 1.0)
 }
 
 fn asked_for(wanted: &str, candidates: &[Candidate], contents: &[Content]) -> Result<usize> {

@@ -2,7 +2,7 @@
 
 use std::ops::Range;
 
-use super::field::{Dialect, Field, Look, MOST, fields, look};
+use super::field::{Dialect, Field, Look, MOST, fields, fields_into, look};
 use super::missing::Missing;
 use super::shown;
 use crate::error::{Error, Result};
@@ -74,7 +74,7 @@ enum Measure {
 /// # Errors
 /// `Malformed` when two pairs read the block differently and nothing decides between them.
 pub(super) fn detect(beginning: Beginning<'_>, options: &ReadOptions) -> Result<Option<Found>> {
-    let pairs = pairs(options);
+    let pairs = pairs(beginning.text, options);
     let need = if beginning.complete { [RUN, 0, 1].as_slice() } else { [RUN].as_slice() };
     for &least in need {
         for measure in [Measure::Pure, Measure::WithText] {
@@ -89,27 +89,46 @@ pub(super) fn detect(beginning: Beginning<'_>, options: &ReadOptions) -> Result<
 }
 
 /// The pairs that the options leave open. A comma separates and marks decimals at once only where fields are quoted, which
-/// the fields themselves show.
-fn pairs(options: &ReadOptions) -> Vec<Dialect> {
+/// the fields themselves show. Of separators that do not occur at all the first stands for the others: under each of them a
+/// line is one field.
+fn pairs(text: &[u8], options: &ReadOptions) -> Vec<Dialect> {
     let marks = [b'.', b','];
+    let mut stood_for = false;
     let delimiters = DELIMITERS.iter().copied().chain(options.delimiter.filter(|d| !DELIMITERS.contains(d)));
     delimiters
         .filter(|&delimiter| options.delimiter.is_none_or(|given| given == delimiter))
+        .filter(|&delimiter| {
+            let absent = delimiter != b' ' && memchr::memchr(delimiter, text).is_none();
+            !absent || options.delimiter.is_some() || !std::mem::replace(&mut stood_for, true)
+        })
         .flat_map(|delimiter| marks.map(|decimal| Dialect { delimiter, decimal, thousands: options.thousands }))
         .filter(|dialect| options.decimal.is_none_or(|given| given == dialect.decimal))
         .collect()
 }
 
-/// Looks of the fields of a line that may be data.
-fn shape(line: &[u8], dialect: Dialect, measure: Measure, missing: &Missing) -> Option<Vec<Look>> {
-    let fields = fields(line, dialect.delimiter);
-    let looks: Vec<Look> = fields.iter().map(|field| look(field, dialect, missing)).collect();
-    let numeric = looks.iter().any(|look| matches!(look, Look::Number | Look::Grouped));
-    let sound = |(look, field): (&Look, &Field<'_>)| {
-        *look != Look::Text
-            || (measure == Measure::WithText && (field.quoted || !field.text.iter().any(|b| SPLITTERS.contains(b))))
-    };
-    (numeric && looks.len() <= MOST && looks.iter().zip(&fields).all(sound)).then_some(looks)
+/// Looks of the fields of a line that may be data; `cells` is lent.
+fn shape<'a>(
+    line: &'a [u8],
+    dialect: Dialect,
+    measure: Measure,
+    missing: &Missing,
+    cells: &mut Vec<Field<'a>>,
+) -> Option<Vec<Look>> {
+    fields_into(line, dialect.delimiter, cells);
+    if cells.len() > MOST {
+        return None;
+    }
+    let (mut looks, mut numeric) = (Vec::new(), false);
+    for field in cells.iter() {
+        let look = look(field, dialect, missing);
+        let kept = measure == Measure::WithText && (field.quoted || !field.text.iter().any(|b| SPLITTERS.contains(b)));
+        if look == Look::Text && !kept {
+            return None;
+        }
+        numeric |= matches!(look, Look::Number | Look::Grouped);
+        looks.push(look);
+    }
+    numeric.then_some(looks)
 }
 
 /// True when two lines can belong to one table: as many fields, of the same kinds where neither is missing.
@@ -129,11 +148,12 @@ fn run(
     let missing = Missing::new(&options.missing, dialect.decimal);
     let mut best: Option<Found> = None;
     let mut current: Option<Found> = None;
+    let mut cells = Vec::new();
     for index in options.header_lines.unwrap_or(0)..beginning.lines.len() {
         if beginning.is_blank(index) {
             continue;
         }
-        let looks = shape(beginning.line(index), dialect, measure, &missing);
+        let looks = shape(beginning.line(index), dialect, measure, &missing, &mut cells);
         let goes_on = match (&current, &looks) {
             (Some(run), Some(looks)) => run.looks.iter().rev().take(RUN).all(|line| alike(line, looks)),
             _ => false,

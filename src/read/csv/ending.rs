@@ -4,7 +4,7 @@ use std::io::Read;
 
 use super::blocks::Blocks;
 use super::field::{Look, MOST, fields, look};
-use super::rows::{Cause, Fault, Plan};
+use super::rows::{Cause, Fault, Plan, Rows};
 use super::shown;
 use crate::error::{Error, Finding, Result};
 use crate::place::Place;
@@ -81,7 +81,7 @@ fn remainder<R: Read>(blocks: &mut Blocks<R>, plan: &Plan, fault: &Fault, quoted
     while let Some(block) = blocks.next(None)? {
         for line in block.split(|&byte| byte == plan.newline).filter(|line| !line.trim_ascii().is_empty()) {
             rest.lines += 1;
-            let is_row = || plan.read(line, quoted).1.is_none();
+            let is_row = || plan.read(line, quoted, Rows::new(plan)).1.is_none();
             if first.is_none() {
                 first = Some(line.trim_ascii().to_vec());
                 if let Some(field) = counted {

@@ -112,16 +112,23 @@ pub(super) fn record_end(text: &[u8], from: usize, delimiter: u8, newline: u8) -
 /// The fields of one whole line; a quote left open runs to the line's end.
 pub(super) fn fields(line: &[u8], delimiter: u8) -> Vec<Field<'_>> {
     let mut fields = Vec::new();
-    // A line holds no line end, so any byte that cannot occur in it will do; an open quote is then text.
-    if split(line, 0, delimiter, b'\n', &mut fields).is_none() {
-        let plain = line.split(|&byte| separates(byte, delimiter)).map(<[u8]>::trim_ascii);
-        fields = plain
-            .filter(|text| delimiter != b' ' || !text.is_empty())
-            .take(MOST + 1)
-            .map(|text| Field { text: Cow::Borrowed(text), quoted: false })
-            .collect();
-    }
+    fields_into(line, delimiter, &mut fields);
     fields
+}
+
+/// As `fields`, into a vector that is lent.
+pub(super) fn fields_into<'a>(line: &'a [u8], delimiter: u8, fields: &mut Vec<Field<'a>>) {
+    // A line holds no line end, so any byte that cannot occur in it will do; an open quote is then text.
+    if split(line, 0, delimiter, b'\n', fields).is_none() {
+        let plain = line.split(|&byte| separates(byte, delimiter)).map(<[u8]>::trim_ascii);
+        fields.clear();
+        fields.extend(
+            plain
+                .filter(|text| delimiter != b' ' || !text.is_empty())
+                .take(MOST + 1)
+                .map(|text| Field { text: Cow::Borrowed(text), quoted: false }),
+        );
+    }
 }
 
 /// Longest text that is looked at as a number, in bytes.
@@ -159,6 +166,12 @@ pub(super) fn number(text: &[u8], dialect: Dialect) -> Option<f64> {
 
 /// True for `1.200,50`, `1,200,300.5`, `1'200.5`: groups of three, then the decimal mark or several groups.
 pub(super) fn grouped(text: &[u8], decimal: u8) -> bool {
+    // The first group has three digits at most, and a mark follows it.
+    let signed = usize::from(matches!(text.first(), Some(b'-' | b'+')));
+    let digits = text[signed..].iter().take(4).take_while(|byte| byte.is_ascii_digit()).count();
+    if !(1..=3).contains(&digits) || !matches!(text.get(signed + digits), Some(b'.' | b',' | b'\'' | b' ')) {
+        return false;
+    }
     [b'.', b',', b'\'', b' ']
         .iter()
         .filter(|&&mark| mark != decimal && text.contains(&mark))

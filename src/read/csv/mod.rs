@@ -63,7 +63,7 @@ fn read_in_blocks(intake: &mut Intake<'_>, options: &ReadOptions, block_bytes: u
 
     let plan = plan(&opening, blocks.newline, options);
     let first_line = opening.found.first as u64 + 1;
-    let mut table = table::read(&mut blocks, &plan, first_line, opening.quoted, options.allow_truncated)?;
+    let mut table = table::read(&mut blocks, &plan, first_line, opening.quoted, options)?;
     let text = match (blocks.held, intake.path) {
         (Held::Text(text, _), _) => TextSource::Held(Arc::new(text)),
         (Held::No, Some(path)) => TextSource::File(path.to_owned()),

@@ -85,9 +85,9 @@ pub(super) enum Cause {
 type Outcome = std::result::Result<(), (Option<usize>, Cause)>;
 
 impl Plan {
-    /// Reads a block of whole lines up to the first fault. With `quoted`, fields may be quoted and hold line ends.
-    pub(super) fn read(&self, block: &[u8], quoted: bool) -> (Rows, Option<Fault>) {
-        let mut rows = Rows::new(self);
+    /// Reads a block of whole lines up to the first fault into `rows`, which are empty. With `quoted`, fields may be quoted
+    /// and hold line ends.
+    pub(super) fn read(&self, block: &[u8], quoted: bool, mut rows: Rows) -> (Rows, Option<Fault>) {
         let fault = match (quoted, self.dialect.delimiter) {
             (true, _) => self.read_quoted(block, &mut rows),
             (false, b' ') => self.read_plain::<true>(block, &mut rows),
@@ -377,6 +377,20 @@ impl Rows {
             line_count: 0,
             nul_lines: Vec::new(),
         }
+    }
+
+    /// No rows, in the memory of these.
+    pub(super) fn cleared(self, plan: &Plan) -> Rows {
+        let mut empty = Rows::new(plan);
+        for (slot, mut values) in empty.values.iter_mut().zip(self.values) {
+            values.clear();
+            *slot = values;
+        }
+        if let (Some(empty), Some(mut ticks)) = (&mut empty.ticks, self.ticks) {
+            ticks.ticks.clear();
+            empty.ticks = ticks.ticks;
+        }
+        empty
     }
 
     /// Joins the next rows.

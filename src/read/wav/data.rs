@@ -8,6 +8,7 @@ use super::format::WaveFormat;
 use super::sample::{self, Seat};
 use crate::error::{Error, Finding, Result};
 use crate::place::Place;
+use crate::read::refuse_beyond;
 use crate::record::{RawChannel, SampleType};
 use crate::unit::Unit;
 
@@ -55,6 +56,10 @@ pub(super) fn read(
     let start = stream.position();
     let at_chunk = |error: Error| error.at(chunk.place());
     let mut kept = selection(format.channels, options).map_err(at_chunk)?;
+    if let Extent::Stated(stated) = extent {
+        let samples = (stated / format.frame() as u64).saturating_mul(kept.len() as u64);
+        refuse_beyond(options.memory, samples.saturating_mul(8), "the record alone").map_err(at_chunk)?;
+    }
     let bytes = decode(stream, format, extent, &mut kept)?;
     let place = Place::byte(start + bytes, Some("data"));
     let ending = match extent {

@@ -23,6 +23,8 @@ pub struct Options<'a> {
     pub channels: Option<&'a [String]>,
     /// A rate given by the user: a header that states 0 Hz is then no error.
     pub rate_hz: Option<f64>,
+    /// Most bytes of memory that the samples may take.
+    pub memory: Option<u64>,
 }
 
 /// True when the first bytes are those of a RIFF, RIFX, RF64 or BW64 file, or the name says `.wav`.

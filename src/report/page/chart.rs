@@ -71,7 +71,7 @@ fn drawn(figure: &Figure, choice: Option<&Choice>, id: &str) -> Markup {
                 div class="y-ticks" aria-hidden="true" {
                     @for tick in upwards.ticks(5, y_origin) { (label(&tick, "bottom")) }
                 }
-                div class="field" role="img" tabindex="0" aria-label=(escape(&figure.description))
+                div class={ "field" @if framed(figure) { " framed" } } role="img" tabindex="0" aria-label=(escape(&figure.description))
                     data-x=(data(&across, figure.x.spacing)) data-y=(data(&upwards, figure.y.spacing))
                     data-x-unit=(escape(&figure.x.unit)) data-y-unit=(escape(&figure.y.unit)) {
                     (field(figure, &across, &upwards, x_origin, y_origin))
@@ -86,6 +86,11 @@ fn drawn(figure: &Figure, choice: Option<&Choice>, id: &str) -> Markup {
             (beside(figure))
         }
     }
+}
+
+/// True where the figure tells the record from what lies past it.
+fn framed(figure: &Figure) -> bool {
+    figure.spans.iter().any(|span| span.kind == Stretch::Record)
 }
 
 /// `time [s], from 1764000000`.

@@ -34,7 +34,8 @@ pub fn comparison_page(report: &Comparison, pictures: &[Picture]) -> Page {
         });
     }
     for (index, channel) in report.channels.iter().enumerate() {
-        let picture = pictures.iter().take(DRAWN).find(|picture| picture.name == channel.name);
+        let picture =
+            pictures.iter().take(DRAWN).find(|picture| picture.name == channel.name && !picture.curves.is_empty());
         sections.push(section(channel, picture, axis, count, index));
     }
     let notes: Vec<_> = report.notes.iter().collect();
@@ -63,9 +64,7 @@ fn section(
     match picture {
         Some(picture) => blocks.extend(shared::ends(picture, axis, count)),
         None if index >= DRAWN => {
-            blocks.push(Block::Text(format!(
-                "Figures are drawn for the first {DRAWN} channels; choose others with --channel."
-            )));
+            blocks.push(Block::Text(shared::too_many()));
         }
         None => blocks.push(Block::Text("Nothing was judged here, so there is no figure.".to_owned())),
     }

@@ -23,6 +23,44 @@ pub struct Content<'a> {
     pub trusted: Option<TrustedReport>,
 }
 
+/// Densities before and after, and the gain between them.
+#[derive(Debug, Clone)]
+pub struct Spectra {
+    /// `Hz` or `1/m`.
+    pub frequency_unit: &'static str,
+    /// Units of the densities before and after.
+    pub units: [String; 2],
+    /// Of the record.
+    pub before: Vec<[f64; 2]>,
+    /// Of the output.
+    pub after: Vec<[f64; 2]>,
+    /// Gain of the operators as applied.
+    pub gain: Vec<[f64; 2]>,
+}
+
+/// An integral with its uncertainty.
+#[derive(Debug, Clone)]
+pub struct Stack {
+    /// The record less offset and drift, whose integral the result is.
+    pub corrected: Vec<[f64; 2]>,
+    /// Place, and the result less and plus two standard deviations.
+    pub band: Vec<[f64; 3]>,
+}
+
+impl Stack {
+    /// Of an integral on the record's own grid.
+    pub fn of(axis: &Axis, corrected: &[f64], result: &[f64], deviations: &[f64]) -> Stack {
+        let every = result.len().div_ceil(KEPT / 2).max(1);
+        let limits = |n: usize| {
+            Some([axis.stamp(n), result.get(n)? - 2.0 * deviations.get(n)?, result[n] + 2.0 * deviations[n]])
+        };
+        Stack {
+            corrected: thinned(corrected, axis.start(), axis.step(), KEPT),
+            band: (0..result.len()).step_by(every).chain(result.len().checked_sub(1)).filter_map(limits).collect(),
+        }
+    }
+}
+
 /// Points kept of a line over the whole record: a page thins further where it shows several channels.
 const KEPT: usize = 1000;
 
@@ -39,11 +77,22 @@ pub struct Passage {
     pub after: Vec<[f64; 2]>,
     /// What was taken away; where input and output are of one unit and stand on one axis.
     pub removed: Option<Vec<[f64; 2]>>,
+    /// What the operators did at every frequency; `None` for records too short for a density.
+    pub spectra: Option<Spectra>,
+    /// The integral with its uncertainty, where there is one.
+    pub integral: Option<Stack>,
 }
 
 impl Passage {
     /// From a channel and its output on `axis`.
-    pub fn of(channel: Channel<'_>, output: &[f64], axis: &Axis, same_unit: bool, picture: Option<Picture>) -> Passage {
+    pub fn of(
+        channel: Channel<'_>,
+        output: &[f64],
+        axis: &Axis,
+        same_unit: bool,
+        picture: Option<Picture>,
+        spectra: Option<Spectra>,
+    ) -> Passage {
         let thin = |values: &[f64], axis: &Axis| thinned(values, axis.start(), axis.step(), KEPT);
         let alike = same_unit && axis == channel.axis && output.len() == channel.samples.len();
         let removed = alike.then(|| {
@@ -57,6 +106,8 @@ impl Passage {
             before: thin(channel.samples, channel.axis),
             after: thin(output, axis),
             removed,
+            spectra,
+            integral: None,
         }
     }
 }

@@ -99,7 +99,8 @@ fn drawn(block: &Block, sets: &mut usize) -> Markup {
 fn table(content: &Table) -> Markup {
     html! {
         div class="scroll" tabindex="0" role="region" aria-label=(escape(&content.caption)) {
-            table {
+            // Two columns are names and facts, which may be long.
+            table class=[(content.head.len() == 2).then_some("facts")] {
                 caption { (escape(&content.caption)) }
                 thead { tr { @for head in &content.head { th scope="col" { (escape(head)) } } } }
                 tbody {

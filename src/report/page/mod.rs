@@ -7,6 +7,7 @@ mod content;
 mod figures;
 mod html;
 mod shared;
+mod spectral;
 mod thin;
 mod tick;
 
@@ -14,9 +15,10 @@ use serde::Serialize;
 
 pub use compared::comparison_page;
 pub use conditioned::condition_page;
-pub use content::Passage;
+pub use content::{Passage, Spectra, Stack};
 pub use figures::{figures_csv, figures_json};
 pub use html::html;
+pub use spectral::spectrum_page;
 pub use thin::{thinned, thinned_along};
 
 /// Points on a page at most, over all figures: a browser opens that many at once without a pause.

@@ -19,6 +19,11 @@ pub const DRAWN: usize = 6;
 /// Lines' worth of points that one channel's figures take.
 const LINES: usize = 24;
 
+/// What stands where a channel's figures would.
+pub fn too_many() -> String {
+    format!("Figures are drawn for the first {DRAWN} channels; choose others with --channel.")
+}
+
 /// Points of a line that runs over the whole record, when so many channels are drawn.
 pub fn points(channels: usize) -> usize {
     (POINTS / (LINES * channels.clamp(1, DRAWN))).min(1000)

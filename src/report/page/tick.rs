@@ -26,8 +26,9 @@ impl Scale {
         if low > high {
             return Scale { spacing, low: 0.0, high: 1.0 };
         }
-        // A line without height still needs an axis: a millionth of its value, or 1 around nothing.
-        let least = if spacing == Spacing::Logarithmic { 0.5 } else { 1e-6 * low.abs().max(high.abs()) };
+        // A line without height still needs an axis: a thousand-millionth of its value, or 1 around nothing. Seconds
+        // counted from 1970 differ by no more within a short record.
+        let least = if spacing == Spacing::Logarithmic { 0.5 } else { 1e-9 * low.abs().max(high.abs()) };
         let range = if high - low > least {
             high - low
         } else if least > 0.0 {
@@ -101,22 +102,29 @@ impl Scale {
             .collect()
     }
 
+    /// Whole decades, about `count`; over a few decades 2 and 5 of them as well, where there is room.
     fn decades(&self, count: usize) -> Vec<Tick> {
         let (first, last) = (self.low.floor() as i64, self.high.ceil() as i64);
         let every = ((last - first) as usize / count.max(1)).max(1) as i64;
         let few = last - first <= 3;
+        let mut ticks: Vec<Tick> = Vec::new();
         let multiples: &[f64] = if few { &[1.0, 2.0, 5.0] } else { &[1.0] };
-        (first..=last)
-            .filter(|k| few || k.rem_euclid(every) == 0)
-            .flat_map(|k| multiples.iter().map(move |m| m * 10.0_f64.powi(k as i32)))
-            .filter_map(|value| {
-                let at = self.at(value).filter(|at| (-1e-9..=1.0 + 1e-9).contains(at))?;
-                Some(Tick { at, text: minus(&crate::report::text::figure(value, 3)) })
-            })
-            .take(20)
-            .collect()
+        for multiple in multiples {
+            for power in (first..=last).filter(|k| few || k.rem_euclid(every) == 0) {
+                let value = multiple * 10.0_f64.powi(power as i32);
+                let Some(at) = self.at(value).filter(|at| (-1e-9..=1.0 + 1e-9).contains(at)) else { continue };
+                if ticks.iter().all(|tick| (tick.at - at).abs() >= ROOM) {
+                    ticks.push(Tick { at, text: minus(&crate::report::text::figure(value, 3)) });
+                }
+            }
+        }
+        ticks.sort_by(|a, b| a.at.total_cmp(&b.at));
+        ticks
     }
 }
+
+/// Share of the axis that a label takes on a narrow page.
+const ROOM: f64 = 0.1;
 
 fn forward(spacing: Spacing, value: f64) -> f64 {
     match spacing {

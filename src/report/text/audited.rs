@@ -6,6 +6,7 @@ use crate::place::escape;
 use crate::record::Format;
 use crate::report::AuditReport;
 use crate::report::text::{axis_text, figure, indented, notes_text, table};
+use crate::unit::counted;
 
 /// The audit of one file.
 pub fn audit_text(report: &AuditReport) -> String {
@@ -16,11 +17,11 @@ pub fn audit_text(report: &AuditReport) -> String {
     let mut text = format!("{}: {format}, {} bytes, ", escape(&report.path), report.bytes);
     match &report.axis {
         Some(axis) => text.push_str(&format!("{}\n", axis_text(axis, report.audit.rows))),
-        None => text.push_str(&format!("{} rows\n", report.audit.rows)),
+        None => text.push_str(&format!("{}\n", counted(report.audit.rows, "row"))),
     }
     if let Some(stamps) = &report.audit.stamps {
         let gaps = if stamps.missing > 0 {
-            format!(", {} rows missing in {} gaps", stamps.missing, stamps.gaps.len())
+            format!(", {} missing in {}", counted(stamps.missing, "row"), counted(stamps.gaps.len(), "gap"))
         } else {
             String::new()
         };
@@ -62,7 +63,7 @@ pub fn audit_text(report: &AuditReport) -> String {
         ]);
     }
     text.push_str(&indented(&rows));
-    text.push_str(&format!("a run will take about {} MiB\n", report.audit.estimate.bytes.div_ceil(1 << 20)));
+    text.push_str(&format!("{}\n", report.audit.estimate.sentence()));
     text.push_str(&notes_text(&report.audit.findings));
     if let Some(refusal) = &report.refusal {
         text.push_str(&format!("a run would be refused: {}\n", escape(refusal)));

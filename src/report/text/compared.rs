@@ -1,7 +1,8 @@
 //! A comparison of extensions for people.
 
+use crate::compare::standings_text;
 use crate::place::escape;
-use crate::report::text::{figure, indented, input_line, notes_text, planned, table};
+use crate::report::text::{figure, indented, input_line, notes_text, planned, table, unmet_text};
 use crate::report::{ChannelComparison, Comparison};
 use crate::verdict::Adequacy;
 
@@ -13,9 +14,10 @@ pub fn comparison_text(report: &Comparison) -> String {
         text.push_str(&channel_text(channel, report));
     }
     text.push_str(&notes_text(&report.notes));
-    if !report.requirement_met {
-        text.push_str("the required adequacy at the edges was not met\n");
+    for channel in &report.channels {
+        text.push_str(&notes_text(&channel.notes));
     }
+    text.push_str(&unmet_text(&report.unmet));
     text
 }
 
@@ -23,7 +25,11 @@ fn channel_text(channel: &ChannelComparison, report: &Comparison) -> String {
     let unit = if channel.unit.is_unknown() { String::new() } else { format!(" [{}]", channel.unit) };
     let mut text = format!("\n{}{unit}\n", escape(&channel.name));
     let Some(verdict) = &channel.verdict else {
-        text.push_str("  nothing to judge: the operators have no corner, or an integral keeps zero frequency\n");
+        let reason = channel.not_judged.map_or(String::new(), |reason| format!(": {reason}"));
+        text.push_str(&format!("  nothing to judge{reason}\n"));
+        if !channel.assertions.is_empty() {
+            text.push_str(&format!("  asserted {}\n", standings_text(&channel.assertions)));
+        }
         return text;
     };
     let mut rows = table(&[
@@ -49,7 +55,11 @@ fn channel_text(channel: &ChannelComparison, report: &Comparison) -> String {
             shown(row.relative_error.map(|r| 100.0 * r)),
             shown(row.bound),
             row.adequacy.map_or("-", adequacy_word).to_owned(),
-            row.trusted.map_or_else(|| "none".to_owned(), |span| format!("{}..{}", span.first, span.last)),
+            match row.trusted {
+                Some(span) => format!("{}..{}", span.first, span.last),
+                None if row.adequacy.is_some() => "none".to_owned(),
+                None => "-".to_owned(),
+            },
             metric("value_jump"),
             metric("slope_jump"),
             metric("leakage_share_db"),
@@ -74,6 +84,10 @@ fn channel_text(channel: &ChannelComparison, report: &Comparison) -> String {
             side("right", &ends.right),
             figure(ends.noise, 3)
         ));
+    }
+    if let Some(veto) = &channel.veto {
+        let above = figure(veto.excess_over_even_db, 2);
+        text.push_str(&format!("  leakage speaks against {}: {above} dB above even\n", veto.extension));
     }
     text.push_str(&format!("  {}\n", verdict.sentence));
     text.push_str(&format!("  condition would take {}", channel.takes));

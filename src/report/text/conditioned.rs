@@ -2,9 +2,11 @@
 
 use std::collections::BTreeSet;
 
+use crate::compare::standings_text;
 use crate::place::escape;
-use crate::report::Report;
-use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
+use crate::report::text::integrated::integral_text;
+use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table, unmet_text};
+use crate::report::{ChannelReport, Report, SplitReport};
 
 /// A short summary for people: what was read, assumed, done and written, with RMS and peak before and after.
 pub fn summary(report: &Report) -> String {
@@ -44,15 +46,25 @@ pub fn summary(report: &Report) -> String {
     for channel in &report.channels {
         if let Some(verdict) = &channel.verdict {
             text.push_str(&format!("{}: {}\n", escape(&channel.name), verdict.sentence));
+        } else if !channel.assertions.is_empty() {
+            text.push_str(&format!("{}: asserted {}\n", escape(&channel.name), standings_text(&channel.assertions)));
+        }
+    }
+    for channel in &report.channels {
+        if let Some(split) = &channel.split {
+            text.push_str(&split_text(channel, split));
+        }
+    }
+    for channel in &report.channels {
+        if let Some(integral) = &channel.integral {
+            text.push_str(&integral_text(&channel.name, integral, &channel.unit, &report.input.axis));
         }
     }
     text.push_str(&notes_text(&report.notes));
     for channel in &report.channels {
         text.push_str(&notes_text(&channel.notes));
     }
-    if !report.requirement_met {
-        text.push_str("the required adequacy at the edges was not met\n");
-    }
+    text.push_str(&unmet_text(&report.unmet));
     for output in &report.outputs {
         if output.path == "-" {
             text.push_str("wrote to standard output\n");
@@ -61,4 +73,20 @@ pub fn summary(report: &Report) -> String {
         }
     }
     text
+}
+
+/// `z: split at 8mm, waviness RMS 12.3 um, roughness RMS 1.2 um; end treatment: ...`.
+fn split_text(channel: &ChannelReport, split: &SplitReport) -> String {
+    let rms = |level: &Option<crate::audit::level::Level>| {
+        let value = level.as_ref().map_or_else(|| "-".to_owned(), |l| figure(l.rms, 4));
+        format!("{value} {}", channel.unit).trim_end().to_owned()
+    };
+    format!(
+        "{}: split at {}, waviness RMS {}, roughness RMS {}; end treatment: {}\n",
+        escape(&channel.name),
+        split.corner,
+        rms(&split.waviness),
+        rms(&split.roughness),
+        channel.extension.end_treatment
+    )
 }

@@ -10,7 +10,8 @@ pub fn exposures_text(channels: &[ChannelReport], axis_unit: &str, caution: &str
     let weighted = || channels.iter().filter_map(|channel| channel.exposure.as_ref().map(|e| (channel, e)));
     let Some((_, first)) = weighted().next() else { return String::new() };
     let running = format!("MTVV ({} s)", figure(first.running_s, 4));
-    let mut rows = table(&["channel", "weighting", "RMS", &running, "at", "VDV", "crest", "MTVV/RMS", "VDV/(RMS T^1/4)", "unit"]);
+    let mut rows =
+        table(&["channel", "weighting", "RMS", &running, "at", "VDV", "crest", "MTVV/RMS", "VDV/(RMS T^1/4)", "unit"]);
     let shown = |value: Option<f64>| value.map_or_else(|| "-".to_owned(), |v| figure(v, 4));
     for (channel, e) in weighted() {
         rows.add_row(vec![

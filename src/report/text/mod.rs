@@ -6,7 +6,9 @@ mod compared;
 mod conditioned;
 mod exposed;
 mod figure;
+mod integrated;
 mod planned;
+mod spectral;
 
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, Table};
@@ -14,14 +16,16 @@ use comfy_table::{CellAlignment, Table};
 use crate::compare::How;
 use crate::error::Finding;
 use crate::report::{AxisReport, ExtensionReport, InputReport};
+use crate::unit::counted;
 
 pub use archived::{archive_text, listing_text, restore_text};
 pub use audited::audit_text;
 pub use compared::comparison_text;
 pub use conditioned::summary;
 pub use planned::plan_text;
+pub use spectral::spectrum_text;
 
-pub(crate) use figure::figure;
+pub use figure::figure;
 pub(super) use planned::operators_text;
 
 /// A table without rules: first column to the left, the others to the right.
@@ -63,7 +67,8 @@ fn axis_text(axis: &AxisReport, samples: usize) -> String {
     let last = axis.start + (samples.saturating_sub(1)) as f64 * axis.step;
     let unit = &axis.unit;
     format!(
-        "{samples} samples, {} {rate_unit} ({how}{interval}), {} {unit} to {} {unit}",
+        "{}, {} {rate_unit} ({how}{interval}), {} {unit} to {} {unit}",
+        counted(samples, "sample"),
         figure(axis.rate, 8),
         figure(axis.start, 10),
         figure(last, 10),
@@ -79,6 +84,14 @@ fn extension_text(extension: &ExtensionReport) -> String {
     };
     let seat = if extension.kind == "periodic" { String::new() } else { format!("{} seat, ", extension.seat) };
     format!("{} ends ({seat}{}), {chosen}", extension.kind, extension.transform)
+}
+
+/// The channels that do not meet the requirement, and why.
+fn unmet_text(unmet: &[Finding]) -> String {
+    unmet
+        .iter()
+        .map(|finding| format!("requirement not met: {}\n", crate::place::escape(&finding.to_string())))
+        .collect()
 }
 
 fn notes_text(notes: &[Finding]) -> String {

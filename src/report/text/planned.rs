@@ -1,8 +1,9 @@
 //! A plan for people: what a run would do, and the gain at and around each corner.
 
-use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach};
+use crate::operator::{ChainDescription, OperatorDescription, PassDescription, PassEnds, Reach, Start};
 use crate::report::text::{extension_text, figure, indented, input_line, notes_text, table};
 use crate::report::{AxisReport, DespikeReport, Plan, SmoothReport, StrengthSource};
+use crate::unit::counted;
 
 /// The plan of a dry run.
 pub fn plan_text(plan: &Plan) -> String {
@@ -78,6 +79,16 @@ pub fn treated_text(
     text
 }
 
+fn rate_label(axis: &AxisReport) -> &'static str {
+    if axis.kind == "time" { "Hz" } else { "samples/m" }
+}
+
+/// An operator with its argument; a split is always Gaussian.
+fn named(operator: &OperatorDescription) -> String {
+    let shape = if operator.option == "split" { " (gaussian, ISO 16610-21)" } else { "" };
+    format!("{} {}{shape}", operator.option, operator.value)
+}
+
 /// The operators in the order in which they run, and their reach.
 pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
     let mut text = String::new();
@@ -94,25 +105,31 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
         let first = pass.operators.iter().filter(|operator| matches!(operator.kind, "weighting" | "response"));
         parts.extend(first.map(|operator| format!("{} {}", operator.option, operator.value)));
         let before = parts.len();
-        parts.extend(pass.operators.iter().filter(is_filter).map(|o| format!("{} {}", o.option, o.value)));
+        parts.extend(pass.operators.iter().filter(is_filter).map(named));
         parts.dedup(); // a band-pass stands for two gains
-        if parts.len() > before {
-            parts.push(chain.shape.clone()); // the roll-off belongs to the filters alone
+        // The roll-off belongs to the filters alone, and a split is always Gaussian.
+        let shaped = pass.operators.iter().filter(is_filter).any(|operator| operator.option != "split");
+        if parts.len() > before && shaped {
+            parts.push(chain.shape.clone());
         }
         match pass.turns {
             0 => {}
             turns if turns > 0 => parts.push(format!("differentiate {turns}")),
-            turns => parts.push(format!("integrate {}, starting at rest", -turns)),
+            turns => {
+                let conditions = chain.conditions.as_deref().unwrap_or_default();
+                parts.push(format!("integrate {}, end conditions {conditions}", -turns));
+                parts.extend(chain.offset.as_ref().map(|offset| format!("offset {offset} taken off")));
+            }
         }
         let last = index + 1 == chain.passes.len();
         let smooths = pass.robust || pass.operators.iter().any(|operator| operator.kind == "smoothing");
         if let Some(smooth) = chain.smooth.as_ref().filter(|smooth| smooths || (last && smooth.starts_with("auto"))) {
             parts.push(format!("smooth {smooth}"));
         }
-        if let Some(resampling) = chain.resampling.filter(|_| pass.resamples) {
-            let label = if axis.kind == "time" { "Hz" } else { "samples/m" };
-            let against = if resampling.ratio.value() > 1.0 { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
-            parts.push(format!("resample to {} {label}{against}", figure(axis.rate / resampling.ratio.value(), 8)));
+        if let Some(grid) = chain.resampling.as_ref().filter(|_| pass.resamples) {
+            let against =
+                if grid.rate < grid.rate_in { ", raised cosine from 0.8 of the new Nyquist frequency" } else { "" };
+            parts.push(format!("resample to {} {}{against}", figure(grid.rate, 8), rate_label(axis)));
         }
         if parts.is_empty() {
             parts.push("no operator: a plain conversion".to_owned());
@@ -125,18 +142,43 @@ pub fn operators_text(chain: &ChainDescription, axis: &AxisReport) -> String {
         };
         text.push_str(&format!("{pass_text}{}{ends}\n", parts.join(", ")));
     }
+    if let Some(grid) = &chain.resampling {
+        let unit = &axis.unit;
+        let kept = match grid.start {
+            Start::Kept => "as in the record".to_owned(),
+            Start::Centre => format!(
+                "{} {unit} {} the first of the record: half the difference of the steps",
+                figure(grid.shift.abs(), 6),
+                if grid.shift < 0.0 { "before" } else { "after" }
+            ),
+        };
+        text.push_str(&format!(
+            "{} samples at {} {} from {} {unit} on, {kept}\n",
+            grid.samples,
+            figure(grid.rate, 8),
+            rate_label(axis),
+            figure(grid.first_stamp, 10)
+        ));
+    }
     let plain = |pass: &PassDescription| pass.operators.is_empty();
     let identity = chain.turns == 0 && chain.passes.iter().all(plain);
     if identity {
         return text;
     }
     match chain.reaches.reach {
-        Reach::Samples(samples) => text.push_str(&format!(
-            "reach {} samples ({} {}): so far from each end the result depends on what is assumed past it\n",
-            figure(samples, 4),
-            figure(samples * axis.step, 4),
-            axis.unit
-        )),
+        Reach::Samples(samples) => {
+            text.push_str(&format!(
+                "reach {} ({} {}): so far from each end the result depends on what is assumed past it",
+                counted(figure(samples, 4), "sample"),
+                figure(samples * axis.step, 4),
+                axis.unit
+            ));
+            // Beyond it lies 1e-13 of the response: nothing that a double could show.
+            if let Some(numeric) = chain.reaches.numeric.filter(|numeric| *numeric > 0.0) {
+                text.push_str(&format!("; to the last digit, {}", counted(figure(numeric, 4), "sample")));
+            }
+            text.push('\n');
+        }
         Reach::Unbounded => {
             text.push_str("reach unbounded: the whole result depends on what is assumed past the ends\n")
         }
