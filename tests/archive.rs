@@ -303,25 +303,27 @@ fn numbers_in_hostile_fields_allocate_nothing() {
 }
 
 #[test]
-fn a_road_profile_comes_near_the_rate_distortion_bound() {
+fn a_road_profile_comes_nearer_the_bound_than_scalar_quantisation() {
     // ISO 8608: displacement density falls as the square of the spatial frequency. The record is a Gaussian one of that
     // density in the cosine basis, so its rate-distortion function is known: reverse water-filling over the variances
     // (Shannon 1959; Berger 1971, chapter 4).
-    let len = 131_072;
+    let len = 65_536;
     let planner = Planner::new();
     let deviations: Vec<f64> = (0..len).map(|k| 1.0 / (k.max(3) as f64)).collect();
     let mut random = Random(5);
     let mut record: Vec<f64> = deviations.iter().map(|s| s * random.normal()).collect();
     let plan = planner.plan(endgrain::ends::Ends::EVEN, len).expect("a plan");
     plan.inverse(&mut record, &mut vec![0.0; plan.scratch_len()]);
-    for water in [4e-6_f64] {
+    for water in [8e-6_f64] {
         let distortion = deviations.iter().map(|s| (s * s).min(water * water)).sum::<f64>() / len as f64;
         let rate = deviations.iter().map(|s| (s / water).log2().max(0.0)).sum::<f64>() / len as f64;
         let made =
             encode(&record, Cast::Double, Limit::Rms(distortion.sqrt()), Effort::Usual, &planner).expect("coded");
         let bytes: usize = made.iter().filter_map(|m| m.coded.as_ref()).map(|c| c.payload.len()).sum();
         let found = 8.0 * bytes as f64 / len as f64;
-        assert!(found < rate + 0.15 && found > rate - 0.05, "{found} bits a sample against {rate}");
+        // A uniform quantiser with an ideal entropy coder stays 0.5 log2(2 pi e / 12) = 0.2546 bits above the bound at high
+        // rates (Gish and Pierce 1968); and nothing gets below it.
+        assert!(found < rate + 0.2546 && found > rate - 0.05, "{found} bits a sample against {rate}");
     }
 }
 
