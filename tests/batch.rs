@@ -207,7 +207,23 @@ fn any_result_is_a_recipe_that_gives_the_same_bytes() {
             &["--bandpass", "0.5Hz..20Hz", "--extension", "odd", "--calibrate", "ax=0.1", "--calibrate", "ay=0.1FS"],
         ),
         ("wav", &["--channel", "ay", "--lowpass", "9Hz", "--encoding", "pcm24", "--calibrate", "ay=0.1"]),
-        ("csv", &["--from", "0.5s", "--edges", "mark", "--tolerance", "3%", "--integrate", "1", "--conditions", "steady", "--highpass", "2Hz"]),
+        (
+            "csv",
+            &[
+                "--from",
+                "0.5s",
+                "--edges",
+                "mark",
+                "--tolerance",
+                "3%",
+                "--integrate",
+                "1",
+                "--conditions",
+                "steady",
+                "--highpass",
+                "2Hz",
+            ],
+        ),
     ];
     for (format, options) in cases {
         let (first, again, batched) = (format!("first.{format}"), format!("again.{format}"), format!("b.{format}"));

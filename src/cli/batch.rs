@@ -86,8 +86,7 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let Some(into) = matches.get_one::<PathBuf>("into") else { return Err(Error::usage("no --into")) };
     let text = |name: &str| matches.get_one::<String>(name).map(String::as_str);
     let shard = text("shard").map_or(Ok(Shard::WHOLE), str::parse)?;
-    let memory =
-        text("memory").map_or_else(|| Ok(machine::half_of_free_memory()), settings::bytes)?;
+    let memory = text("memory").map_or_else(|| Ok(machine::half_of_free_memory()), settings::bytes)?;
     let jobs = matches.get_one::<NonZeroUsize>("jobs").copied();
     let recipe = args::recipe_of(matches)?;
     let template = text("name").map(Template::parse).transpose()?.or_else(|| recipe.name.clone()).unwrap_or_default();
