@@ -11,7 +11,10 @@ use endgrain::settings::{Settings, rows};
 use endgrain::unit::Unit;
 
 /// The check of each target, by name.
-pub static CHECKS: &[(&str, fn(&[u8]))] = &[("table", table), ("wave", wave), ("stamps", stamps), ("options", options)];
+/// A name and what it does with bytes.
+pub type Check = (&'static str, fn(&[u8]));
+
+pub static CHECKS: &[Check] = &[("table", table), ("wave", wave), ("stamps", stamps), ("options", options)];
 
 /// Rows beyond which only the reader is checked: the audit would take all the time.
 const MANY: usize = 4000;

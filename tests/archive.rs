@@ -314,7 +314,8 @@ fn a_road_profile_comes_nearer_the_bound_than_scalar_quantisation() {
     let mut record: Vec<f64> = deviations.iter().map(|s| s * random.normal()).collect();
     let plan = planner.plan(endgrain::ends::Ends::EVEN, len).expect("a plan");
     plan.inverse(&mut record, &mut vec![0.0; plan.scratch_len()]);
-    for water in [8e-6_f64] {
+    {
+        let water = 8e-6_f64;
         let distortion = deviations.iter().map(|s| (s * s).min(water * water)).sum::<f64>() / len as f64;
         let rate = deviations.iter().map(|s| (s / water).log2().max(0.0)).sum::<f64>() / len as f64;
         let made =

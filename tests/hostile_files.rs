@@ -1,5 +1,6 @@
 //! Files that no logger wrote: endless lines, bombs, escape codes, encodings that change, dates in two columns.
 
+#[expect(dead_code, reason = "what other tests of runs need")]
 mod runs;
 
 use std::io::{Cursor, Read, Write};

@@ -245,7 +245,8 @@ fn noise_scatters_as_the_band_says() {
     // band. 1500 trials scatter by 1.8 %.
     use endgrain::integral::{Band, HighPass, Solver, Trial};
     let (count, length, trials) = (128usize, 4.0, 1500);
-    let cases: [(&str, Solver, &[(&str, &str)]); 8] = [
+    type Case<'a> = (&'a str, Solver, &'a [(&'a str, &'a str)]);
+    let cases: [Case<'_>; 8] = [
         ("start-rest", Solver::StartRest, &[]),
         ("rest", Solver::Rest, &[]),
         ("rest-to=0m", Solver::RestTo(0.0), &[]),

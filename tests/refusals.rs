@@ -1,5 +1,6 @@
 //! What is refused rather than done in silence: inputs that would be replaced, options that nothing reads, numbers that are none.
 
+#[expect(dead_code, reason = "what other tests of runs need")]
 mod batches;
 
 use std::fs;

@@ -66,7 +66,7 @@ fn filled_rows_are_counted_marked_and_stamped() {
 #[test]
 fn a_gap_within_reach_of_an_end_is_a_warning() {
     let run = Run::new();
-    run.file("in.csv", &log(400, &[7..9], seconds));
+    run.file("in.csv", &log(400, std::slice::from_ref(&(7..9)), seconds));
     let told =
         run.ok(&["condition", "in.csv", "--gaps", "fill", "--lowpass", "5Hz", "--extension", "even", "-o", "out.csv"]);
     assert!(told.contains("2 mended samples lie within one reach of an end"), "{told}");
@@ -112,7 +112,7 @@ fn stamps_of_filled_rows_look_like_the_files_own() {
     }
     // Date and clock time in two columns.
     let run = Run::new();
-    let text = log(90, &[30..32], |n| {
+    let text = log(90, std::slice::from_ref(&(30..32)), |n| {
         let n = n + 5970; // over midnight
         format!(
             "{},{:02}:{:02}:{:02}.{:02}",

@@ -40,12 +40,6 @@ const FILE_NS: f64 = 8.0;
 const EASY_NS: f64 = 40.0;
 const AWKWARD_NS: f64 = 250.0;
 
-/// Seconds of the transforms for each sample and doubling of the length, of reading and writing for each sample, and of the
-/// verdict for each channel: measured once, rounded up.
-const TRANSFORM_S: f64 = 2e-8;
-const COPY_S: f64 = 4e-7;
-const JUDGE_S: f64 = 0.05;
-
 impl Estimate {
     /// For `channels` channels of `samples` samples from a file of `file_bytes`.
     pub fn of(channels: usize, samples: u64, file_bytes: u64) -> Estimate {

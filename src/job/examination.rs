@@ -98,7 +98,7 @@ fn list(input: Input, settings: &Settings) -> Result<ArchiveListing> {
 fn axis_in_words(axis: &codec::ArchivedAxis) -> String {
     let unit = escape(&axis.unit);
     match axis.rule {
-        codec::Rule::Even(p, q) if q == 1 => format!("a row every {} {unit}", p as f64 * axis.tick),
+        codec::Rule::Even(p, 1) => format!("a row every {} {unit}", p as f64 * axis.tick),
         codec::Rule::Even(p, q) => format!("a row every {p}/{q} of {} {unit}", axis.tick),
         codec::Rule::Coded => format!("uneven stamps in {unit}, kept exactly"),
         codec::Rule::Stated(p, 1) => format!("{p} rows a second or metre, as stated"),

@@ -59,8 +59,11 @@ fn curves(channel: &ChannelSpectrum) -> Vec<Curve<'_>> {
     channel.traces.iter().map(curve).filter(|curve| !curve.line.is_empty()).collect()
 }
 
+/// Frequency, lower and upper limit.
+type Limited = (f64, f64, f64);
+
 /// Points of a trace at frequencies above zero; silent lines are left out, since a logarithm has none.
-fn points(trace: &Trace) -> (Vec<(f64, f64)>, Vec<(f64, f64, f64)>) {
+fn points(trace: &Trace) -> (Vec<(f64, f64)>, Vec<Limited>) {
     if let Some(series) = trace.density.as_ref().and_then(|density| density.series.as_ref()) {
         let line = thinned(&series.frequency, |k| series.density[k]);
         let lower = thinned(&series.frequency, |k| series.lower[k]);

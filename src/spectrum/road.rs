@@ -94,7 +94,7 @@ pub fn road(density: &Density, to_metre: f64) -> Result<Road> {
     let mut points = Vec::new();
     for (low, high) in smoothing_bands() {
         let centre = (low * high).sqrt();
-        if centre < RANGE[0] || centre > RANGE[1] || high > density.rate / 2.0 || low < density.spacing / 2.0 {
+        if !(RANGE[0]..=RANGE[1]).contains(&centre) || high > density.rate / 2.0 || low < density.spacing / 2.0 {
             continue;
         }
         let found = band(density, low, high);

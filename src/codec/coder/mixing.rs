@@ -20,7 +20,7 @@ const LIMIT: i32 = 12 * 256 - 1;
 pub fn squash(x: i32) -> i32 {
     let shifted = x.clamp(-LIMIT, LIMIT) + 12 * 256;
     let (knot, part) = ((shifted >> 6) as usize, shifted & 63);
-    KNOTS[knot] + ((KNOTS[knot + 1] - KNOTS[knot]) * part >> 6)
+    KNOTS[knot] + (((KNOTS[knot + 1] - KNOTS[knot]) * part) >> 6)
 }
 
 /// The log-odds of every probability: the least x with squash(x) >= p.
@@ -73,7 +73,7 @@ impl Slot {
     fn learn(&mut self, bit: bool) {
         let target = if bit { u32::MAX } else { 0 };
         let seen = usize::from(self.seen);
-        let step = |p: u32, share: i64| (i64::from(p) + ((i64::from(target) - i64::from(p)) * share >> 16)) as u32;
+        let step = |p: u32, share: i64| (i64::from(p) + (((i64::from(target) - i64::from(p)) * share) >> 16)) as u32;
         self.fast = step(self.fast, SHARES[seen.min(FAST)]);
         self.slow = step(self.slow, SHARES[seen.min(SLOW)]);
         self.seen = (self.seen + 1).min(SLOW as u16);
@@ -122,8 +122,8 @@ impl Mixer {
         let bit = coder.bit(bit, one as u32);
         let error = (if bit { 65536 } else { 0 }) - one;
         for i in 0..used {
-            let step = (inputs[i] * error >> 10) * RATE;
-            weights[i] = (weights[i] + (step + (1 << 9) >> 10)).clamp(-(1 << 20), 1 << 20);
+            let step = ((inputs[i] * error) >> 10) * RATE;
+            weights[i] = (weights[i] + ((step + (1 << 9)) >> 10)).clamp(-(1 << 20), 1 << 20);
         }
         for place in places {
             pool[place].learn(bit);

@@ -35,11 +35,11 @@ pub fn in_the_mean(task: Task<'_>, goal: f64) -> Result<Vec<Coded>> {
             let fine = series.bits();
             all.push((series, fine));
             // Below half a bit a sample the trellis gains next to nothing.
-            if task.effort == Effort::Long || fine > 0.5 * task.samples.len() as f64 || all.len() == 1 {
-                if let Some((_, series, _)) = find(prepared, Quantiser::Trellis, step * 0.6) {
-                    let fine = series.bits();
-                    all.push((series, fine));
-                }
+            if (task.effort == Effort::Long || fine > 0.5 * task.samples.len() as f64 || all.len() == 1)
+                && let Some((_, series, _)) = find(prepared, Quantiser::Trellis, step * 0.6)
+            {
+                let fine = series.bits();
+                all.push((series, fine));
             }
         }
     }
