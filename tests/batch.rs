@@ -288,3 +288,44 @@ fn what_is_generated_is_read_again() {
         assert!(script.contains("max-failures") && script.contains("lowpass"), "{shell}");
     }
 }
+
+#[test]
+fn the_overview_page_shows_the_figures_of_the_results() {
+    let scene = Scene::new();
+    scene.logs(6);
+    scene.file("logs/<b>bad.csv", "no record\n");
+    scene.file("list", (0..6).map(|n| format!("logs/{n:04}.csv\n")).collect::<String>() + "logs/<b>bad.csv\n");
+    scene.ends(5, &batch("out", &["--files-from", "list", "--require", "within", "--tolerance", "0.01%"]));
+    fs::remove_file(scene.path("out/0003.csv")).expect("removed");
+    // Inside the output folder too, where its temporary file must not count as one of a killed attempt.
+    scene.ends(6, &["merge", "out", "--html", "out/page.html", "--clear-stale"]);
+    let page = String::from_utf8(scene.bytes("out/page.html")).expect("text");
+    assert!(page.contains("7 records: 5 done, 1 failed, 5 below the requirement, 1 missing, 0 doubled."), "{page}");
+    assert!(page.contains("logs/&lt;b&gt;bad.csv") && !page.contains("<b>bad"), "names are escaped");
+    assert!(page.contains("output gone") && page.contains("--lowpass 10Hz") && !page.contains("stale temporary"));
+    let summary: Value = serde_json::from_slice(&scene.bytes("out/page.html.json")).expect("JSON");
+    // The worst channel, sought in the lines themselves.
+    let share = |channel: &Value| {
+        let number = |key: &str| channel["verdict"][key].as_f64().expect("a number");
+        100.0 * number("predicted_error") / number("tolerance")
+    };
+    let merged = scene.merged("out");
+    let channels = merged.iter().flat_map(|line| line["channels"].as_array().expect("channels"));
+    let shares: Vec<f64> = channels.map(share).collect();
+    let found = summary["worst"].as_array().expect("channels");
+    assert_eq!((shares.len(), found.len()), (10, 10));
+    let worst = shares.iter().copied().fold(0.0, f64::max);
+    assert!((found[0]["percent_of_tolerance"].as_f64().expect("a number") / worst - 1.0).abs() < 1e-12);
+    assert_eq!(summary["failures"][0]["count"], 1);
+    assert_eq!(summary["redo"][0], serde_json::json!([3, "logs/0003.csv", "output_gone"]));
+    assert_eq!(fs::read_to_string(scene.path("out/page.html.csv")).expect("CSV").lines().count(), 1 + 10 + 10 + 2);
+    // The same page again, in whatever order the lines are joined; nothing is replaced unasked, a record never.
+    let told = scene.ends(74, &["merge", "out", "--html", "out/page.html"]).told;
+    assert!(told.contains("--force"), "{told}");
+    scene.ends(6, &["merge", "out", "--html", "other.html", "--worst-first"]);
+    assert_eq!(scene.bytes("other.html"), scene.bytes("out/page.html"));
+    for kept in ["logs/0001.csv", "out/0001.csv", "out/results/merged.csv"] {
+        let told = scene.ends(74, &["merge", "out", "--html", kept, "--force"]).told;
+        assert!(told.contains("never replaced"), "{told}");
+    }
+}

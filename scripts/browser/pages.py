@@ -18,9 +18,10 @@ CHROMIUM = ("/usr/bin/chromium", "/usr/bin/chromium-browser", "/usr/bin/google-c
 HOSTILE = "<img src=x onerror=document.title='broken'>"
 POINTS = 20_000
 BYTES = 2_000_000
+SOME_FAILED = 5
 
 checks = 0
-WITHOUT_CANDIDATES = ("spectrum", "coefficients")
+WITHOUT_CANDIDATES = ("spectrum", "coefficients", "overview")
 
 
 def check(condition, what):
@@ -30,9 +31,9 @@ def check(condition, what):
         sys.exit(f"pages.py: {what}")
 
 
-def run(program, *arguments):
+def run(program, *arguments, code=0):
     done = subprocess.run([program, *map(str, arguments)], cwd=ROOT, capture_output=True, text=True)
-    check(done.returncode == 0, f"{' '.join(map(str, arguments))}: exit {done.returncode}: {done.stderr}")
+    check(done.returncode == code, f"{' '.join(map(str, arguments))}: exit {done.returncode}: {done.stderr}")
 
 
 def hostile_record(path):
@@ -42,6 +43,26 @@ def hostile_record(path):
         t = n / 500
         rows.append(f"{t:.3f},{math.sin(40 * t) + 0.1 * math.sin(700 * t):.6f},{math.cos(55 * t) + 0.3 * t:.6f}")
     path.write_text("\n".join(rows) + "\n")
+
+
+def batch(program, folder):
+    """A batch of thirty cuts of one record, and a log that fails under a name that would run a script."""
+    logs = folder / "logs"
+    logs.mkdir()
+    table = (ROOT / "fixtures" / "hoist.csv").read_text().splitlines()
+    # Heading lines are those before the first number.
+    first = next(number for number, line in enumerate(table) if line[:1].isdigit() or line[:1] == "-")
+    rows = (len(table) - first) // 2
+    for number in range(30):
+        start = first + number * (len(table) - first - rows) // 30
+        (logs / f"{number:02}.csv").write_text("\n".join(table[:first] + table[start : start + rows]) + "\n")
+    (logs / HOSTILE.replace("/", "")).write_text("no record\n")
+    done = subprocess.run(
+        [program, "batch", "--lowpass", "3Hz", "--require", "within", "--tolerance", "2%", "--quiet", "--into", folder / "out", *sorted(logs.iterdir())],
+        cwd=ROOT, capture_output=True, text=True,
+    )
+    check(done.returncode == SOME_FAILED, f"batch: exit {done.returncode}: {done.stderr}")
+    return folder / "out"
 
 
 def opened(browser, page_file, **options):
@@ -122,6 +143,16 @@ def check_numbers(page, report, name):
             check(len(values) >= 3 and close, f"{name}: {candidate['name']}: {values[:3]} on the page, {wanted} in the JSON")
 
 
+def check_command(program, page, made, name):
+    """The command line on the page gives the same page again."""
+    page_file, _ = made
+    line = page.locator("pre code").last.inner_text().replace("endgrain ", f"'{program}' ", 1)
+    again = page_file.with_name(f"{name}-again.html")
+    done = subprocess.run(["sh", "-c", f"{line} --html '{again}' --quiet --force"], cwd=ROOT, capture_output=True, text=True)
+    check(done.returncode == 0, f"{name}: {line}: exit {done.returncode}: {done.stderr}")
+    check(again.read_bytes() == page_file.read_bytes(), f"{name}: {line}: gave another page")
+
+
 def check_readout(page, name):
     field = page.locator(".field").first
     field.focus()
@@ -132,7 +163,7 @@ def check_readout(page, name):
 
 def main():
     arguments = argparse.ArgumentParser()
-    arguments.add_argument("program")
+    arguments.add_argument("program", type=lambda path: str(pathlib.Path(path).resolve()))
     arguments.add_argument("--screenshots", type=pathlib.Path)
     options = arguments.parse_args()
     chromium = next((path for path in CHROMIUM if pathlib.Path(path).exists()), None)
@@ -163,10 +194,11 @@ def main():
                 ["condition", "fixtures/hoist.csv", "--channel", "ax", "--integrate", "2", "--highpass", "1Hz", "--conditions", "steady",
                  "-o", folder / "travel.csv"],
             ),
+            "overview": (folder / "overview.html", ["merge", batch(options.program, folder)]),
             "hostile": (folder / "hostile.html", ["compare", record, "--lowpass", "20Hz"]),
         }
-        for page_file, command in made.values():
-            run(options.program, *command, "--html", page_file, "--quiet")
+        for name, (page_file, command) in made.items():
+            run(options.program, *command, "--html", page_file, "--quiet", code=SOME_FAILED if name == "overview" else 0)
             check(page_file.stat().st_size < BYTES, f"{page_file.name}: {page_file.stat().st_size} bytes")
         again = folder / "again.html"
         run(options.program, *made["compare"][1], "--html", again, "--quiet")
@@ -182,6 +214,8 @@ def main():
                 check_layout(page, f"{name} at {width} px")
                 if width == 1400:
                     check_readout(page, name)
+                    if name != "overview":
+                        check_command(options.program, page, made[name], name)
                     if name not in WITHOUT_CANDIDATES:
                         check_choice(page, name)
                         if name != "hostile":

@@ -14,8 +14,7 @@ use endgrain::settings::{self, Group};
 use crate::cli::progress::Progress;
 use crate::cli::{args, exit, machine, stream};
 
-const GROUPS: &[Group] =
-    &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
+const GROUPS: &[Group] = settings::CONDITION;
 
 const EXAMPLES: &str = "\
 Examples:

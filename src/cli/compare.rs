@@ -8,13 +8,13 @@ use clap::{Arg, ArgMatches, Command};
 use endgrain::error::{Error, Result};
 use endgrain::job::PageFiles;
 use endgrain::place::Place;
-use endgrain::settings::Group;
+use endgrain::settings::{self, Group};
 use endgrain::write::{Durability, Pending, finish_together, refuse_twins};
 use endgrain::{job, report};
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] = &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input];
+const GROUPS: &[Group] = settings::COMPARE;
 
 const EXAMPLES: &str = "\
 Examples:

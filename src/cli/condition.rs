@@ -8,13 +8,12 @@ use endgrain::error::{Error, Result};
 use endgrain::job::{self, Target};
 use endgrain::regularise::Gaps;
 use endgrain::report;
-use endgrain::settings::Group;
+use endgrain::settings::{self, Group};
 use endgrain::write::Durability;
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] =
-    &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
+const GROUPS: &[Group] = settings::CONDITION;
 
 const EXAMPLES: &str = "\
 Examples:

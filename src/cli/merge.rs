@@ -1,11 +1,13 @@
 //! `merge`: joins the results of all shards and attempts of a batch.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 use clap::{Arg, ArgAction, ArgMatches, Command, value_parser};
 use endgrain::error::{Error, Result};
 use endgrain::fleet::{self, Order, Stale};
+use endgrain::job::PageFiles;
+use endgrain::write::{Durability, finish_together};
 
 use crate::cli::{args, exit, stream};
 
@@ -13,6 +15,7 @@ const EXAMPLES: &str = "\
 Examples:
   endgrain merge cleaned
   endgrain merge cleaned --worst-first
+  endgrain merge cleaned --html cleaned.html
   endgrain merge cleaned --clear-stale
 ";
 
@@ -42,6 +45,8 @@ pub fn command() -> Command {
             .action(ArgAction::SetTrue)
             .help("Remove temporary files that killed attempts have left. No attempt may be running"),
     )
+    .arg(args::page())
+    .arg(args::force("Report"))
     .arg(args::quiet())
     .after_help(exit::HELP)
 }
@@ -54,7 +59,17 @@ pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let Some(into) = matches.get_one::<PathBuf>("into") else { return Err(Error::usage("no folder")) };
     let order = if matches.get_flag("worst-first") { Order::WorstFirst } else { Order::List };
     let stale = if matches.get_flag("clear-stale") { Stale::Remove } else { Stale::Report };
+    let page = matches.get_one::<String>("html").map(Path::new);
+    let kept = if page.is_some() { fleet::files_of(into)? } else { Vec::new() };
+    let kept: Vec<&Path> = kept.iter().map(PathBuf::as_path).collect();
+    let open = |page| PageFiles::create(page, &kept, args::overwrite(matches));
+    // Tried before the work and dropped again: its temporary file inside OUT would count as one of a killed attempt.
+    page.map(open).transpose()?;
     let overview = fleet::merge(into, order, stale)?;
+    if let Some(page) = page.map(open).transpose()? {
+        let content = fleet::overview_page(&overview, &into.display().to_string());
+        finish_together(page.fill(&overview.summary(), &content)?.into(), Durability::Handed)?;
+    }
     if !matches.get_flag("quiet") {
         stream::print(&overview.text())?;
     }

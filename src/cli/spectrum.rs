@@ -9,12 +9,12 @@ use endgrain::error::{Error, Result};
 use endgrain::job::{self, PageFiles};
 use endgrain::place::Place;
 use endgrain::report::{self, OutputReport};
-use endgrain::settings::Group;
+use endgrain::settings::{self, Group};
 use endgrain::write::{self, Durability, Pending, finish_together, refuse_twins};
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] = &[Group::Spectrum, Group::Operators, Group::Stage, Group::Cut, Group::Repair, Group::Input];
+const GROUPS: &[Group] = settings::SPECTRUM;
 
 const EXAMPLES: &str = "\
 Examples:

@@ -12,7 +12,7 @@ use crate::fleet::attempt::{self, Span};
 use crate::fleet::gathering::{Gathering, Standing, gather};
 use crate::fleet::name::Shown;
 use crate::fleet::overview::Overview;
-use crate::fleet::plan::results_of;
+use crate::fleet::plan::{PLAN, results_of, stored};
 use crate::fleet::table;
 use crate::write::{Overwrite, Pending};
 
@@ -99,6 +99,20 @@ pub fn merge(into: &Path, order: Order, stale: Stale) -> Result<Overview> {
     rows.finish()?;
     list_redo(&gathering, &results.join(REDO))?;
     Ok(overview)
+}
+
+/// The files that belong to the batch under an output folder, which nothing else may replace: records, outputs, plan, joined
+/// results. Records are found where they were named from the current folder.
+///
+/// # Errors
+/// `Malformed` where no batch has run there.
+pub fn files_of(into: &Path) -> Result<Vec<PathBuf>> {
+    let results = results_of(into);
+    let (plan, _) = stored(&results)?;
+    let records = plan.iter().filter_map(|planned| planned.input.name());
+    let outputs = plan.iter().filter_map(|planned| Some(into.join(planned.output.name()?)));
+    let own = [PLAN, LINES, TABLE, REDO].map(|name| results.join(name));
+    Ok(records.chain(outputs).chain(own).collect())
 }
 
 fn line_of(standing: &Standing) -> Option<Span> {

@@ -5,9 +5,14 @@ use std::fmt::Write;
 
 use serde_json::Value;
 
+use crate::fleet::agreement::Agreement;
 use crate::fleet::gathering::{Gathering, Standing};
 use crate::fleet::merge::{Stale, reason};
+use crate::fleet::ranking::Ranking;
+use crate::fleet::summary::{EdgeErrors, FailureGroup, Summary};
+use crate::fleet::table;
 use crate::place::escape;
+use crate::report::{CAUTION, SCHEMA, Tool, WEIGHTED_CAUTION};
 
 /// Counts over all records of a batch.
 #[derive(Debug, Clone, Default)]
@@ -34,12 +39,12 @@ pub struct Overview {
     temporaries: u64,
     removed: bool,
     stale: Vec<String>,
-    failures: BTreeMap<String, (u64, String)>,
+    failures: BTreeMap<String, FailureGroup>,
     extensions: BTreeMap<String, u64>,
     adequacies: BTreeMap<String, u64>,
     notes: BTreeMap<String, u64>,
-    shares: Vec<f64>,
-    worst: Option<(f64, String)>,
+    ranking: Ranking,
+    agreement: Agreement,
     contents: BTreeMap<String, u32>,
 }
 
@@ -77,14 +82,21 @@ impl Overview {
 
     /// Counts a line of results.
     pub(super) fn count(&mut self, line: &Value) {
-        let path = line["path"].as_str().map(escape).unwrap_or_default();
         match line["status"].as_str() {
             Some("failed") => {
                 self.failed += 1;
                 let failure = &line["failure"];
-                let kind = failure["kind"].as_str().unwrap_or("unknown").to_owned();
-                let told = failure["text"].as_str().map(escape).unwrap_or_default();
-                self.failures.entry(kind).or_insert_with(|| (0, format!("{path}: {told}"))).0 += 1;
+                let text = |key: &str| failure[key].as_str().map(str::to_owned);
+                let kind = text("kind").unwrap_or_else(|| "unknown".to_owned());
+                let example = || FailureGroup {
+                    kind: kind.clone(),
+                    count: 0,
+                    path: line["path"].as_str().unwrap_or_default().to_owned(),
+                    place: table::failure_place(line),
+                    text: text("text").unwrap_or_default(),
+                    remedy: text("remedy"),
+                };
+                self.failures.entry(kind.clone()).or_insert_with(example).count += 1;
             }
             Some("repeated") => self.repeated += 1,
             _ => self.done += 1,
@@ -97,16 +109,9 @@ impl Overview {
             let verdict = &channel["verdict"];
             let adequacy = verdict["adequacy"].as_str().unwrap_or("not judged").to_owned();
             *self.adequacies.entry(adequacy).or_default() += 1;
-            let (error, tolerance) = (verdict["predicted_error"].as_f64(), verdict["tolerance"].as_f64());
-            if let (Some(error), Some(tolerance)) = (error, tolerance.filter(|tolerance| *tolerance > 0.0)) {
-                let share = 100.0 * error / tolerance;
-                self.shares.push(share);
-                if self.worst.as_ref().is_none_or(|(worst, _)| share > *worst) {
-                    let name = channel["name"].as_str().map(escape).unwrap_or_default();
-                    self.worst = Some((share, format!("{name} of {path}")));
-                }
-            }
         }
+        self.ranking.count(line);
+        self.agreement.count(line);
         let findings = [&line["notes"], &line["audit"]["findings"]];
         let mut codes: Vec<&str> = findings
             .into_iter()
@@ -139,8 +144,8 @@ impl Overview {
         }
         // Writing to a string cannot fail.
         let _ = writeln!(text, "{} records: {}", self.records, parts.join(", "));
-        for (kind, (count, first)) in &self.failures {
-            let _ = writeln!(text, "  failed, {kind}: {count}, such as {first}");
+        for FailureGroup { kind, count, path, text: what, .. } in self.failures.values() {
+            let _ = writeln!(text, "  failed, {kind}: {count}, such as {}: {}", escape(path), escape(what));
         }
         self.edges(&mut text);
         let listed = |counts: &BTreeMap<String, u64>| {
@@ -152,18 +157,8 @@ impl Overview {
         if !self.notes.is_empty() {
             let _ = writeln!(text, "  notes, by records: {}", listed(&self.notes));
         }
-        let alike: u64 = self.contents.values().filter(|count| **count > 1).map(|count| u64::from(*count)).sum();
-        for (count, what) in [
-            (alike, "records share their content with another"),
-            (self.superseded, "results superseded by others of the same record"),
-            (self.torn, "results cut short by a kill or a full disk, not counted"),
-            (self.other_plans, "files of results belong to another list or other options, not counted"),
-            (self.extra, "results of this list that no record of it answers to"),
-            (self.temporaries, if self.removed { "stale temporary files removed" } else { STALE }),
-        ] {
-            if count > 0 {
-                let _ = writeln!(text, "  {count} {what}");
-            }
+        for (count, what) in self.remarks() {
+            let _ = writeln!(text, "  {count} {what}");
         }
         if let Some(first) = self.stale.first() {
             let count = self.stale.len();
@@ -191,16 +186,70 @@ impl Overview {
         let counts: Vec<String> =
             words.iter().filter(|word| adequacy(word) > 0).map(|word| format!("{} {word}", adequacy(word))).collect();
         let _ = writeln!(text, "  edges of {channels} channels: {}", counts.join(", "));
-        let Some((worst, name)) = &self.worst else { return };
-        let mut shares = self.shares.clone();
-        shares.sort_by(f64::total_cmp);
-        // Nearest rank: a value that some channel has.
-        let at = |share: f64| shares[((share * shares.len() as f64).ceil() as usize).clamp(1, shares.len()) - 1];
-        let (median, high) = (at(0.5), at(0.95));
+        let ranked = self.ranking.worst();
+        let Some((worst, edges)) = ranked.first().zip(self.edge_errors()) else { return };
+        let EdgeErrors { median, high, worst: share } = edges;
+        let name = format!("{} of {}", escape(&worst.channel), escape(&worst.path));
         let _ = writeln!(
             text,
-            "  edge error in % of its tolerance: median {median:.3}, 95 of 100 below {high:.3}, worst {worst:.3} ({name})"
+            "  edge error in % of its tolerance: median {median:.3}, 95 of 100 below {high:.3}, worst {share:.3} ({name})"
         );
+    }
+
+    /// Edge errors over all judged channels; `None` without any.
+    fn edge_errors(&self) -> Option<EdgeErrors> {
+        let shares = self.ranking.of_tolerance();
+        // Nearest rank: a value that some channel has.
+        let at = |share: f64| shares.get(((share * shares.len() as f64).ceil() as usize).max(1) - 1).copied();
+        Some(EdgeErrors { median: at(0.5)?, high: at(0.95)?, worst: at(1.0)? })
+    }
+
+    /// What else is worth a remark, with its count.
+    fn remarks(&self) -> Vec<(u64, &'static str)> {
+        let alike: u64 = self.contents.values().filter(|count| **count > 1).map(|count| u64::from(*count)).sum();
+        let mut remarks = vec![
+            (alike, "records share their content with another"),
+            (self.superseded, "results superseded by others of the same record"),
+            (self.torn, "results cut short by a kill or a full disk, not counted"),
+            (self.other_plans, "files of results belong to another list or other options, not counted"),
+            (self.extra, "results of this list that no record of it answers to"),
+            (self.temporaries, if self.removed { "stale temporary files removed" } else { STALE }),
+        ];
+        remarks.retain(|(count, _)| *count > 0);
+        remarks
+    }
+
+    /// The overview as plain data, for JSON and for a page.
+    pub fn summary(&self) -> Summary {
+        Summary {
+            schema: SCHEMA,
+            tool: Tool::THIS,
+            command: "merge",
+            records: self.records,
+            done: self.done,
+            repeated: self.repeated,
+            failed: self.failed,
+            below_requirement: self.below,
+            missing: self.open,
+            doubled: self.superseded,
+            extra: self.extra,
+            failures: self.failures.values().cloned().collect(),
+            redo: self.redo.clone(),
+            adequacies: self.adequacies.clone(),
+            extensions: self.extensions.clone(),
+            notes: self.notes.clone(),
+            remarks: self.remarks().into_iter().map(|(count, what)| format!("{count} {what}")).collect(),
+            edge_error_percent_of_tolerance: self.edge_errors(),
+            worst: self.ranking.worst(),
+            settings: self.agreement.shared(),
+            differing_settings: self.agreement.differing(),
+            caution: if self.agreement.uses("weighting") { WEIGHTED_CAUTION } else { CAUTION },
+        }
+    }
+
+    /// All channels by edge error.
+    pub(super) fn ranking(&self) -> &Ranking {
+        &self.ranking
     }
 }
 

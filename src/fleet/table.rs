@@ -19,7 +19,7 @@ enum Cell {
 }
 
 /// The value at a path of keys.
-fn at<'v>(value: &'v Value, path: &str) -> &'v Value {
+pub fn at<'v>(value: &'v Value, path: &str) -> &'v Value {
     path.split('.').fold(value, |value, key| &value[key])
 }
 
@@ -44,7 +44,8 @@ fn audited<'v>(line: &'v Value, channel: &Value) -> &'v Value {
     channels.and_then(|all| all.iter().find(|one| one["name"] == channel["name"])).unwrap_or(NONE)
 }
 
-fn ratio(above: &Value, below: &Value) -> Option<f64> {
+/// Of two numbers, where both are there and the lower is positive.
+pub fn ratio(above: &Value, below: &Value) -> Option<f64> {
     Some(above.as_f64()? / below.as_f64().filter(|below| *below > 0.0)?)
 }
 
@@ -80,15 +81,15 @@ fn notes(line: &Value, channel: &Value) -> Cell {
     if codes.is_empty() { Cell::Blank } else { Cell::Text(codes.join("; ")) }
 }
 
-fn place(line: &Value) -> Cell {
+/// Where a record failed, in words; empty where there is no place.
+pub fn failure_place(line: &Value) -> String {
     let place = at(line, "failure.place");
     let parts = ["line", "column", "byte", "channel", "sample"].iter().filter_map(|key| match &place[key] {
         Value::Null => None,
         Value::String(text) => Some(format!("{key} {text}")),
         other => Some(format!("{key} {other}")),
     });
-    let parts: Vec<String> = parts.collect();
-    if parts.is_empty() { Cell::Blank } else { Cell::Text(parts.join(", ")) }
+    parts.collect::<Vec<_>>().join(", ")
 }
 
 /// The columns, in order. A heading ends in its unit where the unit is not a column of its own.
@@ -100,7 +101,7 @@ static COLUMNS: &[Column] = &[
     Column { name: "status", cell: |line, _| text(&line["status"]) },
     Column { name: "failure", cell: |line, _| text(at(line, "failure.kind")) },
     Column { name: "failure_text", cell: |line, _| text(at(line, "failure.text")) },
-    Column { name: "failure_place", cell: |line, _| place(line) },
+    Column { name: "failure_place", cell: |line, _| Cell::Text(failure_place(line)) },
     Column { name: "failure_remedy", cell: |line, _| text(at(line, "failure.remedy")) },
     Column { name: "same_as_record", cell: |line, _| text(&line["same_as"]) },
     Column { name: "samples", cell: |line, _| text(at(line, "input.samples")) },

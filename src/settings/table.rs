@@ -40,6 +40,13 @@ impl Group {
     }
 }
 
+/// Groups of `condition` and `batch`.
+pub const CONDITION: &[Group] = &[Operators, Stage, Judgement, Cut, Repair, Input, Output];
+/// Groups of `compare`.
+pub const COMPARE: &[Group] = &[Operators, Stage, Judgement, Cut, Repair, Input];
+/// Groups of `spectrum`.
+pub const SPECTRUM: &[Group] = &[Spectrum, Operators, Stage, Cut, Repair, Input];
+
 /// How often an option may be given.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Arity {

@@ -202,4 +202,54 @@ mod tests {
         let leak = plain.values.iter().enumerate().filter(|(k, _)| *k != 100).map(|(_, v)| *v).fold(0.0, f64::max);
         assert!(leak / plain.values[100] < 1e-26, "{leak}");
     }
+
+    #[test]
+    fn a_tone_between_two_lines_reads_low_and_spreads() {
+        // Harris, Proc. IEEE 66 (1978) 51-83, scallop loss without a window: the amplitude reads 2/pi = 0.6366 (-3.9224 dB); the
+        // two nearest lines hold 8/pi^2 of the power. Both hold for N >= 1024 to 1e-3: the image of the tone falls as 1/N.
+        let (len, line) = (4096, 700);
+        let tone: Vec<f64> = (0..len)
+            .map(|n| 2f64.sqrt() * (std::f64::consts::TAU * (line as f64 + 0.5) * n as f64 / len as f64 + 0.3).cos())
+            .collect();
+        let segments = Segments::new(len, len, 0.0).unwrap();
+        let found =
+            welch(&tone, len as f64, segments, window("rectangular").unwrap(), Detrend::None, &Planner::new()).unwrap();
+        // Lines one unit apart: a density is the power of its line; the tone's power is 1.
+        let (low, high) = (found.values[line], found.values[line + 1]);
+        for power in [low, high] {
+            assert!((power.sqrt() - std::f64::consts::FRAC_2_PI).abs() < 1e-3, "{}", power.sqrt());
+            assert!((10.0 * power.log10() + 3.9224).abs() < 0.01, "{} dB", 10.0 * power.log10());
+        }
+        assert!((low + high - 0.8105694691).abs() < 1e-3, "{}", low + high);
+    }
+
+    #[test]
+    fn averages_apart_have_a_random_error_of_one_over_their_root() {
+        // Bendat and Piersol, Random Data (from memory): normalised random error 1/sqrt(n_d) of n_d averages that share no
+        // samples: 10 % for 100. Of a density with nu degrees of freedom it is sqrt(2/nu).
+        let (len, count) = (256, 100);
+        let segments = Segments::new(len * count, len, 0.0).unwrap();
+        assert_eq!(segments.count, count);
+        for name in ["rectangular", "hann"] {
+            let taper = window(name).unwrap().samples(len);
+            let error = variances(&taper, segments, 1)[0].sqrt();
+            assert!((error - 0.1).abs() < 1e-12, "{name}: {error}");
+        }
+        // White noise bears it out: the scatter of 126 independent lines around their mean has a standard error of
+        // 1/sqrt(2 * 126) = 6.3 % of itself; three of them are allowed.
+        let mut state = 42_u64;
+        let mut uniform = || {
+            state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+            ((state >> 11) as f64 + 0.5) / (1_u64 << 53) as f64
+        };
+        let noise: Vec<f64> = (0..len * count)
+            .map(|_| (-2.0 * uniform().ln()).sqrt() * (std::f64::consts::TAU * uniform()).cos())
+            .collect();
+        let rectangular = window("rectangular").unwrap();
+        let found = welch(&noise, 1.0, segments, rectangular, Detrend::None, &Planner::new()).unwrap();
+        let lines = &found.values[1..len / 2 - 1];
+        let mean = lines.iter().sum::<f64>() / lines.len() as f64;
+        let square = lines.iter().map(|v| (v / mean - 1.0).powi(2)).sum::<f64>() / (lines.len() - 1) as f64;
+        assert!((square.sqrt() / 0.1 - 1.0).abs() < 0.19, "{}", square.sqrt());
+    }
 }

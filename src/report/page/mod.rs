@@ -18,6 +18,7 @@ pub use conditioned::condition_page;
 pub use content::{Passage, Spectra, Stack};
 pub use figures::{figures_csv, figures_json};
 pub use html::html;
+pub use shared::{command_line, options, quoted};
 pub use spectral::spectrum_page;
 pub use thin::{thinned, thinned_along};
 

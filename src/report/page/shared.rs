@@ -12,6 +12,7 @@ use crate::report::page::{
 };
 use crate::report::text::{figure, operators_text};
 use crate::report::{AxisReport, Curve, InputReport, Picture, TrustedReport, VerdictReport};
+use crate::settings::{Group, find};
 use crate::verdict::Adequacy;
 
 /// Channels that get figures: with more, each would be too coarse to judge. The others stand in the tables.
@@ -325,9 +326,26 @@ fn rate_source(axis: &AxisReport) -> &'static str {
 }
 
 /// The command line that gives the same again.
-pub fn settings(command: &str, input: &str, settings: &Map<String, Value>, tail: &str) -> Section {
+pub fn settings(command: &str, groups: &[Group], input: &str, settings: &Map<String, Value>, tail: &str) -> Section {
     let mut words = vec!["endgrain".to_owned(), command.to_owned(), quoted(input)];
-    for (key, value) in settings {
+    words.extend(options(settings, groups));
+    if !tail.is_empty() {
+        words.push(tail.to_owned());
+    }
+    let code = command_line(&words);
+    Section { heading: "Settings, to run it again".to_owned(), blocks: vec![Block::Code(code)] }
+}
+
+/// A command line with one option a line.
+pub fn command_line(words: &[String]) -> String {
+    words.join(" \\\n    ")
+}
+
+/// Settings as options of a command that has these groups of them.
+pub fn options(settings: &Map<String, Value>, groups: &[Group]) -> Vec<String> {
+    let mut words = Vec::new();
+    let own = |key: &str| find(key).is_some_and(|row| groups.contains(&row.group));
+    for (key, value) in settings.iter().filter(|(key, _)| own(key)) {
         match value {
             Value::Bool(true) => words.push(format!("--{key}")),
             Value::Array(values) => {
@@ -338,11 +356,7 @@ pub fn settings(command: &str, input: &str, settings: &Map<String, Value>, tail:
             _ => {}
         }
     }
-    if !tail.is_empty() {
-        words.push(tail.to_owned());
-    }
-    let code = words.join(" \\\n    ");
-    Section { heading: "Settings, to run it again".to_owned(), blocks: vec![Block::Code(code)] }
+    words
 }
 
 /// A word for a POSIX shell, control characters made visible.
