@@ -10,10 +10,10 @@ use endgrain::regularise::{Duplicates, Gaps, RegulariseOptions, regularise_parts
 use endgrain::settings::{Settings, rows};
 use endgrain::unit::Unit;
 
-/// The check of each target, by name.
-/// A name and what it does with bytes.
+/// A target's name and what it does with bytes.
 pub type Check = (&'static str, fn(&[u8]));
 
+/// The check of each target.
 pub static CHECKS: &[Check] = &[("table", table), ("wave", wave), ("stamps", stamps), ("options", options)];
 
 /// Rows beyond which only the reader is checked: the audit would take all the time.

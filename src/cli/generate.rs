@@ -137,7 +137,7 @@ fn recipe() -> String {
 /// The default where there is one, else what the value stands for.
 fn example(row: &OptionRow, defaults: &Map<String, Value>) -> String {
     let quoted = |text: &str| Value::from(text).to_string();
-    match (row.arity, defaults[row.key].as_str()) {
+    match (row.arity, defaults.get(row.key).and_then(Value::as_str)) {
         (Arity::Switch, _) => "false".to_owned(),
         (_, Some(default)) => quoted(default),
         (Arity::Once, None) => quoted(row.value),

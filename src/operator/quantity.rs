@@ -3,6 +3,7 @@
 use std::fmt;
 
 use crate::error::{Error, Result};
+use crate::numeric::leading_number;
 use crate::unit::Unit;
 
 use super::corner::quoted;
@@ -20,18 +21,14 @@ impl Quantity {
     /// # Errors
     /// `Usage` without a finite number or without a unit.
     pub fn parse(text: &str) -> Result<Quantity> {
-        let text = text.trim();
-        // The longest head that is a number: `2e3s` is 2000 s, and `1e` is no number.
-        let split = (1..=text.len().min(64))
-            .rev()
-            .find(|&n| text.is_char_boundary(n) && text[..n].trim().parse::<f64>().is_ok_and(f64::is_finite));
-        let unit = split.map_or("", |n| text[n..].trim());
-        match split.and_then(|n| text[..n].trim().parse::<f64>().ok()) {
-            Some(value) if !unit.is_empty() && !unit.chars().any(char::is_control) => {
-                Ok(Quantity { value, unit: Unit::parse(unit) })
-            }
-            Some(_) => Err(Error::usage(format!("{}: a number without a unit", quoted(text)))),
-            None => Err(Error::usage(format!("{}: no number with a unit", quoted(text)))),
+        let Some((value, unit)) = leading_number::split(text) else {
+            return Err(Error::usage(format!("{}: no number with a unit", quoted(text.trim()))));
+        };
+        // A dash and the like stand for no unit.
+        let unit = Some(unit).filter(|unit| !unit.chars().any(char::is_control)).map(Unit::parse);
+        match unit.filter(|unit| !unit.to_string().is_empty()) {
+            Some(unit) => Ok(Quantity { value, unit }),
+            None => Err(Error::usage(format!("{}: a number without a unit", quoted(text.trim())))),
         }
     }
 

@@ -115,6 +115,8 @@ mod tests {
         for (text, value) in REGRIDS {
             assert_eq!((text.parse(), value.to_string().as_str()), (Ok(*value), *text));
         }
-        assert!("cut".parse::<Gaps>().is_err_and(|e| e.to_string().contains("choose reject or fill or split")));
+        assert!(
+            "cut".parse::<Gaps>().is_err_and(|e| e.to_string().contains("choose reject or fill or smooth or split"))
+        );
     }
 }

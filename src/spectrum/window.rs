@@ -102,8 +102,9 @@ mod tests {
         // Harris 1978, Table 1 (recomputed there where misprinted); Heinzel, Ruediger and Schilling 2002, appendix D; ISO
         // 18431-2; D'Antona and Ferrero 2006. Name, coherent gain, bandwidth, scallop loss, highest side lobe, overlap
         // correlation at 75 % and 50 %.
+        type Merit = (&'static str, f64, f64, f64, Option<f64>, Option<(f64, f64)>);
         #[rustfmt::skip]
-        let rows: &[(&str, f64, f64, f64, Option<f64>, Option<(f64, f64)>)] = &[
+        let rows: &[Merit] = &[
             ("rectangular", 1.0, 1.0, 3.9224, Some(-13.26), Some((0.75, 0.50))),
             ("hann", 0.5, 1.5, 1.4236, Some(-31.47), Some((0.6592, 0.1667))),
             ("hamming", 0.54, 1.3628, 1.7514, Some(-42.68), Some((0.7069, 0.2338))),

@@ -1,3 +1,5 @@
+//! Spectral lines found again: frequency and amplitude of tones in noise, false alarms, tones beside each other.
+
 use std::f64::consts::TAU;
 
 use super::*;
