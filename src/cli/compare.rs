@@ -14,7 +14,7 @@ use endgrain::{job, report};
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] = &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input];
+const GROUPS: &[Group] = Group::COMPARE;
 
 const EXAMPLES: &str = "\
 Examples:

@@ -13,8 +13,7 @@ use endgrain::write::Durability;
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] =
-    &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
+const GROUPS: &[Group] = Group::CONDITION;
 
 const EXAMPLES: &str = "\
 Examples:

@@ -14,7 +14,7 @@ use endgrain::write::{self, Durability, Pending, finish_together, refuse_twins};
 
 use crate::cli::{args, exit, stream};
 
-const GROUPS: &[Group] = &[Group::Spectrum, Group::Operators, Group::Stage, Group::Cut, Group::Repair, Group::Input];
+const GROUPS: &[Group] = Group::SPECTRUM;
 
 const EXAMPLES: &str = "\
 Examples:

@@ -24,6 +24,18 @@ pub enum Group {
 }
 
 impl Group {
+    /// What `compare` takes.
+    pub const COMPARE: &'static [Group] =
+        &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input];
+    /// What `condition` takes.
+    pub const CONDITION: &'static [Group] =
+        &[Group::Operators, Group::Stage, Group::Judgement, Group::Cut, Group::Repair, Group::Input, Group::Output];
+    /// What `spectrum` takes.
+    pub const SPECTRUM: &'static [Group] =
+        &[Group::Spectrum, Group::Operators, Group::Stage, Group::Cut, Group::Repair, Group::Input];
+    /// What `compress` takes.
+    pub const COMPRESS: &'static [Group] = &[Group::Archive, Group::Input];
+
     /// Heading in help texts.
     pub const fn heading(self) -> &'static str {
         match self {

@@ -7,6 +7,7 @@ use crate::report::page::shared::{self, DRAWN};
 use crate::report::page::{Block, Cell, Page, Section, Table};
 use crate::report::text::figure;
 use crate::report::{AxisReport, ChannelComparison, Comparison, Picture, Row};
+use crate::settings::Group;
 use crate::verdict::Adequacy;
 
 /// The page of a comparison. Pictures belong to the channels they name.
@@ -40,7 +41,7 @@ pub fn comparison_page(report: &Comparison, pictures: &[Picture]) -> Page {
     }
     let notes: Vec<_> = report.notes.iter().collect();
     sections.push(shared::quality(&report.input, &notes));
-    sections.push(shared::settings("compare", &report.input.path, &report.settings, ""));
+    sections.push(shared::settings("compare", Group::COMPARE, &report.input.path, &report.settings, ""));
     Page {
         title: format!("Extensions of {} compared", report.input.path),
         asked: shared::asked(&report.input, &report.chain),

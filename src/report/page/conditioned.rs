@@ -8,6 +8,7 @@ use crate::report::page::{
     Band, Block, Cell, Figure, FigureSet, Line, Page, Passage, Quantity, Section, Spectra, Stack, Table, thinned_along,
 };
 use crate::report::{Amount, ChannelReport, IntegralReport, Report};
+use crate::settings::Group;
 use crate::verdict::{Adequacy, Edge};
 
 /// The page of a conditioned record. Passages belong to the channels in their order.
@@ -39,7 +40,7 @@ pub fn condition_page(report: &Report, passages: &[Passage]) -> Page {
     sections.push(shared::quality(&report.input, &notes));
     let output =
         report.outputs.first().map_or_else(String::new, |output| format!("-o {}", shared::quoted(&output.path)));
-    sections.push(shared::settings("condition", &report.input.path, &report.settings, &output));
+    sections.push(shared::settings("condition", Group::CONDITION, &report.input.path, &report.settings, &output));
     Page {
         title: format!("{} conditioned", report.input.path),
         asked: shared::asked(&report.input, &report.chain),

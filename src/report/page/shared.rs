@@ -12,6 +12,7 @@ use crate::report::page::{
 };
 use crate::report::text::{figure, operators_text};
 use crate::report::{AxisReport, Curve, InputReport, Picture, TrustedReport, VerdictReport};
+use crate::settings::{Group, find};
 use crate::verdict::Adequacy;
 
 /// Channels that get figures: with more, each would be too coarse to judge. The others stand in the tables.
@@ -307,12 +308,15 @@ pub fn quality(input: &InputReport, notes: &[&Finding]) -> Section {
     ];
     rows.extend(axis.epoch.as_ref().map(|epoch| row("stamp 0 is", epoch.clone())));
     let table = Table { caption: "The record as read".to_owned(), head: vec!["what".into(), "value".into()], rows };
-    let remarks = if notes.is_empty() {
-        Block::Text("No remarks: nothing was repaired, guessed or left out.".to_owned())
-    } else {
-        Block::List(notes.iter().map(|note| note.to_string()).collect())
-    };
-    Section { heading: "Input quality".to_owned(), blocks: vec![Block::Table(table), remarks] }
+    Section { heading: "Input quality".to_owned(), blocks: vec![Block::Table(table), remarks(notes)] }
+}
+
+/// Every remark.
+pub fn remarks(notes: &[&Finding]) -> Block {
+    if notes.is_empty() {
+        return Block::Text("No remarks: nothing was repaired, guessed or left out.".to_owned());
+    }
+    Block::List(notes.iter().map(|note| note.to_string()).collect())
 }
 
 fn rate_source(axis: &AxisReport) -> &'static str {
@@ -324,10 +328,13 @@ fn rate_source(axis: &AxisReport) -> &'static str {
     }
 }
 
-/// The command line that gives the same again.
-pub fn settings(command: &str, input: &str, settings: &Map<String, Value>, tail: &str) -> Section {
-    let mut words = vec!["endgrain".to_owned(), command.to_owned(), quoted(input)];
+/// The command line that gives the same again: of all settings those of the groups that the command takes.
+pub fn settings(command: &str, groups: &[Group], input: &str, settings: &Map<String, Value>, tail: &str) -> Section {
+    let mut words = vec![format!("endgrain {command} {}", quoted(input))];
     for (key, value) in settings {
+        if !find(key).is_some_and(|row| groups.contains(&row.group)) {
+            continue;
+        }
         match value {
             Value::Bool(true) => words.push(format!("--{key}")),
             Value::Array(values) => {

@@ -6,6 +6,7 @@ use crate::report::page::{
 };
 use crate::report::text::figure;
 use crate::report::{ChannelSpectrum, CoefficientsReport, DensityReport, SpectrumReport, Trace};
+use crate::settings::Group;
 
 /// The page of a spectrum, with its series.
 pub fn spectrum_page(report: &SpectrumReport) -> Page {
@@ -21,7 +22,7 @@ pub fn spectrum_page(report: &SpectrumReport) -> Page {
     let notes: Vec<_> = report.notes.iter().chain(report.channels.iter().flat_map(|c| &c.notes)).collect();
     sections.push(shared::quality(&report.input, &notes));
     let second = report.second.as_ref().map_or_else(String::new, |second| shared::quoted(&second.path));
-    sections.push(shared::settings("spectrum", &report.input.path, &report.settings, &second));
+    sections.push(shared::settings("spectrum", Group::SPECTRUM, &report.input.path, &report.settings, &second));
     let title = match &report.second {
         None => format!("Spectrum of {}", report.input.path),
         Some(second) => format!("Spectra of {} and {}", report.input.path, second.path),
