@@ -28,7 +28,7 @@ pub fn archive_page(report: &ArchiveReport, restorations: &[Restoration]) -> Pag
     sections.push(shared::settings("compress", Group::COMPRESS, &report.path, &report.settings, &output));
     Page {
         title: format!("{} archived", report.path),
-        asked: format!("{}: {} rows. {}.", report.path, report.rows, report.asked),
+        asked: format!("{}: {} rows. Asked for: {}.", report.path, report.rows, report.asked),
         answers: std::iter::once(total(report))
             .chain(report.channels.iter().map(|channel| answer(channel, report)))
             .collect(),

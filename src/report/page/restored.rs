@@ -4,7 +4,7 @@ use crate::codec::Limit;
 use crate::report::page::{Quantity, thinned_with_gaps};
 
 /// Rows drawn on each side of the largest error.
-const BESIDE: usize = 40;
+const BESIDE: usize = 12;
 /// Points kept of a line over the whole record: a page of several channels thins further.
 const KEPT: usize = 3000;
 
