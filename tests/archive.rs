@@ -356,3 +356,58 @@ fn finds_of_the_fuzzer_and_mutations_are_survived() {
         }
     }
 }
+
+#[test]
+fn a_page_shows_the_numbers_of_the_json_and_runs_again() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let source = fixture("plank.csv").display().to_string();
+    let asked =
+        ["compress", &source, "--max-error", "0.5um", "-o", "plank.grain", "--html", "lost.html", "--json", "r.json"];
+    run(folder.path(), &asked);
+    let read = |name: &str| std::fs::read_to_string(folder.path().join(name)).expect("a file");
+    let (page, archive) = (read("lost.html"), std::fs::read(folder.path().join("plank.grain")).expect("an archive"));
+    let report: serde_json::Value = serde_json::from_str(&read("r.json")).expect("JSON");
+    let channel = &report["channels"][0];
+    for key in
+        ["error", "rmse", "max_error", "max_error_row", "max_error_at", "psnr_db", "bits_per_sample", "noise_bits"]
+    {
+        let value = channel[key].as_f64().unwrap_or_else(|| panic!("{key}: {}", channel[key]));
+        assert!(page.contains(&format!("<data value=\"{value}\">")), "{key}: {value} is not on the page");
+    }
+    // Stamps of 0.5 mm from 0: the place follows from the row.
+    assert_eq!(channel["max_error_at"].as_f64(), channel["max_error_row"].as_f64().map(|row| 0.5 * row));
+    let code = page.split("<pre").nth(1).and_then(|rest| rest.split("<code>").nth(1)).expect("settings");
+    let code = code.split("</code>").next().expect("settings").replace("\\\n", " ");
+    let words: Vec<&str> = code.split_whitespace().skip(1).chain(["--html", "lost.html", "--force"]).collect();
+    run(folder.path(), &words);
+    assert!(read("lost.html") == page, "another page");
+    assert!(std::fs::read(folder.path().join("plank.grain")).expect("an archive") == archive, "another archive");
+    refused(
+        folder.path(),
+        &["compress", &source, "--lossless", "-o", "a.grain", "--html", "a.grain"],
+        2,
+        "two outputs",
+    );
+}
+
+#[test]
+fn a_page_breaks_its_lines_at_gaps() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let mut text = String::from("t [s],a [g]\n");
+    for n in 0..200 {
+        let value = if (90..100).contains(&n) { "NA".to_owned() } else { format!("{:.4}", (0.1 * f64::from(n)).sin()) };
+        text.push_str(&format!("{:.2},{value}\n", 0.01 * f64::from(n)));
+    }
+    std::fs::write(folder.path().join("gaps.csv"), text).expect("written");
+    let asked =
+        ["compress", "gaps.csv", "--missing", "NA", "--max-error", "0.01g", "-o", "g.grain", "--html", "g.html"];
+    run(folder.path(), &asked);
+    let figures: serde_json::Value =
+        serde_json::from_slice(&std::fs::read(folder.path().join("g.html.json")).expect("a file")).expect("JSON");
+    let points = figures["figures"][0]["lines"][0]["points"].as_array().expect("points").clone();
+    let breaks: Vec<&serde_json::Value> = points.iter().filter(|point| point[1].is_null()).collect();
+    assert_eq!(breaks.len(), 1, "one gap, one break");
+    assert_eq!(points.len(), 191);
+    let table = std::fs::read_to_string(folder.path().join("g.html.csv")).expect("a file");
+    assert!(!table.contains("NaN"));
+}

@@ -4,12 +4,15 @@ Usage: pages.py PROGRAM [--screenshots FOLDER]
 """
 
 import argparse
+import array
 import json
 import math
 import pathlib
+import random
 import subprocess
 import sys
 import tempfile
+import wave
 
 from playwright.sync_api import sync_playwright
 
@@ -21,7 +24,9 @@ BYTES = 2_000_000
 SOME_FAILED = 5
 
 checks = 0
-WITHOUT_CANDIDATES = ("spectrum", "coefficients", "overview")
+WITHOUT_CANDIDATES = ("spectrum", "coefficients", "overview", "archive", "hoist")
+ARCHIVES = ("archive", "hoist")
+LONG = 10_000_000
 
 
 def check(condition, what):
@@ -63,6 +68,24 @@ def batch(program, folder):
     )
     check(done.returncode == SOME_FAILED, f"batch: exit {done.returncode}: {done.stderr}")
     return folder / "out"
+
+
+def long_record(path):
+    """LONG samples of 16 bits at 50 kHz: a tone that drifts, two knocks, and noise that repeats."""
+    chance = random.Random(7)
+    period = [8000 * math.sin(2 * math.pi * n / 100) + chance.gauss(0, 900) for n in range(100_000)]
+    samples = array.array("h")
+    for turn in range(LONG // len(period)):
+        gain = 0.5 + 0.5 * math.sin(0.07 * turn)
+        samples.extend(array.array("h", [int(gain * value) for value in period]))
+    samples[3_333_333], samples[7_777_777] = 32_000, -32_000
+    if sys.byteorder == "big":
+        samples.byteswap()
+    with wave.open(str(path), "wb") as file:
+        file.setnchannels(1)
+        file.setsampwidth(2)
+        file.setframerate(50_000)
+        file.writeframes(samples.tobytes())
 
 
 def opened(browser, page_file, **options):
@@ -153,6 +176,24 @@ def check_command(program, page, made, name):
     check(again.read_bytes() == page_file.read_bytes(), f"{name}: {line}: gave another page")
 
 
+def check_archive(page, report, name):
+    """The table of what is lost carries the JSON's numbers to the last bit, and the answer names the largest error."""
+    for channel in report["channels"]:
+        part = page.locator("section", has=page.locator("h2", has_text=channel["name"])).last
+        cells = part.locator("table:has(caption:text('What is lost')) data").evaluate_all("cells => cells.map(c => Number(c.value))")
+        keys = ("error", "max_error", "max_error_row", "max_error_at", "rmse", "psnr_db", "retained_energy", "error_correlation")
+        wanted = [channel[key] for key in keys if channel[key] is not None]
+        check(cells == wanted, f"{name}: {channel['name']}: {cells} on the page, {wanted} in the JSON")
+        cells = part.locator("table:has(caption:text('How it is coded')) data").evaluate_all("cells => cells.map(c => Number(c.value))")
+        keys = ("runner_up_bytes", "blocks", "bytes", "bits_per_sample", "ratio_to_doubles", "noise", "noise_bits", "kept", "cut_off")
+        wanted = [channel[key] for key in keys if channel[key] is not None]
+        check(cells == wanted, f"{name}: {channel['name']}: {cells} on the page, {wanted} in the JSON")
+    error = next(figure for figure in report["figures"] if figure["y"]["name"].endswith("error"))
+    largest = max(abs(point[1]) for point in error["lines"][0]["points"])
+    wanted = report["channels"][0]["max_error"]
+    check(largest == wanted, f"{name}: the figure's largest error is {largest}, that of the table {wanted}")
+
+
 def check_readout(page, name):
     field = page.locator(".field").first
     field.focus()
@@ -173,6 +214,8 @@ def main():
         folder = pathlib.Path(folder)
         record = folder / "hostile.csv"
         hostile_record(record)
+        long = folder / "long.wav"
+        long_record(long)
         made = {
             "compare": (folder / "compare.html", ["compare", "fixtures/hoist.csv", "--lowpass", "3Hz"]),
             "condition": (
@@ -195,14 +238,24 @@ def main():
                  "-o", folder / "travel.csv"],
             ),
             "overview": (folder / "overview.html", ["merge", batch(options.program, folder)]),
+            "archive": (
+                folder / "archive.html",
+                ["compress", "fixtures/plank.csv", "--max-error", "0.5um", "-o", folder / "plank.grain"],
+            ),
+            "hoist": (
+                folder / "hoist.html",
+                ["compress", "fixtures/hoist.csv", "--rms-error", "0.5x", "-o", folder / "hoist.grain"],
+            ),
+            "long": (folder / "long.html", ["compare", long, "--lowpass", "2kHz"]),
             "hostile": (folder / "hostile.html", ["compare", record, "--lowpass", "20Hz"]),
         }
         for name, (page_file, command) in made.items():
             run(options.program, *command, "--html", page_file, "--quiet", code=SOME_FAILED if name == "overview" else 0)
             check(page_file.stat().st_size < BYTES, f"{page_file.name}: {page_file.stat().st_size} bytes")
-        again = folder / "again.html"
-        run(options.program, *made["compare"][1], "--html", again, "--quiet")
-        check(again.read_bytes() == made["compare"][0].read_bytes(), "the same comparison gave another page")
+        for name in ("compare", "archive"):
+            again = folder / f"again-{name}.html"
+            run(options.program, *made[name][1], "--html", again, "--quiet", *(["--force"] if name == "archive" else []))
+            check(again.read_bytes() == made[name][0].read_bytes(), f"the same command gave another page of {name}")
 
         browser = play.chromium.launch(executable_path=chromium, args=["--no-sandbox"])
         for name, (page_file, _) in made.items():
@@ -214,8 +267,11 @@ def main():
                 check_layout(page, f"{name} at {width} px")
                 if width == 1400:
                     check_readout(page, name)
-                    if name != "overview":
+                    # An overview has records for its input; a long one would take its time twice.
+                    if name not in ("overview", "long"):
                         check_command(options.program, page, made[name], name)
+                    if name in ARCHIVES:
+                        check_archive(page, report, name)
                     if name not in WITHOUT_CANDIDATES:
                         check_choice(page, name)
                         if name != "hostile":

@@ -44,7 +44,7 @@ pub fn command() -> Command {
 pub fn run(matches: &ArgMatches) -> Result<ExitCode> {
     let Some(file) = matches.get_one::<String>("input") else { return Err(Error::usage("no input file")) };
     let settings = args::settings(matches, GROUPS, Some(file))?;
-    let (output, json) = outputs(matches, file)?;
+    let (output, json) = outputs(matches, file, None)?;
     let damage = if matches.get_flag("recover") { job::Damage::Recover } else { job::Damage::Refuse };
     let result = job::restore(stream::input(file)?, output, &settings, damage)?;
     tell(matches, json, &report::to_json(&result)?, &report::restore_text(&result))?;

@@ -11,22 +11,30 @@ use crate::codec::{
     encode,
 };
 use crate::error::{Error, Finding, Result};
+use crate::job::examination::axis_in_words;
 use crate::job::intake;
 use crate::numeric::noise;
 use crate::numeric::rational::Rational;
 use crate::place::Place;
 use crate::read::{self, Input};
-use crate::record::{Axis, ColumnRole, Layout, RateSource, RawChannel, RawRecord, SampleType, Stamps};
-use crate::report::{ArchiveReport, ArchivedReport, OutputReport, SCHEMA, Tool};
+use crate::record::{Axis, ColumnRole, Layout, RateSource, RawChannel, RawRecord, SampleType, Stamps, StatedRate};
+use crate::report::page::{DRAWN, Quantity, Restoration};
+use crate::report::{ARCHIVE_CAUTION, ArchiveReport, ArchivedReport, OutputReport, SCHEMA, Tool};
 use crate::settings::Settings;
 use crate::unit::Unit;
 use crate::write::Pending;
 
-/// Reads a record, codes it and writes the archive into `output`.
+/// Reads a record, codes it and writes the archive into `output`. Where it is to be `drawn`, the first channels come as
+/// recorded and as restored, for the page.
 ///
 /// # Errors
 /// Those of reading; `Usage` without a bound or for one that does not fit; nothing is then visible of the output.
-pub fn compress(input: Input, mut output: Pending<'_>, settings: &Settings) -> Result<ArchiveReport> {
+pub fn compress(
+    input: Input,
+    mut output: Pending<'_>,
+    settings: &Settings,
+    drawn: bool,
+) -> Result<(ArchiveReport, Vec<Restoration>)> {
     let Some(request) = settings.archive.request.clone() else {
         return Err(Error::usage("no bound on the error")
             .remedy("give one of --max-error, --rms-error, --lossless, --keep, --corner"));
@@ -68,23 +76,40 @@ pub fn compress(input: Input, mut output: Pending<'_>, settings: &Settings) -> R
     let bytes = writer.finish()?;
     output.flush()?;
     let written = output.finish()?;
-    let channels: Vec<ArchivedReport> = raw
-        .channels
-        .iter()
-        .zip(&coded)
-        .zip(sizes)
-        .map(|((channel, coded), bytes)| report(channel, coded, bytes, even.as_ref(), &mut notes))
-        .collect();
+    let count = raw.channels.len().min(DRAWN);
+    let (mut channels, mut restorations) = (Vec::new(), Vec::new());
+    for ((channel, coded), bytes) in raw.channels.iter().zip(&coded).zip(sizes) {
+        let restored: Vec<f64> = coded.made.iter().flat_map(|made| made.restored.iter().copied()).collect();
+        let mut told = report(channel, coded, &restored, bytes, even.as_ref(), &mut notes);
+        let worst = told.fidelity.max_error_row;
+        told.max_error_at = worst.filter(|_| header.axis.is_some()).map(|row| place(&raw, row));
+        if drawn && restorations.len() < count {
+            let values = [channel.values.as_slice(), restored.as_slice()];
+            restorations.push(Restoration::of(
+                across(&raw),
+                &|row| place(&raw, row),
+                coded.limit,
+                values,
+                worst,
+                count,
+            ));
+        }
+        channels.push(told);
+    }
     let samples = rows * raw.channels.len();
-    Ok(ArchiveReport {
+    let report = ArchiveReport {
         schema: SCHEMA,
         tool: Tool::THIS,
         command: "compress",
         settings: settings.to_map(),
+        asked: request.to_string(),
+        bounds_rms: matches!(request, Request::Rms(_)),
         path: raw.source.path.clone(),
         sha256: raw.source.sha256.clone(),
         source_bytes: raw.source.bytes,
         rows,
+        axis: header.axis.as_ref().map(axis_in_words),
+        axis_unit: header.axis.is_some().then(|| Unit::parse(&across(&raw).unit)),
         notes,
         channels,
         bytes,
@@ -92,7 +117,33 @@ pub fn compress(input: Input, mut output: Pending<'_>, settings: &Settings) -> R
         ratio_to_source: raw.source.bytes as f64 / bytes as f64,
         ratio_to_doubles: 8.0 * samples as f64 / bytes as f64,
         outputs: vec![OutputReport { path: written.path, sha256: written.sha256 }],
-    })
+        caution: ARCHIVE_CAUTION,
+    };
+    Ok((report, restorations))
+}
+
+/// Where a row stands: its stamp, or its time or position at the stated rate, or its number.
+fn place(raw: &RawRecord, row: usize) -> f64 {
+    match (&raw.stamps, &raw.stated_rate) {
+        (Some(stamps), _) => stamps.first + stamps.ticks.get(row).copied().unwrap_or(0) as f64 * stamps.tick,
+        (None, Some(rate)) => row as f64 / rate.rate_base,
+        (None, None) => row as f64,
+    }
+}
+
+/// What `place` counts.
+fn across(raw: &RawRecord) -> Quantity {
+    let along = |unit: &Unit| if unit.is_length() { "position" } else { "time" };
+    match (&raw.stamps, &raw.stated_rate) {
+        (Some(stamps), _) => Quantity::linear(along(&stamps.unit), stamps.unit.label()),
+        (None, Some(rate)) => Quantity::linear(along(&rate.unit), base_unit(rate).label()),
+        (None, None) => Quantity::linear("row", ""),
+    }
+}
+
+/// Seconds or metres: what a stated rate counts in.
+fn base_unit(rate: &StatedRate) -> Unit {
+    Unit::parse(if rate.unit.is_length() { "m" } else { "s" })
 }
 
 /// A channel as coded.
@@ -212,10 +263,7 @@ fn even_axis(raw: &RawRecord, rows: usize) -> Option<Axis> {
             let step = stamps.tick * p as f64 / q as f64;
             Axis::new(stamps.unit.clone(), stamps.first, step, rows, RateSource::Stamps).ok()
         }
-        (None, Some(rate)) => {
-            let base = Unit::parse(if rate.unit.is_length() { "m" } else { "s" });
-            Axis::new(base, 0.0, 1.0 / rate.rate_base, rows, RateSource::Header).ok()
-        }
+        (None, Some(rate)) => Axis::new(base_unit(rate), 0.0, 1.0 / rate.rate_base, rows, RateSource::Header).ok(),
         (None, None) => None,
     }
 }
@@ -284,11 +332,11 @@ fn origin_of(raw: &RawRecord, settings: &Settings) -> Origin {
 fn report(
     channel: &RawChannel,
     coded: &Coded,
+    restored: &[f64],
     bytes: u64,
     even: Option<&Axis>,
     notes: &mut Vec<Finding>,
 ) -> ArchivedReport {
-    let restored: Vec<f64> = coded.made.iter().flat_map(|made| made.restored.iter().copied()).collect();
     let values: Vec<f64> = channel.values.iter().copied().filter(|v| !v.is_nan()).collect();
     let sigma = if values.len() < 8 { 0.0 } else { noise::sigma(&values) };
     let (error, noise_bits) = match coded.limit {
@@ -331,11 +379,13 @@ fn report(
         error,
         bytes,
         bits_per_sample: 8.0 * bytes as f64 / channel.values.len().max(1) as f64,
+        ratio_to_doubles: 8.0 * channel.values.len() as f64 / bytes.max(1) as f64,
         mode,
         blocks: coded.made.len(),
         runner_up: runner_up.map(|(mode, _)| mode),
         runner_up_bytes: runner_up.map(|(_, bytes)| bytes),
-        fidelity: Fidelity::of(&channel.values, &restored),
+        fidelity: Fidelity::of(&channel.values, restored),
+        max_error_at: None,
         parseval_rmse: parseval,
         kept,
         // Coefficient k of N samples stands for k / (2 N) cycles a step.

@@ -95,7 +95,8 @@ fn list(input: Input, settings: &Settings) -> Result<ArchiveListing> {
     })
 }
 
-fn axis_in_words(axis: &codec::ArchivedAxis) -> String {
+/// `a row every 0.5 mm`.
+pub(super) fn axis_in_words(axis: &codec::ArchivedAxis) -> String {
     let unit = escape(&axis.unit);
     match axis.rule {
         codec::Rule::Even(p, 1) => format!("a row every {} {unit}", p as f64 * axis.tick),

@@ -19,6 +19,10 @@ pub struct ArchiveReport {
     pub command: &'static str,
     /// Every setting as resolved.
     pub settings: Map<String, Value>,
+    /// The bound in words.
+    pub asked: String,
+    /// True where the bounds of the channels hold for the RMS error, false where they hold for every sample.
+    pub bounds_rms: bool,
     /// The source as given.
     pub path: String,
     /// SHA-256 of its bytes.
@@ -27,6 +31,10 @@ pub struct ArchiveReport {
     pub source_bytes: u64,
     /// Rows.
     pub rows: usize,
+    /// The axis in words; null without one.
+    pub axis: Option<String>,
+    /// Its unit.
+    pub axis_unit: Option<Unit>,
     /// Remarks.
     pub notes: Vec<Finding>,
     /// One entry a channel.
@@ -41,7 +49,14 @@ pub struct ArchiveReport {
     pub ratio_to_doubles: f64,
     /// What was written.
     pub outputs: Vec<OutputReport>,
+    /// What archives may and may not be used for.
+    pub caution: &'static str,
 }
+
+/// The caution that goes with every archive.
+pub const ARCHIVE_CAUTION: &str = "A bound on the error is kept in the restored numbers; it says nothing of the measurement. What \
+an archive may lose is for those to decide who will judge the record: decisions on machine protection, structural safety or \
+human exposure follow the applicable standards and local codes under qualified practice; this program does not certify.";
 
 /// One archived channel.
 #[derive(Debug, Clone, Serialize)]
@@ -56,6 +71,8 @@ pub struct ArchivedReport {
     pub bytes: u64,
     /// 8 x bytes / rows.
     pub bits_per_sample: f64,
+    /// 8 x rows / bytes: 64-bit numbers take so many times more.
+    pub ratio_to_doubles: f64,
     /// How most of it is coded; null where it holds no value.
     pub mode: Option<Mode>,
     /// Number of blocks.
@@ -67,6 +84,8 @@ pub struct ArchivedReport {
     /// How near it comes, measured on what a reader gets.
     #[serde(flatten)]
     pub fidelity: Fidelity,
+    /// Place of the largest error in the axis unit; null without an axis or an error.
+    pub max_error_at: Option<f64>,
     /// RMSE by Parseval's theorem from the coefficients left out; null unless that is all that is lost.
     pub parseval_rmse: Option<f64>,
     /// Cosine coefficients that are kept; null without cosine series.

@@ -27,7 +27,7 @@ use crate::regularise::Segment;
 use crate::unit::Unit;
 use crate::verdict::{self, Adequacy, Edge, Structure, Unjudged};
 
-pub use archive::{ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
+pub use archive::{ARCHIVE_CAUTION, ArchiveListing, ArchiveReport, ArchivedReport, ListedChannel, RestoreReport};
 pub use comparison::{ChannelComparison, Comparison, Jump, Row, Veto};
 pub use examination::{AuditReport, RecordReport};
 pub use integral::{Amount, CornerReport, IntegralReport, SigmaReport};

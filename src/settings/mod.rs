@@ -22,7 +22,7 @@ use crate::verdict::Adequacy;
 pub use layer::Layer;
 pub use parse::bytes;
 pub use spectral::{Against, Method, SegmentLength, SpectrumOptions};
-pub use table::{Arity, COMPARE, CONDITION, Group, OptionRow, SPECTRUM, find, known, nearest, rows};
+pub use table::{Arity, COMPARE, COMPRESS, CONDITION, Group, OptionRow, SPECTRUM, find, known, nearest, rows};
 
 /// Settings of a run. `Settings::default()` is what runs without any option.
 #[derive(Debug, Clone, Default)]

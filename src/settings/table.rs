@@ -47,6 +47,9 @@ pub const COMPARE: &[Group] = &[Operators, Stage, Judgement, Cut, Repair, Input]
 /// Groups of `spectrum`.
 pub const SPECTRUM: &[Group] = &[Spectrum, Operators, Stage, Cut, Repair, Input];
 
+/// Groups of `compress`.
+pub const COMPRESS: &[Group] = &[Archive, Input];
+
 /// How often an option may be given.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Arity {

@@ -232,5 +232,6 @@ fn nearest(line: &Line, place: f64) -> String {
     let after = line.points.partition_point(|p| p[0] < place).min(line.points.len() - 1);
     let before = after.saturating_sub(1);
     let nearer = if place - line.points[before][0] < line.points[after][0] - place { before } else { after };
-    shown(line.points[nearer][1], 4)
+    let value = line.points[nearer][1];
+    if value.is_finite() { shown(value, 4) } else { "\u{2013}".to_owned() }
 }

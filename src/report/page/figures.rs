@@ -15,6 +15,8 @@ pub fn figures_csv(page: &Page) -> String {
         for line in &figure.lines {
             let name = field(&line.name);
             for [x, y] in &line.points {
+                // A break in a line has a place but no value.
+                let y = if y.is_finite() { y.to_string() } else { String::new() };
                 text.push_str(&format!("{title},{name},{x},{across},{y},{upwards},,\n"));
             }
         }

@@ -1,11 +1,13 @@
 //! A report page as plain data: what it says, shows and tabulates, before any markup.
 
+mod archived;
 mod chart;
 mod compared;
 mod conditioned;
 mod content;
 mod figures;
 mod html;
+mod restored;
 mod shared;
 mod spectral;
 mod thin;
@@ -13,14 +15,16 @@ mod tick;
 
 use serde::Serialize;
 
+pub use archived::archive_page;
 pub use compared::comparison_page;
 pub use conditioned::condition_page;
 pub use content::{Passage, Spectra, Stack};
 pub use figures::{figures_csv, figures_json};
 pub use html::html;
-pub use shared::{command_line, options, quoted};
+pub use restored::{Close, Restoration};
+pub use shared::{DRAWN, command_line, options, quoted};
 pub use spectral::spectrum_page;
-pub use thin::{thinned, thinned_along};
+pub use thin::{thinned, thinned_along, thinned_with_gaps};
 
 /// Points on a page at most, over all figures: a browser opens that many at once without a pause.
 pub const POINTS: usize = 18_000;

@@ -308,12 +308,15 @@ pub fn quality(input: &InputReport, notes: &[&Finding]) -> Section {
     ];
     rows.extend(axis.epoch.as_ref().map(|epoch| row("stamp 0 is", epoch.clone())));
     let table = Table { caption: "The record as read".to_owned(), head: vec!["what".into(), "value".into()], rows };
-    let remarks = if notes.is_empty() {
-        Block::Text("No remarks: nothing was repaired, guessed or left out.".to_owned())
-    } else {
-        Block::List(notes.iter().map(|note| note.to_string()).collect())
-    };
-    Section { heading: "Input quality".to_owned(), blocks: vec![Block::Table(table), remarks] }
+    Section { heading: "Input quality".to_owned(), blocks: vec![Block::Table(table), remarks(notes)] }
+}
+
+/// Every remark.
+pub fn remarks(notes: &[&Finding]) -> Block {
+    if notes.is_empty() {
+        return Block::Text("No remarks: nothing was repaired, guessed or left out.".to_owned());
+    }
+    Block::List(notes.iter().map(|note| note.to_string()).collect())
 }
 
 fn rate_source(axis: &AxisReport) -> &'static str {
