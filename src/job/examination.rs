@@ -30,7 +30,7 @@ pub enum Examined {
 /// Audits a record, or tells what an archive holds.
 ///
 /// # Errors
-/// As [`audit`]; `Malformed` with the byte where an archive is damaged.
+/// As `audit`; `Malformed` with the byte where an archive is damaged.
 pub fn examine(input: Input, settings: &Settings) -> Result<Examined> {
     let mut first = Vec::new();
     let input = match input {

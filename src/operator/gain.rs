@@ -36,7 +36,7 @@ pub trait Gain: std::fmt::Debug + Send + Sync {
     fn highest(&self) -> f64;
 }
 
-/// G(w) = s0 + s2 w^2 + s4 w^4 + odd[0] (i w) + odd[1] (i w)^3 + odd[2] (i w)^5 + ..., w in radians per sample: a gain near
+/// G(w) = s0 + s2 w^2 + s4 w^4 + odd_0 (i w) + odd_1 (i w)^3 + odd_2 (i w)^5 + ..., w in radians per sample: a gain near
 /// zero frequency. Gains without phase are even.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Series {
