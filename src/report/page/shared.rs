@@ -3,6 +3,7 @@
 use serde_json::{Map, Value};
 
 use crate::error::Finding;
+use crate::numeric::sum::rms;
 use crate::operator::ChainDescription;
 use crate::place::escape;
 use crate::report::page::content::Content;
@@ -143,7 +144,38 @@ pub fn ends(picture: &Picture, axis: &AxisReport, count: usize) -> Vec<Block> {
         Block::Figures(continuations),
         Block::Heading("The outputs near the ends, under every extension".to_owned()),
         Block::Figures(outputs),
+        Block::Table(costs(picture)),
     ]
+}
+
+/// What every extension costs at either end: over its edge zone, the distance from the forecast's output and the forecast's own
+/// deviation taken together.
+fn costs(picture: &Picture) -> Table {
+    let len = picture.record.len();
+    let zone = picture.zone.min(len);
+    let foretold = picture.curves.first().map(|curve| curve.output.as_slice()).unwrap_or_default();
+    let at = |curve: &Curve, side: usize, from_end: usize| {
+        let n = if side == 0 { from_end } else { len - 1 - from_end };
+        let distance = curve.output.get(n)? - foretold.get(n)?;
+        Some(distance.hypot(picture.deviation[side].get(from_end).copied().unwrap_or(0.0)))
+    };
+    let rows = picture.curves.iter().map(|curve| {
+        let mut row = vec![Cell::text(curve.name)];
+        for side in 0..SIDES.len() {
+            let values: Vec<f64> = (0..zone).filter_map(|from_end| at(curve, side, from_end)).collect();
+            let spread = (!values.is_empty()).then(|| rms(&values));
+            row.extend([Cell::Number(spread, 3), Cell::Number(values.first().copied(), 3)]);
+        }
+        row
+    });
+    let unit = &picture.unit;
+    let head =
+        SIDES.iter().flat_map(|side| [format!("{side} end, RMS [{unit}]"), format!("at the {side} sample [{unit}]")]);
+    Table {
+        caption: format!("What to expect at each end, over {zone} samples: one standard deviation"),
+        head: std::iter::once("continued by".to_owned()).chain(head).collect(),
+        rows: rows.collect(),
+    }
 }
 
 const SIDES: [&str; 2] = ["left", "right"];
