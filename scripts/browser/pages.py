@@ -258,7 +258,7 @@ def main():
             run(options.program, *made[name][1], "--html", again, "--quiet", *(["--force"] if name == "archive" else []))
             check(again.read_bytes() == made[name][0].read_bytes(), f"the same command gave another page of {name}")
 
-        browser = play.chromium.launch(executable_path=chromium, args=["--no-sandbox"])
+        browser = play.chromium.launch(executable_path=chromium, args=["--no-sandbox", "--disable-dev-shm-usage"])
         for name, (page_file, _) in made.items():
             report = json.loads(pathlib.Path(f"{page_file}.json").read_text())
             for width in (1400, 400):
