@@ -195,6 +195,9 @@ fn short_real_records_read_as_they_are() {
     let heart = run(&open("ecg.csv"), &[("rate", "360Hz")]);
     assert_eq!(only(&heart).level.expect("a level").mean, -56.3046875);
     assert_eq!(values("ecg.csv")[..4], [-86.0, -87.0, -87.0, -89.0]);
+    // MIT-BIH by way of sktime: 7501 lines with the heading, two columns.
+    let labelled = run(&open("ecg_labelled.csv"), &[("rate", "360Hz")]);
+    assert_eq!((labelled.input.samples, labelled.channels.len()), (7500, 2));
     assert_eq!(values("nile_flow.csv")[..2], [1120.0, 1160.0]);
     assert_eq!(run(&open("nile_flow.csv"), &[("rate", "1Hz")]).input.samples, 100);
     // NOAA sea temperatures, 61 years of 12 months: the year is the strongest cycle.

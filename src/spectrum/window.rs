@@ -141,6 +141,22 @@ mod tests {
     }
 
     #[test]
+    fn a_misprinted_row_is_known_by_its_side_lobes() {
+        // Harris 1978, Table 1, four terms, -74 dB: as printed, and as corrected (Nuttall 1981, quoted in Lyons,
+        // "Understanding Digital Signal Processing").
+        for (coefficients, level) in
+            [(&[0.40217, 0.49703, 0.09392, 0.00183], -56.6), (&[0.40217, 0.49703, 0.09892, 0.00188], -74.39)]
+        {
+            let samples = row("four terms", coefficients, 0.5, "Harris 1978").samples(4096);
+            // The main lobe ends where the response rises again, wherever that is.
+            let falls: Vec<f64> = (0..2000).map(|k| response(&samples, f64::from(k) * 0.01)).collect();
+            let rise = falls.windows(2).position(|pair| pair[1] > pair[0]).unwrap();
+            let highest = decibels(falls[rise..].iter().copied().fold(0.0, f64::max));
+            assert!((highest - level).abs() < 0.1, "{highest}");
+        }
+    }
+
+    #[test]
     fn hann_is_periodic_and_falls_off_by_18_decibels_an_octave() {
         // The symmetric form would give 1.7142857, 1.6 and 1.5238095 at these lengths.
         for len in [8, 16, 64] {
